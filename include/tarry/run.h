@@ -1,0 +1,30 @@
+#ifndef TARRY_RUN_H
+#define TARRY_RUN_H
+
+/* Simulating a model: all cells, on all cores, into results. */
+
+#include <stdbool.h>
+#include <stdint.h>
+#include "tarry/error.h"
+#include "tarry/model.h"
+#include "tarry/results.h"
+
+typedef struct tarry_run_options {
+    int threads;         /* 0: all cores */
+    const char *sampler; /* NULL: "direct" */
+    int64_t keep;        /* traces of the first `keep` cells go into the results */
+    /* Looked at before each new cell; once it is not 0 no new cell starts (may be set by a signal
+     * handler or another thread; NULL: never). */
+    const volatile int *stop;
+    /* Called by one thread at a time after each finished cell (may be NULL). */
+    void (*progress)(void *context, int64_t n_done, int64_t n_cells);
+    void *progress_context;
+} tarry_run_options;
+
+/* Simulate. Cells 0 .. n-1 are always whole: after `stop` the results hold the n cells that were
+ * finished (n may be 0: then TARRY_INTERRUPTED is returned and *results is NULL). Where cells fail
+ * the error is that of the lowest-numbered one. The same bytes for any number of threads. */
+int tarry_run(const tarry_model *model, const tarry_run_options *options, tarry_results **results,
+              tarry_error *error);
+
+#endif

@@ -1,0 +1,26 @@
+#ifndef TARRY_H
+#define TARRY_H
+
+/* Everything that libtarry promises. A program calls tarry_start() once before it makes threads;
+ * the library itself never prints, exits or reads the clock. */
+
+#include "tarry/check.h"
+#include "tarry/error.h"
+#include "tarry/model.h"
+#include "tarry/results.h"
+#include "tarry/run.h"
+#include "tarry/table.h"
+#include "tarry/write.h"
+
+#define TARRY_VERSION "0.1.0"
+
+/* Turns GSL's aborting error handler off (every GSL status is checked). Call once, first. */
+void tarry_start(void);
+
+/* "0.1.0" */
+const char *tarry_version(void);
+
+/* Compiler, flags and library versions, for `tarry version --build`. */
+const char *tarry_build(void);
+
+#endif

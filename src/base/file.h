@@ -1,0 +1,32 @@
+#ifndef TARRY_BASE_FILE_H
+#define TARRY_BASE_FILE_H
+
+/* All opening, reading, writing and renaming of files. Errors carry the path and the reason. */
+
+#include <stdbool.h>
+#include <stdint.h>
+#include "base/text.h"
+#include "tarry/error.h"
+
+enum { TARRY_SHA256_TEXT = 65 };
+
+/* Read a whole file of at most `limit` bytes into `text` (TARRY_INPUT when larger or a folder). */
+int tarry_file_read(const char *path, size_t limit, tarry_text *text, tarry_error *error);
+
+/* Write n bytes to `path` whole or not at all: into a file beside it, flushed to disk, closed,
+ * renamed. On failure nothing is left under either name. */
+int tarry_file_write(const char *path, const char *bytes, size_t n, tarry_error *error);
+
+/* Create a folder; fine when it is there already. */
+int tarry_folder_make(const char *path, tarry_error *error);
+
+/* *empty: the folder does not exist or holds nothing. TARRY_FILE when `path` is something else. */
+int tarry_folder_is_empty(const char *path, bool *empty, tarry_error *error);
+
+/* Remove a file; fine when there is none. */
+int tarry_file_remove(const char *path, tarry_error *error);
+
+/* Lower-case hex SHA-256 of n bytes (FIPS 180-4, by nettle). */
+void tarry_sha256(const char *bytes, size_t n, char out[TARRY_SHA256_TEXT]);
+
+#endif

@@ -1,0 +1,31 @@
+#ifndef TARRY_BASE_NUMBER_H
+#define TARRY_BASE_NUMBER_H
+
+#include <stddef.h>
+#include <stdint.h>
+
+/* Numbers as text, always in the C locale whatever the process has set. */
+
+enum { TARRY_NUMBER_SIZE = 32 };
+
+typedef enum tarry_number_status {
+    TARRY_NUMBER_OK,
+    TARRY_NUMBER_BAD,   /* not a number as a whole */
+    TARRY_NUMBER_RANGE, /* too large for a double */
+} tarry_number_status;
+
+/* Read all n bytes as one decimal number (optional sign, digits, point, exponent; no hex, no inf,
+ * no nan, no blanks). *out is set on OK only. */
+tarry_number_status tarry_number_read(const char *text, size_t n, double *out);
+
+/* The same for whole numbers, exactly. */
+tarry_number_status tarry_integer_read(const char *text, size_t n, int64_t *out);
+
+/* Length of the longest prefix of text[0..n) that is a number by the rule above; 0 if none. */
+size_t tarry_number_prefix(const char *text, size_t n);
+
+/* Write with the fewest significant digits that read back to the same double ("nan", "inf", "-inf"
+ * for the rest). Returns the length; `out` is NUL-ended. */
+size_t tarry_number_write(double value, char out[TARRY_NUMBER_SIZE]);
+
+#endif

@@ -1,0 +1,38 @@
+#ifndef TARRY_ENGINE_DRAW_H
+#define TARRY_ENGINE_DRAW_H
+
+/* Drawing lags by inversion: one 64-bit number for each elementary law in a lag, none for a fixed
+ * one. Closed form where there is one, else a table of quantiles. */
+
+#include <stdint.h>
+#include "base/logarithm.h"
+#include "base/memory.h"
+#include "base/random.h"
+#include "model/law.h"
+
+typedef struct tarry_drawer tarry_drawer; /* one law made ready; const once built */
+
+/* Drawers for laws share tables where laws have the same shape. */
+typedef struct tarry_drawer_set tarry_drawer_set;
+
+int tarry_drawer_set_new(tarry_drawer_set **set, tarry_error *error);
+void tarry_drawer_set_free(tarry_drawer_set *set);
+
+/* A drawer for `law` (checked before; must outlive the set). Errors: TARRY_MEMORY, TARRY_NUMERIC
+ * where a table cannot be brought under 1e-9 of the lag. The set owns the drawer. */
+int tarry_drawer_set_add(tarry_drawer_set *set, const tarry_law *law, const tarry_drawer **drawer,
+                         tarry_error *error);
+
+/* The length of a lag that never varies, or -1. */
+double tarry_drawer_fixed(const tarry_drawer *drawer);
+
+/* Draw one lag. */
+double tarry_draw(const tarry_drawer *drawer, tarry_stream *stream);
+
+/* The lag at u = tarry_unit(bits), for drawers of one elementary law (tests). */
+double tarry_draw_at(const tarry_drawer *drawer, uint64_t bits);
+
+/* Bytes of all tables of the set. */
+size_t tarry_drawer_set_bytes(const tarry_drawer_set *set);
+
+#endif
