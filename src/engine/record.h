@@ -45,10 +45,10 @@ typedef struct tarry_record {
     double *frames;    /* [recorded channel in order][frame]: n_recorded * n_frames */
     double *snapshots; /* [channel][snapshot]: n_channels * n_snapshots */
 
-    tarry_mark *marks; /* in order of time, from 0 on; grows */
+    tarry_mark *marks; /* in order of time, those at 0 or later; grows */
     size_t n_marks;
     size_t marks_capacity;
-    tarry_track_status *status; /* [track], at time 0, after a protocol step at 0 */
+    tarry_track_status *status; /* [track], just before any event at time 0 */
     int64_t *counts;            /* [bound 0..n_spans][track]: counters at each span bound */
     double end;                 /* when the cell stopped: until, or later where it ran on */
     int64_t ignored;            /* openings while open, closings while closed (named tracks) */
