@@ -10,6 +10,7 @@
 #include "tarry/results.h"
 #include "tarry/run.h"
 #include "tarry/table.h"
+#include "tarry/word.h"
 #include "tarry/write.h"
 
 #define TARRY_VERSION "0.1.0"

@@ -3,6 +3,7 @@
 
 #include <stdbool.h>
 #include <stddef.h>
+#include "tarry/word.h"
 
 /* A text that grows. Zero-initialise ({0}). Failed allocations are remembered in `failed`, so that
  * a caller may append freely and look once at the end. */
@@ -19,9 +20,5 @@ void tarry_text_add_number(tarry_text *text, double value);
 void tarry_text_printf(tarry_text *text, const char *format, ...)
     __attribute__((format(printf, 2, 3)));
 void tarry_text_release(tarry_text *text);
-
-/* The candidate with the smallest edit distance to `word` where that is small enough to be a slip
- * of the hand (at most a third of the length, at least 1); NULL otherwise. */
-const char *tarry_nearest_word(const char *word, const char *const *candidates, size_t n);
 
 #endif
