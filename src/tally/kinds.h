@@ -1,0 +1,19 @@
+#ifndef TARRY_TALLY_KINDS_H
+#define TARRY_TALLY_KINDS_H
+
+/* The one list of all estimators. A kind NAME is `tarry_tally_NAME` in tally_NAME.c; add it here.
+ * The order is that in which tables are filled. */
+
+#include "tally/tally.h"
+
+#define TARRY_TALLY_KINDS(X)                                                                       \
+    X(moments)                                                                                     \
+    X(distribution)                                                                                \
+    X(transit)                                                                                     \
+    X(drift)
+
+#define TARRY_TALLY_DECLARE(name) extern const tarry_tally_kind tarry_tally_##name;
+TARRY_TALLY_KINDS(TARRY_TALLY_DECLARE)
+#undef TARRY_TALLY_DECLARE
+
+#endif
