@@ -18,6 +18,9 @@ void tarry_table_free(tarry_table *table);
  * TARRY_MEMORY; after a failure the table holds whole rows only. */
 int tarry_table_add(tarry_table *table, tarry_error *error, ...);
 
+/* Append a row to a table all of whose columns hold numbers: one for each column in order. */
+int tarry_table_add_numbers(tarry_table *table, const double *numbers, tarry_error *error);
+
 /* Append the whole table to `text` as CSV with a header row; numbers as base/number writes them. */
 void tarry_table_write_csv(const tarry_table *table, tarry_text *text);
 
