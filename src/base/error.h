@@ -15,7 +15,8 @@ int tarry_fail_at(tarry_error *error, tarry_code code, tarry_place place, const 
 /* The usual error for an allocation that failed. `what` names what was to be stored. */
 int tarry_fail_memory(tarry_error *error, const char *what);
 
-/* Put "context: " before the message of an error on its way up. Returns the error's code. */
+/* Put "context: " before the message of an error on its way up. Returns the error's code
+ * (TARRY_RUN where `error` is NULL, since the code is not known then). */
 int tarry_error_context(tarry_error *error, const char *format, ...)
     __attribute__((format(printf, 2, 3)));
 

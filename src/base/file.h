@@ -10,11 +10,13 @@
 
 enum { TARRY_SHA256_TEXT = 65 };
 
-/* Read a whole file of at most `limit` bytes into `text` (TARRY_INPUT when larger or a folder). */
+/* Read a whole file of at most `limit` bytes behind what `text` holds (TARRY_INPUT when larger or a
+ * folder). */
 int tarry_file_read(const char *path, size_t limit, tarry_text *text, tarry_error *error);
 
 /* Write n bytes to `path` whole or not at all: into a file beside it, flushed to disk, closed,
- * renamed. On failure nothing is left under either name. */
+ * renamed. On failure nothing new is left; a file that stood under `path` before stays as it was.
+ */
 int tarry_file_write(const char *path, const char *bytes, size_t n, tarry_error *error);
 
 /* Create a folder; fine when it is there already. */

@@ -24,8 +24,9 @@ tarry_number_status tarry_integer_read(const char *text, size_t n, int64_t *out)
 /* Length of the longest prefix of text[0..n) that is a number by the rule above; 0 if none. */
 size_t tarry_number_prefix(const char *text, size_t n);
 
-/* Write with the fewest significant digits that read back to the same double ("nan", "inf", "-inf"
- * for the rest). Returns the length; `out` is NUL-ended. */
+/* Write with the fewest significant digits that read back to the same double, plain from 0.00001 up
+ * to 17 digits before the point and with an exponent beyond ("nan", "inf", "-inf" for the rest; -0
+ * is "0"). Returns the length; `out` is NUL-ended. */
 size_t tarry_number_write(double value, char out[TARRY_NUMBER_SIZE]);
 
 #endif

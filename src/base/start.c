@@ -1,0 +1,46 @@
+#include "tarry/tarry.h"
+
+#include <gsl/gsl_errno.h>
+#include <gsl/gsl_version.h>
+#include <jansson.h>
+#include <nettle/version.h>
+#include <uthash.h>
+
+#define QUOTE(x) #x
+#define TEXT_OF(x) QUOTE(x)
+
+#if defined __clang__
+#define COMPILER "clang " __clang_version__
+#elif defined __GNUC__
+#define COMPILER "gcc " __VERSION__
+#else
+#define COMPILER "unknown compiler"
+#endif
+
+/* The Makefile hands over the flags it compiles with. */
+#ifndef TARRY_FLAGS
+#define TARRY_FLAGS "not known"
+#endif
+
+#ifdef _OPENMP
+#define OPENMP "OpenMP " TEXT_OF(_OPENMP)
+#else
+#define OPENMP "no OpenMP: one thread"
+#endif
+
+void tarry_start(void) {
+    gsl_set_error_handler_off();
+}
+
+const char *tarry_version(void) {
+    return TARRY_VERSION;
+}
+
+const char *tarry_build(void) {
+    return "compiler: " COMPILER "\n"
+           "flags: " TARRY_FLAGS "\n"
+           "threads: " OPENMP "\n"
+           "libraries: GSL " GSL_VERSION ", jansson " JANSSON_VERSION
+           ", nettle " TEXT_OF(NETTLE_VERSION_MAJOR) "." TEXT_OF(
+               NETTLE_VERSION_MINOR) ", uthash " TEXT_OF(UTHASH_VERSION) ", libyaml\n";
+}
