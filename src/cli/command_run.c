@@ -1,0 +1,158 @@
+/* tarry run: simulate, write the files of the run, print the table per gene. */
+
+#include "cli/commands.h"
+#include "cli/interrupt.h"
+#include "cli/progress.h"
+#include "cli/talk.h"
+#include "tarry/tarry.h"
+
+#include <inttypes.h>
+#include <stdlib.h>
+#include <string.h>
+
+/* The demonstration: a model of models/ that the build puts into the program. */
+extern const char tarry_demo_model[];
+extern const size_t tarry_demo_model_size;
+static const char demo_name[] = "two_state.yaml";
+
+enum { TABLE_WIDTH = 80 };
+
+static int check_figures(const char *kind) {
+    static const char *const later[] = {"svg", "pdf", "png"};
+    if (!kind || !strcmp(kind, "none"))
+        return 0;
+    for (size_t i = 0; i < sizeof later / sizeof *later; i++)
+        if (!strcmp(kind, later[i]))
+            return tarry_complain(TARRY_EXIT_WRONG,
+                                  "--figures %s: not yet; version %s draws none, so leave it out "
+                                  "or say --figures none",
+                                  kind, tarry_version());
+    return tarry_complain(TARRY_EXIT_WRONG,
+                          "--figures %s: one of svg, pdf, png and none is due here", kind);
+}
+
+/* "models/vela.yaml" -> "vela.out". */
+static char *default_folder(const char *path) {
+    const char *slash = strrchr(path, '/');
+    const char *name = slash ? slash + 1 : path;
+    const char *dot = strrchr(name, '.');
+    const bool known = dot && dot != name && (!strcmp(dot, ".yaml") || !strcmp(dot, ".yml"));
+    const size_t n = known ? (size_t)(dot - name) : strlen(name);
+    char *folder = malloc(n + sizeof ".out");
+    if (folder) {
+        memcpy(folder, name, n);
+        strcpy(folder + n, ".out");
+    }
+    return folder;
+}
+
+static int read_model(const tarry_settings *settings, tarry_model **model) {
+    tarry_error error = {0};
+    if (settings->operand)
+        return tarry_command_read_model(settings, model);
+    tarry_talk("no MODEL was given: this is the built-in demonstration, models/%s", demo_name);
+    if (tarry_model_read_text(tarry_demo_model, tarry_demo_model_size, demo_name,
+                              settings->overrides, settings->n_overrides, model, &error))
+        return tarry_complain_error(&error);
+    return TARRY_EXIT_DONE;
+}
+
+static int simulate(const tarry_settings *settings, const tarry_model *model,
+                    tarry_results **results, tarry_provenance *provenance) {
+    tarry_error error = {0};
+    tarry_progress progress;
+    const tarry_run_options options = {
+        .threads = provenance->threads,
+        .sampler = provenance->sampler,
+        .keep = settings->keep,
+        .stop = tarry_interrupt_watch(!settings->quiet),
+        .progress = tarry_progress_show,
+        .progress_context = &progress,
+    };
+    tarry_progress_start(&progress, !settings->quiet);
+    const int code = tarry_run(model, &options, results, &error);
+    provenance->seconds = tarry_clock() - progress.start;
+    tarry_progress_end(&progress);
+    if (code == TARRY_INTERRUPTED)
+        return tarry_complain(TARRY_EXIT_INTERRUPTED,
+                              "interrupted before a cell was finished; nothing was written");
+    if (code)
+        return tarry_complain_error(&error);
+    provenance->partial = tarry_results_n_cells(*results) < tarry_results_n_cells_asked(*results);
+    return TARRY_EXIT_DONE;
+}
+
+static void say_what_was_done(const tarry_results *results, const tarry_provenance *provenance,
+                              const char *folder) {
+    char duration[32];
+    const int64_t n = tarry_results_n_cells(results);
+    tarry_progress_duration(provenance->seconds, duration);
+    if (provenance->partial)
+        tarry_talk("interrupted: %" PRId64 " of %" PRId64 " cells in %s; results, marked partial, "
+                   "in %s",
+                   n, tarry_results_n_cells_asked(results), duration, folder);
+    else
+        tarry_talk("%" PRId64 " cells in %s; results in %s", n, duration, folder);
+}
+
+/* Files first; the table comes in any case, since the work is done. */
+static int hand_out(const tarry_settings *settings, const char *folder, const tarry_model *model,
+                    const tarry_results *results, const tarry_provenance *provenance) {
+    tarry_error error = {0};
+    char *table = NULL;
+    int status = TARRY_EXIT_DONE;
+    if (tarry_write_run(folder, settings->overwrite, model, results, provenance, &error))
+        status = tarry_complain_error(&error);
+    const bool written = !status;
+    int table_status;
+    if (tarry_write_summary_table(model, results, TABLE_WIDTH, &table, &error))
+        table_status = tarry_complain_error(&error);
+    else
+        table_status = tarry_output(table);
+    free(table);
+    if (written && !settings->quiet)
+        say_what_was_done(results, provenance, folder);
+    return status ? status : table_status;
+}
+
+static int run_model(const tarry_settings *settings, const char *folder, const tarry_model *model) {
+    tarry_error error = {0};
+    tarry_results *results = NULL;
+    tarry_provenance provenance = {
+        .sampler = settings->sampler ? settings->sampler : "direct",
+        .overrides = settings->overrides,
+        .n_overrides = settings->n_overrides,
+        .keep = settings->keep,
+        .threads = (int)settings->threads,
+    };
+    if (tarry_write_check(folder, settings->overwrite, &error))
+        return tarry_complain_error(&error);
+    for (size_t i = 0; i < tarry_model_n_warnings(model); i++)
+        tarry_talk("warning: %s", tarry_model_warning(model, i));
+    int status = simulate(settings, model, &results, &provenance);
+    if (!status)
+        status = hand_out(settings, folder, model, results, &provenance);
+    if (!status && provenance.partial)
+        status = TARRY_EXIT_INTERRUPTED;
+    tarry_results_free(results);
+    return status;
+}
+
+int tarry_command_run(const tarry_settings *settings) {
+    tarry_model *model = NULL;
+    int status = check_figures(settings->figures);
+    if (!status)
+        status = read_model(settings, &model);
+    if (status)
+        return status;
+    char *made = settings->out ? NULL
+                               : default_folder(settings->operand ? settings->operand : demo_name);
+    const char *folder = settings->out ? settings->out : made;
+    if (folder)
+        status = run_model(settings, folder, model);
+    else
+        status = tarry_complain(TARRY_EXIT_FAILED, "out of memory for the folder's name");
+    free(made);
+    tarry_model_free(model);
+    return status;
+}

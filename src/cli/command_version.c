@@ -1,0 +1,16 @@
+/* tarry version: which program this is, and with --build how it was made. */
+
+#include "cli/commands.h"
+#include "cli/talk.h"
+#include "tarry/tarry.h"
+
+#include <stdio.h>
+
+int tarry_command_version(const tarry_settings *settings) {
+    char line[64];
+    snprintf(line, sizeof line, "tarry %s\n", tarry_version());
+    int status = tarry_output(line);
+    if (!status && settings->build && !(status = tarry_output(tarry_build())))
+        status = tarry_output("\n");
+    return status;
+}

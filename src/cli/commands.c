@@ -1,0 +1,106 @@
+#include "cli/commands.h"
+
+#include "cli/talk.h"
+#include "tarry/tarry.h"
+
+#include <errno.h>
+#include <string.h>
+#include <unistd.h>
+
+static const char about_run[] =
+    "Simulates MODEL cell by cell, prints the table per gene and writes the results to a\n"
+    "folder as CSV and JSON. Without MODEL a built-in demonstration is simulated.\n"
+    "A value given here beats the file; times take units, as in --until '10 h'.\n"
+    "Interrupted (Ctrl-C), it saves the cells that are finished.\n";
+
+static const char about_check[] =
+    "Reads MODEL and prints what it comes down to: species, reactions, delays with mean and\n"
+    "standard deviation, how far from steady the record begins, the size of the run, and\n"
+    "everything that looks wrong. Nothing is simulated.\n";
+
+const tarry_command tarry_commands[] = {
+    {"check", "MODEL", TARRY_FOR_CHECK, "read and check a model, print what it comes down to",
+     about_check, tarry_command_check},
+    {"run", "[MODEL]", TARRY_FOR_RUN, "simulate a model, print the table per gene, write results",
+     about_run, tarry_command_run},
+    {"predict", "MODEL", TARRY_FOR_ALL, "the same results without simulation, where that is known",
+     NULL, NULL},
+    {"measure", "DATA.csv", TARRY_FOR_ALL, "the same figures from laboratory data", NULL, NULL},
+    {"fit", "MODEL", TARRY_FOR_ALL, "rates and delays from data, with intervals", NULL, NULL},
+    {"compare", "MODEL", TARRY_FOR_ALL, "which of several models the data favour", NULL, NULL},
+    {"plan", "MODEL", TARRY_FOR_ALL, "which experiment would tell most", NULL, NULL},
+    {"sweep", "MODEL", TARRY_FOR_ALL, "which parameter matters for what", NULL, NULL},
+    {"help", "[COMMAND]", TARRY_FOR_ALL, "this text, or help on one command", NULL,
+     tarry_command_help},
+    {"version", NULL, TARRY_FOR_VERSION, "the version of the program", NULL, tarry_command_version},
+};
+
+const size_t tarry_n_commands = sizeof tarry_commands / sizeof *tarry_commands;
+
+const tarry_command *tarry_command_find(const char *name) {
+    for (size_t i = 0; i < tarry_n_commands; i++)
+        if (!strcmp(tarry_commands[i].name, name))
+            return &tarry_commands[i];
+    return NULL;
+}
+
+int tarry_command_unknown(const char *word) {
+    const char *names[sizeof tarry_commands / sizeof *tarry_commands];
+    for (size_t i = 0; i < tarry_n_commands; i++)
+        names[i] = tarry_commands[i].name;
+    const char *nearest = tarry_nearest_word(word, names, tarry_n_commands);
+    if (nearest)
+        return tarry_complain(TARRY_EXIT_WRONG, "there is no command '%s'; did you mean '%s'?",
+                              word, nearest);
+    if (!access(word, R_OK))
+        return tarry_complain(TARRY_EXIT_WRONG,
+                              "there is no command '%s'; to simulate that file: tarry run %s", word,
+                              word);
+    return tarry_complain(TARRY_EXIT_WRONG, "there is no command '%s'; `tarry help` lists them",
+                          word);
+}
+
+/* Words that many programs take in place of a command. */
+static const char *usual_name(const char *word) {
+    if (!strcmp(word, "--help") || !strcmp(word, "-h"))
+        return "help";
+    if (!strcmp(word, "--version"))
+        return "version";
+    return word;
+}
+
+int tarry_command_line(int n_words, char *const *words) {
+    if (n_words < 1)
+        return tarry_complain(TARRY_EXIT_WRONG,
+                              "a command is due: `tarry run` simulates a demonstration, `tarry "
+                              "help` lists the commands");
+    const tarry_command *command = tarry_command_find(usual_name(words[0]));
+    if (!command)
+        return tarry_command_unknown(words[0]);
+    if (!command->run) {
+        if (n_words > 1 && (!strcmp(words[1], "--help") || !strcmp(words[1], "-h")))
+            return tarry_command_help_on(command);
+        return tarry_complain(TARRY_EXIT_WRONG, "not yet: version %s cannot `%s`", tarry_version(),
+                              command->name);
+    }
+    tarry_settings settings;
+    int status = tarry_options_read(&settings, command->name, command->bit, command->operand,
+                                    words + 1, n_words - 1);
+    if (!status && settings.help)
+        status = tarry_command_help_on(command);
+    else if (!status)
+        status = command->run(&settings);
+    tarry_options_release(&settings);
+    return status;
+}
+
+int tarry_command_read_model(const tarry_settings *settings, tarry_model **model) {
+    tarry_error error = {0};
+    const char *path = settings->operand;
+    if (access(path, R_OK))
+        return tarry_complain(TARRY_EXIT_WRONG, "the model file '%s' cannot be read: %s", path,
+                              strerror(errno));
+    if (tarry_model_read(path, settings->overrides, settings->n_overrides, model, &error))
+        return tarry_complain_error(&error);
+    return TARRY_EXIT_DONE;
+}
