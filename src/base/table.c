@@ -128,18 +128,24 @@ static const char *keep_text(tarry_table *table, const char *text) {
     return new->text;
 }
 
-int tarry_table_add(tarry_table *table, tarry_error *error, ...) {
+/* Memory for one more row; NULL where it is short. */
+static value *next_row(tarry_table *table) {
     void *cells = table->cells;
     const size_t n = table->n_columns;
     if (tarry_grow(&cells, &table->capacity, (table->n_rows + 1) * n, sizeof(value)) != 0)
-        return tarry_fail_memory(error, "a table of results");
+        return NULL;
     table->cells = cells;
+    return table->cells + table->n_rows * n;
+}
 
-    value *row = table->cells + table->n_rows * n;
+int tarry_table_add(tarry_table *table, tarry_error *error, ...) {
+    value *row = next_row(table);
+    if (row == NULL)
+        return tarry_fail_memory(error, "a table of results");
     bool short_of_memory = false;
     va_list arguments;
     va_start(arguments, error);
-    for (size_t j = 0; j < n; j++) {
+    for (size_t j = 0; j < table->n_columns; j++) {
         if (table->columns[j].is_text) {
             row[j].text = keep_text(table, va_arg(arguments, const char *));
             short_of_memory = short_of_memory || row[j].text == NULL;
@@ -150,6 +156,18 @@ int tarry_table_add(tarry_table *table, tarry_error *error, ...) {
     va_end(arguments);
     if (short_of_memory)
         return tarry_fail_memory(error, "a table of results");
+    table->n_rows++;
+    return 0;
+}
+
+int tarry_table_add_numbers(tarry_table *table, const double *numbers, tarry_error *error) {
+    value *row = next_row(table);
+    if (row == NULL)
+        return tarry_fail_memory(error, "a table of results");
+    for (size_t j = 0; j < table->n_columns; j++) {
+        assert(!table->columns[j].is_text);
+        row[j].number = numbers[j];
+    }
     table->n_rows++;
     return 0;
 }
