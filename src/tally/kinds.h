@@ -6,11 +6,7 @@
 
 #include "tally/tally.h"
 
-#define TARRY_TALLY_KINDS(X)                                                                       \
-    X(moments)                                                                                     \
-    X(distribution)                                                                                \
-    X(transit)                                                                                     \
-    X(drift)
+#define TARRY_TALLY_KINDS(X) X(transit)
 
 #define TARRY_TALLY_DECLARE(name) extern const tarry_tally_kind tarry_tally_##name;
 TARRY_TALLY_KINDS(TARRY_TALLY_DECLARE)
