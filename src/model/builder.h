@@ -63,6 +63,15 @@ typedef enum tarry_symbol_kind {
     TARRY_N_SYMBOL_KINDS,
 } tarry_symbol_kind;
 
+/* Names of one space are made once. */
+typedef enum tarry_symbol_space {
+    TARRY_SPACE_VALUES, /* parameters, species, signals, genes */
+    TARRY_SPACE_BURSTS,
+    TARRY_SPACE_DELAYS,
+    TARRY_SPACE_REACTIONS,
+    TARRY_N_SYMBOL_SPACES,
+} tarry_symbol_space;
+
 typedef struct tarry_symbol tarry_symbol;
 
 /* ---- what has a value in each segment ------------------------------------------------------- */
@@ -79,7 +88,7 @@ typedef struct tarry_source {
     tarry_expression expression;
     bool half_life;   /* the rate is log(2) / value */
     double least;     /* the smallest value allowed: 0 (or a random amount's least) */
-    const char *what; /* "the rate of bind", for messages */
+    const char *what; /* whose rate or mean, for messages: "bind" */
 } tarry_source;
 
 /* A law whose parameters are expressions: a tarry_law is made of it for each segment. */
@@ -91,12 +100,22 @@ typedef struct tarry_law_template {
     const tarry_expression *points;         /* n, or n + 1 for BINS; NULL */
     const tarry_expression *weights;        /* n, of any sum; NULL */
     const struct tarry_law_template *parts; /* n; NULL */
+    uint32_t n_laws;                        /* elementary laws in it, itself included */
     tarry_place place;
 } tarry_law_template;
+
+/* A named delay may be made of others in any order. */
+typedef enum tarry_delay_state {
+    TARRY_DELAY_UNREAD,
+    TARRY_DELAY_READING, /* met again in this state it would hold itself */
+    TARRY_DELAY_READ,
+} tarry_delay_state;
 
 typedef struct tarry_builder_delay {
     const char *name; /* as named, or the law's word when written in place */
     tarry_law_template law;
+    tarry_delay_state state;
+    const tarry_node *node; /* as written */
 } tarry_builder_delay;
 
 /* A number that is used as it stands before any step; a step that would change it is an error. */
@@ -116,6 +135,14 @@ typedef struct tarry_draft {
     bool skip_short;
 } tarry_draft;
 
+/* A move from one promoter state to another, at a rate; those of a gene's first allele. */
+typedef struct tarry_builder_move {
+    uint32_t gene;
+    uint32_t from, to; /* numbers of states */
+    bool formula;      /* the rate reads species */
+    uint32_t rate;     /* index into formulas or rates */
+} tarry_builder_move;
+
 /* ---- the builder ---------------------------------------------------------------------------- */
 
 typedef struct tarry_builder {
@@ -127,9 +154,8 @@ typedef struct tarry_builder {
     size_t n_overrides;
     tarry_units units;
 
-    tarry_symbol *symbols; /* by uthash */
-    tarry_scope scope;     /* of parameters and species; its context is the builder */
-    tarry_scope scope_parameters;
+    tarry_symbol *symbols[TARRY_N_SYMBOL_SPACES]; /* by uthash */
+    tarry_scope scope; /* of parameters and species; its context is the builder */
     TARRY_LIST(const char *) names[TARRY_N_SYMBOL_KINDS]; /* by kind, in the order made */
     TARRY_LIST(const char *) candidates;                  /* parameters and species */
 
@@ -157,8 +183,10 @@ typedef struct tarry_builder {
 
     TARRY_LIST(tarry_promoter) promoters;
     TARRY_LIST(tarry_promoter_state) states;
+    TARRY_LIST(tarry_builder_move) moves; /* by gene */
     TARRY_LIST(tarry_track) tracks;
     TARRY_LIST(tarry_gene) genes;
+    TARRY_LIST(uint32_t) gene_species; /* by gene: the first of its species */
     TARRY_LIST(uint32_t) products;
 
     TARRY_LIST(tarry_signal) signals; /* `ramps` is left to tarry_finish */
@@ -182,8 +210,8 @@ void tarry_builder_release(tarry_builder *builder);
 int tarry_builder_check_name(const char *name, tarry_place place, const char *what,
                              tarry_error *error);
 
-/* Enter a name (kept as it is, must last). Parameters, species, signals and genes share one space;
- * named bursts and genes another; delays and reactions have one each. TARRY_INPUT when taken. */
+/* Enter a name (kept as it is, must last). TARRY_INPUT when its space holds it already, and where a
+ * delay would be called as a parameter or named bursts as a gene. */
 int tarry_builder_enter(tarry_builder *builder, tarry_symbol_kind kind, const char *name,
                         uint32_t index, tarry_place place, tarry_error *error);
 
@@ -216,6 +244,10 @@ int tarry_builder_constant_value(tarry_builder *builder, const tarry_node *node,
  * rates. `half_life`: the scalar is a half-life (and may not read species). */
 int tarry_builder_rate(tarry_builder *builder, const tarry_node *node, bool half_life,
                        const char *what, bool *formula, uint32_t *index, tarry_error *error);
+
+/* A whole propensity: always one of formulas. */
+int tarry_builder_formula(tarry_builder *builder, const tarry_node *node, const char *what,
+                          uint32_t *index, tarry_error *error);
 
 /* The mean of a random amount, at least `least`. */
 int tarry_builder_mean(tarry_builder *builder, const tarry_node *node, double least,

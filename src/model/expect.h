@@ -24,9 +24,6 @@ int tarry_expect_not_yet(const tarry_node *node, const char *what, const char *c
 int tarry_expect_value(const tarry_node *map, const char *what, const char *key,
                        const tarry_node **value, tarry_error *error);
 
-/* yes, true, no or false. */
-int tarry_expect_flag(const tarry_node *node, const char *what, bool *flag, tarry_error *error);
-
 /* A whole number in [least, most], written as digits. */
 int tarry_expect_count(const tarry_node *node, const char *what, double least, double most,
                        double *value, tarry_error *error);

@@ -1,0 +1,133 @@
+#include "model/builder.h"
+
+/* Effects in the making: changes come in any order and are brought to the network's order here. */
+
+#include "base/error.h"
+
+#include <limits.h>
+#include <stdlib.h>
+
+/* ---- drafts -------------------------------------------------------------------------------------
+ */
+
+int tarry_draft_change(tarry_draft *draft, uint32_t species, int64_t amount, tarry_error *error) {
+    if (amount < -INT32_MAX || amount > INT32_MAX)
+        return tarry_fail(error, TARRY_INPUT, "more than %d molecules change at once", INT32_MAX);
+    const tarry_change change = {.species = species, .amount = (int32_t)amount};
+    return TARRY_APPEND(&draft->changes, change) == 0 ? 0 : tarry_fail_memory(error, "an effect");
+}
+
+int tarry_draft_demand(tarry_draft *draft, uint32_t species, uint32_t amount, tarry_error *error) {
+    const tarry_demand demand = {.species = species, .amount = amount};
+    return TARRY_APPEND(&draft->demands, demand) == 0 ? 0 : tarry_fail_memory(error, "an effect");
+}
+
+int tarry_draft_mark(tarry_draft *draft, uint32_t track, tarry_mark_kind kind, tarry_error *error) {
+    const tarry_mark_rule mark = {.track = track, .kind = kind};
+    return TARRY_APPEND(&draft->marks, mark) == 0 ? 0 : tarry_fail_memory(error, "an effect");
+}
+
+int tarry_draft_schedule(tarry_draft *draft, uint32_t lag, tarry_error *error) {
+    return TARRY_APPEND(&draft->schedules, lag) == 0 ? 0 : tarry_fail_memory(error, "an effect");
+}
+
+void tarry_draft_release(tarry_draft *draft) {
+    free(draft->demands.items);
+    free(draft->changes.items);
+    free(draft->amounts.items);
+    free(draft->marks.items);
+    free(draft->schedules.items);
+    *draft = (tarry_draft){0};
+}
+
+/* ---- order --------------------------------------------------------------------------------------
+ */
+
+static int by_species(const void *one, const void *other) {
+    const uint32_t a = ((const tarry_change *)one)->species;
+    const uint32_t b = ((const tarry_change *)other)->species;
+    return (a > b) - (a < b);
+}
+
+/* Append the net changes, ascending, each species once and none of amount 0. */
+static int keep_changes(tarry_builder *builder, tarry_draft *draft, tarry_error *error) {
+    if (draft->changes.n > 1)
+        qsort(draft->changes.items, draft->changes.n, sizeof *draft->changes.items, by_species);
+    for (size_t i = 0; i < draft->changes.n;) {
+        const uint32_t species = draft->changes.items[i].species;
+        int64_t sum = 0;
+        for (; i < draft->changes.n && draft->changes.items[i].species == species; i++)
+            sum += draft->changes.items[i].amount;
+        if (sum < -INT32_MAX || sum > INT32_MAX)
+            return tarry_fail(error, TARRY_INPUT, "more than %d molecules change at once",
+                              INT32_MAX);
+        if (sum == 0)
+            continue;
+        const tarry_change change = {.species = species, .amount = (int32_t)sum};
+        if (TARRY_APPEND(&builder->changes, change) != 0)
+            return tarry_fail_memory(error, "an effect");
+    }
+    return 0;
+}
+
+/* Demands as they came; each species stands once, since a map of a model names it once. */
+static int keep_demands(tarry_builder *builder, const tarry_draft *draft, tarry_error *error) {
+    for (size_t i = 0; i < draft->demands.n; i++)
+        if (TARRY_APPEND(&builder->demands, draft->demands.items[i]) != 0)
+            return tarry_fail_memory(error, "an effect");
+    return 0;
+}
+
+static int keep_amounts(tarry_builder *builder, const tarry_draft *draft, tarry_error *error) {
+    for (size_t i = 0; i < draft->amounts.n; i++)
+        if (TARRY_APPEND(&builder->amounts, draft->amounts.items[i]) != 0)
+            return tarry_fail_memory(error, "an effect");
+    return 0;
+}
+
+/* COUNT goes before OPEN and CLOSE, so that an opening sees the counter after the same effect. */
+static int keep_marks(tarry_builder *builder, const tarry_draft *draft, tarry_error *error) {
+    for (int counts = 1; counts >= 0; counts--)
+        for (size_t i = 0; i < draft->marks.n; i++) {
+            if ((draft->marks.items[i].kind == TARRY_MARK_COUNT) != counts)
+                continue;
+            if (TARRY_APPEND(&builder->marks, draft->marks.items[i]) != 0)
+                return tarry_fail_memory(error, "an effect");
+        }
+    return 0;
+}
+
+static int keep_schedules(tarry_builder *builder, const tarry_draft *draft, tarry_error *error) {
+    for (size_t i = 0; i < draft->schedules.n; i++)
+        if (TARRY_APPEND(&builder->schedules, draft->schedules.items[i]) != 0)
+            return tarry_fail_memory(error, "an effect");
+    return 0;
+}
+
+int tarry_builder_effect(tarry_builder *builder, tarry_draft *draft, uint32_t *index,
+                         tarry_error *error) {
+    tarry_effect effect = {.skip_short = draft->skip_short};
+    effect.demands.from = (uint32_t)builder->demands.n;
+    effect.changes.from = (uint32_t)builder->changes.n;
+    effect.amounts.from = (uint32_t)builder->amounts.n;
+    effect.marks.from = (uint32_t)builder->marks.n;
+    effect.schedules.from = (uint32_t)builder->schedules.n;
+    int code = keep_changes(builder, draft, error);
+    if (code == 0)
+        code = keep_demands(builder, draft, error);
+    if (code == 0)
+        code = keep_amounts(builder, draft, error);
+    if (code == 0)
+        code = keep_marks(builder, draft, error);
+    if (code == 0)
+        code = keep_schedules(builder, draft, error);
+    if (code != 0)
+        return code;
+    effect.demands.to = (uint32_t)builder->demands.n;
+    effect.changes.to = (uint32_t)builder->changes.n;
+    effect.amounts.to = (uint32_t)builder->amounts.n;
+    effect.marks.to = (uint32_t)builder->marks.n;
+    effect.schedules.to = (uint32_t)builder->schedules.n;
+    *index = (uint32_t)builder->effects.n;
+    return TARRY_APPEND(&builder->effects, effect) == 0 ? 0 : tarry_fail_memory(error, "an effect");
+}
