@@ -126,5 +126,5 @@ int tarry_cell_trouble(const tarry_cell *cell, tarry_error *error) {
                   state.failed || !state.data ? "unknown" : state.data);
     tarry_text_release(&what);
     tarry_text_release(&state);
-    return code;
+    return (int)code;
 }
