@@ -176,6 +176,41 @@ int tarry_folder_is_empty(const char *path, bool *empty, tarry_error *error) {
     return 0;
 }
 
+int tarry_file_exists(const char *path, bool *exists, tarry_error *error) {
+    struct stat about;
+    *exists = lstat(path, &about) == 0;
+    if (!*exists && errno != ENOENT)
+        return fail_errno(error, path, "look for this file", errno);
+    return 0;
+}
+
+/* "a/b/c/" -> "a/b"; "c" -> ".". To be freed; NULL when memory is short. */
+static char *parent_of(const char *path) {
+    size_t n = strlen(path);
+    while (n > 1 && path[n - 1] == '/')
+        n--;
+    while (n > 0 && path[n - 1] != '/')
+        n--;
+    while (n > 1 && path[n - 1] == '/')
+        n--;
+    return n == 0 ? strdup(".") : strndup(path, n);
+}
+
+int tarry_folder_writable(const char *path, tarry_error *error) {
+    if (access(path, W_OK | X_OK) == 0)
+        return 0;
+    if (errno != ENOENT)
+        return fail_errno(error, path, "write into this folder", errno);
+    char *parent = parent_of(path);
+    if (parent == NULL)
+        return tarry_fail_memory(error, path);
+    int status = 0;
+    if (access(parent, W_OK | X_OK) != 0)
+        status = fail_errno(error, path, "create this folder", errno);
+    free(parent);
+    return status;
+}
+
 int tarry_file_remove(const char *path, tarry_error *error) {
     if (unlink(path) != 0 && errno != ENOENT)
         return fail_errno(error, path, "remove this file", errno);

@@ -25,6 +25,13 @@ int tarry_folder_make(const char *path, tarry_error *error);
 /* *empty: the folder does not exist or holds nothing. TARRY_FILE when `path` is something else. */
 int tarry_folder_is_empty(const char *path, bool *empty, tarry_error *error);
 
+/* *exists: there is something of this name. */
+int tarry_file_exists(const char *path, bool *exists, tarry_error *error);
+
+/* Ask, creating nothing, whether files could be made in this folder: it can be written to, or is
+ * missing and its parent can be. TARRY_FILE where not. */
+int tarry_folder_writable(const char *path, tarry_error *error);
+
 /* Remove a file; fine when there is none. */
 int tarry_file_remove(const char *path, tarry_error *error);
 
