@@ -10,7 +10,7 @@ int tarry_command_version(const tarry_settings *settings) {
     char line[64];
     snprintf(line, sizeof line, "tarry %s\n", tarry_version());
     int status = tarry_output(line);
-    if (!status && settings->build && !(status = tarry_output(tarry_build())))
-        status = tarry_output("\n");
+    if (!status && settings->build)
+        status = tarry_output(tarry_build());
     return status;
 }

@@ -1,0 +1,48 @@
+#include "report/snapshots.h"
+
+#include "base/error.h"
+#include "base/memory.h"
+#include "report/groups.h"
+
+#include <stdlib.h>
+#include <string.h>
+
+static bool is_snapshot(const tarry_run_plan *plan, double time) {
+    for (uint32_t i = 0; i < plan->n_snapshots; i++)
+        if (plan->snapshots[i] == time)
+            return true;
+    return false;
+}
+
+/* The rows of one name, which lie in the order of time. */
+static void add_rows(tarry_snapshots *snapshots, const tarry_run_plan *plan,
+                     const tarry_table *means, const tarry_groups *groups, size_t g) {
+    const int time_column = tarry_table_column(means, "time");
+    for (size_t i = groups->starts[g]; i < groups->starts[g + 1]; i++) {
+        const size_t row = groups->rows[i];
+        const double time = tarry_table_number(means, row, time_column);
+        if (is_snapshot(plan, time))
+            snapshots->items[snapshots->n++] = (tarry_snapshot){groups->names[g], time, row};
+    }
+}
+
+int tarry_snapshots_init(tarry_snapshots *snapshots, const tarry_run_plan *plan,
+                         const tarry_table *means, tarry_error *error) {
+    tarry_groups groups = {0};
+    memset(snapshots, 0, sizeof *snapshots);
+    int status = tarry_groups_init(&groups, means, "name", error);
+    if (!status) {
+        snapshots->items = tarry_calloc(tarry_table_n_rows(means) + 1, sizeof *snapshots->items);
+        if (!snapshots->items)
+            status = tarry_fail_memory(error, "the moments at the snapshots");
+    }
+    for (size_t g = 0; !status && g < groups.n; g++)
+        add_rows(snapshots, plan, means, &groups, g);
+    tarry_groups_release(&groups);
+    return status;
+}
+
+void tarry_snapshots_release(tarry_snapshots *snapshots) {
+    free(snapshots->items);
+    memset(snapshots, 0, sizeof *snapshots);
+}

@@ -1,0 +1,27 @@
+#ifndef TARRY_REPORT_SNAPSHOTS_H
+#define TARRY_REPORT_SNAPSHOTS_H
+
+/* The rows of `means` that fall on snapshots, in the order of names and, for each, of times. */
+
+#include <stddef.h>
+#include "model/network.h"
+#include "tarry/error.h"
+#include "tarry/table.h"
+
+typedef struct tarry_snapshot {
+    const char *name; /* the table's: one pointer for one name */
+    double time;
+    size_t row;
+} tarry_snapshot;
+
+typedef struct tarry_snapshots {
+    size_t n;
+    tarry_snapshot *items;
+} tarry_snapshots;
+
+/* Zero-initialise ({0}). Release accepts a half-built one. */
+int tarry_snapshots_init(tarry_snapshots *snapshots, const tarry_run_plan *plan,
+                         const tarry_table *means, tarry_error *error);
+void tarry_snapshots_release(tarry_snapshots *snapshots);
+
+#endif
