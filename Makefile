@@ -15,6 +15,10 @@ SUPPORT_SOURCES = $(sort $(filter-out $(TEST_SOURCES),$(wildcard tests/unit/*.c 
 SUPPORT_OBJECTS = $(SUPPORT_SOURCES:%.c=$(BUILD)/%.o)
 TESTS = $(TEST_SOURCES:%.c=$(BUILD)/%)
 
+# Calls that tests make fail on purpose (tests/unit/faults.h).
+FAULTS = malloc calloc realloc open read write fsync close rename
+TEST_LDFLAGS = $(FAULTS:%=-Wl,--wrap=%)
+
 all: $(BUILD)/tarry
 
 $(BUILD)/tarry: $(CLI_OBJECTS) $(BUILD)/libtarry.a
@@ -29,7 +33,7 @@ $(BUILD)/%.o: %.c
 
 # One program a test file: make build/tests/unit/test_random
 $(TESTS): $(BUILD)/%: $(BUILD)/%.o $(SUPPORT_OBJECTS) $(BUILD)/libtarry.a
-	$(CC) $(ALL_CFLAGS) $(LDFLAGS) -o $@ $^ -lcheck -lsubunit -lrt -lpthread $(LIBS)
+	$(CC) $(ALL_CFLAGS) -Itests/unit $(LDFLAGS) $(TEST_LDFLAGS) -o $@ $^ -lcheck -lsubunit -lrt -lpthread $(LIBS)
 
 tests: $(TESTS)
 
