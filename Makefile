@@ -31,8 +31,12 @@ $(BUILD)/%.o: %.c
 	@mkdir -p $(@D)
 	$(CC) $(ALL_CFLAGS) -MMD -MP -c -o $@ $<
 
+# An archive, so that a test program pulls in only what it uses.
+$(BUILD)/libsupport.a: $(SUPPORT_OBJECTS)
+	rm -f $@ && $(AR) rcs $@ $^
+
 # One program a test file: make build/tests/unit/test_random
-$(TESTS): $(BUILD)/%: $(BUILD)/%.o $(SUPPORT_OBJECTS) $(BUILD)/libtarry.a
+$(TESTS): $(BUILD)/%: $(BUILD)/%.o $(BUILD)/libsupport.a $(BUILD)/libtarry.a
 	$(CC) $(ALL_CFLAGS) -Itests/unit $(LDFLAGS) $(TEST_LDFLAGS) -o $@ $^ -lcheck -lsubunit -lrt -lpthread $(LIBS)
 
 tests: $(TESTS)
