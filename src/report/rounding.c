@@ -1,0 +1,59 @@
+#include "report/rounding.h"
+
+#include <math.h>
+#include <stdio.h>
+#include <string.h>
+
+enum { MOST_DIGITS = 7, PLAIN_DIGITS = 4 };
+
+/* Outside these a power of ten is written. */
+#define SMALLEST 1e-4
+#define LARGEST 1e7
+
+/* The place of the leading digit: 0 for 1 to 9.9, -1 for 0.1 to 0.99. */
+static int leading_place(double x) {
+    return (int)floor(log10(fabs(x)));
+}
+
+static void put(double x, int decimals, int digits, int with_power, char out[TARRY_ROUNDED]) {
+    if (with_power)
+        snprintf(out, TARRY_ROUNDED, "%.*e", digits > 1 ? digits - 1 : 0, x);
+    else
+        snprintf(out, TARRY_ROUNDED, "%.*f", decimals > 0 ? decimals : 0, x);
+    /* "-0.00" says nothing that "0.00" does not. */
+    if (out[0] == '-' && strspn(out + 1, "0.") == strlen(out + 1))
+        memmove(out, out + 1, strlen(out));
+}
+
+void tarry_round_plain(double value, char out[TARRY_ROUNDED]) {
+    if (isnan(value))
+        snprintf(out, TARRY_ROUNDED, "-");
+    else if (value == floor(value) && fabs(value) < LARGEST)
+        snprintf(out, TARRY_ROUNDED, "%.0f", value + 0.0);
+    else
+        snprintf(out, TARRY_ROUNDED, "%.*g", PLAIN_DIGITS, value);
+}
+
+void tarry_round(double value, double low, double high, tarry_rounded *out) {
+    out->low[0] = out->high[0] = '\0';
+    const double half = (high - low) / 2;
+    if (!(half > 0) || !isfinite(half) || !isfinite(value)) {
+        tarry_round_plain(value, out->value);
+        if (half == 0) {
+            tarry_round_plain(low, out->low);
+            tarry_round_plain(high, out->high);
+        }
+        return;
+    }
+    const double largest = fmax(fabs(value), fmax(fabs(low), fabs(high)));
+    const int leading = leading_place(largest);
+    int last = leading_place(half) - 1; /* the place of the last digit shown */
+    if (last < leading - MOST_DIGITS + 1)
+        last = leading - MOST_DIGITS + 1;
+    if (last > leading)
+        last = leading;
+    const int with_power = largest < SMALLEST || largest >= LARGEST;
+    put(value, -last, leading - last + 1, with_power, out->value);
+    put(low, -last, leading - last + 1, with_power, out->low);
+    put(high, -last, leading - last + 1, with_power, out->high);
+}

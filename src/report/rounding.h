@@ -1,0 +1,21 @@
+#ifndef TARRY_REPORT_ROUNDING_H
+#define TARRY_REPORT_ROUNDING_H
+
+/* Numbers for reading: as many digits as their interval bears. Files have all digits. */
+
+enum { TARRY_ROUNDED = 24 };
+
+typedef struct tarry_rounded {
+    char value[TARRY_ROUNDED]; /* "-" where there is none */
+    char low[TARRY_ROUNDED];   /* "" where there is no interval */
+    char high[TARRY_ROUNDED];
+} tarry_rounded;
+
+/* Value and bounds to the same decimal, at which half the interval has two digits (one to seven
+ * digits of the value are kept). Without an interval (NaN, or of no width): four digits. */
+void tarry_round(double value, double low, double high, tarry_rounded *out);
+
+/* A number by itself, to four digits. */
+void tarry_round_plain(double value, char out[TARRY_ROUNDED]);
+
+#endif
