@@ -1,49 +1,153 @@
-# tarry: build, test, install. See DEVELOPERS.md.
+# tarry: build, test, check, install. DEVELOPERS.md tells what each goal is for.
+#
+# Goals that a fresh machine may start with (demo, test, lint, bench) look for the packages that they
+# need first and install what is missing (tests/deps.sh); all others only build.
+
 BUILD ?= build
 CC ?= cc
 CFLAGS ?= -O2 -g
-WARNINGS = -Wall -Wextra -Wshadow -Wconversion -Wstrict-prototypes
-ALL_CFLAGS = -std=c11 -D_POSIX_C_SOURCE=200809L $(WARNINGS) -ffp-contract=off -fopenmp -Iinclude -Isrc $(CFLAGS)
-LIBS = -lgsl -lgslcblas -lyaml -ljansson -lnettle -lm
+JOBS ?= $(shell getconf _NPROCESSORS_ONLN 2>/dev/null || echo 2)
+PREFIX ?= /usr/local
+DESTDIR ?=
+INSTALL ?= install
 
-LIB_SOURCES = $(sort $(filter-out src/cli/%,$(wildcard src/*/*.c)))
-CLI_SOURCES = $(sort $(wildcard src/cli/*.c))
-LIB_OBJECTS = $(LIB_SOURCES:%.c=$(BUILD)/%.o)
-CLI_OBJECTS = $(CLI_SOURCES:%.c=$(BUILD)/%.o)
-TEST_SOURCES = $(sort $(wildcard tests/unit/test_*.c tests/against/test_*.c))
-SUPPORT_SOURCES = $(sort $(filter-out $(TEST_SOURCES),$(wildcard tests/unit/*.c tests/against/*.c)))
-SUPPORT_OBJECTS = $(SUPPORT_SOURCES:%.c=$(BUILD)/%.o)
-TESTS = $(TEST_SOURCES:%.c=$(BUILD)/%)
+WARNINGS = -Wall -Wextra -Wshadow -Wconversion -Wstrict-prototypes
+STANDARD = -std=c11 -D_POSIX_C_SOURCE=200809L $(WARNINGS) -ffp-contract=off -fopenmp
+ALL_CFLAGS = $(STANDARD) -Iinclude -Isrc -Itests/unit $(CFLAGS)
+LIBS = -lgsl -lgslcblas -lyaml -ljansson -lnettle -lm
+TEST_LIBS = -lcheck -lsubunit -lrt -lpthread $(LIBS)
 
 # Calls that tests make fail on purpose (tests/unit/faults.h).
 FAULTS = malloc calloc realloc open read write fsync close rename
 TEST_LDFLAGS = $(FAULTS:%=-Wl,--wrap=%)
+
+LIB_SOURCES = $(sort $(filter-out src/cli/%,$(wildcard src/*/*.c)))
+CLI_SOURCES = $(sort $(wildcard src/cli/*.c))
+TEST_SOURCES = $(sort $(wildcard tests/unit/test_*.c tests/against/test_*.c))
+SLOW_SOURCES = $(sort $(wildcard tests/*/slow_*.c))
+BENCH_SOURCES = $(sort $(wildcard tests/bench/*.c))
+EXAMPLE_SOURCES = $(wildcard tests/unit/example.c)
+SUPPORT_SOURCES = $(sort $(filter-out $(TEST_SOURCES) $(SLOW_SOURCES) $(EXAMPLE_SOURCES),\
+                    $(wildcard tests/unit/*.c tests/against/*.c)))
+
+LIB_OBJECTS = $(LIB_SOURCES:%.c=$(BUILD)/%.o)
+CLI_OBJECTS = $(CLI_SOURCES:%.c=$(BUILD)/%.o) $(BUILD)/demo_model.o
+SUPPORT_OBJECTS = $(SUPPORT_SOURCES:%.c=$(BUILD)/%.o)
+BENCH_OBJECTS = $(BENCH_SOURCES:%.c=$(BUILD)/%.o)
+TESTS = $(TEST_SOURCES:%.c=$(BUILD)/%)
+SLOW_TESTS = $(SLOW_SOURCES:%.c=$(BUILD)/%)
+EXAMPLES = $(EXAMPLE_SOURCES:%.c=$(BUILD)/%)
 
 all: $(BUILD)/tarry
 
 $(BUILD)/tarry: $(CLI_OBJECTS) $(BUILD)/libtarry.a
 	$(CC) $(ALL_CFLAGS) $(LDFLAGS) -o $@ $^ $(LIBS)
 
-$(BUILD)/libtarry.a: $(LIB_OBJECTS)
-	rm -f $@ && $(AR) rcs $@ $^
+$(BUILD)/libtarry.a: $(LIB_OBJECTS) $(BUILD)/members
+	rm -f $@ && $(AR) rcs $@ $(LIB_OBJECTS)
 
-$(BUILD)/%.o: %.c
+$(BUILD)/%.o: %.c $(BUILD)/flags
 	@mkdir -p $(@D)
 	$(CC) $(ALL_CFLAGS) -MMD -MP -c -o $@ $<
 
-# An archive, so that a test program pulls in only what it uses.
-$(BUILD)/libsupport.a: $(SUPPORT_OBJECTS)
-	rm -f $@ && $(AR) rcs $@ $^
+$(BUILD)/src/base/start.o: private ALL_CFLAGS += -DTARRY_FLAGS='"$(STANDARD) $(CFLAGS)"'
 
-# One program a test file: make build/tests/unit/test_random
-$(TESTS): $(BUILD)/%: $(BUILD)/%.o $(BUILD)/libsupport.a $(BUILD)/libtarry.a
-	$(CC) $(ALL_CFLAGS) -Itests/unit $(LDFLAGS) $(TEST_LDFLAGS) -o $@ $^ -lcheck -lsubunit -lrt -lpthread $(LIBS)
+# models/two_state.yaml, byte by byte, as what `tarry run` without a model runs.
+$(BUILD)/demo_model.c: models/two_state.yaml
+	@mkdir -p $(@D)
+	{ echo '#include <stddef.h>'; \
+	  echo 'extern const char tarry_demo_model[];'; \
+	  echo 'extern const size_t tarry_demo_model_size;'; \
+	  echo 'const char tarry_demo_model[] = {'; \
+	  od -An -v -tx1 $< | sed "s/ *\([0-9a-f][0-9a-f]\)/'\\\\x\1',/g"; \
+	  echo '0};'; \
+	  echo 'const size_t tarry_demo_model_size = sizeof tarry_demo_model - 1;'; } > $@.new
+	mv $@.new $@
 
-tests: $(TESTS)
+$(BUILD)/demo_model.o: $(BUILD)/demo_model.c $(BUILD)/flags
+	$(CC) $(ALL_CFLAGS) -c -o $@ $<
+
+# Files whose text changes with the compiler and its flags, and with the list of the library's parts:
+# what depends on them is built anew then.
+quoted = '$(subst ','\'',$(1))'
+define keep_text
+@mkdir -p $(@D)
+@printf '%s\n' $(call quoted,$(1)) | cmp -s - $@ || printf '%s\n' $(call quoted,$(1)) > $@
+endef
+
+$(BUILD)/flags: FORCE
+	$(call keep_text,$(CC) $(ALL_CFLAGS) $(LDFLAGS))
+
+$(BUILD)/members: FORCE
+	$(call keep_text,$(LIB_OBJECTS))
+
+# One program a test file: make build/tests/unit/test_pending
+$(TESTS) $(SLOW_TESTS): $(BUILD)/%: $(BUILD)/%.o $(SUPPORT_OBJECTS) $(BUILD)/libtarry.a
+	$(CC) $(ALL_CFLAGS) $(LDFLAGS) $(TEST_LDFLAGS) -o $@ $^ $(TEST_LIBS)
+
+$(EXAMPLES): $(BUILD)/%: $(BUILD)/%.o $(BUILD)/libtarry.a
+	$(CC) $(ALL_CFLAGS) $(LDFLAGS) -o $@ $^ $(LIBS)
+
+$(BUILD)/bench: $(BENCH_OBJECTS) $(BUILD)/libtarry.a
+	$(CC) $(ALL_CFLAGS) $(LDFLAGS) -o $@ $^ $(LIBS)
+
+tests: $(TESTS) $(EXAMPLES)
+
+tests-slow: $(SLOW_TESTS)
+
+everything: all tests tests-slow $(if $(BENCH_SOURCES),$(BUILD)/bench)
+
+list-tests:
+	@printf '%s\n' $(TESTS) $(EXAMPLES)
+
+list-tests-slow:
+	@printf '%s\n' $(SLOW_TESTS)
+
+deps:
+	@CC='$(CC)' sh tests/deps.sh build
+
+deps-test:
+	@CC='$(CC)' sh tests/deps.sh build test
+
+deps-dev:
+	@CC='$(CC)' sh tests/deps.sh build test dev
+
+demo: deps
+	@$(MAKE) --no-print-directory -j$(JOBS) all
+	@$(BUILD)/tarry run models/two_state.yaml --out two_state.out --overwrite
+
+test: deps-test
+	@MAKE='$(MAKE)' BUILD='$(BUILD)' JOBS='$(JOBS)' sh tests/run.sh plain sanitized
+
+test-slow: deps-test
+	@MAKE='$(MAKE)' BUILD='$(BUILD)' JOBS='$(JOBS)' sh tests/run.sh slow
+
+lint: deps-dev
+	@MAKE='$(MAKE)' BUILD='$(BUILD)' JOBS='$(JOBS)' sh tests/lint.sh
+
+bench: deps
+	@$(MAKE) --no-print-directory -j$(JOBS) $(BUILD)/bench
+	@$(BUILD)/bench
+
+format: deps-dev
+	clang-format -i $$(git ls-files '*.c' '*.h')
+
+install: all
+	$(INSTALL) -d $(DESTDIR)$(PREFIX)/bin $(DESTDIR)$(PREFIX)/lib $(DESTDIR)$(PREFIX)/include/tarry \
+	  $(DESTDIR)$(PREFIX)/share/doc/tarry $(DESTDIR)$(PREFIX)/share/tarry/models
+	$(INSTALL) -m 755 $(BUILD)/tarry $(DESTDIR)$(PREFIX)/bin/tarry
+	$(INSTALL) -m 644 $(BUILD)/libtarry.a $(DESTDIR)$(PREFIX)/lib/libtarry.a
+	$(INSTALL) -m 644 include/tarry/*.h $(DESTDIR)$(PREFIX)/include/tarry
+	$(INSTALL) -m 644 $(wildcard *.md docs/*.md) $(DESTDIR)$(PREFIX)/share/doc/tarry
+	$(INSTALL) -m 644 $(wildcard models/*.*) $(DESTDIR)$(PREFIX)/share/tarry/models
 
 clean:
-	rm -rf $(BUILD)
+	rm -rf $(BUILD) $(BUILD)-asan $(BUILD)-lint-gcc $(BUILD)-lint-clang
 
-.PHONY: all tests clean
+FORCE:
+.PHONY: all tests tests-slow everything list-tests list-tests-slow deps deps-test deps-dev demo test \
+  test-slow lint bench format install clean FORCE
 .SECONDARY:
--include $(LIB_OBJECTS:.o=.d) $(CLI_OBJECTS:.o=.d) $(SUPPORT_OBJECTS:.o=.d) $(TESTS:=.d)
+.DELETE_ON_ERROR:
+-include $(LIB_OBJECTS:.o=.d) $(CLI_OBJECTS:.o=.d) $(SUPPORT_OBJECTS:.o=.d) $(BENCH_OBJECTS:.o=.d) \
+  $(TESTS:=.d) $(SLOW_TESTS:=.d) $(EXAMPLES:=.d)
