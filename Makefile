@@ -15,7 +15,6 @@ WARNINGS = -Wall -Wextra -Wshadow -Wconversion -Wstrict-prototypes
 STANDARD = -std=c11 -D_POSIX_C_SOURCE=200809L $(WARNINGS) -ffp-contract=off -fopenmp
 ALL_CFLAGS = $(STANDARD) -Iinclude -Isrc -Itests/unit $(CFLAGS)
 LIBS = -lgsl -lgslcblas -lyaml -ljansson -lnettle -lm
-TEST_LIBS = -lcheck -lsubunit -lrt -lpthread $(LIBS)
 
 # Calls that tests make fail on purpose (tests/unit/faults.h).
 FAULTS = malloc calloc realloc open read write fsync close rename
@@ -45,6 +44,10 @@ $(BUILD)/tarry: $(CLI_OBJECTS) $(BUILD)/libtarry.a
 
 $(BUILD)/libtarry.a: $(LIB_OBJECTS) $(BUILD)/members
 	rm -f $@ && $(AR) rcs $@ $(LIB_OBJECTS)
+
+# An archive, so that a test takes from it only what it calls.
+$(BUILD)/libsupport.a: $(SUPPORT_OBJECTS) $(BUILD)/members
+	rm -f $@ && $(AR) rcs $@ $(SUPPORT_OBJECTS)
 
 $(BUILD)/%.o: %.c $(BUILD)/flags
 	@mkdir -p $(@D)
@@ -79,11 +82,13 @@ $(BUILD)/flags: FORCE
 	$(call keep_text,$(CC) $(ALL_CFLAGS) $(LDFLAGS))
 
 $(BUILD)/members: FORCE
-	$(call keep_text,$(LIB_OBJECTS))
+	$(call keep_text,$(LIB_OBJECTS) $(SUPPORT_OBJECTS))
 
-# One program a test file: make build/tests/unit/test_pending
-$(TESTS) $(SLOW_TESTS): $(BUILD)/%: $(BUILD)/%.o $(SUPPORT_OBJECTS) $(BUILD)/libtarry.a
-	$(CC) $(ALL_CFLAGS) $(LDFLAGS) $(TEST_LDFLAGS) -o $@ $^ $(TEST_LIBS)
+# Libraries that need each other stand in a group. One program a test file: make build/tests/unit/test_pending
+$(TESTS) $(SLOW_TESTS): $(BUILD)/%: $(BUILD)/%.o $(BUILD)/libsupport.a $(BUILD)/libtarry.a
+	$(CC) $(ALL_CFLAGS) $(LDFLAGS) $(TEST_LDFLAGS) -o $@ $< \
+	  -Wl,--start-group $(BUILD)/libsupport.a $(BUILD)/libtarry.a -lcheck -lsubunit -Wl,--end-group \
+	  -lrt -lpthread $(LIBS)
 
 $(EXAMPLES): $(BUILD)/%: $(BUILD)/%.o $(BUILD)/libtarry.a
 	$(CC) $(ALL_CFLAGS) $(LDFLAGS) -o $@ $^ $(LIBS)
