@@ -3,6 +3,7 @@
 
 /* Expressions: text -> a small stack program over parameters and species. */
 
+#include <stdbool.h>
 #include <stdint.h>
 #include "base/memory.h"
 #include "model/quantity.h"
@@ -27,7 +28,7 @@ typedef struct tarry_scope {
 } tarry_scope;
 
 typedef struct tarry_instruction {
-    uint32_t code;  /* from the list in expression.c */
+    uint32_t code;  /* from the list in program.h */
     uint32_t index; /* parameter or species */
     double value;   /* constant */
 } tarry_instruction;
@@ -46,10 +47,14 @@ typedef struct tarry_expression {
 
 /* Compile a scalar: a quantity as a whole, or an expression. Units are checked as far as they are
  * given; the result must fit `due` (TARRY_ANY: anything goes). Everything lives in `arena`.
+ * `scope` may be NULL (no names). A plain number and what no unit was given for fits any `due`.
  * Errors: TARRY_INPUT with the column of the fault, TARRY_MEMORY. */
 int tarry_expression_compile(const char *text, tarry_place place, tarry_dimension due,
                              tarry_units units, const tarry_scope *scope, tarry_arena *arena,
                              tarry_expression *out, tarry_error *error);
+
+/* name[0..n) is the word of a unit or a function, which names nothing else. */
+bool tarry_expression_is_reserved(const char *name, size_t n);
 
 /* Value from parameters and species counts (either may be NULL where not read). Thread-safe. */
 double tarry_expression_value(const tarry_expression *expression, const double *parameters,

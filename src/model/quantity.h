@@ -28,6 +28,27 @@ typedef struct tarry_units {
 /* Seconds in "s", "min", "h" or "d"; 0 for any other text. */
 double tarry_time_unit_seconds(const char *name);
 
+/* A unit as a fraction of whole numbers, so that value * up / down rounds once. */
+typedef struct tarry_unit_fraction {
+    double up, down;
+    tarry_dimension dimension;
+} tarry_unit_fraction;
+
+/* The simple unit called text[0..n) (`min`, `kb`); false for any other text. */
+bool tarry_unit_find(const char *text, size_t n, tarry_units units, tarry_unit_fraction *unit);
+
+/* TARRY_INPUT (no place) with what is wrong with text[0..n) as a unit and what would be right; a
+ * unit of concentration is named as such. */
+int tarry_unit_fail(const char *text, size_t n, tarry_error *error);
+
+/* text[0..n) names a unit of concentration or amount of substance (M, nM, mol, ...). */
+bool tarry_unit_is_molar(const char *text, size_t n);
+
+/* The whole of text[0..n) as NUMBER [UNIT][/UNIT], blanks around the parts. False where it is
+ * anything else, or too large for a number. */
+bool tarry_quantity_read(const char *text, size_t n, tarry_units units, double *value,
+                         tarry_dimension *dimension);
+
 /* The unit text[0..n) (as `min`, `/h`, `kb/min`, `1/s`): scale to the units above and dimension.
  * TARRY_INPUT with a helpful message otherwise (molar units are named as such). */
 int tarry_unit_read(const char *text, size_t n, tarry_units units, double *scale,
