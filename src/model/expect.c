@@ -185,3 +185,10 @@ int tarry_expect_count(const tarry_node *node, const char *what, double least, d
                          "%s must be a whole number from %s to %s, not '%s'", what, low, high,
                          node->text);
 }
+
+int tarry_fail_number(tarry_error *error, tarry_place place, const char *before, double number,
+                      const char *after) {
+    char text[TARRY_NUMBER_SIZE];
+    tarry_number_write(number, text);
+    return tarry_fail_at(error, TARRY_INPUT, place, "%s%s%s", before, text, after);
+}
