@@ -6,7 +6,10 @@
 
 #include "tally/tally.h"
 
-#define TARRY_TALLY_KINDS(X) X(transit)
+#define TARRY_TALLY_KINDS(X)                                                                       \
+    X(moments)                                                                                     \
+    X(pooled)                                                                                      \
+    X(transit)
 
 #define TARRY_TALLY_DECLARE(name) extern const tarry_tally_kind tarry_tally_##name;
 TARRY_TALLY_KINDS(TARRY_TALLY_DECLARE)

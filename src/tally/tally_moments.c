@@ -1,0 +1,193 @@
+/* Moments over time: means.csv.
+ *
+ * A slot is one channel at one time; every cell gives it one value. The first cell of a group fixes
+ * the slot's shift c there, and the sums are those of x - c and of its square: for counts they are
+ * whole numbers of the size of the spread, exact to 2^53, whatever the counts themselves. Merging
+ * moves the sums of one group to the shift of the other, which for counts is exact as well.
+ * (Shifted data: Chan, Golub & LeVeque 1983, Am. Stat. 37:242.)
+ *
+ * Standard errors are worked out in `report`, slot by slot, from the groups' sums. Formulas:
+ * docs/statistics.md, "Moments". */
+#include "base/table.h"
+#include "tally/kinds.h"
+#include "tally/moments.h"
+#include "tally/results.h"
+
+#include <math.h>
+
+/* Where everything lies: frames of the recorded channels in the order of the record, then snapshots
+ * of all channels. */
+typedef struct slots {
+    size_t n_frames; /* slots of each sort */
+    size_t n_snapshots;
+    size_t n;
+    size_t shift, sum, squares, cells; /* where they start in the sums */
+} slots;
+
+static slots slots_of(const tarry_network *network) {
+    const tarry_run_plan *run = &network->run;
+    size_t n_recorded = 0;
+    for (uint32_t i = 0; i < network->n_channels; i++)
+        n_recorded += network->channels[i].recorded;
+    slots s = {.n_frames = n_recorded * run->n_frames,
+               .n_snapshots = (size_t)network->n_channels * run->n_snapshots};
+    s.n = s.n_frames + s.n_snapshots;
+    s.sum = s.n;
+    s.squares = 2 * s.n;
+    s.cells = 3 * s.n;
+    return s;
+}
+
+static size_t moments_size(const tarry_network *network) {
+    return slots_of(network).cells + 1;
+}
+
+static size_t moments_form(const tarry_network *network) {
+    return slots_of(network).n;
+}
+
+/* ---- sums ------------------------------------------------------------------------------------ */
+
+static void add_values(const double *values, size_t n, bool first, double *restrict shift,
+                       double *restrict sum, double *restrict squares) {
+    if (first)
+        for (size_t i = 0; i < n; i++)
+            shift[i] = values[i];
+    for (size_t i = 0; i < n; i++) {
+        const double d = values[i] - shift[i];
+        sum[i] += d;
+        squares[i] += d * d;
+    }
+}
+
+static void moments_add(const tarry_network *network, const tarry_record *record, double *sums,
+                        double *scratch) {
+    (void)scratch;
+    const slots s = slots_of(network);
+    const bool first = sums[s.cells] <= 0.0;
+    add_values(record->frames, s.n_frames, first, sums + s.shift, sums + s.sum, sums + s.squares);
+    add_values(record->snapshots, s.n_snapshots, first, sums + s.shift + s.n_frames,
+               sums + s.sum + s.n_frames, sums + s.squares + s.n_frames);
+    sums[s.cells] += 1.0;
+}
+
+/* Move the other's sums to the shift of `one`. */
+static void moments_align(const tarry_network *network, double *one, double *other) {
+    const slots s = slots_of(network);
+    const double cells = other[s.cells];
+    for (size_t i = 0; i < s.n; i++) {
+        const double by = other[s.shift + i] - one[s.shift + i];
+        const double sum = other[s.sum + i];
+        other[s.squares + i] += by * (2.0 * sum + cells * by);
+        other[s.sum + i] += cells * by;
+        other[s.shift + i] = one[s.shift + i];
+    }
+}
+
+/* ---- figures --------------------------------------------------------------------------------- */
+
+static void work_out(double cells, double shift, double sum, double squares,
+                     double figures[TARRY_N_MOMENTS]) {
+    const double mean = sum / cells;
+    const double variance = cells >= 2.0 ? (squares - sum * mean) / (cells - 1.0) : NAN;
+    tarry_moments_of(shift + mean, variance, figures);
+}
+
+/* What one slot's figures are worked out from: the total's sums and those of each group. */
+typedef struct source {
+    const tarry_jackknife *jackknife;
+    const double *total;
+    const double *groups[TARRY_GROUPS];
+    slots slots;
+} source;
+
+static source source_of(const tarry_network *network, const tarry_tally_set *set,
+                        const tarry_tally_kind *kind) {
+    source from = {.jackknife = tarry_tally_jackknife(set),
+                   .total = tarry_tally_sums(set, kind),
+                   .slots = slots_of(network)};
+    for (size_t g = 0; g < tarry_tally_n_groups(set); g++)
+        from.groups[g] = tarry_tally_group_sums(set, kind, g);
+    return from;
+}
+
+static void estimate_slot(const source *from, size_t i, double figures[TARRY_N_MOMENTS],
+                          double errors[TARRY_N_MOMENTS]) {
+    const slots *s = &from->slots;
+    const double *total = from->total;
+    const double shift = total[s->shift + i];
+    double replicates[TARRY_N_MOMENTS][TARRY_GROUPS];
+    work_out(total[s->cells], shift, total[s->sum + i], total[s->squares + i], figures);
+    for (size_t g = 0; g < from->jackknife->n_groups; g++) {
+        const double *group = from->groups[g];
+        double without[TARRY_N_MOMENTS];
+        work_out(total[s->cells] - group[s->cells], shift, total[s->sum + i] - group[s->sum + i],
+                 total[s->squares + i] - group[s->squares + i], without);
+        for (int j = 0; j < TARRY_N_MOMENTS; j++)
+            replicates[j][g] = without[j];
+    }
+    for (int j = 0; j < TARRY_N_MOMENTS; j++)
+        errors[j] = tarry_jackknife_se(from->jackknife, figures[j], replicates[j]);
+}
+
+/* ---- the table ------------------------------------------------------------------------------- */
+
+static int report_slot(const source *from, const tarry_channel *channel, size_t slot, double time,
+                       tarry_table *table, tarry_error *error) {
+    double figures[TARRY_N_MOMENTS], errors[TARRY_N_MOMENTS];
+    estimate_slot(from, slot, figures, errors);
+    if (channel->species == TARRY_NONE)
+        figures[TARRY_FANO] = errors[TARRY_FANO] = NAN;
+    return tarry_table_add(table, error, channel->name, time, figures[TARRY_MEAN],
+                           figures[TARRY_SD], errors[TARRY_MEAN], errors[TARRY_SD],
+                           figures[TARRY_FANO], errors[TARRY_FANO], figures[TARRY_CV2],
+                           errors[TARRY_CV2]);
+}
+
+/* Frames and snapshots of one channel in the order of time, `frame` being the slot of its first
+ * frame; a snapshot that falls on a frame stands for both. */
+static int report_channel(const tarry_network *network, const source *from, uint32_t channel,
+                          size_t frame, tarry_table *table, tarry_error *error) {
+    const tarry_run_plan *run = &network->run;
+    const tarry_channel *c = &network->channels[channel];
+    const size_t snapshot = from->slots.n_frames + (size_t)channel * run->n_snapshots;
+    const uint32_t n_frames = c->recorded ? run->n_frames : 0;
+    const double same = 1e-9 * run->every;
+    int code = TARRY_OK;
+    for (uint32_t i = 0, j = 0; !code && (i < n_frames || j < run->n_snapshots);) {
+        const double at = i + 1 < n_frames ? i * run->every : run->until;
+        const double frame_time = i < n_frames ? at : INFINITY;
+        const double snapshot_time = j < run->n_snapshots ? run->snapshots[j] : INFINITY;
+        if (snapshot_time <= frame_time + same) {
+            code = report_slot(from, c, snapshot + j, snapshot_time, table, error);
+            j++;
+            i += frame_time <= snapshot_time + same;
+        } else {
+            code = report_slot(from, c, frame + i, frame_time, table, error);
+            i++;
+        }
+    }
+    return code;
+}
+
+static int moments_report(const tarry_network *network, const tarry_tally_set *set,
+                          const tarry_tally_kind *kind, tarry_results *results,
+                          tarry_error *error) {
+    const source from = source_of(network, set, kind);
+    size_t frame = 0;
+    int code = TARRY_OK;
+    for (uint32_t i = 0; !code && i < network->n_channels; i++) {
+        code = report_channel(network, &from, i, frame, results->tables[TARRY_TABLE_means], error);
+        frame += network->channels[i].recorded ? network->run.n_frames : 0;
+    }
+    return code;
+}
+
+const tarry_tally_kind tarry_tally_moments = {
+    .name = "moments",
+    .size = moments_size,
+    .form = moments_form,
+    .add = moments_add,
+    .align = moments_align,
+    .report = moments_report,
+};
