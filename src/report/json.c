@@ -124,9 +124,13 @@ json_t *tarry_json_text(const char *text) {
     char *plain = tarry_calloc(n + 1, 1);
     if (!plain)
         return NULL;
-    for (size_t i = 0; i < n; i++)
-        plain[i] = (signed char)text[i] < 0 ? '?' : text[i];
-    value = json_string(plain);
+    bool any = false;
+    for (size_t i = 0; i < n; i++) {
+        const bool high = (signed char)text[i] < 0;
+        plain[i] = high ? '?' : text[i];
+        any = any || high;
+    }
+    value = any ? json_string(plain) : NULL; /* plain ASCII fails for want of memory only */
     free(plain);
     return value;
 }
