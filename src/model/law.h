@@ -60,6 +60,12 @@ typedef struct tarry_law_family {
     double (*survival)(const tarry_law *law, double x); /* P(lag > x), exact in its own tail */
     /* The lag exceeded with probability q and not with p; p + q = 1, the smaller one is exact. */
     double (*quantile)(const tarry_law *law, double p, double q);
+    /* Integral of the survival function from 0 to x, 0 <= x < infinity. */
+    double (*survival_integral)(const tarry_law *law, double x);
+    double (*least)(const tarry_law *law); /* earliest and latest possible value */
+    double (*most)(const tarry_law *law);
+    /* Probability density at x > 0; NULL where part of the law sits on single values. */
+    double (*density)(const tarry_law *law, double x);
 } tarry_law_family;
 
 const tarry_law_family *tarry_law_family_of(tarry_law_kind kind);
