@@ -27,4 +27,8 @@ typedef struct tarry_run_options {
 int tarry_run(const tarry_model *model, const tarry_run_options *options, tarry_results **results,
               tarry_error *error);
 
+/* Threads that tarry_run takes for this model where `asked` (0: all cores) are asked for: no more
+ * than there are cells. */
+int tarry_run_n_threads(const tarry_model *model, int asked);
+
 #endif

@@ -123,7 +123,7 @@ static int run_model(const tarry_settings *settings, const char *folder, const t
         .overrides = settings->overrides,
         .n_overrides = settings->n_overrides,
         .keep = settings->keep,
-        .threads = (int)settings->threads,
+        .threads = tarry_run_n_threads(model, (int)settings->threads),
     };
     if (tarry_write_check(folder, settings->overwrite, &error))
         return tarry_complain_error(&error);

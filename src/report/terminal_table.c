@@ -139,6 +139,15 @@ typedef struct window_block {
     uint32_t from, to;
 } window_block;
 
+/* Units that go without saying: pure numbers, counts, the signal's own. */
+static bool says_something(const char *unit) {
+    static const char *const dumb[] = {"", "1", "molecules per cell", "signal"};
+    for (size_t i = 0; i < COUNT(dumb); i++)
+        if (!strcmp(unit, dumb[i]))
+            return false;
+    return true;
+}
+
 static void add_figure(table_page *page, const figure_rows *entry, window_block block,
                        const char *words, const char *quantity) {
     const size_t none = tarry_table_n_rows(entry->table);
@@ -152,7 +161,7 @@ static void add_figure(table_page *page, const figure_rows *entry, window_block 
     }
     if (!unit)
         return;
-    const bool shown = *unit && strcmp(unit, "1") != 0;
+    const bool shown = says_something(unit);
     snprintf(text, sizeof text, "    %s%s%s%s", words, shown ? " [" : "", shown ? unit : "",
              shown ? "]" : "");
     tarry_lines_left(page->text, text, LABEL);
@@ -259,9 +268,11 @@ static void add_signal(table_page *page, const char *name, const figure_rows *en
         add_head(page, name, " (signal)", block);
         for (size_t i = 0; i < entry->n; i++) {
             const char *quantity = tarry_table_text(entry->table, entry->rows[i], QUANTITY);
-            const label *known = find_label(moment_labels, COUNT(moment_labels), quantity);
-            if (!came_before(entry, i))
-                add_figure(page, entry, block, known ? known->words : quantity, quantity);
+            const label *moment;
+            if (came_before(entry, i))
+                continue;
+            const bool known = product_part(quantity, &moment) > 0;
+            add_figure(page, entry, block, known ? moment->words : quantity, quantity);
         }
     }
 }

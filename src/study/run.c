@@ -415,3 +415,7 @@ int tarry_run(const tarry_model *model, const tarry_run_options *options, tarry_
               tarry_error *error) {
     return tarry_run_network(&model->network, options, results, error);
 }
+
+int tarry_run_n_threads(const tarry_model *model, int asked) {
+    return tarry_run_threads(&model->network, asked);
+}
