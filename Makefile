@@ -17,7 +17,7 @@ ALL_CFLAGS = $(STANDARD) -Iinclude -Isrc -Itests/unit $(CFLAGS)
 LIBS = -lgsl -lgslcblas -lyaml -ljansson -lnettle -lm
 
 # Calls that tests make fail on purpose (tests/unit/faults.h).
-FAULTS = malloc calloc realloc open read write fsync close rename
+FAULTS = malloc calloc realloc strdup strndup open read write fsync close rename
 TEST_LDFLAGS = $(FAULTS:%=-Wl,--wrap=%)
 
 LIB_SOURCES = $(sort $(filter-out src/cli/%,$(wildcard src/*/*.c)))

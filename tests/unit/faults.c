@@ -10,6 +10,8 @@
 void *__real_malloc(size_t size);
 void *__real_calloc(size_t n, size_t size);
 void *__real_realloc(void *memory, size_t size);
+char *__real_strdup(const char *text);
+char *__real_strndup(const char *text, size_t n);
 int __real_open(const char *path, int flags, ...);
 ssize_t __real_read(int file, void *bytes, size_t n);
 ssize_t __real_write(int file, const void *bytes, size_t n);
@@ -20,6 +22,8 @@ int __real_rename(const char *from, const char *to);
 void *__wrap_malloc(size_t size);
 void *__wrap_calloc(size_t n, size_t size);
 void *__wrap_realloc(void *memory, size_t size);
+char *__wrap_strdup(const char *text);
+char *__wrap_strndup(const char *text, size_t n);
 int __wrap_open(const char *path, int flags, ...);
 ssize_t __wrap_read(int file, void *bytes, size_t n);
 ssize_t __wrap_write(int file, const void *bytes, size_t n);
@@ -67,6 +71,14 @@ void *__wrap_calloc(size_t n, size_t size) {
 
 void *__wrap_realloc(void *memory, size_t size) {
     return strikes(FAULT_MEMORY) ? NULL : __real_realloc(memory, size);
+}
+
+char *__wrap_strdup(const char *text) {
+    return strikes(FAULT_MEMORY) ? NULL : __real_strdup(text);
+}
+
+char *__wrap_strndup(const char *text, size_t n) {
+    return strikes(FAULT_MEMORY) ? NULL : __real_strndup(text, n);
 }
 
 int __wrap_open(const char *path, int flags, ...) {

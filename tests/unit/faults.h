@@ -8,18 +8,19 @@
  *     for (long n = 0;; n++) {
  *         faults_arm(FAULT_MEMORY, n, 0);
  *         const int status = the_call(...);
- *         if (!faults_struck())
+ *         const bool struck = faults_struck();
+ *         faults_clear();                 // before ck_assert, which allocates too
+ *         if (!struck)
  *             break;                      // n calls were made in all, and each has failed once
  *         ck_assert_int_eq(status, TARRY_MEMORY);
  *     }
- *     faults_clear();
  *
  * One fault at a time is armed, for all threads together. */
 
 #include <stdbool.h>
 
 typedef enum fault {
-    FAULT_MEMORY, /* malloc, calloc, realloc */
+    FAULT_MEMORY, /* malloc, calloc, realloc, strdup, strndup */
     FAULT_OPEN,
     FAULT_READ,
     FAULT_WRITE,
