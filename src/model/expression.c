@@ -283,7 +283,7 @@ static int read_name(compiler *in, unit_type *type) {
     advance(in);
     if (next_is(in, '('))
         return fail_call(in, name);
-    if (!tarry_expression_is_reserved(in->text + name.at, name.n) && in->scope != NULL)
+    if (in->scope != NULL)
         kind = in->scope->find(in->scope->context, in->text + name.at, name.n, &index, &dimension);
     if (kind == TARRY_NAME_UNKNOWN)
         return fail_name(in, name, before);

@@ -68,19 +68,13 @@ static bool continues(char c) {
     return ((unsigned char)c & 0xc0) == 0x80;
 }
 
-/* The byte at which a mark stands. Marks come nearly in order, so the walk is short. */
+/* The byte at which a mark stands. Those of starting events come in order. */
 static size_t byte_of(reader *in, yaml_mark_t mark) {
     while (in->cursor_index < mark.index && in->cursor < in->size) {
         do
             in->cursor++;
         while (in->cursor < in->size && continues(in->text[in->cursor]));
         in->cursor_index++;
-    }
-    while (in->cursor_index > mark.index && in->cursor > 0) {
-        do
-            in->cursor--;
-        while (in->cursor > 0 && continues(in->text[in->cursor]));
-        in->cursor_index--;
     }
     return in->cursor;
 }
@@ -120,6 +114,10 @@ static const struct {
                                                "'key: value' lines, all indented alike"},
     {"did not find expected alphabetic or numeric character",
      "a text that begins with '*' or '&' stands in quotes"},
+    {"did not find expected whitespace or line break",
+     "tags ('!...') are not read; leave them out"},
+    {"could not find expected directive name", "a line cannot begin with '%'"},
+    {"found unknown directive name", "a line cannot begin with '%'"},
     {"found undefined tag handle", "tags ('!...') are not read; leave them out"},
 };
 

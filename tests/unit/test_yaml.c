@@ -132,6 +132,7 @@ START_TEST(bytes_that_are_refused) {
     check_refused("a: \"b\\0c\"\n", 1, 5, "a control character");
     check_refused("a: \"b\\x1bc\"\n", 1, 5, "a control character");
     check_refused("a: 1\nb: \x1b\n", 2, 4, "U+001B");
+    check_refused("a: 1\rb: \x1b\n", 2, 4, "U+001B");
     check_refused("a: 1\r\nb: \xc2\x9b\n", 2, 4, "U+009B");
     check_refused("a: \xef\xbb\xbf\n", 1, 4, "U+FEFF");
     check_refused("a: 1\nb: \xb5m\n", 2, 4, "the byte 0xb5 here is not UTF-8");
@@ -166,8 +167,8 @@ START_TEST(what_is_no_yaml) {
     check_refused("a: 1\n- b\n", 2, 1, "in a map every line");
     check_refused("a: | x\n", 1, 6, "begins on the next");
     check_refused("a: 'x\n--- y\n'", 2, 1, "inside a text in quotes");
-    check_refused("a: * b\n", 1, 4, "stands in quotes");
-    check_refused("%NOT 1\n---\na: 1\n", 1, 1, "this is no YAML");
+    check_refused("a: * b\n", 1, 5, "stands in quotes");
+    check_refused("%NOT 1\n---\na: 1\n", 1, 5, "a line cannot begin with '%'");
 }
 END_TEST
 
@@ -181,6 +182,8 @@ START_TEST(calls_that_yaml_split) {
     check_refused("a: {b: min(c,\n        d), e: 1}\n", 1, 8, "a: {b: \"min(c, d)\", e: 1}");
     check_refused("a:\n  {b: 1,\n   c: max(min(1, 2), 3)}\n", 3, 7, "c: \"max(min(1, 2), 3)\"}");
     check_refused("a: {b: min(c, d}\n", 1, 8, "a '(' that is not closed");
+    check_refused("a: {b: min(1, 2), c: 'x(\\', d: max(3, 4), e: max(5}\n", 1, 8,
+                  "a: {b: \"min(1, 2)\", c: 'x(\\', d: \"max(3, 4)\", e: max(5}");
     check_refused("a: {b: min(c\n", 1, 8, "a '(' that is not closed");
     const tarry_node *root = read_text("a: {b: (c + d) * 2, e: \"min(1, 2)\"}\nf: min(1, 2)\n"
                                        "title: seen (once, twice\n");
