@@ -8,8 +8,10 @@
 
 #define TARRY_TALLY_KINDS(X)                                                                       \
     X(moments)                                                                                     \
+    X(distribution)                                                                                \
     X(pooled)                                                                                      \
-    X(transit)
+    X(transit)                                                                                     \
+    X(drift)
 
 #define TARRY_TALLY_DECLARE(name) extern const tarry_tally_kind tarry_tally_##name;
 TARRY_TALLY_KINDS(TARRY_TALLY_DECLARE)

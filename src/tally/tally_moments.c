@@ -9,6 +9,7 @@
  * Standard errors are worked out in `report`, slot by slot, from the groups' sums. Formulas:
  * docs/statistics.md, "Moments". */
 #include "base/table.h"
+#include "tally/channels.h"
 #include "tally/kinds.h"
 #include "tally/moments.h"
 #include "tally/results.h"
@@ -26,10 +27,7 @@ typedef struct slots {
 
 static slots slots_of(const tarry_network *network) {
     const tarry_run_plan *run = &network->run;
-    size_t n_recorded = 0;
-    for (uint32_t i = 0; i < network->n_channels; i++)
-        n_recorded += network->channels[i].recorded;
-    slots s = {.n_frames = n_recorded * run->n_frames,
+    slots s = {.n_frames = (size_t)tarry_channels_recorded(network) * run->n_frames,
                .n_snapshots = (size_t)network->n_channels * run->n_snapshots};
     s.n = s.n_frames + s.n_snapshots;
     s.sum = s.n;

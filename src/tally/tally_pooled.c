@@ -6,6 +6,7 @@
  * one frame a cell this is the usual n - 1 divisor. Sums are about a shift as in tally_moments.c,
  * fixed by the first frame of the group's first cell. Formulas: docs/statistics.md, "Pooled". */
 #include "base/table.h"
+#include "tally/channels.h"
 #include "tally/kinds.h"
 #include "tally/moments.h"
 #include "tally/results.h"
@@ -29,10 +30,8 @@ typedef struct layout {
 } layout;
 
 static layout layout_of(const tarry_network *network) {
-    layout l = {.n_windows = network->run.n_windows};
-    for (uint32_t i = 0; i < network->n_channels; i++)
-        l.n += network->channels[i].recorded ? l.n_windows : 0;
-    return l;
+    const size_t n_windows = network->run.n_windows;
+    return (layout){n_windows, tarry_channels_recorded(network) * n_windows};
 }
 
 static size_t pooled_size(const tarry_network *network) {
@@ -184,14 +183,6 @@ static int report_signal(const char *signal, const char *window,
     return code;
 }
 
-static bool is_product(const tarry_network *network, const tarry_channel *channel) {
-    if (channel->species == TARRY_NONE)
-        return false;
-    const tarry_species *species = &network->species[channel->species];
-    return species->gene != TARRY_NONE &&
-           (species->role == TARRY_SPECIES_STAGE || species->role == TARRY_SPECIES_PRODUCT);
-}
-
 static int report_channel(const tarry_network *network, const tarry_tally_set *set,
                           const tarry_tally_kind *kind, const tarry_channel *channel, size_t first,
                           tarry_results *results, tarry_error *error) {
@@ -223,7 +214,7 @@ static int pooled_report(const tarry_network *network, const tarry_tally_set *se
         const tarry_channel *channel = &network->channels[i];
         if (!channel->recorded)
             continue;
-        if (channel->signal != TARRY_NONE || is_product(network, channel))
+        if (channel->signal != TARRY_NONE || tarry_channel_is_product(network, channel))
             code = report_channel(network, set, kind, channel, first, results, error);
         first += network->run.n_windows;
     }
