@@ -1,6 +1,6 @@
 /* Incomplete gamma functions.
  *
- * Below a = 100, and far from the middle, GSL's are used: there they are right to 1e-12. Near the
+ * Below a = 20, and far from the middle, GSL's are used: there they are right to 1e-12. Near the
  * middle at large a GSL (2.7) was found to be wrong by 1e-11 at a = 1e4, 1e-5 at 1e6 and wholly
  * from 1e7 on, so there Temme's uniform expansion takes over (Temme 1979, SIAM J. Math. Anal.
  * 10:757; DLMF 8.12), summed as one series in eta:
@@ -25,7 +25,7 @@
 
 enum { N_TERMS = 29 };
 
-static const double large_shape = 100;
+static const double large_shape = 20;
 
 /* f_n, the coefficients of eta / mu: with mu = sum b_n eta^n, b_1 = 1 and
  * (n + 1) b_n = b_(n-1) - sum_(k=2)^(n-1) k b_k b_(n-k+1), from mu mu' = eta (1 + mu); worked out
