@@ -7,14 +7,14 @@
 #include <stdio.h>
 
 static const char preface[] =
-    "tarry simulates gene expression one molecule and one cell at a time, with the lags of\n"
-    "transcription and translation, and gives burst statistics, distributions and\n"
-    "autocorrelations with error bars.\n\n";
+    "tarry simulates gene expression one molecule and one cell at a time, with the\n"
+    "lags of transcription and translation, and gives burst statistics, distributions\n"
+    "and autocorrelations with error bars.\n\n";
 
 static const char ending[] =
     "\n`tarry help COMMAND` tells more. docs/model.md describes the model file.\n"
-    "Exit status: 0 done; 1 failed while running; 2 wrong command line, model or data;\n"
-    "3 interrupted, with what was finished saved and marked partial.\n"
+    "Exit status: 0 done; 1 failed while running; 2 wrong command line, model or\n"
+    "data; 3 interrupted, with what was finished saved and marked partial.\n"
     "For research; not for clinical decisions.\n";
 
 static void help_on_all(void) {

@@ -8,23 +8,22 @@
 #include <unistd.h>
 
 static const char about_run[] =
-    "Simulates MODEL cell by cell, prints the table per gene and writes the results to a\n"
-    "folder as CSV and JSON. Without MODEL a built-in demonstration is simulated.\n"
+    "Simulates MODEL cell by cell, prints the table per gene and writes the results\n"
+    "to a folder as CSV and JSON. Without MODEL a built-in demonstration is run.\n"
     "A value given here beats the file; times take units, as in --until '10 h'.\n"
     "Interrupted (Ctrl-C), it saves the cells that are finished.\n";
 
 static const char about_check[] =
-    "Reads MODEL and prints what it comes down to: species, reactions, delays with mean and\n"
-    "standard deviation, how far from steady the record begins, the size of the run, and\n"
-    "everything that looks wrong. Nothing is simulated.\n";
+    "Reads MODEL and prints what it comes down to: species, reactions, delays with\n"
+    "mean and standard deviation, how far from steady the record begins, the size of\n"
+    "the run, and everything that looks wrong. Nothing is simulated.\n";
 
 const tarry_command tarry_commands[] = {
     {"check", "MODEL", TARRY_FOR_CHECK, "read and check a model, print what it comes down to",
      about_check, tarry_command_check},
-    {"run", "[MODEL]", TARRY_FOR_RUN, "simulate a model, print the table per gene, write results",
-     about_run, tarry_command_run},
-    {"predict", "MODEL", TARRY_FOR_ALL, "the same results without simulation, where that is known",
-     NULL, NULL},
+    {"run", "[MODEL]", TARRY_FOR_RUN, "simulate a model, print its table, write results", about_run,
+     tarry_command_run},
+    {"predict", "MODEL", TARRY_FOR_ALL, "the same without simulation, where known", NULL, NULL},
     {"measure", "DATA.csv", TARRY_FOR_ALL, "the same figures from laboratory data", NULL, NULL},
     {"fit", "MODEL", TARRY_FOR_ALL, "rates and delays from data, with intervals", NULL, NULL},
     {"compare", "MODEL", TARRY_FOR_ALL, "which of several models the data favour", NULL, NULL},

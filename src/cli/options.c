@@ -37,12 +37,12 @@ typedef struct option_row {
 
 static const option_row options[] = {
     {"out", "DIR", VALUE_TEXT, TARRY_FOR_RUN, FIELD(out), 0, 0,
-     "folder for the results; default: the model's name with .out"},
+     "folder for results; default: the model's name with .out"},
     {"overwrite", NULL, VALUE_NONE, TARRY_FOR_RUN, FIELD(overwrite), 0, 0,
      "replace the results of an earlier run in that folder"},
     {"cells", "N", VALUE_NUMBER, MODEL_COMMANDS, 0, 1, MOST_CELLS, "cells to simulate"},
     {"settle", "T", VALUE_KEY, MODEL_COMMANDS, 0, 0, 0,
-     "time simulated before the record begins; `auto` works it out"},
+     "time simulated before the record, or `auto`"},
     {"until", "T", VALUE_KEY, MODEL_COMMANDS, 0, 0, 0, "length of the record"},
     {"every", "T", VALUE_KEY, MODEL_COMMANDS, 0, 0, 0, "time between frames"},
     {"snapshots", "T,T,...", VALUE_KEY, MODEL_COMMANDS, 0, 0, 0,
@@ -56,7 +56,7 @@ static const option_row options[] = {
     {"sampler", "NAME", VALUE_TEXT, TARRY_FOR_RUN, FIELD(sampler), 0, 0,
      "how the next reaction is drawn; default: direct"},
     {"keep", "N", VALUE_WHOLE, TARRY_FOR_RUN, FIELD(keep), 0, MOST_CELLS,
-     "write the traces of the first N cells to cells.csv"},
+     "write traces of the first N cells"},
     {"figures", "KIND", VALUE_TEXT, TARRY_FOR_RUN, FIELD(figures), 0, 0,
      "svg, pdf, png (not yet) or none"},
     {"quiet", NULL, VALUE_NONE, TARRY_FOR_RUN, FIELD(quiet), 0, 0,
