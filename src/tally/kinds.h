@@ -9,7 +9,11 @@
 #define TARRY_TALLY_KINDS(X)                                                                       \
     X(moments)                                                                                     \
     X(distribution)                                                                                \
+    X(bursts)                                                                                      \
+    X(burst_sizes)                                                                                 \
+    X(dwells)                                                                                      \
     X(pooled)                                                                                      \
+    X(autocorrelation)                                                                             \
     X(transit)                                                                                     \
     X(drift)
 
