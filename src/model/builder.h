@@ -135,12 +135,15 @@ typedef struct tarry_draft {
     bool skip_short;
 } tarry_draft;
 
-/* A move from one promoter state to another, at a rate; those of a gene's first allele. */
+/* A way out of a promoter state; those of a gene's first allele stand for all. */
 typedef struct tarry_builder_move {
     uint32_t gene;
     uint32_t from, to; /* numbers of states */
-    bool formula;      /* the rate reads species */
-    uint32_t rate;     /* index into formulas or rates */
+    bool timed;        /* the state lasts, and `share` of its ends lead here; else at a rate */
+    double share;
+    bool formula;  /* the rate reads species */
+    uint32_t rate; /* index into formulas or rates */
+    tarry_place place;
 } tarry_builder_move;
 
 /* ---- the builder ---------------------------------------------------------------------------- */
@@ -257,6 +260,9 @@ int tarry_builder_mean(tarry_builder *builder, const tarry_node *node, double le
 int tarry_builder_delay_index(tarry_builder *builder, const tarry_node *node, uint32_t *index,
                               tarry_error *error);
 
+/* Turn n weights with a positive sum into cumulative shares, the last exactly 1. */
+void tarry_cumulate(double *weights, size_t n);
+
 /* ---- effects -------------------------------------------------------------------------------- */
 
 /* Appending to a draft; 0 or TARRY_MEMORY. A loss is a change of negative amount. */
@@ -269,6 +275,23 @@ void tarry_draft_release(tarry_draft *draft);
 /* Put a draft into order (net changes ascending, COUNT first) and keep it as a new effect. */
 int tarry_builder_effect(tarry_builder *builder, tarry_draft *draft, uint32_t *index,
                          tarry_error *error);
+
+/* Make molecules: a change, and where they have a lag of their own (stages, products with a
+ * lifetime) that lag once for each. */
+int tarry_draft_make(tarry_draft *draft, const tarry_builder *builder, uint32_t species,
+                     uint32_t amount, tarry_error *error);
+
+/* Append a lag whose outcomes are still to come. It gets the name of its delay. */
+int tarry_builder_lag(tarry_builder *builder, tarry_lag lag, uint32_t *index, tarry_error *error);
+
+/* Give a lag its one outcome, which happens with probability `chance`. */
+int tarry_builder_outcome(tarry_builder *builder, uint32_t lag, double chance, uint32_t effect,
+                          tarry_error *error);
+
+/* Append a reaction with the factors given (ascending, each species once). `formula`: its rate is
+ * one of formulas. The kind follows from both unless `reaction.kind` is PROPENSITY. */
+int tarry_builder_reaction(tarry_builder *builder, tarry_reaction reaction, bool formula,
+                           const tarry_factor *factors, size_t n_factors, tarry_error *error);
 
 /* ---- readers -------------------------------------------------------------------------------- */
 

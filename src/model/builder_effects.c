@@ -131,3 +131,59 @@ int tarry_builder_effect(tarry_builder *builder, tarry_draft *draft, uint32_t *i
     *index = (uint32_t)builder->effects.n;
     return TARRY_APPEND(&builder->effects, effect) == 0 ? 0 : tarry_fail_memory(error, "an effect");
 }
+
+/* ---- lags and reactions -------------------------------------------------------------------------
+ */
+
+int tarry_draft_make(tarry_draft *draft, const tarry_builder *builder, uint32_t species,
+                     uint32_t amount, tarry_error *error) {
+    int code = tarry_draft_change(draft, species, amount, error);
+    const int32_t lag = builder->stage_lags.items[species];
+    for (uint32_t i = 0; code == 0 && lag != TARRY_NONE && i < amount; i++)
+        code = tarry_draft_schedule(draft, (uint32_t)lag, error);
+    return code;
+}
+
+int tarry_builder_lag(tarry_builder *builder, tarry_lag lag, uint32_t *index, tarry_error *error) {
+    *index = (uint32_t)builder->lags.n;
+    lag.delay_name = builder->delays.items[lag.delay].name;
+    if (TARRY_APPEND(&builder->lags, lag) != 0)
+        return tarry_fail_memory(error, "a lag");
+    if (lag.stage != TARRY_NONE)
+        builder->stage_lags.items[lag.stage] = (int32_t)*index;
+    return 0;
+}
+
+int tarry_builder_outcome(tarry_builder *builder, uint32_t lag, double chance, uint32_t effect,
+                          tarry_error *error) {
+    const tarry_outcome outcome = {.cumulative = chance, .effect = effect};
+    tarry_range *range = &builder->lags.items[lag].outcomes;
+    range->from = (uint32_t)builder->outcomes.n;
+    range->to = range->from + 1;
+    return TARRY_APPEND(&builder->outcomes, outcome) == 0 ? 0 : tarry_fail_memory(error, "a lag");
+}
+
+static tarry_rate_kind rate_kind(bool formula, const tarry_factor *factors, size_t n_factors) {
+    if (formula)
+        return TARRY_RATE_EXPRESSION;
+    if (n_factors == 0)
+        return TARRY_RATE_CONSTANT;
+    return n_factors == 1 && factors[0].used + factors[0].needed == 1 ? TARRY_RATE_LINEAR
+                                                                      : TARRY_RATE_WAYS;
+}
+
+int tarry_builder_reaction(tarry_builder *builder, tarry_reaction reaction, bool formula,
+                           const tarry_factor *factors, size_t n_factors, tarry_error *error) {
+    if (reaction.kind != TARRY_RATE_PROPENSITY)
+        reaction.kind = rate_kind(formula, factors, n_factors);
+    if (reaction.kind == TARRY_RATE_LINEAR)
+        reaction.species = factors[0].species;
+    reaction.factors.from = (uint32_t)builder->factors.n;
+    for (size_t i = 0; i < n_factors; i++)
+        if (TARRY_APPEND(&builder->factors, factors[i]) != 0)
+            return tarry_fail_memory(error, "a reaction");
+    reaction.factors.to = (uint32_t)builder->factors.n;
+    return TARRY_APPEND(&builder->reactions, reaction) == 0
+               ? 0
+               : tarry_fail_memory(error, "a reaction");
+}

@@ -90,3 +90,14 @@ int tarry_builder_mean(tarry_builder *builder, const tarry_node *node, double le
     *index = (uint32_t)builder->means.n;
     return TARRY_APPEND(&builder->means, source) == 0 ? 0 : tarry_fail_memory(error, "a mean");
 }
+
+void tarry_cumulate(double *weights, size_t n) {
+    double sum = 0;
+    for (size_t i = 0; i < n; i++)
+        sum += weights[i];
+    double below = 0;
+    for (size_t i = 0; i < n; i++) {
+        below += weights[i];
+        weights[i] = i + 1 == n ? 1 : fmin(below / sum, 1);
+    }
+}

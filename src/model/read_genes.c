@@ -1,0 +1,225 @@
+#include "model/read_genes.h"
+
+/* Genes -> lags, reactions and effects. A molecule goes from stage to stage: each completion takes
+ * it out of one and puts it into the next, whose lag begins at that moment. Lags are made before
+ * the effects that schedule them. */
+
+#include "base/error.h"
+#include "base/memory.h"
+#include "model/expect.h"
+
+#include <string.h>
+
+/* One product with the stages before it, and how it goes away. */
+typedef struct product_plan {
+    const char *name;         /* "vela.transcript" */
+    const tarry_node *stages; /* or NULL */
+    uint32_t n_stages;
+    uint32_t first;   /* species of the first stage, or of the product where there is none */
+    uint32_t species; /* of the product */
+    bool decays;
+    bool formula;
+    uint32_t rate;
+    bool lives; /* it has a lifetime: a lag of its own */
+    tarry_place place;
+} product_plan;
+
+int tarry_gene_reaction(const tarry_gene_work *work, const char *name, tarry_factor factor,
+                        bool formula, uint32_t rate, int32_t allele, tarry_draft *draft,
+                        tarry_place place, tarry_error *error) {
+    if (name == NULL)
+        return tarry_fail_memory(error, "a reaction");
+    tarry_reaction reaction = {
+        .name = name, .rate = rate, .gene = (int32_t)work->gene, .allele = allele, .place = place};
+    const int code = tarry_builder_effect(work->builder, draft, &reaction.effect, error);
+    if (code != 0)
+        return code;
+    return tarry_builder_reaction(work->builder, reaction, formula, &factor, 1, error);
+}
+
+/* ---- lags ---------------------------------------------------------------------------------------
+ */
+
+/* The delay of a stage: in place, or under `lasts`. */
+static int stage_delay(const tarry_entry *stage, const tarry_node **delay, tarry_error *error) {
+    static const char *const keys[] = {"lasts", "lost"};
+    static const char *const later[] = {"lost"};
+    *delay = stage->node;
+    if (stage->node->kind != TARRY_NODE_MAP || (tarry_node_get(stage->node, "lasts") == NULL &&
+                                                tarry_node_get(stage->node, "lost") == NULL))
+        return 0;
+    int code = tarry_expect_keys(stage->node, stage->key, keys, 2, error);
+    if (code == 0)
+        code = tarry_expect_not_yet(stage->node, stage->key, later, 1, error);
+    if (code == 0)
+        code = tarry_expect_value(stage->node, stage->key, "lasts", delay, error);
+    return code;
+}
+
+static int make_lag(tarry_gene_work *work, const tarry_node *delay, uint32_t species,
+                    tarry_place place, tarry_error *error) {
+    tarry_builder *builder = work->builder;
+    tarry_lag lag = {.name = builder->species.items[species].name,
+                     .stage = (int32_t)species,
+                     .promoter = TARRY_NONE,
+                     .gene = (int32_t)work->gene,
+                     .place = place};
+    uint32_t index = 0;
+    const int code = tarry_builder_delay_index(builder, delay, &lag.delay, error);
+    return code == 0 ? tarry_builder_lag(builder, lag, &index, error) : code;
+}
+
+static int make_stage_lags(tarry_gene_work *work, const product_plan *plan, tarry_error *error) {
+    int code = 0;
+    for (uint32_t i = 0; code == 0 && i < plan->n_stages; i++) {
+        const tarry_entry *stage = &plan->stages->entries[i];
+        const tarry_node *delay = NULL;
+        code = stage_delay(stage, &delay, error);
+        if (code == 0)
+            code = make_lag(work, delay, plan->first + i, stage->place, error);
+    }
+    return code;
+}
+
+/* ---- reading ------------------------------------------------------------------------------------
+ */
+
+/* At most one of half_life, decay and lifetime. */
+static int read_decay(tarry_gene_work *work, const tarry_node *node, product_plan *plan,
+                      tarry_error *error) {
+    const tarry_node *half_life = tarry_node_get(node, "half_life");
+    const tarry_node *decay = tarry_node_get(node, "decay");
+    const tarry_node *lifetime = tarry_node_get(node, "lifetime");
+    if ((half_life != NULL) + (decay != NULL) + (lifetime != NULL) > 1)
+        return tarry_fail_at(error, TARRY_INPUT, node->place,
+                             "'%s' goes away by one of 'half_life', 'decay' and 'lifetime'; here "
+                             "stand several",
+                             plan->name);
+    plan->decays = half_life != NULL || decay != NULL;
+    plan->lives = lifetime != NULL;
+    if (plan->decays) {
+        const char *what = tarry_arena_format(work->builder->arena, "%s decay", plan->name);
+        if (what == NULL)
+            return tarry_fail_memory(error, "a gene");
+        plan->place = tarry_key_place(node, half_life != NULL ? "half_life" : "decay");
+        return tarry_builder_rate(work->builder, half_life != NULL ? half_life : decay,
+                                  half_life != NULL, what, &plan->formula, &plan->rate, error);
+    }
+    if (!plan->lives)
+        return 0;
+    plan->place = tarry_key_place(node, "lifetime");
+    return make_lag(work, lifetime, plan->species, plan->place, error);
+}
+
+static int read_product(tarry_gene_work *work, const tarry_node *node, const tarry_node *stages,
+                        uint32_t n_stages, uint32_t first, product_plan *plan, tarry_error *error) {
+    *plan = (product_plan){.stages = stages, .n_stages = n_stages, .first = first};
+    plan->species = first + n_stages;
+    plan->name = work->builder->species.items[plan->species].name;
+    const int code = make_stage_lags(work, plan, error);
+    return code == 0 ? read_decay(work, node, plan, error) : code;
+}
+
+/* ---- building -----------------------------------------------------------------------------------
+ */
+
+/* The completion of stage or lifetime `species`: it loses one, the next (if any) gains one. */
+static int build_completion(tarry_gene_work *work, uint32_t species, bool last,
+                            tarry_error *error) {
+    tarry_builder *builder = work->builder;
+    tarry_draft draft = {0};
+    uint32_t effect = 0;
+    int code = tarry_draft_change(&draft, species, -1, error);
+    /* Only a product can have been taken away by something else meanwhile. */
+    if (code == 0 && last)
+        code = tarry_draft_demand(&draft, species, 1, error);
+    if (code == 0 && !last)
+        code = tarry_draft_make(&draft, builder, species + 1, 1, error);
+    if (code == 0)
+        code = tarry_builder_effect(builder, &draft, &effect, error);
+    if (code == 0)
+        code = tarry_builder_outcome(builder, (uint32_t)builder->stage_lags.items[species], 1,
+                                     effect, error);
+    tarry_draft_release(&draft);
+    return code;
+}
+
+static int build_product(tarry_gene_work *work, const product_plan *plan, tarry_error *error) {
+    int code = 0;
+    for (uint32_t i = 0; code == 0 && i < plan->n_stages; i++)
+        code = build_completion(work, plan->first + i, false, error);
+    if (code == 0 && plan->lives)
+        code = build_completion(work, plan->species, true, error);
+    if (code != 0 || !plan->decays)
+        return code;
+    tarry_draft draft = {0};
+    const char *name = tarry_arena_format(work->builder->arena, "%s decay", plan->name);
+    const tarry_factor factor = {.species = plan->species, .used = 1};
+    code = tarry_draft_change(&draft, plan->species, -1, error);
+    if (code == 0)
+        code = tarry_gene_reaction(work, name, factor, plan->formula, plan->rate, TARRY_NONE,
+                                   &draft, plan->place, error);
+    tarry_draft_release(&draft);
+    return code;
+}
+
+/* Proteins are started from finished transcripts. */
+static int build_translation(tarry_gene_work *work, const product_plan *transcript,
+                             const product_plan *protein, tarry_error *error) {
+    tarry_builder *builder = work->builder;
+    const tarry_node *node = work->layout.protein;
+    const tarry_node *translation = NULL;
+    const char *name = tarry_arena_format(builder->arena, "%s.translation", work->layout.name);
+    if (name == NULL)
+        return tarry_fail_memory(error, "a gene");
+    const tarry_factor factor = {.species = transcript->species, .needed = 1};
+    tarry_draft draft = {0};
+    bool formula = false;
+    uint32_t rate = 0;
+    int code = tarry_expect_value(node, "'protein'", "translation", &translation, error);
+    if (code == 0)
+        code = tarry_builder_rate(builder, translation, false, name, &formula, &rate, error);
+    if (code == 0)
+        code = tarry_draft_make(&draft, builder, protein->first, 1, error);
+    if (code == 0)
+        code = tarry_gene_reaction(work, name, factor, formula, rate, TARRY_NONE, &draft,
+                                   tarry_key_place(node, "translation"), error);
+    tarry_draft_release(&draft);
+    return code;
+}
+
+static int read_gene(tarry_builder *builder, const tarry_entry *entry, uint32_t gene,
+                     tarry_error *error) {
+    tarry_gene_work work = {.builder = builder, .gene = gene};
+    tarry_gene_layout *layout = &work.layout;
+    product_plan transcript = {0}, protein = {0};
+    int code = tarry_gene_layout_read(entry, layout, error);
+    layout->first = builder->gene_species.items[gene];
+    if (code == 0)
+        code = tarry_read_promoter(&work, error);
+    if (code == 0 && layout->transcript != NULL)
+        code = read_product(&work, layout->transcript, layout->transcript_stages,
+                            layout->n_transcript_stages, tarry_layout_transcript(layout),
+                            &transcript, error);
+    if (code == 0 && layout->protein != NULL)
+        code = read_product(&work, layout->protein, layout->protein_stages,
+                            layout->n_protein_stages, tarry_layout_protein(layout), &protein,
+                            error);
+    if (code == 0)
+        code = tarry_build_promoter(&work, error);
+    if (code == 0 && layout->transcript != NULL)
+        code = build_product(&work, &transcript, error);
+    if (code == 0 && layout->protein != NULL)
+        code = build_translation(&work, &transcript, &protein, error);
+    if (code == 0 && layout->protein != NULL)
+        code = build_product(&work, &protein, error);
+    return code;
+}
+
+int tarry_read_genes(tarry_builder *builder, tarry_error *error) {
+    const tarry_node *map = tarry_node_get(builder->root, "genes");
+    int code = 0;
+    for (size_t i = 0; map != NULL && code == 0 && i < map->n; i++)
+        code = read_gene(builder, &map->entries[i], (uint32_t)i, error);
+    return code;
+}
