@@ -250,14 +250,10 @@ static shortest shorten_exactly(double x) {
     const wide value = (wide)(4 * m) * fives;
     const wide above = (wide)(4 * m + 2) * fives;
     const wide below = (wide)(4 * m - (fraction == 0 ? 1 : 2)) * fives;
-    const wide part = ((wide)1 << shift) - 1;
-    const bool ends_count = m % 2 == 0; /* a midpoint reads as the even neighbour */
-    uint64_t high = (uint64_t)(above >> shift);
-    uint64_t low = (uint64_t)(below >> shift);
-    if ((above & part) == 0 && !ends_count)
-        high--;
-    if ((below & part) != 0 || !ends_count)
-        low++;
+    /* The ends read as the even neighbour, but none is ever the roundest: where one is whole in
+     * these units shift is at most 1, and x is whole and rounder. So both may be left out. */
+    const uint64_t high = (uint64_t)((above - 1) >> shift);
+    const uint64_t low = (uint64_t)(below >> shift) + 1;
     shortest result = roundest(low, high, value, shift);
     result.exponent -= k;
     return result;

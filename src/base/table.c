@@ -234,7 +234,7 @@ int tarry_table_column(const tarry_table *table, const char *name) {
 
 /* The cell, or NULL where it is outside the table or of the other type. */
 static const value *find_cell(const tarry_table *table, size_t row, int index, bool is_text) {
-    if (row >= table->n_rows || index < 0 || (size_t)index >= table->n_columns)
+    if (row >= table->n_rows || (size_t)index >= table->n_columns)
         return NULL;
     if (table->columns[index].is_text != is_text)
         return NULL;

@@ -42,6 +42,8 @@ START_TEST(arrays_grow) {
     const size_t before = capacity;
     void *const same = array;
     ck_assert_int_eq(tarry_grow(&array, &capacity, SIZE_MAX / 4, sizeof(size_t)), 1);
+    ck_assert_int_eq(tarry_grow(&array, &capacity, SIZE_MAX / sizeof(size_t) + 2, sizeof(size_t)),
+                     1);
     faults_arm(FAULT_MEMORY, 0, 0);
     ck_assert_int_eq(tarry_grow(&array, &capacity, capacity + 1, sizeof(size_t)), 1);
     faults_clear();

@@ -260,6 +260,12 @@ static void check_writing(double x) {
     ASSERT_FAST(strtod(out, NULL) == x, "%a became %s", x, out);
     const int n = count_digits(out);
     ASSERT_FAST(x == 0 || n <= 1 || !fits(fabs(x), n - 1), "%s has more digits than it needs", out);
+    /* Of the decimals with so few digits it is the nearest, where that one reads back. */
+    char nearest[64];
+    snprintf(nearest, sizeof nearest, "%.*e", n > 0 ? n - 1 : 0, x);
+    if (strtod(nearest, NULL) == x)
+        ASSERT_FAST(strtold(out, NULL) == strtold(nearest, NULL), "%s is not the nearest: %s", out,
+                    nearest);
 }
 
 START_TEST(writing_is_shortest) {
