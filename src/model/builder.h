@@ -164,6 +164,7 @@ typedef struct tarry_builder {
 
     TARRY_LIST(tarry_builder_parameter) parameters;
     double *values; /* of parameters before any step, by tarry_read_parameters, in the arena */
+    uint32_t *order; /* of parameters: each after those it reads, by tarry_read_parameters */
 
     TARRY_LIST(tarry_source) rates;
     TARRY_LIST(tarry_source) means;
