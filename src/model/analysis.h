@@ -70,4 +70,37 @@ int tarry_analysis_distances(const tarry_network *network, double settle, tarry_
 int tarry_analysis_settle(const tarry_network *network, double tolerance, double *settle,
                           size_t *n_unknown, tarry_error *error);
 
+/* ---- what looks like a slip (analysis_slips.c) ----------------------------------------------- */
+
+/* Add a sentence for each: species that are never there, reactions that never fire, rates that may
+ * become negative, waits longer than the record, steps that change waits under way, completions
+ * that may lack what they use. Of one kind at most ten are told, then how many more there are. */
+int tarry_analysis_slips(const tarry_network *network, tarry_notes *notes, tarry_error *error);
+
+/* ---- what can happen (analysis_reach.c) ------------------------------------------------------ */
+
+typedef struct tarry_reach {
+    bool *made;      /* [species] something that can happen makes it, or it is set */
+    double *at_hand; /* [species] most that the start or the protocol gives */
+    bool *fires;     /* [reaction] */
+    bool *runs;      /* [lag] */
+} tarry_reach;
+
+/* What can ever be there and happen: the least fixed point, over all parameters of the protocol. */
+int tarry_analysis_reach(const tarry_network *network, tarry_reach *reach, tarry_error *error);
+void tarry_reach_release(tarry_reach *reach);
+
+/* At least n of the species can be there at once, as far as this analysis sees. */
+bool tarry_reach_has(const tarry_reach *reach, uint32_t species, double n);
+
+/* ---- values of expressions (analysis_range.c) ------------------------------------------------ */
+
+typedef struct tarry_interval {
+    double low, high;
+} tarry_interval;
+
+/* Bounds on the value where each species read has at least its `least` (by index; NULL: 0) and no
+ * upper bound. Parameters are folded in. The bounds hold but need not be reached. */
+tarry_interval tarry_analysis_range(const tarry_expression *expression, const double *least);
+
 #endif
