@@ -60,9 +60,10 @@ static const label time_labels[] = {
 
 /* What may be said of a product or a signal, as endings of a quantity's name. */
 static const label moment_labels[] = {
-    {"mean", "mean"},       {"sd", "sd"},       {"fano", "Fano factor"},
-    {"cv2", "CV squared"},  {"noise", "noise"}, {"decay_time", "autocorrelation decays in"},
-    {"plateau", "plateau"},
+    {"mean", "mean"},        {"sd", "sd"},
+    {"fano", "Fano factor"}, {"cv2", "CV squared"},
+    {"noise", "noise"},      {"decay_time", "autocorrelation decays in"},
+    {"plateau", "plateau"},  {"amplitude", "amplitude"},
 };
 
 #define COUNT(array) (sizeof(array) / sizeof *(array))
@@ -77,6 +78,7 @@ static const label *find_label(const label *labels, size_t n, const char *quanti
 /* The part of a quantity before "_mean" and its like, as a length; 0 where it has no such ending.
  */
 static size_t product_part(const char *quantity, const label **moment) {
+    *moment = NULL;
     const size_t n = strlen(quantity);
     size_t best = 0;
     for (size_t i = 0; i < COUNT(moment_labels); i++) {
@@ -139,13 +141,18 @@ typedef struct window_block {
     uint32_t from, to;
 } window_block;
 
-/* Units that go without saying: pure numbers, counts, the signal's own. */
-static bool says_something(const char *unit) {
-    static const char *const dumb[] = {"", "1", "molecules per cell", "signal"};
+/* What a unit adds to the words: " [/min]" of "/min per allele", nothing where it goes without
+ * saying (pure numbers, counts, the signal's own). */
+static const char *unit_words(const char *unit, char out[48]) {
+    static const char *const dumb[] = {"", "1", "share", "initiations", "molecules", "signal"};
+    const char *per = strstr(unit, " per ");
+    const int n = per ? (int)(per - unit) : (int)strlen(unit);
+    snprintf(out, 48, "%.*s", n < 40 ? n : 40, unit);
     for (size_t i = 0; i < COUNT(dumb); i++)
-        if (!strcmp(unit, dumb[i]))
-            return false;
-    return true;
+        if (!strcmp(out, dumb[i]))
+            return "";
+    snprintf(out, 48, " [%.*s]", n < 40 ? n : 40, unit);
+    return out;
 }
 
 static void add_figure(table_page *page, const figure_rows *entry, window_block block,
@@ -153,7 +160,7 @@ static void add_figure(table_page *page, const figure_rows *entry, window_block 
     const size_t none = tarry_table_n_rows(entry->table);
     const tarry_window *windows = page->network->run.windows;
     const char *unit = NULL;
-    char text[128];
+    char text[160], added[48];
     for (uint32_t w = block.from; w < block.to && !unit; w++) {
         const size_t row = find_row(entry, quantity, windows[w].name);
         if (row < none)
@@ -161,9 +168,7 @@ static void add_figure(table_page *page, const figure_rows *entry, window_block 
     }
     if (!unit)
         return;
-    const bool shown = says_something(unit);
-    snprintf(text, sizeof text, "    %s%s%s%s", words, shown ? " [" : "", shown ? unit : "",
-             shown ? "]" : "");
+    snprintf(text, sizeof text, "    %s%s", words, unit_words(unit, added));
     tarry_lines_left(page->text, text, LABEL);
     for (uint32_t w = block.from; w < block.to; w++)
         add_estimate(page, entry, find_row(entry, quantity, windows[w].name));
@@ -271,8 +276,9 @@ static void add_signal(table_page *page, const char *name, const figure_rows *en
             const label *moment;
             if (came_before(entry, i))
                 continue;
-            const bool known = product_part(quantity, &moment) > 0;
-            add_figure(page, entry, block, known ? moment->words : quantity, quantity);
+            if (product_part(quantity, &moment) == 0)
+                moment = find_label(moment_labels, COUNT(moment_labels), quantity);
+            add_figure(page, entry, block, moment ? moment->words : quantity, quantity);
         }
     }
 }
@@ -412,9 +418,7 @@ static void add_notes(table_page *page) {
         return;
     tarry_text_add_string(page->text, "\nNotes\n");
     if (page->marked_few)
-        tarry_lines_wrap(page->text, "* ",
-                         "from fewer than 20 periods or cells: the interval is too short",
-                         page->width);
+        tarry_lines_wrap(page->text, "* ", "from fewer than 20 periods or events", page->width);
     for (size_t i = 0; i < n; i++)
         tarry_lines_wrap(page->text, "- ", tarry_results_warning(page->results, i), page->width);
 }
