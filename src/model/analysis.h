@@ -73,8 +73,9 @@ int tarry_analysis_settle(const tarry_network *network, double tolerance, double
 /* ---- what looks like a slip (analysis_slips.c) ----------------------------------------------- */
 
 /* Add a sentence for each: species that are never there, reactions that never fire, rates that may
- * become negative, waits longer than the record, steps that change waits under way, completions
- * that may lack what they use. Of one kind at most ten are told, then how many more there are. */
+ * become negative, waits longer than the record, steps that change delays. Of one kind at
+ * most ten are told, then how many more there are. (What a reader of the model sees by itself, as
+ * completions that may lack what they use, it notes itself.) */
 int tarry_analysis_slips(const tarry_network *network, tarry_notes *notes, tarry_error *error);
 
 /* ---- what can happen (analysis_reach.c) ------------------------------------------------------ */

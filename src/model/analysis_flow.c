@@ -253,7 +253,7 @@ static void read_move(reader *r, const tarry_reaction *reaction) {
     const bool linear = tarry_flow_linear(r->network, reaction, &species, &rate, &reads);
     if (!linear || reads) {
         if (reaction->allele == (int32_t)first_promoter(r)->allele)
-            r->flow->why = say(r, "the rate of \"%s\" reads counts of species", reaction->name);
+            r->flow->why = say(r, "the rate of '%s' reads counts of species", reaction->name);
         return;
     }
     const int32_t from = state_of(r, species);
@@ -290,7 +290,7 @@ static void check_movers(reader *r, uint32_t species) {
                           r->network->reactions[reaction].gene == (int32_t)r->gene) ||
                          (lag != TARRY_NONE && r->network->lags[lag].promoter != TARRY_NONE);
         if (!own)
-            r->flow->why = say(r, "\"%s\" moves its promoter", owner_name(r, effect));
+            r->flow->why = say(r, "'%s' moves its promoter", owner_name(r, effect));
     }
 }
 
@@ -309,7 +309,7 @@ static void read_promoter(reader *r) {
         if (promoter->steady)
             read_dwell(r, state, r->start[i]);
         else
-            flow->why = say(r, "the state \"%s\" lasts a drawn time and the start is not steady",
+            flow->why = say(r, "the state '%s' lasts a drawn time and the start is not steady",
                             state->name);
     }
     const uint32_t *starts = r->index->reaction_starts;
@@ -337,9 +337,9 @@ static const char *check_reaction(reader *r, size_t product, uint32_t effect) {
                              change_of(r->network, effect, reactant) == 0 &&
                              change_of(r->network, effect, species) > 0;
     if (!decay && !translation)
-        return say(r, "\"%s\" changes it", reaction->name);
+        return say(r, "'%s' changes it", reaction->name);
     if (reads)
-        return say(r, "the rate of \"%s\" reads counts of species", reaction->name);
+        return say(r, "the rate of '%s' reads counts of species", reaction->name);
     if (decay)
         r->decay[product] += rate;
     return NULL;
@@ -356,7 +356,7 @@ static const char *check_completion(reader *r, size_t product, uint32_t effect) 
     const bool enters = lag->stage != TARRY_NONE && lag->stage != (int32_t)species &&
                         is_product(r, (uint32_t)lag->stage) &&
                         change_of(r->network, effect, species) > 0;
-    return ends || enters ? NULL : say(r, "\"%s\" changes it", lag->name);
+    return ends || enters ? NULL : say(r, "'%s' changes it", lag->name);
 }
 
 static void check_product(reader *r, size_t product) {
@@ -366,7 +366,7 @@ static void check_product(reader *r, size_t product) {
         const uint32_t effect = r->index->effects[i];
         if (draws_amounts(r->network, effect) ||
             (r->index->reaction_of[effect] == TARRY_NONE && r->index->lag_of[effect] == TARRY_NONE))
-            p->why = say(r, "\"%s\" changes it", owner_name(r, effect));
+            p->why = say(r, "'%s' changes it", owner_name(r, effect));
         else if (r->index->reaction_of[effect] != TARRY_NONE)
             p->why = check_reaction(r, product, effect);
         else
@@ -469,7 +469,7 @@ static void enter(reader *r, size_t product, uint32_t effect, trail way) {
     double mean = 0;
     const int32_t lag = stage_lag(r->network, effect, p->species);
     if (!p->why && way.tainted)
-        p->why = say(r, "it is made from \"%s\", whose mean cannot be worked out", way.tainted);
+        p->why = say(r, "it is made from '%s', whose mean cannot be worked out", way.tainted);
     if (!p->why && way.depth + 2 > MOST_STEPS)
         p->why = "it is made in too many steps";
     if (!p->why)

@@ -13,10 +13,7 @@
 #include <stdlib.h>
 #include <string.h>
 
-enum {
-    MOST_TOLD = 10, /* of one kind */
-    DEEPEST = 16    /* completions of completions that are followed */
-};
+enum { MOST_TOLD = 10 }; /* of one kind */
 
 typedef struct teller {
     const tarry_network *network;
@@ -73,9 +70,9 @@ static void tell_absent(teller *t, const tarry_reach *reach, const bool *has_mak
         if (species->role == TARRY_SPECIES_ALLELE || tarry_reach_has(reach, i, 1))
             continue;
         if (species->role == TARRY_SPECIES_STATE)
-            tell(t, species->place, "no promoter is ever in the state \"%s\"", species->name);
+            tell(t, species->place, "no promoter is ever in the state '%s'", species->name);
         else if (!has_maker[i])
-            tell(t, species->place, "nothing makes \"%s\", and it starts at 0", species->name);
+            tell(t, species->place, "nothing makes '%s', and it starts at 0", species->name);
     }
     close_kind(t, "species that are never there");
 }
@@ -101,10 +98,10 @@ static void tell_idle(teller *t, const tarry_reach *reach) {
             continue;
         const uint32_t lacking = find_lacking(network, reaction, reach);
         if (lacking < network->n_species)
-            tell(t, reaction->place, "\"%s\" can never fire: there is never enough \"%s\"",
+            tell(t, reaction->place, "'%s' can never fire: there is never enough '%s'",
                  reaction->name, network->species[lacking].name);
         else
-            tell(t, reaction->place, "\"%s\" can never fire: its rate is 0 throughout",
+            tell(t, reaction->place, "'%s' can never fire: its rate is 0 throughout",
                  reaction->name);
     }
     close_kind(t, "reactions that can never fire");
@@ -137,7 +134,7 @@ static bool find_negative(const tarry_expression *formula, const double *least, 
 static void say_counts(const tarry_network *network, const tarry_expression *formula,
                        const double *counts, tarry_text *text) {
     for (uint32_t i = 0; i < formula->n_species && i < 6; i++) {
-        tarry_text_printf(text, "%s\"%s\" = ", i > 0 ? ", " : "",
+        tarry_text_printf(text, "%s'%s' = ", i > 0 ? ", " : "",
                           network->species[formula->species[i]].name);
         tarry_text_add_number(text, counts[formula->species[i]]);
     }
@@ -166,7 +163,7 @@ static void tell_one_negative(teller *t, const tarry_reaction *reaction, double 
         tarry_text where = {0};
         say_counts(network, formula, counts, &where);
         tell(t, reaction->place,
-             "the %s of \"%s\" (%s) would be %s with %s, which stops the run; max(0, ...) keeps it "
+             "the %s of '%s' (%s) would be %s with %s, which stops the run; max(0, ...) keeps it "
              "from going below 0",
              kind, reaction->name, formula->text, number(value, out),
              where.data ? where.data : "some counts");
@@ -206,7 +203,7 @@ static void tell_one_long(teller *t, const tarry_lag *lag) {
         if (!(mean > network->run.until))
             continue;
         tell(t, lag->place,
-             "the delay \"%s\" of \"%s\" is %s %s long on average, longer than the record of %s %s",
+             "the delay '%s' of '%s' is %s %s long on average, longer than the record of %s %s",
              lag->delay_name, lag->name, number(mean, long_text), network->time_unit,
              number(network->run.until, until), network->time_unit);
         return;
@@ -235,7 +232,7 @@ static void tell_changed_delays(teller *t, const tarry_segment *before, const ta
     for (uint32_t d = 0; d < t->network->n_delays; d++)
         if (lag_of[d] && !tarry_law_same(&before->laws[d], &after->laws[d]))
             tell(t, lag_of[d]->place,
-                 "the step at %s %s changes the delay \"%s\": what waits already keeps the length "
+                 "the step at %s %s changes the delay '%s': what waits already keeps the length "
                  "it was drawn with",
                  number(after->start, at), t->network->time_unit, lag_of[d]->delay_name);
 }
@@ -255,99 +252,6 @@ static void tell_changed_lags(teller *t) {
     close_kind(t, "steps that change a delay");
 }
 
-/* ---- completions ---------------------------------------------------------------------------- */
-
-static bool names_species(const tarry_network *network, const tarry_reaction *reaction,
-                          uint32_t species) {
-    if (reaction->kind == TARRY_RATE_LINEAR && reaction->species == species)
-        return true;
-    for (uint32_t i = reaction->factors.from; i < reaction->factors.to; i++)
-        if (network->factors[i].species == species)
-            return true;
-    return false;
-}
-
-static bool makes_species(const tarry_network *network, uint32_t effect, uint32_t species) {
-    const tarry_effect *e = &network->effects[effect];
-    for (uint32_t i = e->changes.from; i < e->changes.to; i++)
-        if (network->changes[i].species == species && network->changes[i].amount > 0)
-            return true;
-    for (uint32_t i = e->amounts.from; i < e->amounts.to; i++)
-        if (network->amounts[i].species == species)
-            return true;
-    return false;
-}
-
-/* Other reactions that take away what waits for its own completion: the first, or NULL. */
-static const tarry_reaction *find_taker(const tarry_network *network, uint32_t species) {
-    for (uint32_t r = 0; r < network->n_reactions; r++) {
-        const tarry_range changes = network->effects[network->reactions[r].effect].changes;
-        for (uint32_t i = changes.from; i < changes.to; i++)
-            if (network->changes[i].species == species && network->changes[i].amount < 0)
-                return &network->reactions[r];
-    }
-    return NULL;
-}
-
-/* One demand of a completion that `reaction` leads to; `made`: by it, or by a completion before. */
-static void tell_demand(teller *t, const tarry_reaction *reaction, const tarry_lag *lag,
-                        uint32_t species, bool made, bool skips) {
-    const tarry_network *network = t->network;
-    const char *name = network->species[species].name;
-    const char *then = skips ? "such completions are skipped" : "the run then stops";
-    if (!made && !names_species(network, reaction, species)) {
-        tell(t, lag->place,
-             "the completion \"%s\" uses \"%s\", which \"%s\" neither uses nor needs nor makes; "
-             "where there is none left, %s",
-             lag->name, name, reaction->name, then);
-        return;
-    }
-    const tarry_reaction *taker = made ? find_taker(network, species) : NULL;
-    if (taker)
-        tell(t, lag->place,
-             "\"%s\" waits for the completion \"%s\", and \"%s\" takes it away meanwhile; where "
-             "there is none left, %s",
-             name, lag->name, taker->name, then);
-}
-
-/* Every completion that an effect of the reaction leads to, one after another. `way` holds the
- * effects so far. */
-static void follow(teller *t, const tarry_reaction *reaction, uint32_t *way, size_t depth) {
-
-    const tarry_network *network = t->network;
-    const tarry_range schedules = network->effects[way[depth]].schedules;
-    for (uint32_t i = schedules.from; i < schedules.to; i++) {
-        const tarry_lag *lag = &network->lags[network->schedules[i]];
-        if (lag->gene != TARRY_NONE)
-            continue;
-        for (uint32_t k = lag->outcomes.from; k < lag->outcomes.to; k++) {
-            const uint32_t index = network->outcomes[k].effect;
-            const tarry_effect *effect = &network->effects[index];
-            for (uint32_t d = effect->demands.from; d < effect->demands.to; d++) {
-                bool made = false;
-                for (size_t w = 0; w <= depth; w++)
-                    made |= makes_species(network, way[w], network->demands[d].species);
-                tell_demand(t, reaction, lag, network->demands[d].species, made,
-                            effect->skip_short);
-            }
-            way[depth + 1] = index;
-            if (depth + 2 < DEEPEST)
-                follow(t, reaction, way, depth + 1);
-        }
-    }
-}
-
-static void tell_completions(teller *t) {
-    uint32_t way[DEEPEST];
-    for (uint32_t r = 0; r < t->network->n_reactions; r++) {
-        const tarry_reaction *reaction = &t->network->reactions[r];
-        way[0] = reaction->effect;
-        if (reaction->gene == TARRY_NONE)
-            follow(t, reaction, way, 0);
-    }
-    close_kind(t, "completions that may lack what they use");
-}
-
 /* ---- all ------------------------------------------------------------------------------------ */
 
 int tarry_analysis_slips(const tarry_network *network, tarry_notes *notes, tarry_error *error) {
@@ -363,7 +267,6 @@ int tarry_analysis_slips(const tarry_network *network, tarry_notes *notes, tarry
         tell_negative(&t);
         tell_long(&t, &reach);
         tell_changed_lags(&t);
-        tell_completions(&t);
     }
     tarry_reach_release(&reach);
     free(has_maker);
