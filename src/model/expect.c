@@ -16,63 +16,6 @@ static const char *kind_text(const tarry_node *node) {
     return KIND_TEXTS[node->kind];
 }
 
-/* ---- calls torn apart by a comma --------------------------------------------------------------
- */
-
-static int open_brackets(const char *text) {
-    int n = 0;
-    for (; *text != '\0'; text++)
-        n += (*text == '(') - (*text == ')');
-    return n;
-}
-
-static bool is_plain_scalar(const tarry_node *node) {
-    return node->kind == TARRY_NODE_SCALAR && !node->quoted;
-}
-
-/* The part of a call that YAML took for an entry of its own: the key of a map, the item of a list.
- * NULL where the entry is nothing of the kind. */
-static const char *torn_part(const tarry_node *node, size_t i) {
-    const tarry_entry *entry = &node->entries[i];
-    if (!is_plain_scalar(entry->node))
-        return NULL;
-    if (node->kind == TARRY_NODE_LIST)
-        return entry->node->text;
-    return entry->node->text[0] == '\0' ? entry->key : NULL;
-}
-
-/* `{open: k * repress(x, 40, 2)}` without quotes reaches us as `open: k * repress(x`, `40` and
- * `2)`. Where a value is short of closing brackets and what follows closes them, say so. */
-static int look_for_torn_call(const tarry_node *node, tarry_error *error) {
-    for (size_t i = 0; i + 1 < node->n; i++) {
-        const tarry_entry *entry = &node->entries[i];
-        if (!is_plain_scalar(entry->node) || strchr(entry->node->text, '(') == NULL)
-            continue;
-        int open = open_brackets(entry->node->text);
-        size_t last = i;
-        while (open > 0 && last + 1 < node->n && torn_part(node, last + 1) != NULL)
-            open += open_brackets(torn_part(node, ++last));
-        if (open != 0 || last == i)
-            continue;
-        tarry_text mended = {0};
-        if (entry->key != NULL)
-            tarry_text_printf(&mended, "%s: ", entry->key);
-        tarry_text_printf(&mended, "\"%s", entry->node->text);
-        for (size_t j = i + 1; j <= last; j++)
-            tarry_text_printf(&mended, ", %s", torn_part(node, j));
-        tarry_text_add_string(&mended, "\"");
-        const int code = mended.failed
-                             ? tarry_fail_memory(error, "a message")
-                             : tarry_fail_at(
-                                   error, TARRY_INPUT, entry->node->place,
-                                   "an expression with a comma needs quotes here: write %s",
-                                   mended.data);
-        tarry_text_release(&mended);
-        return code;
-    }
-    return 0;
-}
-
 /* ---- kinds --------------------------------------------------------------------------------------
  */
 
@@ -81,7 +24,7 @@ int tarry_expect_map(const tarry_node *node, const char *what, tarry_error *erro
         return tarry_fail_at(error, TARRY_INPUT, node->place,
                              "%s must be a map, as {key: value}; here stands %s", what,
                              kind_text(node));
-    return look_for_torn_call(node, error);
+    return 0;
 }
 
 int tarry_expect_list(const tarry_node *node, const char *what, tarry_error *error) {
@@ -89,7 +32,7 @@ int tarry_expect_list(const tarry_node *node, const char *what, tarry_error *err
         return tarry_fail_at(error, TARRY_INPUT, node->place,
                              "%s must be a list, as [one, two]; here stands %s", what,
                              kind_text(node));
-    return look_for_torn_call(node, error);
+    return 0;
 }
 
 int tarry_expect_scalar(const tarry_node *node, const char *what, tarry_error *error) {

@@ -10,9 +10,7 @@ int tarry_expect_map(const tarry_node *node, const char *what, tarry_error *erro
 int tarry_expect_list(const tarry_node *node, const char *what, tarry_error *error);
 int tarry_expect_scalar(const tarry_node *node, const char *what, tarry_error *error);
 
-/* A map whose keys are all in `keys`; an unknown one is named with its nearest. Where an unknown
- * key holds a bracket or stands without a value, it is the rest of a call that was not quoted, and
- * the error says so. */
+/* A map whose keys are all in `keys`; an unknown one is named with its nearest. */
 int tarry_expect_keys(const tarry_node *node, const char *what, const char *const *keys,
                       size_t n_keys, tarry_error *error);
 

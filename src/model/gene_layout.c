@@ -10,7 +10,7 @@
 #include <stdlib.h>
 #include <string.h>
 
-enum { MOST_COPIES = 1000 };
+enum { MOST_COPIES = 1000, MOST_STATES = 250 };
 
 static const char *const GENE_KEYS[] = {"copies",  "start",     "promoter",  "transcript",
                                         "protein", "bursts_in", "clearance", "many"};
@@ -53,6 +53,10 @@ static int read_promoter(const tarry_entry *gene, tarry_gene_layout *layout, tar
     if (layout->n_states == 0)
         return tarry_fail_at(error, TARRY_INPUT, layout->promoter->place,
                              "a promoter needs a state at least, as {on: {initiates: 2 /min}}");
+    if (layout->n_states > MOST_STATES)
+        return tarry_fail_at(error, TARRY_INPUT, layout->promoter->place,
+                             "a promoter has at most %d states; this one has %u", MOST_STATES,
+                             layout->n_states);
     return 0;
 }
 

@@ -6,9 +6,12 @@
 
 #include "base/error.h"
 #include "base/memory.h"
+#include "base/notes.h"
 #include "model/expect.h"
 
 #include <string.h>
+
+enum { MOST_NOTES = 10 };
 
 /* One product with the stages before it, and how it goes away. */
 typedef struct product_plan {
@@ -216,10 +219,56 @@ static int read_gene(tarry_builder *builder, const tarry_entry *entry, uint32_t 
     return code;
 }
 
+/* ---- genes without bursts -----------------------------------------------------------------------
+ */
+
+/* Why the bursts of a gene cannot be told. */
+static int note_untold(tarry_builder *builder, const tarry_gene *gene, const tarry_node *node,
+                       tarry_error *error) {
+    const uint32_t first = builder->promoters.items[gene->promoters.from].states.from;
+    tarry_notes *notes = &builder->model->notes;
+    if (!builder->states.items[first].active)
+        return tarry_notes_add(notes, gene->place, error,
+                               "no state of the gene '%s' is active, so it has no bursts: their "
+                               "figures are left out. A state is active when it says 'initiates' "
+                               "or stands in 'bursts_in'.",
+                               gene->name);
+    if (tarry_node_get(node, "bursts_in") != NULL)
+        return tarry_notes_add(notes, gene->place, error,
+                               "'bursts_in' of the gene '%s' names every state, so that one burst "
+                               "cannot be told from the next: the figures of bursts are left out. "
+                               "Leave the states out that lie between bursts.",
+                               gene->name);
+    return tarry_notes_add(notes, gene->place, error,
+                           "every state of the gene '%s' initiates, so that one burst cannot be "
+                           "told from the next: the figures of bursts are left out. Name the "
+                           "states that are bursts with 'bursts_in: [STATE]'.",
+                           gene->name);
+}
+
+/* A note each for the first few, one for the rest. */
+static int note_all_untold(tarry_builder *builder, const tarry_node *map, tarry_error *error) {
+    size_t n_untold = 0;
+    int code = 0;
+    for (size_t i = 0; code == 0 && i < map->n; i++) {
+        if (builder->genes.items[i].tells)
+            continue;
+        if (n_untold++ < MOST_NOTES)
+            code = note_untold(builder, &builder->genes.items[i], map->entries[i].node, error);
+    }
+    if (code != 0 || n_untold <= MOST_NOTES)
+        return code;
+    return tarry_notes_add(&builder->model->notes, map->place, error,
+                           "the bursts of %zu more genes cannot be told either.",
+                           n_untold - MOST_NOTES);
+}
+
 int tarry_read_genes(tarry_builder *builder, tarry_error *error) {
     const tarry_node *map = tarry_node_get(builder->root, "genes");
+    if (map == NULL)
+        return 0;
     int code = 0;
-    for (size_t i = 0; map != NULL && code == 0 && i < map->n; i++)
+    for (size_t i = 0; code == 0 && i < map->n; i++)
         code = read_gene(builder, &map->entries[i], (uint32_t)i, error);
-    return code;
+    return code == 0 ? note_all_untold(builder, map, error) : code;
 }

@@ -6,7 +6,6 @@
 
 #include "base/error.h"
 #include "base/memory.h"
-#include "base/notes.h"
 #include "model/expect.h"
 
 #include <math.h>
@@ -171,7 +170,7 @@ static int read_active(tarry_gene_work *work, const tarry_node *bursts_in, tarry
 }
 
 /* Bursts can be told where some states are active and others are not. */
-static int set_active(tarry_gene_work *work, bool named, tarry_error *error) {
+static void set_active(tarry_gene_work *work) {
     tarry_builder *builder = work->builder;
     tarry_gene *gene = &builder->genes.items[work->gene];
     const uint32_t n_states = work->layout.n_states;
@@ -185,23 +184,6 @@ static int set_active(tarry_gene_work *work, bool named, tarry_error *error) {
     gene->tells = n_active > 0 && n_active < n_states;
     for (uint32_t i = gene->tracks.from; i < gene->tracks.to; i++)
         builder->tracks.items[i].tells = gene->tells;
-    if (gene->tells)
-        return 0;
-    if (n_active == 0)
-        return tarry_notes_add(&builder->model->notes, gene->place, error,
-                               "no state of the gene '%s' is active, so it has no bursts: their "
-                               "figures are left out. A state is active when it says 'initiates' "
-                               "or stands in 'bursts_in'.",
-                               gene->name);
-    return tarry_notes_add(&builder->model->notes, gene->place, error,
-                           named
-                               ? "'bursts_in' of the gene '%s' names every state, so that one "
-                                 "burst cannot be told from the next: the figures of bursts are "
-                                 "left out. Leave the states out that lie between bursts."
-                               : "every state of the gene '%s' initiates, so that one burst "
-                                 "cannot be told from the next: the figures of bursts are left "
-                                 "out. Name the states that are bursts with 'bursts_in: [STATE]'.",
-                           gene->name);
 }
 
 /* ---- start --------------------------------------------------------------------------------------
@@ -299,10 +281,10 @@ int tarry_read_promoter(tarry_gene_work *work, tarry_error *error) {
         code = read_state(work, i, error);
     if (code == 0)
         code = read_active(work, bursts_in, error);
-    if (code == 0)
-        code = set_active(work, bursts_in != NULL, error);
-    if (code == 0)
-        code = read_start(work, error);
+    if (code != 0)
+        return code;
+    set_active(work);
+    code = read_start(work, error);
     if (code == 0)
         code = make_lags(work, error);
     return code;
