@@ -32,10 +32,9 @@ enum {
     INACTIVE_CLOSED,
     INACTIVE_CUT_OFF,
     INACTIVE_TIME,
-    INTERVALS, /* between openings */
-    INTERVALS_CUT_OFF,
-    INTERVAL_TIME, /* in all of them */
-    INTERVAL,      /* in those that ended: sum and powers */
+    INTERVALS,     /* between openings, that ended */
+    INTERVAL_REST, /* time in their inactive part, those cut off included */
+    INTERVAL,      /* their lengths: sum and powers */
     INTERVAL_2,
     INTERVAL_3,
     INTERVAL_4,
@@ -135,18 +134,21 @@ static void add_inactive(double *sums, const tarry_period *period) {
     sums[period->cut_off ? INACTIVE_CUT_OFF : INACTIVE_CLOSED] += 1.0;
 }
 
-static void add_interval(double *sums, double time, bool cut_off) {
-    sums[INTERVAL_TIME] += time;
-    sums[cut_off ? INTERVALS_CUT_OFF : INTERVALS] += 1.0;
-    if (!cut_off)
-        add_powers(sums + INTERVAL, time);
+/* What follows a burst, up to the next opening, ends the interval that began with it. */
+static void add_interval(double *sums, const tarry_period *period) {
+    sums[INTERVAL_REST] += period->end - period->start;
+    if (period->cut_off)
+        return;
+    sums[INTERVALS] += 1.0;
+    add_powers(sums + INTERVAL, period->end - period->opened);
 }
 
 /* The part of a period that lies in the window: its time and its initiations. */
 static void add_part(const add_context *adding, const tarry_window *window, double *sums,
                      const tarry_period *period) {
     const double from = fmax(period->start, window->from), to = fmin(period->end, window->to);
-    if (to < from || period->start >= window->to || period->status == TARRY_TRACK_UNKNOWN)
+    const bool before = period->start < window->from && period->end <= window->from;
+    if (before || period->start >= window->to || period->status == TARRY_TRACK_UNKNOWN)
         return;
     const bool active = period->status == TARRY_TRACK_OPEN;
     const int64_t count_from = period->start >= window->from
@@ -170,9 +172,6 @@ static void add_period(const tarry_period *period, void *context) {
     const add_context *adding = context;
     const tarry_run_plan *run = &adding->network->run;
     const bool active = period->status == TARRY_TRACK_OPEN;
-    /* An interval ends with an inactive period, or is cut off with either. */
-    const bool ends_interval = active ? period->cut_off && period->starts : !isnan(period->opened);
-    const double opened = active ? period->start : period->opened;
     for (uint32_t w = 0; w < run->n_windows; w++) {
         const tarry_window *window = &run->windows[w];
         double *sums = adding->sums + ((size_t)period->gene * run->n_windows + w) * N_SUMS;
@@ -183,8 +182,8 @@ static void add_period(const tarry_period *period, void *context) {
             else
                 add_inactive(sums, period);
         }
-        if (ends_interval && tarry_window_holds(window, opened))
-            add_interval(sums, period->end - opened, period->cut_off);
+        if (!active && tarry_window_holds(window, period->opened))
+            add_interval(sums, period);
     }
 }
 
@@ -263,7 +262,7 @@ static void figures_of(const double *sums, double exposure, double figures[N_QUA
     figures[loud_size_mean] = sums[SIZE] * whole / loud;
     figures[active_time_mean] = sums[ACTIVE_TIME] / closed;
     figures[inactive_time_mean] = sums[INACTIVE_TIME] / sums[INACTIVE_CLOSED];
-    figures[interval_mean] = sums[INTERVAL_TIME] / sums[INTERVALS];
+    figures[interval_mean] = sums[ACTIVE_TIME] / closed + sums[INTERVAL_REST] / sums[INTERVALS];
     figures[interval_sd] = sd_of(sums[INTERVALS], sums + INTERVAL);
     figures[initiation_rate] = sums[INITIATIONS] / exposure;
     for (int i = 0; i < N_QUANTITIES; i++)
