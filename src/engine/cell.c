@@ -34,7 +34,7 @@ static void wait_until(tarry_cell *cell, uint32_t lag, double due, bool is_fixed
 }
 
 static inline void schedule(tarry_cell *cell, uint32_t lag) {
-    const uint32_t delay = cell->network->lags[lag].delay;
+    const uint32_t delay = cell->engine->lags[lag].delay;
     const double fixed = cell->fixed[delay];
     const bool is_fixed = fixed >= 0;
     const double length = is_fixed ? fixed : tarry_draw(cell->drawers[delay], &cell->events);
@@ -187,7 +187,7 @@ static void start(tarry_cell *cell) {
     tarry_stream start;
     tarry_stream_init(&cell->events, seed, (uint64_t)cell->number, TARRY_STREAM_EVENTS);
     tarry_stream_init(&start, seed, (uint64_t)cell->number, TARRY_STREAM_START);
-    cell->now = -network->run.settle;
+    cell->now = 0 - network->run.settle; /* not -0, which sorts before 0 */
     cell->end = network->run.until;
     cell->stop = TARRY_GO;
     cell->n_firings = 0;

@@ -27,6 +27,7 @@ typedef struct tarry_packed_effect {
 
 typedef struct tarry_packed_lag {
     const tarry_outcome *outcomes;
+    uint32_t delay;
     uint32_t n_outcomes;
     bool is_certain; /* one outcome that always comes */
     uint32_t effect; /* of a certain one */

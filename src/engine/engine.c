@@ -36,6 +36,7 @@ static void pack_lags(tarry_engine *engine) {
         const tarry_outcome *outcomes = network->outcomes + lag->outcomes.from;
         const uint32_t n = lag->outcomes.to - lag->outcomes.from;
         engine->lags[i] = (tarry_packed_lag){
+            .delay = lag->delay,
             .outcomes = outcomes,
             .n_outcomes = n,
             .is_certain = n == 1 && outcomes[0].cumulative >= 1,

@@ -6,8 +6,14 @@
 #include <math.h>
 #include <stdlib.h>
 
+__extension__ typedef __int128 wide;
+
+static const tarry_pending_entry never = {INT64_MAX, UINT64_MAX};
+
+/* One number of 128 bits for (due, lag, order scheduled): compared without a branch, since which of
+ * two children comes first cannot be foretold. */
 static inline bool is_before(tarry_pending_entry one, tarry_pending_entry other) {
-    return one.due < other.due || (one.due == other.due && one.key < other.key);
+    return ((wide)one.order << 64 | one.key) < ((wide)other.order << 64 | other.key);
 }
 
 static uint32_t lag_of(tarry_pending_entry entry) {
@@ -49,7 +55,7 @@ void tarry_pending_clear(tarry_pending *pending) {
     pending->n_heap = 0;
     pending->n_scheduled = 0;
     pending->n = 0;
-    pending->heap[0] = (tarry_pending_entry){INFINITY, UINT64_MAX};
+    pending->heap[0] = never;
 }
 
 /* Let `entry` rise from the hole at i. */
@@ -64,18 +70,25 @@ static void sift_up(tarry_pending_entry *heap, size_t i, tarry_pending_entry ent
     heap[i] = entry;
 }
 
-/* Let `entry` sink from the hole at i in a heap of n. */
+/* Let `entry` sink from the hole at i in a heap of n: the hole goes all the way down first, since
+ * an entry from the end or from a ring mostly belongs near the leaves (Wegener 1993, Theor. Comput.
+ * Sci. 118:81). */
 static void sift_down(tarry_pending_entry *heap, size_t n, size_t i, tarry_pending_entry entry) {
-    for (;;) {
-        size_t child = 2 * i + 1;
-        if (child >= n)
-            break;
-        if (child + 1 < n && is_before(heap[child + 1], heap[child]))
-            child++;
-        if (!is_before(heap[child], entry))
-            break;
+    const size_t top = i;
+    size_t child = 2 * i + 1;
+    while (child + 1 < n) {
+        child += is_before(heap[child + 1], heap[child]);
         heap[i] = heap[child];
         i = child;
+        child = 2 * i + 1;
+    }
+    if (child < n) {
+        heap[i] = heap[child];
+        i = child;
+    }
+    while (i > top && is_before(entry, heap[(i - 1) / 2])) {
+        heap[i] = heap[(i - 1) / 2];
+        i = (i - 1) / 2;
     }
     heap[i] = entry;
 }
@@ -99,7 +112,7 @@ static int push(tarry_pending *pending, tarry_pending_entry entry) {
 static void take_out(tarry_pending *pending, size_t i) {
     const tarry_pending_entry last = pending->heap[--pending->n_heap];
     if (pending->n_heap == 0) {
-        pending->heap[0] = (tarry_pending_entry){INFINITY, UINT64_MAX};
+        pending->heap[0] = never;
     } else if (i < pending->n_heap) {
         if (i > 0 && is_before(last, pending->heap[(i - 1) / 2]))
             sift_up(pending->heap, i, last);
@@ -123,8 +136,8 @@ static int grow_ring(tarry_ring *ring) {
 }
 
 int tarry_pending_add(tarry_pending *pending, uint32_t lag, double due, bool fixed) {
-    tarry_pending_entry entry = {due, (uint64_t)lag << TARRY_PENDING_LAG_SHIFT |
-                                          pending->n_scheduled << 1 | fixed};
+    tarry_pending_entry entry = {tarry_time_order(due), (uint64_t)lag << TARRY_PENDING_LAG_SHIFT |
+                                                            pending->n_scheduled << 1 | fixed};
     if (!fixed) {
         if (push(pending, entry))
             return TARRY_MEMORY;
@@ -187,7 +200,7 @@ double tarry_pending_cancel(tarry_pending *pending, uint32_t lag) {
     const size_t i = find(pending, lag);
     if (i == pending->n_heap)
         return INFINITY;
-    const double due = pending->heap[i].due;
+    const double due = tarry_order_time(pending->heap[i].order);
     pending->rings[lag].head = pending->rings[lag].n = 0;
     take_out(pending, i);
     pending->n--;

@@ -5,18 +5,35 @@
  *
  * Completions of one lag and one length finish in the order they began, so they wait in a ring of
  * which only the head stands in the heap; drawn lengths go into the heap one by one. The heap is a
- * flat binary heap whose root is always valid: an entry due at infinity stands in an empty one. */
+ * flat binary one; entries compare as single numbers of 128 bits. */
 
 #include <stdbool.h>
 #include <stddef.h>
+#include <math.h>
 #include <stdint.h>
+#include <string.h>
 #include "tarry/error.h"
 
 /* 24 bits for the lag, 39 for the order scheduled, the lowest for "head of a ring". */
 enum { TARRY_PENDING_LAG_SHIFT = 40, TARRY_PENDING_MOST_LAGS = 1 << 24 };
 
+/* Times as whole numbers in the same order: positive doubles sort by their bits, negative ones by
+ * their bits upside down. */
+static inline int64_t tarry_time_order(double time) {
+    int64_t bits;
+    memcpy(&bits, &time, sizeof bits);
+    return bits ^ (int64_t)((uint64_t)(bits >> 63) >> 1);
+}
+
+static inline double tarry_order_time(int64_t order) {
+    const int64_t bits = order ^ (int64_t)((uint64_t)(order >> 63) >> 1);
+    double time;
+    memcpy(&time, &bits, sizeof time);
+    return time;
+}
+
 typedef struct tarry_pending_entry {
-    double due;
+    int64_t order; /* of the time when it is due */
     uint64_t key;
 } tarry_pending_entry;
 
@@ -43,7 +60,7 @@ void tarry_pending_clear(tarry_pending *pending);
 
 /* Time of the earliest completion, infinity where there is none. */
 static inline double tarry_pending_due(const tarry_pending *pending) {
-    return pending->heap[0].due;
+    return pending->n_heap > 0 ? tarry_order_time(pending->heap[0].order) : INFINITY;
 }
 
 /* Schedule one completion; `fixed`: the lag has one length for all, and `due` never decreases from
