@@ -10,22 +10,25 @@
  *   else          P(X + Y <= x) = integral of f_X(t) P(Y <= x - t), likewise for the others, by
  *                 adaptive Gauss-Kronrod quadrature (Piessens et al. 1983, QUADPACK) on panels that
  *                 end where X or Y changes. All terms are positive, so both tails keep a relative
- *                 accuracy of 1e-8 or better. With three parts or more Y is a total itself: each
- *                 further part costs a factor of some hundreds. */
+ *                 accuracy of 1e-8 or better; NaN where memory for the panels is short.
+ *                 With three parts or more Y is a total itself: each further part costs a factor of
+ *                 some hundreds. */
 
 #include "base/error.h"
+#include "base/memory.h"
 #include "model/incomplete_gamma.h"
 #include "model/law_family.h"
 
 #include <gsl/gsl_integration.h>
+#include <gsl/gsl_sort.h>
 #include <math.h>
 #include <stdbool.h>
+#include <stdlib.h>
 
 enum {
     MOST_PARTS = 32,
     MOST_PHASES = 400,   /* steps of a chain that are uniformised */
     N_LANDMARKS = 9,     /* quantiles that end panels */
-    MOST_BREAKS = 400,   /* ends of panels; more bins than this are left to the adaption */
     MOST_HALVINGS = 40,  /* of one panel */
     MOST_POISSON = 20000 /* expected points of the Poisson process */
 };
@@ -223,69 +226,93 @@ static const double landmarks[N_LANDMARKS][2] = {
     {0.8, 0.2}, {0.99, 1e-2},     {1, 1e-6},    {1, 1e-12},
 };
 
-static void add_break(double *breaks, size_t *n, double t, double x) {
-    if (!(t > 0 && t < x) || *n == MOST_BREAKS)
-        return;
-    size_t i = (*n)++;
-    for (; i > 0 && breaks[i - 1] > t; i--)
-        breaks[i] = breaks[i - 1];
-    breaks[i] = t;
+static size_t count_edges(const tarry_law *law) {
+    return law->kind == TARRY_LAW_BINS ? law->n + 1 : law->kind == TARRY_LAW_UNIFORM ? 2 : 0;
 }
 
-static void add_edges(double *breaks, size_t *n, const tarry_law *law, double shift, double sign,
-                      double x) {
-    if (law->kind == TARRY_LAW_BINS)
-        for (size_t i = 0; i <= law->n; i++)
-            add_break(breaks, n, shift + sign * law->points[i], x);
+/* Where panels end: places inside (0, x), in any order and number of times. */
+typedef struct break_list {
+    double x;
+    size_t n;
+    double *at;
+} break_list;
+
+static void add_break(break_list *breaks, double t) {
+    if (t > 0 && t < breaks->x)
+        breaks->at[breaks->n++] = t;
+}
+
+/* The jumps of a density, as shift + sign * edge. */
+static void add_edges(break_list *breaks, const tarry_law *law, double shift, double sign) {
     if (law->kind == TARRY_LAW_UNIFORM) {
-        add_break(breaks, n, shift + sign * law->a, x);
-        add_break(breaks, n, shift + sign * law->b, x);
+        add_break(breaks, shift + sign * law->a);
+        add_break(breaks, shift + sign * law->b);
+    } else {
+        for (size_t i = 0; i < count_edges(law); i++)
+            add_break(breaks, shift + sign * law->points[i]);
     }
 }
 
-static size_t find_breaks(const integrand *f, double *breaks) {
-    size_t n = 0;
+static void find_breaks(const integrand *f, break_list *breaks) {
     for (int i = 0; i < N_LANDMARKS; i++) {
         const double p = landmarks[i][0], q = landmarks[i][1];
         double rest = 0;
         for (size_t j = 0; j < f->rest.n; j++)
             rest += tarry_law_quantile(&f->rest.parts[j], p, q);
-        add_break(breaks, &n, tarry_law_quantile(&f->first, p, q), f->x);
-        add_break(breaks, &n, f->x - rest, f->x);
+        add_break(breaks, tarry_law_quantile(&f->first, p, q));
+        add_break(breaks, f->x - rest);
     }
-    add_edges(breaks, &n, &f->first, 0, 1, f->x);
+    add_edges(breaks, &f->first, 0, 1);
     if (f->rest.n == 1)
-        add_edges(breaks, &n, &f->rest.parts[0], f->x, -1, f->x);
-    return n;
+        add_edges(breaks, &f->rest.parts[0], f->x, -1);
 }
 
-static double convolve(const sum *s, function which, double x) {
-    integrand f = {.which = which, .x = x, .rest = *s};
-    double breaks[MOST_BREAKS];
+/* The part to integrate over: one whose density jumps, else one whose density is infinite at 0. */
+static size_t choose_first(const sum *s) {
     size_t first = 0;
-    for (size_t i = 1; i < s->n; i++)
-        if (power_at_zero(&s->parts[i]) < power_at_zero(&s->parts[first]))
+    for (size_t i = 1; i < s->n; i++) {
+        const tarry_law *law = &s->parts[i], *best = &s->parts[first];
+        const bool more = count_edges(law) > count_edges(best);
+        const bool same = count_edges(law) == count_edges(best);
+        if (more || (same && power_at_zero(law) < power_at_zero(best)))
             first = i;
-    f.first = s->parts[first];
-    f.rest.shift = 0; /* already taken off x */
-    f.power = 1 / power_at_zero(&f.first);
-    f.rest.parts[first] = f.rest.parts[--f.rest.n];
-    const size_t n = find_breaks(&f, breaks);
+    }
+    return first;
+}
 
-    gsl_function call = {.function = at, .params = &f};
+static double add_panels(integrand *f, const break_list *breaks) {
+    gsl_function call = {.function = at, .params = f};
     double total = 0, from = 0;
-    for (size_t i = 0; i <= n; i++) {
-        const double t = i < n ? breaks[i] : x;
-        const double to = f.power > 1 ? x * pow(t / x, 1 / f.power) : t;
+    for (size_t i = 0; i <= breaks->n; i++) {
+        const double t = i < breaks->n ? breaks->at[i] : f->x;
+        const double to = f->power > 1 ? f->x * pow(t / f->x, 1 / f->power) : t;
         if (to > from)
             total += panel(&call, from, to, total, MOST_HALVINGS);
         from = to;
     }
-    if (which == SURVIVAL)
-        total += tarry_law_survival(&f.first, x);
-    if (which == INTEGRAL)
-        total += tarry_law_survival_integral(&f.first, x);
     return total;
+}
+
+static double convolve(const sum *s, function which, double x) {
+    const size_t first = choose_first(s);
+    integrand f = {.which = which, .x = x, .first = s->parts[first], .rest = *s};
+    f.power = 1 / power_at_zero(&f.first);
+    f.rest.parts[first] = f.rest.parts[--f.rest.n];
+    f.rest.shift = 0; /* already taken off x */
+
+    const size_t most_breaks = 2 * N_LANDMARKS + count_edges(&f.first) +
+                               count_edges(&f.rest.parts[0]);
+    break_list breaks = {.x = x, .at = tarry_calloc(most_breaks, sizeof(double))};
+    if (!breaks.at)
+        return NAN;
+    find_breaks(&f, &breaks);
+    gsl_sort(breaks.at, 1, breaks.n);
+    const double total = add_panels(&f, &breaks);
+    free(breaks.at);
+    if (which == CDF)
+        return total;
+    return total + (which == SURVIVAL ? tarry_law_survival(&f.first, x)
+                                      : tarry_law_survival_integral(&f.first, x));
 }
 
 /* ---- putting it together ---- */

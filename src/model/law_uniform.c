@@ -54,7 +54,7 @@ static double most(const tarry_law *law) {
 }
 
 static double density(const tarry_law *law, double x) {
-    return x >= law->a && x <= law->b ? 1 / (law->b - law->a) : 0;
+    return x >= law->a && x < law->b ? 1 / (law->b - law->a) : 0;
 }
 
 const tarry_law_family tarry_law_uniform = {
