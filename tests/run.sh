@@ -15,7 +15,7 @@ set -u
 BUILD=${BUILD:-build}
 JOBS=${JOBS:-2}
 MAKE=${MAKE:-make}
-sanitizers="-O1 -g -fno-omit-frame-pointer -fsanitize=address,undefined -fno-sanitize-recover=all"
+sanitizers="-O1 -g -fno-omit-frame-pointer -fno-sanitize-recover=all -fsanitize=address,undefined,float-cast-overflow"
 
 if [ "${1:-}" = run-one ]; then
     # run-one LOGS PROGRAM: run one program; LOGS/NAME.log and a line in LOGS/NAME.count come of it.

@@ -132,7 +132,7 @@ const char *tarry_error_text(const tarry_error *error, char *out, int size) {
     if (size <= 0)
         return out;
     if (error == NULL) {
-        copy_cut(out, (size_t)size, "");
+        out[0] = '\0';
         return out;
     }
     const char *colon = error->file[0] != '\0' ? ":" : "";

@@ -265,20 +265,25 @@ static double read_back(shortest s) {
     return strtod(text, NULL);
 }
 
-/* Any positive x, by trial. The next number up is tried too, because above a power of two numbers
- * lie twice as far apart as below it, so that the nearest decimal may be out and the next one in.
- */
+/* x > 0 to n significant digits. */
+static shortest round_digits(double x, int n) {
+    shortest s = {0, 0};
+    char text[64];
+    snprintf(text, sizeof text, "%.*e", n - 1, x);
+    const char *at = text;
+    for (; *at != 'e'; at++) /* whatever the locale puts for the point is skipped */
+        if (is_digit(*at))
+            s.digits = 10 * s.digits + (uint64_t)(*at - '0');
+    s.exponent = (int)strtol(at + 1, NULL, 10) - (n - 1);
+    return s;
+}
+
+/* Any x > 0, by trial. The next number up is tried too, because above a power of two numbers lie
+ * twice as far apart as below it, so that the nearest decimal may be out and the next one in. */
 static shortest shorten_by_trial(double x) {
     shortest s = {0, 0};
     for (int n = 1; n <= MOST_DIGITS; n++) {
-        char text[64];
-        snprintf(text, sizeof text, "%.*e", n - 1, x);
-        s.digits = 0;
-        const char *at = text;
-        for (; *at != 'e'; at++) /* whatever the locale puts for the point is skipped */
-            if (is_digit(*at))
-                s.digits = 10 * s.digits + (uint64_t)(*at - '0');
-        s.exponent = (int)strtol(at + 1, NULL, 10) - (n - 1);
+        s = round_digits(x, n);
         if (read_back(s) == x)
             return s;
         s.digits++;
@@ -333,23 +338,72 @@ static char *lay_out(char *at, shortest s) {
     return put(at, digits + point, n - point);
 }
 
-size_t tarry_number_write(double value, char out[TARRY_NUMBER_SIZE]) {
-    char *at = out;
-    if (isnan(value)) {
-        at = put(at, "nan", 3);
-    } else {
-        const double x = fabs(value);
-        if (value < 0)
-            *at++ = '-';
-        if (isinf(x))
-            at = put(at, "inf", 3);
-        else if (x < 0x1p53 && x == (double)(uint64_t)x)
-            at = lay_out(at, (shortest){(uint64_t)x, 0});
-        else if (x >= 1e-11 && x < 1e16)
-            at = lay_out(at, shorten_exactly(x));
-        else
-            at = lay_out(at, shorten_by_trial(x));
-    }
+/* The sign, and all that is not a finite number above 0; false where digits are still to come. */
+static bool put_special(char **at, double value) {
+    if (value < 0)
+        *(*at)++ = '-';
+    if (isnan(value))
+        *at = put(*at, "nan", 3);
+    else if (isinf(value))
+        *at = put(*at, "inf", 3);
+    else if (value == 0)
+        *at = put(*at, "0", 1);
+    else
+        return false;
+    return true;
+}
+
+static size_t finish(char *at, char *out) {
     *at = '\0';
     return (size_t)(at - out);
+}
+
+size_t tarry_number_write(double value, char out[TARRY_NUMBER_SIZE]) {
+    char *at = out;
+    if (put_special(&at, value))
+        return finish(at, out);
+    const double x = fabs(value);
+    if (x < 0x1p53 && x == (double)(uint64_t)x)
+        at = lay_out(at, (shortest){(uint64_t)x, 0});
+    else if (x >= 1e-11 && x < 1e16)
+        at = lay_out(at, shorten_exactly(x));
+    else
+        at = lay_out(at, shorten_by_trial(x));
+    return finish(at, out);
+}
+
+size_t tarry_number_write_rounded(double value, int digits, char out[TARRY_NUMBER_SIZE]) {
+    char *at = out;
+    if (!put_special(&at, value))
+        at = lay_out(at, round_digits(fabs(value), digits));
+    return finish(at, out);
+}
+
+/* Digits, the locale's point if there is one, and the rest, with "." for that point. */
+static size_t put_point(const char *text, char out[TARRY_NUMBER_SIZE]) {
+    char *at = out;
+    bool point = false;
+    for (; *text != '\0'; text++) {
+        const bool usual = is_digit(*text) || strchr("+-einfa", *text) != NULL;
+        if (usual)
+            *at++ = *text;
+        else if (!point)
+            *at++ = '.';
+        point = point || !usual;
+    }
+    return finish(at, out);
+}
+
+size_t tarry_number_write_power(double value, int decimals, char out[TARRY_NUMBER_SIZE]) {
+    char text[64];
+    snprintf(text, sizeof text, "%.*e", decimals, value);
+    return put_point(text, out);
+}
+
+size_t tarry_number_write_fixed(double value, int decimals, char out[TARRY_NUMBER_SIZE]) {
+    if (!(fabs(value) < 1e9))
+        return tarry_number_write_power(value, decimals, out);
+    char text[64];
+    snprintf(text, sizeof text, "%.*f", decimals, value);
+    return put_point(text, out);
 }

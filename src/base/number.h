@@ -29,4 +29,14 @@ size_t tarry_number_prefix(const char *text, size_t n);
  * is "0"). Returns the length; `out` is NUL-ended. */
 size_t tarry_number_write(double value, char out[TARRY_NUMBER_SIZE]);
 
+/* The same, rounded to `digits` significant digits (1 to 17), those that are 0 at the end left out:
+ * for messages. */
+size_t tarry_number_write_rounded(double value, int digits, char out[TARRY_NUMBER_SIZE]);
+
+/* With `decimals` digits (0 to 17) after the point, or with one digit before the point and a power
+ * of ten: what printf's %.*f and %.*e write in the C locale, for tables that people read. Up to 1e9
+ * with %f; larger values are written with a power. */
+size_t tarry_number_write_fixed(double value, int decimals, char out[TARRY_NUMBER_SIZE]);
+size_t tarry_number_write_power(double value, int decimals, char out[TARRY_NUMBER_SIZE]);
+
 #endif

@@ -7,10 +7,13 @@
 #include <sys/stat.h>
 #include <unistd.h>
 
+enum { SECONDS = 60 }; /* for one test; sanitizers are slow, and want small samples */
+
 int run_tests(const char *name, const test_entry *tests, size_t n) {
     Suite *suite = suite_create(name);
     for (size_t i = 0; i < n; i++) {
         TCase *tcase = tcase_create(tests[i].name);
+        tcase_set_timeout(tcase, test_small() ? 4 * SECONDS : SECONDS);
         tcase_add_test(tcase, tests[i].test);
         suite_add_tcase(suite, tcase);
     }

@@ -117,7 +117,7 @@ static void random_text(tarry_stream *stream, char out[80]) {
 START_TEST(reading_agrees_with_strtod) {
     tarry_stream stream;
     tarry_stream_init(&stream, 1, 0, TARRY_STREAM_EVENTS);
-    const int n = test_small() ? 20000 : 500000;
+    const int n = test_small() ? 20000 : 300000;
     for (int i = 0; i < n; i++) {
         char text[80];
         random_text(&stream, text);
@@ -271,7 +271,7 @@ static void check_writing(double x) {
 START_TEST(writing_is_shortest) {
     tarry_stream stream;
     tarry_stream_init(&stream, 1, 1, TARRY_STREAM_EVENTS);
-    const int n = test_small() ? 5000 : 150000;
+    const int n = test_small() ? 3000 : 50000;
     for (int i = 0; i < n; i++) {
         const uint64_t bits = tarry_stream_next(&stream);
         double x;
@@ -330,6 +330,62 @@ static void set_comma_locale(void) {
                   "no locale with a decimal comma is installed, and localedef could make none");
 }
 
+/* Rounded numbers: digits by printf, which rounds correctly; layout ours. */
+START_TEST(rounded) {
+    const struct {
+        double value;
+        int digits;
+        const char *text;
+    } cases[] = {
+        {0.0123456, 3, "0.0123"},
+        {-1234.5678, 6, "-1234.57"},
+        {99.96, 3, "100"},
+        {1.5, 17, "1.5"},
+        {2.0 / 3, 4, "0.6667"},
+        {1e20, 2, "1e20"},
+        {123456, 2, "120000"},
+        {3.7e-9, 1, "4e-9"},
+        {0, 3, "0"},
+        {-INFINITY, 3, "-inf"},
+        {NAN, 3, "nan"},
+    };
+    for (size_t i = 0; i < sizeof cases / sizeof cases[0]; i++) {
+        char out[TARRY_NUMBER_SIZE];
+        ck_assert_uint_eq(tarry_number_write_rounded(cases[i].value, cases[i].digits, out),
+                          strlen(cases[i].text));
+        ck_assert_str_eq(out, cases[i].text);
+    }
+}
+END_TEST
+
+START_TEST(decimals_are_those_of_printf) {
+    tarry_stream stream;
+    tarry_stream_init(&stream, 1, 2, TARRY_STREAM_EVENTS);
+    for (int i = 0; i < 20000; i++) {
+        const uint64_t bits = tarry_stream_next(&stream);
+        const double x = (tarry_unit(tarry_stream_next(&stream)) - 0.5) *
+                         pow(10, (double)(bits % 20) - 10);
+        const int decimals = (int)(bits >> 60);
+        char out[TARRY_NUMBER_SIZE], truth[64];
+        snprintf(truth, sizeof truth, fabs(x) < 1e9 ? "%.*f" : "%.*e", decimals, x);
+        const size_t n = tarry_number_write_fixed(x, decimals, out);
+        ASSERT_FAST(strcmp(out, truth) == 0 && n == strlen(out), "%s, not %s", out, truth);
+        snprintf(truth, sizeof truth, "%.*e", decimals, x);
+        tarry_number_write_power(x, decimals, out);
+        ASSERT_FAST(strcmp(out, truth) == 0, "%s, not %s", out, truth);
+    }
+    char out[TARRY_NUMBER_SIZE];
+    tarry_number_write_fixed(-999999999.96875, 17, out);
+    ck_assert_str_eq(out, "-999999999.96875000000000000");
+    tarry_number_write_power(-1.5e-300, 17, out);
+    ck_assert_uint_lt(strlen(out), TARRY_NUMBER_SIZE);
+    tarry_number_write_fixed(INFINITY, 2, out);
+    ck_assert_str_eq(out, "inf");
+    tarry_number_write_fixed(NAN, 2, out);
+    ck_assert(strcmp(out, "nan") == 0 || strcmp(out, "-nan") == 0);
+}
+END_TEST
+
 START_TEST(locale_does_not_matter) {
     set_comma_locale();
     char text[32];
@@ -344,6 +400,13 @@ START_TEST(locale_does_not_matter) {
     ck_assert_str_eq(write_number(1.5e-300), "1.5e-300");
     ck_assert_str_eq(write_number(-1.2345678901234567e+200), "-1.2345678901234567e200");
     ck_assert_str_eq(write_number(1234567.5), "1234567.5");
+    char out[TARRY_NUMBER_SIZE];
+    tarry_number_write_rounded(1.0 / 3, 3, out);
+    ck_assert_str_eq(out, "0.333");
+    tarry_number_write_fixed(1234567.25, 1, out);
+    ck_assert_str_eq(out, "1234567.2");
+    tarry_number_write_power(-1234.5, 3, out);
+    ck_assert_str_eq(out, "-1.234e+03");
 }
 END_TEST
 
@@ -359,6 +422,8 @@ int main(void) {
         {"layout", layout},
         {"writing is shortest", writing_is_shortest},
         {"writing at corners", writing_at_corners},
+        {"rounded", rounded},
+        {"decimals are those of printf", decimals_are_those_of_printf},
         {"the locale does not matter", locale_does_not_matter},
     };
     return run_tests("numbers as text", tests, sizeof tests / sizeof tests[0]);
