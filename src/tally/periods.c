@@ -31,10 +31,9 @@ static void states_init(const tarry_network *network, const tarry_record *record
     for (uint32_t g = 0; g < network->n_genes; g++) {
         const tarry_range tracks = network->genes[g].tracks;
         for (uint32_t i = tracks.from; i < tracks.to; i++) {
-            const bool tells = network->tracks[i].tells;
             states[i] = (track_state){
                 .gene = g,
-                .status = tells ? (double)record->status[i] : (double)TARRY_TRACK_UNKNOWN,
+                .status = record->status[i],
                 .count = (double)tarry_count_at(network, record, 0, i),
                 .opened = NAN,
             };
@@ -61,8 +60,6 @@ void tarry_periods(const tarry_network *network, const tarry_record *record, dou
     for (size_t m = 0; m < record->n_marks; m++) {
         const tarry_mark *mark = &record->marks[m];
         track_state *state = &states[mark->track];
-        if (!network->tracks[mark->track].tells)
-            continue;
         tarry_period period = period_of(state, mark->track);
         period.end = mark->time;
         period.count_end = mark->count;

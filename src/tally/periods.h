@@ -22,8 +22,8 @@ typedef struct tarry_period {
 
 typedef void tarry_period_visit(const tarry_period *period, void *context);
 
-/* Call `visit` for each period of each track, in the order in which they end and tracks in order
- * for those cut off. Tracks that do not tell are one period of unknown status. */
+/* Call `visit` for each period of each track, in the order in which they end, tracks in order for
+ * those cut off. */
 void tarry_periods(const tarry_network *network, const tarry_record *record, double *scratch,
                    tarry_period_visit *visit, void *context);
 

@@ -180,10 +180,56 @@ START_TEST(test_bound) {
 }
 END_TEST
 
+/* An inactive period over the bound at 40, with initiations in it at 20, 50 and 55. */
+START_TEST(test_outside) {
+    hand h;
+    tarry_record record;
+    hand_init(&h, 10, 100, 11);
+    hand_windows(&h, (const double[]){0, 40, 100}, 2);
+    hand_gene(&h, "vela", 1, true);
+    hand_record(&h, &record, 0);
+    record.end = 120;
+    hand_mark(&record, 5, 0, true, 0);
+    hand_mark(&record, 10, 0, false, 2);
+    hand_mark(&record, 60, 0, true, 5);
+    hand_mark(&record, 70, 0, false, 9);
+    hand_mark(&record, 120, 0, true, 9);
+    hand_counts(&h, &record, 0, (const int64_t[]){0, 3, 9});
+    tarry_results *results = hand_results(&h, &tarry_tally_bursts, &record, 1);
+    check_value(results, "w1", "outside_fraction", 1.0 / 3, 3);
+    check_value(results, "w2", "outside_fraction", 2.0 / 6, 6);
+    tarry_results_free(results);
+    tarry_record_release(&record);
+}
+END_TEST
+
+/* Intervals all alike have no spread, whatever the rounding of their squares. */
+START_TEST(test_no_spread) {
+    for (int tenths = 1; tenths < 30; tenths += 2) {
+        hand h;
+        tarry_record record;
+        hand_init(&h, 10, 1000, 11);
+        hand_gene(&h, "vela", 1, true);
+        hand_record(&h, &record, 0);
+        for (int i = 0; i < 300; i++) {
+            hand_mark(&record, 0.1 * tenths * i, 0, true, 0);
+            hand_mark(&record, 0.1 * tenths * (i + 0.5), 0, false, 0);
+        }
+        record.end = 2000;
+        tarry_results *results = hand_results(&h, &tarry_tally_bursts, &record, 1);
+        ck_assert_double_eq(figure(results, "vela", "all", "interval_sd", "value"), 0);
+        tarry_results_free(results);
+        tarry_record_release(&record);
+    }
+}
+END_TEST
+
 /* ---- cut off ---- */
 
-/* Three bursts of 2 min and 4 initiations that closed, and one open from 5 to the end at 20. */
+/* Three bursts of 2 min that closed, with 4, 4 and no initiations, and one open from 5 to the end
+ * at 20. */
 START_TEST(test_cut_off) {
+    static const int64_t size[4] = {4, 4, 0, 9}; /* of the last, until minute 10 */
     hand h;
     tarry_record records[4];
     hand_init(&h, 10, 10, 11);
@@ -191,22 +237,22 @@ START_TEST(test_cut_off) {
     for (int i = 0; i < 4; i++) {
         hand_record(&h, &records[i], i);
         hand_mark(&records[i], 5, 0, true, 0);
-        hand_counts(&h, &records[i], 0, (const int64_t[]){0, i < 3 ? 4 : 9});
+        hand_counts(&h, &records[i], 0, (const int64_t[]){0, size[i]});
         records[i].end = i < 3 ? 11 : 20;
         if (i < 3) {
-            hand_mark(&records[i], 7, 0, false, 4);
-            hand_mark(&records[i], 11, 0, true, 4);
+            hand_mark(&records[i], 7, 0, false, size[i]);
+            hand_mark(&records[i], 11, 0, true, size[i]);
         }
     }
     tarry_results *results = hand_results(&h, &tarry_tally_bursts, records, 4);
     check_value(results, "all", "burst_frequency", 4.0 / 40, 4);
     check_value(results, "all", "active_time_mean", (3 * 2 + 15) / 3.0, 3);
-    /* 2 initiations a minute of active time. */
-    check_value(results, "all", "burst_size_mean", 2 * 7, 3);
-    check_value(results, "all", "burst_size_sd", 0, 3);
-    check_value(results, "all", "silent_fraction", 0, 4);
-    check_value(results, "all", "loud_frequency", 4.0 / 40, 4);
-    check_value(results, "all", "loud_size_mean", 14, 3);
+    /* 8 initiations in 6 minutes of active time, and 21 minutes in all for 3 endings. */
+    check_value(results, "all", "burst_size_mean", 8.0 / 6 * 7, 3);
+    check_value(results, "all", "burst_size_sd", sqrt((32 - 64.0 / 3) / 2), 3);
+    check_value(results, "all", "silent_fraction", 1.0 / 4, 4);
+    check_value(results, "all", "loud_frequency", 3.0 / 40, 3);
+    check_value(results, "all", "loud_size_mean", 8.0 / 6 * 21 / 2, 2);
     check_value(results, "all", "inactive_time_mean", 4, 3);
     check_value(results, "all", "interval_mean", 7 + 4, 3);
     check_value(results, "all", "interval_sd", 0, 3);
@@ -409,6 +455,37 @@ START_TEST(test_size_distribution) {
 }
 END_TEST
 
+/* Each gene and window has a distribution of its own. */
+START_TEST(test_sizes_by_window) {
+    hand h;
+    tarry_record record;
+    hand_init(&h, 10, 10, 11);
+    hand_windows(&h, (const double[]){0, 5, 10}, 2);
+    hand_gene(&h, "aster", 1, true);
+    hand_gene(&h, "vela", 1, true);
+    hand_species(&h, "aster.transcript", 0);
+    hand_species(&h, "vela.transcript", 1);
+    hand_record(&h, &record, 0);
+    for (uint32_t i = 0; i < 4; i++) { /* sizes 0 and 1 early, 2 and 3 late */
+        hand_mark(&record, i < 2 ? 1 : 6, i % 2, true, i < 2 ? 0 : i % 2);
+        hand_mark(&record, i < 2 ? 2 : 7, i % 2, false, i + (i < 2 ? 0 : i % 2));
+    }
+    record.end = 20;
+    tarry_results *results = hand_results(&h, &tarry_tally_burst_sizes, &record, 1);
+    const tarry_table *table = tarry_results_table(results, TARRY_TABLE_burst_sizes);
+    ck_assert_uint_eq(tarry_table_n_rows(table), 1 + 3 + 2 + 4);
+    const size_t rows[] = {
+        hand_row(table, "aster", "w1", NULL), hand_row(table, "vela", "w1", NULL),
+        hand_row(table, "aster", "w2", NULL), hand_row(table, "vela", "w2", NULL)};
+    for (size_t i = 0; i < 4; i++) {
+        ck_assert_double_eq(hand_number(table, rows[i] + i, "size"), (double)i);
+        ck_assert_double_eq(hand_number(table, rows[i] + i, "probability"), 1);
+    }
+    tarry_results_free(results);
+    tarry_record_release(&record);
+}
+END_TEST
+
 /* A burst under way at the start and one cut off are in no distribution; nor are genes that are not
  * recorded. */
 START_TEST(test_sizes_left_out) {
@@ -417,6 +494,8 @@ START_TEST(test_sizes_left_out) {
     hand_init(&h, 10, 10, 11);
     hand_gene(&h, "aster", 1, true);
     hand_gene(&h, "vela", 1, true);
+    hand_species(&h, "aster.transcript", 0);
+    h.channels[0].recorded = false;
     hand_species(&h, "vela.transcript", 1);
     hand_record(&h, &record, 0);
     record.status[1] = TARRY_TRACK_OPEN;
@@ -578,6 +657,8 @@ int main(void) {
         {"interval", test_interval},
         {"windows", test_windows},
         {"bound", test_bound},
+        {"outside", test_outside},
+        {"no spread", test_no_spread},
         {"cut off", test_cut_off},
         {"cut off, inactive", test_cut_off_inactive},
         {"no bursts", test_no_bursts},
@@ -586,6 +667,7 @@ int main(void) {
         {"named", test_named},
         {"geometric sizes", test_geometric_sizes},
         {"size distribution", test_size_distribution},
+        {"sizes by window", test_sizes_by_window},
         {"sizes left out", test_sizes_left_out},
         {"long tail", test_long_tail_is_noted},
         {"telegraph", test_telegraph},

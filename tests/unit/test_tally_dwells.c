@@ -216,6 +216,8 @@ START_TEST(test_left_out) {
     hand_gene(&h, "vela", 1, true);  /* no periods */
     hand_gene(&h, "lyra", 1, false); /* cannot be told */
     hand_named(&h, "flash");
+    hand_species(&h, "aster.transcript", 0);
+    h.channels[0].recorded = false;
     hand_species(&h, "vela.transcript", 1);
     hand_species(&h, "lyra.transcript", 2);
     hand_record(&h, &record, 0);
