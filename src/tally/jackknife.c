@@ -136,7 +136,7 @@ tarry_estimate tarry_jackknife_share(const tarry_jackknife *jackknife, const dou
         total += totals[g];
     }
     double replicates[TARRY_JACKKNIFE_MOST] = {0};
-    int at_border = count <= 0.0 || count >= total;
+    int at_border = 0;
     for (size_t g = 0; g < n; g++) {
         const double left = count - counts[g], of = total - totals[g];
         replicates[g] = left / of;

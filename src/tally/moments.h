@@ -13,7 +13,7 @@ static inline void tarry_moments_of(double mean, double variance, double figures
     variance = variance < 0.0 ? 0.0 : variance;
     figures[TARRY_MEAN] = mean;
     figures[TARRY_SD] = sqrt(variance);
-    figures[TARRY_FANO] = mean > 0.0 ? variance / mean : NAN;
+    figures[TARRY_FANO] = variance / mean;
     figures[TARRY_CV2] = mean > 0.0 || mean < 0.0 ? variance / (mean * mean) : NAN;
 }
 

@@ -140,6 +140,13 @@ START_TEST(no_interval_where_none_can_be) {
         ck_assert(e.value == 0.0 && (scale == TARRY_SCALE_PLAIN ? e.low == 0.0 : isnan(e.low)));
         ck_assert(isfinite(tarry_jackknife_estimate(&three, 0.4, beyond, scale).high));
     }
+    for (double x = 0.01; x < 1.0; x += 0.01) { /* not a rounding off the value */
+        const double like[3] = {x, x, x};
+        for (int s = TARRY_SCALE_PLAIN; s <= TARRY_SCALE_LOGLOG; s++) {
+            const tarry_estimate e = tarry_jackknife_estimate(&three, x, like, (tarry_scale)s);
+            ck_assert(e.low == x && e.high == x);
+        }
+    }
     assert_none(tarry_jackknife_estimate(&three, 1.0, same, TARRY_SCALE_LOGIT));
     assert_none(tarry_jackknife_estimate(&three, 1.0, same, TARRY_SCALE_LOGLOG));
     assert_none(tarry_jackknife_estimate(&three, -0.5, same, TARRY_SCALE_LOG));
@@ -285,6 +292,9 @@ START_TEST(real_bins_hold_all_values) {
         values[i] = gsl_ran_gaussian(rng, 0.3) + (i % 10 == 0 ? gsl_ran_exponential(rng, 20) : 0);
     gsl_rng_free(rng);
     reals all = count_reals(values, N_REALS, 1, 0);
+    const double width = all.form.width;
+    ck_assert_double_eq(all.form.lowest, floor(gsl_stats_min(values, 1, N_REALS) / width));
+    ck_assert_double_eq(all.form.highest, floor(gsl_stats_max(values, 1, N_REALS) / width));
     const int n = (int)(all.form.highest - all.form.lowest) + 1;
     ck_assert_int_le(n, TARRY_REAL_BINS);
     ck_assert_int_gt(n, TARRY_REAL_BINS / 2 - 1); /* no wider than needed */

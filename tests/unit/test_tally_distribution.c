@@ -161,6 +161,7 @@ START_TEST(signals_against_a_histogram) {
         const double centre = hand_number(table, row, "count");
         const double width = hand_number(table, row, "width");
         ck_assert_double_eq(width, 0.125); /* 11.5 or so in at most 128 bins: 92 of them */
+        ck_assert_double_gt(hand_number(table, row, "probability"), 0);
         gsl_histogram *histogram = gsl_histogram_alloc(1);
         gsl_histogram_set_ranges_uniform(histogram, centre - width / 2, centre + width / 2);
         for (size_t i = 0; i < MOST_CELLS * N_FRAMES; i++)
@@ -175,6 +176,26 @@ START_TEST(signals_against_a_histogram) {
     assert_within(all, 1, 1e-12);
     tarry_results_free(results);
     records_release(records, MOST_CELLS);
+}
+END_TEST
+
+START_TEST(windows_hold_their_frames) {
+    tarry_record records[5];
+    hand h;
+    names_init(&h);
+    hand_windows(&h, (const double[]){0, 3, 6}, 2); /* frames 0, 1 and 2, 3 */
+    records_init(&h, records, 5);
+    for (size_t c = 0; c < 5; c++)
+        for (size_t i = 0; i < N_FRAMES; i++)
+            records[c].frames[i] = 10 * (double)i;
+    tarry_results *results = hand_results(&h, &tarry_tally_distribution, records, 5);
+    const tarry_table *table = tarry_results_table(results, TARRY_TABLE_distribution);
+    for (size_t i = 0; i < N_FRAMES; i++) {
+        const size_t row = bin_row(table, "vela.transcript", i < 2 ? "w1" : "w2", 10 * (double)i);
+        ck_assert_double_eq(hand_number(table, row, "probability"), 0.5);
+    }
+    tarry_results_free(results);
+    records_release(records, 5);
 }
 END_TEST
 
@@ -222,8 +243,11 @@ START_TEST(lags_against_gsl) {
     hand_init(&h, 0, 10, 2);
     hand_gene(&h, "vela", 2, true);
     hand_windows(&h, (const double[]){0, 4, 10}, 2);
-    h.windows[1].spans.from = 0; /* w2 is all of it now */
-    h.windows[1].from = 0;
+    h.windows[2] = h.windows[1];
+    h.windows[2].name = "all";
+    h.windows[2].from = 0;
+    h.windows[2].spans.from = 0;
+    h.network.run.n_windows = 3;
     h.network.lags = lags;
     h.network.n_lags = N_LAGS;
     records_init(&h, records, 2);
@@ -232,12 +256,12 @@ START_TEST(lags_against_gsl) {
             lag_add(&records[i % 2], 2, STAGE, span, lengths[span][i]);
             lag_add(&records[i % 2], 2, i < 2 ? DWELL_A : DWELL_B, span, lengths[span][i]);
         }
-    records[0].lags[0].pending = 12; /* span 1 is 4 long: 12 of 2 x 4 */
-    records[1].lags[1].pending = 8;  /* w2: 12 + 8 of 2 x 10 */
+    records[0].lags[0].pending = 12; /* the first span is 4 long: 12 of 2 x 4 */
+    records[1].lags[1].pending = 24; /* the second 6: 24 of 2 x 6 */
     records[1].lags[1].lost = 3;
     tarry_results *results = hand_results(&h, &tarry_tally_transit, records, 2);
     const tarry_table *table = tarry_results_table(results, TARRY_TABLE_transit);
-    ck_assert_uint_eq(tarry_table_n_rows(table), 4); /* the alleles' dwells are one */
+    ck_assert_uint_eq(tarry_table_n_rows(table), 6); /* the alleles' dwells are one */
     size_t row = hand_row(table, "vela.nascent", "elongation", "w1");
     ck_assert_double_eq(hand_number(table, row, "mean_pending"), 1.5);
     ck_assert_double_eq(hand_number(table, row, "drawn"), N_LENGTHS);
@@ -247,10 +271,12 @@ START_TEST(lags_against_gsl) {
                   1e-13);
     ck_assert_double_eq(hand_number(table, row, "lost"), 0);
     row = hand_row(table, "vela.nascent", "elongation", "w2");
-    ck_assert_double_eq(hand_number(table, row, "mean_pending"), 1.0);
+    ck_assert_double_eq(hand_number(table, row, "mean_pending"), 2);
+    row = hand_row(table, "vela.nascent", "elongation", "all");
+    ck_assert_double_eq(hand_number(table, row, "mean_pending"), 1.8);
     ck_assert_double_eq(hand_number(table, row, "lost"), 3);
     for (int i = 0; i < 2; i++) {
-        row = hand_row(table, i ? "vela.shut" : "vela.nascent", i ? "rest" : "elongation", "w2");
+        row = hand_row(table, i ? "vela.shut" : "vela.nascent", i ? "rest" : "elongation", "all");
         ck_assert_double_eq(hand_number(table, row, "drawn"), 2 * N_LENGTHS);
         assert_within(hand_number(table, row, "mean_drawn"),
                       gsl_stats_mean(lengths[0], 1, 2 * N_LENGTHS), 1e-14);
@@ -379,6 +405,7 @@ int main(void) {
         {"counts by hand", counts_by_hand},
         {"large counts share bins", large_counts_share_bins},
         {"signals against a histogram", signals_against_a_histogram},
+        {"windows hold their frames", windows_hold_their_frames},
         {"not recorded is left out", not_recorded_is_left_out},
         {"lags against GSL", lags_against_gsl},
         {"lags at the edges", lags_at_the_edges},

@@ -196,6 +196,7 @@ START_TEST(rows_lie_in_order) {
         tarry_record_release(&f.records[c]);
         hand_record(&f.h, &f.records[c], (int64_t)c);
     }
+    *frame_of(&f, 2, 1, 0) = 6; /* the signal's, the protein having no frames */
     tarry_results *results = hand_results(&f.h, &tarry_tally_moments, f.records, f.n);
     const tarry_table *means = tarry_results_table(results, TARRY_TABLE_means);
     const double times[] = {0, 1.25, 2.5, 5, f.snapshots[1], 10, 1.25, f.snapshots[1], 10,
@@ -205,6 +206,7 @@ START_TEST(rows_lie_in_order) {
     for (size_t row = 0; row < n; row++)
         ck_assert_double_eq(hand_number(means, row, "time"), times[row]);
     ck_assert_str_eq(tarry_table_text(means, 6, 0), "vela.protein");
+    ck_assert_double_eq(hand_number(means, row_at(means, "spot", 0), "mean"), 2);
     tarry_results_free(results);
     films_release(&f);
 }
