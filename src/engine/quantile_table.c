@@ -68,6 +68,8 @@ static void go_to(walk *w, double v) {
     const double bend = w->log_step != 0 ? (w->slope - w->slope_before) / w->log_step : 0;
     if (w->x > nothing_share * w->mean)
         w->x = polish(w, v, w->x * exp(log_step * (w->slope + 0.5 * bend * log_step)));
+    else if (w->side == 1) /* a median of nothing, but the tail comes */
+        w->x = tarry_law_quantile(w->law, 1 - v, v);
     w->v = v;
     w->slope_before = w->slope;
     w->log_step = log_step;
