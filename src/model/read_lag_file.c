@@ -198,9 +198,11 @@ int tarry_read_lag_file(tarry_builder *builder, const tarry_node *file, tarry_la
     if (rows.path == NULL)
         return tarry_fail_memory(error, "a table of lags");
     tarry_text text = {0};
-    int code = tarry_file_read(rows.path, LARGEST_FILE, &text, error);
+    tarry_error fault = {0};
+    int code = tarry_file_read(rows.path, LARGEST_FILE, &text, &fault);
     if (code != 0)
-        tarry_error_context(error, "the table of lags '%s'", file->text);
+        code = tarry_fail_at(error, code == TARRY_MEMORY ? TARRY_MEMORY : TARRY_INPUT, file->place,
+                             "the table of lags '%s': %s", rows.path, fault.message);
     else if (text.size == 0 || strlen(text.data) != text.size)
         code = tarry_fail_at(error, TARRY_INPUT, file->place, "the table of lags '%s' is %s",
                              file->text, text.size == 0 ? "empty" : "no text");
