@@ -327,12 +327,15 @@ START_TEST(real_bins_at_the_edges) {
     tarry_real_bins_add(&r.form, r.bins, 1.0, 0.0);
     tarry_real_bins_add(&r.form, r.bins, 1.0, -0.5);
     ck_assert(r.form.width == 1.0 && r.form.lowest == -1.0 && r.form.highest == 0.0);
+    tarry_real_bins_add(&r.form, r.bins, 1.0, 3.5); /* in 3 .. 4, and in 2 .. 4 when widened */
+    tarry_real_bins_add(&r.form, r.bins, 1.0, -125.0);
+    ck_assert(r.form.width == 2.0 && r.form.lowest == -63.0 && r.form.highest == 1.0);
     tarry_real_bins_add(&r.form, r.bins, 1.0, 1e300);
     tarry_real_bins_add(&r.form, r.bins, 1.0, -1e300);
     double sum = 0.0;
     for (int i = 0; i < TARRY_REAL_BINS; i++)
         sum += r.bins[i];
-    ck_assert_double_eq(sum, 4.0);
+    ck_assert_double_eq(sum, 6.0);
     ck_assert(r.form.highest - r.form.lowest < TARRY_REAL_BINS);
     reals empty = {0};
     tarry_real_bins_align(&empty.form, empty.bins, &r.form, r.bins);
