@@ -1,0 +1,200 @@
+/* `signals:`: what an instrument sees. A signal is a weighted sum of counts and of molecules under
+ * way, each of which shines by the share of its own dwell that it has spent (a ramp). All numbers
+ * in it hold for the whole run. */
+#include "model/builder.h"
+
+#include "base/error.h"
+#include "model/expect.h"
+
+static const char *const SIGNAL_KEYS[] = {"of",         "sum",   "ramp",  "brightness",
+                                          "background", "noise", "allele"};
+static const char *const SIGNAL_LATER[] = {"allele"};
+
+typedef struct signal_reader {
+    tarry_builder *builder;
+    uint32_t index;
+} signal_reader;
+
+/* ---- numbers ----------------------------------------------------------------------------------
+ */
+
+/* The number under `key`; `value` stays where there is none. */
+static int read_number(signal_reader *in, const tarry_node *map, const char *key, double *value,
+                       tarry_error *error) {
+    const tarry_node *node = tarry_node_get(map, key);
+    if (node == NULL)
+        return 0;
+    return tarry_builder_constant_value(in->builder, node, TARRY_PURE, key, value, error);
+}
+
+static int read_noise(signal_reader *in, const tarry_node *map, double *noise, tarry_error *error) {
+    static const char *const keys[] = {"fixed", "share"};
+    static const char *const later[] = {"share"};
+    const tarry_node *node = tarry_node_get(map, "noise");
+    const char *key = "noise";
+    int code = 0;
+    if (node == NULL)
+        return 0;
+    if (node->kind == TARRY_NODE_MAP) {
+        code = tarry_expect_keys(node, "'noise'", keys, 2, error);
+        if (code == 0)
+            code = tarry_expect_not_yet(node, "'noise'", later, 1, error);
+        map = node;
+        key = "fixed";
+    }
+    if (code == 0)
+        code = read_number(in, map, key, noise, error);
+    if (code == 0 && *noise < 0)
+        code = tarry_fail_at(error, TARRY_INPUT, node->place,
+                             "'noise' is the sd of the read-out noise and not below 0");
+    return code;
+}
+
+/* ---- what is seen -----------------------------------------------------------------------------
+ */
+
+static int add_weight(signal_reader *in, uint32_t species, double weight, tarry_error *error) {
+    const tarry_weight row = {.species = species, .weight = weight};
+    return TARRY_APPEND(&in->builder->weights, row) == 0 ? 0 : tarry_fail_memory(error, "a signal");
+}
+
+static int read_fractions(signal_reader *in, const tarry_node *map, tarry_ramp *ramp,
+                          tarry_error *error) {
+    static const char *const keys[] = {"from", "to"};
+    const tarry_node *from = NULL, *to = NULL;
+    int code = tarry_expect_keys(map, "'ramp'", keys, 2, error);
+    if (code == 0)
+        code = tarry_expect_value(map, "'ramp'", "from", &from, error);
+    if (code == 0)
+        code = tarry_expect_value(map, "'ramp'", "to", &to, error);
+    if (code == 0)
+        code = read_number(in, map, "from", &ramp->from, error);
+    if (code == 0)
+        code = read_number(in, map, "to", &ramp->to, error);
+    if (code == 0 && !(ramp->from >= 0 && ramp->from <= ramp->to && ramp->to <= 1))
+        code = tarry_fail_at(error, TARRY_INPUT, map->place,
+                             "a ramp goes from a fraction of the dwell to a later one, both from 0 "
+                             "to 1, as in ramp: {from: 0.1, to: 0.4}; this one goes from %.9g to "
+                             "%.9g",
+                             ramp->from, ramp->to);
+    return code;
+}
+
+/* One species with a ramp, or with a plain weight where there is none. */
+static int add_part(signal_reader *in, const tarry_node *map, uint32_t species, tarry_place place,
+                    double brightness, tarry_error *error) {
+    tarry_builder *builder = in->builder;
+    const tarry_node *fractions = tarry_node_get(map, "ramp");
+    if (fractions == NULL)
+        return add_weight(in, species, brightness, error);
+    const int32_t lag = builder->stage_lags.items[species];
+    if (lag == TARRY_NONE)
+        return tarry_fail_at(error, TARRY_INPUT, place,
+                             "'%s' is no stage, so its molecules have no dwell that a ramp could "
+                             "follow; leave the ramp out",
+                             builder->species.items[species].name);
+    tarry_ramp ramp = {.signal = in->index, .lag = (uint32_t)lag, .brightness = brightness};
+    const int code = read_fractions(in, fractions, &ramp, error);
+    if (code != 0)
+        return code;
+    return TARRY_APPEND(&builder->ramps, ramp) == 0 ? 0 : tarry_fail_memory(error, "a signal");
+}
+
+static int read_of(signal_reader *in, const tarry_node *signal, const tarry_node *of,
+                   tarry_error *error) {
+    double brightness = 1;
+    uint32_t species = 0;
+    int code = tarry_expect_scalar(of, "'of'", error);
+    if (code == 0)
+        code = tarry_builder_need(in->builder, TARRY_SYMBOL_SPECIES, of->text, of->place, &species,
+                                  error);
+    if (code == 0)
+        code = read_number(in, signal, "brightness", &brightness, error);
+    return code != 0 ? code : add_part(in, signal, species, of->place, brightness, error);
+}
+
+/* `NAME: weight` or `NAME: {ramp: ..., brightness: ...}`. */
+static int read_term(signal_reader *in, const tarry_entry *entry, tarry_error *error) {
+    static const char *const keys[] = {"ramp", "brightness"};
+    double weight = 1;
+    uint32_t species = 0;
+    int code = tarry_builder_need(in->builder, TARRY_SYMBOL_SPECIES, entry->key, entry->place,
+                                  &species, error);
+    if (code != 0)
+        return code;
+    if (entry->node->kind == TARRY_NODE_SCALAR) {
+        code = tarry_builder_constant_value(in->builder, entry->node, TARRY_PURE, "a weight",
+                                            &weight, error);
+        return code != 0 ? code : add_weight(in, species, weight, error);
+    }
+    code = tarry_expect_keys(entry->node, entry->key, keys, 2, error);
+    if (code == 0)
+        code = read_number(in, entry->node, "brightness", &weight, error);
+    return code != 0 ? code : add_part(in, entry->node, species, entry->place, weight, error);
+}
+
+static int read_sum(signal_reader *in, const tarry_node *signal, const tarry_node *sum,
+                    tarry_error *error) {
+    static const char *const of_only[] = {"ramp", "brightness"};
+    int code = tarry_expect_map(sum, "'sum'", error);
+    for (size_t i = 0; code == 0 && i < 2; i++)
+        if (tarry_node_get(signal, of_only[i]) != NULL)
+            return tarry_fail_at(error, TARRY_INPUT, tarry_key_place(signal, of_only[i]),
+                                 "'%s' goes with 'of'; in a sum each species has its own, as in "
+                                 "sum: {vela.nascent: {ramp: {from: 0.1, to: 0.4}}}",
+                                 of_only[i]);
+    if (code == 0 && sum->n == 0)
+        code = tarry_fail_at(error, TARRY_INPUT, sum->place,
+                             "'sum' is empty; name species with their weights, as in sum: "
+                             "{vela.transcript: 1}");
+    for (size_t i = 0; code == 0 && i < sum->n; i++)
+        code = read_term(in, &sum->entries[i], error);
+    return code;
+}
+
+/* ---- a signal ---------------------------------------------------------------------------------
+ */
+
+static int read_signal(signal_reader *in, const tarry_entry *entry, tarry_error *error) {
+    tarry_builder *builder = in->builder;
+    const tarry_node *node = entry->node;
+    tarry_signal signal = {.name = entry->key, .place = entry->place};
+    signal.weights.from = (uint32_t)builder->weights.n;
+    int code = tarry_builder_check_name(entry->key, entry->place, "a signal", error);
+    if (code == 0)
+        code = tarry_builder_enter(builder, TARRY_SYMBOL_SIGNAL, entry->key, in->index,
+                                   entry->place, error);
+    if (code == 0)
+        code = tarry_expect_keys(node, entry->key, SIGNAL_KEYS, 7, error);
+    if (code == 0)
+        code = tarry_expect_not_yet(node, entry->key, SIGNAL_LATER, 1, error);
+    if (code != 0)
+        return code;
+    const tarry_node *of = tarry_node_get(node, "of"), *sum = tarry_node_get(node, "sum");
+    if ((of != NULL) == (sum != NULL))
+        return tarry_fail_at(error, TARRY_INPUT, node->place,
+                             "the signal '%s' needs either 'of', a stage or species, or 'sum', "
+                             "weights of several",
+                             entry->key);
+    code = of != NULL ? read_of(in, node, of, error) : read_sum(in, node, sum, error);
+    if (code == 0)
+        code = read_number(in, node, "background", &signal.background, error);
+    if (code == 0)
+        code = read_noise(in, node, &signal.noise, error);
+    signal.weights.to = (uint32_t)builder->weights.n;
+    if (code == 0 && TARRY_APPEND(&builder->signals, signal) != 0)
+        code = tarry_fail_memory(error, "a signal");
+    return code;
+}
+
+int tarry_read_signals(tarry_builder *builder, tarry_error *error) {
+    const tarry_node *map = tarry_node_get(builder->root, "signals");
+    if (map == NULL)
+        return 0;
+    int code = tarry_expect_map(map, "'signals'", error);
+    for (size_t i = 0; code == 0 && i < map->n; i++) {
+        signal_reader in = {.builder = builder, .index = (uint32_t)i};
+        code = read_signal(&in, &map->entries[i], error);
+    }
+    return code;
+}
