@@ -130,7 +130,7 @@ typedef struct tarry_draft {
     TARRY_LIST(tarry_demand) demands;
     TARRY_LIST(tarry_change) changes; /* any order, species may come several times */
     TARRY_LIST(tarry_amount) amounts;
-    TARRY_LIST(tarry_mark_rule) marks;
+    TARRY_LIST(tarry_mark_rule) marks; /* COUNT before OPEN and CLOSE */
     TARRY_LIST(uint32_t) schedules;
     bool skip_short;
 } tarry_draft;
@@ -163,7 +163,7 @@ typedef struct tarry_builder {
     TARRY_LIST(const char *) candidates;                  /* parameters and species */
 
     TARRY_LIST(tarry_builder_parameter) parameters;
-    double *values; /* of parameters before any step, by tarry_read_parameters, in the arena */
+    double *values;  /* of parameters before any step, by tarry_read_parameters, in the arena */
     uint32_t *order; /* of parameters: each after those it reads, by tarry_read_parameters */
 
     TARRY_LIST(tarry_source) rates;
@@ -273,7 +273,7 @@ int tarry_draft_mark(tarry_draft *draft, uint32_t track, tarry_mark_kind kind, t
 int tarry_draft_schedule(tarry_draft *draft, uint32_t lag, tarry_error *error);
 void tarry_draft_release(tarry_draft *draft);
 
-/* Put a draft into order (net changes ascending, COUNT first) and keep it as a new effect. */
+/* Put a draft into order (net changes ascending) and keep it as a new effect. */
 int tarry_builder_effect(tarry_builder *builder, tarry_draft *draft, uint32_t *index,
                          tarry_error *error);
 

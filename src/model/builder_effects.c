@@ -85,15 +85,10 @@ static int keep_amounts(tarry_builder *builder, const tarry_draft *draft, tarry_
     return 0;
 }
 
-/* COUNT goes before OPEN and CLOSE, so that an opening sees the counter after the same effect. */
 static int keep_marks(tarry_builder *builder, const tarry_draft *draft, tarry_error *error) {
-    for (int counts = 1; counts >= 0; counts--)
-        for (size_t i = 0; i < draft->marks.n; i++) {
-            if ((draft->marks.items[i].kind == TARRY_MARK_COUNT) != counts)
-                continue;
-            if (TARRY_APPEND(&builder->marks, draft->marks.items[i]) != 0)
-                return tarry_fail_memory(error, "an effect");
-        }
+    for (size_t i = 0; i < draft->marks.n; i++)
+        if (TARRY_APPEND(&builder->marks, draft->marks.items[i]) != 0)
+            return tarry_fail_memory(error, "an effect");
     return 0;
 }
 

@@ -183,6 +183,23 @@ START_TEST(plain_reactions) {
 }
 END_TEST
 
+/* What is used and made again does not change; shares that slip by rounding are put right. */
+START_TEST(catalysts_and_thirds) {
+    const tarry_network *network = network_of(
+        "species: {clasp: 1, pin: 0}\n"
+        "reactions: {go: {uses: {clasp: 1}, makes: {clasp: 1, pin: 1}, rate: 2}}\n"
+        "genes:\n"
+        "  mira: {promoter: {a: {lasts: 1, then: {b: 0.3333333, c: 0.3333333,"
+        " e: 0.3333333}}, b: {}, c: {}, e: {}}}\n");
+    ck_assert_str_eq(reactions_text(network), "0. go: linear 2 clasp(1+0), +1 pin\n");
+    const tarry_outcome *outcomes = &network->outcomes[network->lags[0].outcomes.from];
+    ck_assert_double_eq_tol(outcomes[0].cumulative, 1. / 3, 1e-15);
+    ck_assert_double_eq_tol(outcomes[1].cumulative, 2. / 3, 1e-15);
+    ck_assert(outcomes[2].cumulative == 1);
+    network_end();
+}
+END_TEST
+
 START_TEST(dependents_are_those_that_read) {
     const tarry_network *network = network_of("species: {a: 1, b: 1, c: 1}\n"
                                               "reactions:\n"
@@ -374,6 +391,7 @@ int main(void) {
         {"tracks and products of a gene", tracks_and_products_of_a_gene},
         {"states that last", states_that_last},
         {"plain reactions", plain_reactions},
+        {"catalysts and thirds", catalysts_and_thirds},
         {"dependents are those that read", dependents_are_those_that_read},
         {"a product with a lifetime made by others", a_product_with_a_lifetime_made_by_others},
         {"named delays are shared", named_delays_are_shared},

@@ -54,6 +54,7 @@ START_TEST(later) {
     refused("rate: 1, later: [{after: 1, rate: 1}]", 46, "has no key 'rate'");
     refused("rate: 1, later: [{after: 1, uses: {vela.young: 1}}]", 53, "by their gene alone");
     refused("rate: 1, later: [{after: 1, chance: 1.5}]", 54, "between 0 and 1; it is 1.5");
+    refused("rate: 1, later: [{after: 1, chance: log(0)}]", 54, "comes to no finite number");
     refused("rate: 1, later: [{after: 1, if_short: drop}]", 56, "stop or skip, not 'drop'");
     refused("rate: 1, later: [{after: 1, later: [{after: soon}]}]", 62,
             "no delay is called 'soon'; a delay is a name");
@@ -117,6 +118,8 @@ START_TEST(molecules_are_anonymous) {
     ck_assert(noted("  go: {rate: 1, later: [{after: 1, makes: {pin: 1}},"
                     " {after: 1, uses: {pin: 1}}]}\n",
                     "uses 'pin', which the reaction neither"));
+    ck_assert(
+        !noted("  go: {rate: 1, uses: {pin: 1}, later: [{after: 1, uses: {pin: 1}}]}\n", ":"));
     ck_assert(noted("  go: {rate: 1, makes: {pin: 1}, later: [{after: 1, uses: {pin: 1}}]}\n"
                     "  gone: {uses: {pin: 1}, rate: 1}\n",
                     "m.yaml:3:60: 'pin' waits for a completion of 'go' and is also removed by "
@@ -146,7 +149,7 @@ static const char *model_with(const char *lines, char *out, size_t size) {
 START_TEST(files_of_lags) {
     char text[2000];
     const tarry_law *law = &network_of(
-                                model_with("from,to,weight\n1,2,3\n2, 4 ,6\n\n7,60 s * 8,3\r\n",
+                                model_with("from, to ,weight\n1,2,3\n2, 4 ,6\n\n7,60 s * 8,3\r\n",
                                            text, sizeof text))
                                 ->segments[0]
                                 .laws[0];
