@@ -70,7 +70,7 @@ static int make_default(const tarry_builder *builder, tarry_window *windows, uin
     *n = 0;
     for (size_t i = 1; i <= builder->segments.n; i++) {
         const double to = i < builder->segments.n ? builder->segments.items[i].start : until;
-        if (to > from && (to < until || i == builder->segments.n)) {
+        if (to > from) {
             windows[*n] = (tarry_window){.from = from, .to = to};
             windows[*n].name = tarry_arena_format(builder->arena, "w%u", (unsigned)*n + 1);
             if (windows[(*n)++].name == NULL)

@@ -113,6 +113,9 @@ START_TEST(what_the_command_line_may_not_give) {
     refused_set(text, "k_open", "1 / lag * lag", 0, 0, "is a pure number where a rate");
     refused_set(text, "k_open", "3 nM", 0, 0, "stochastic constants in counts");
     refused_set(text, "k_open", "", 0, 0, "--set k_open=: a value is missing here");
+    const tarry_override two[] = {{"--set", 1, "a", "3 min"}, {"--set", 1, "b", "a + 1 kb"}};
+    reading_refused("parameters: {a: 1, b: 2}\n", two, 2, readers, 1, TARRY_INPUT, 0, 0,
+                    "--set b=a + 1 kb: a time and a length cannot be added");
     refused_set(text, "lag", "1 / 0", 0, 0, "'lag', which is 1 / 0, comes to no finite number");
 }
 END_TEST

@@ -113,6 +113,19 @@ START_TEST(what_is_given) {
 }
 END_TEST
 
+/* 0.3 / 0.1 is 2.9999999999999996 in binary: three steps all the same. */
+START_TEST(multiples_that_are_not_binary) {
+    reading in;
+    const tarry_run_plan *plan = read_plan(&in, "run: {until: 0.3, every: 0.1}\n", NULL, 0);
+    ck_assert_uint_eq(plan->n_frames, 4);
+    ck_assert(plan->every == 0.3 / 3);
+    reading_end(&in);
+    plan = read_plan(&in, "run: {until: 1, every: 0.1, lags: 0.3}\n", NULL, 0);
+    ck_assert_uint_eq(plan->n_lags, 4);
+    reading_end(&in);
+}
+END_TEST
+
 START_TEST(the_command_line_beats_the_file) {
     const tarry_override given[] = {
         {"--cells", 0, "cells", "7"},       {"--until", 0, "until", "2 h"},
@@ -339,6 +352,7 @@ int main(void) {
     const test_entry tests[] = {
         {"defaults", defaults},
         {"what_is_given", what_is_given},
+        {"multiples_that_are_not_binary", multiples_that_are_not_binary},
         {"the_command_line_beats_the_file", the_command_line_beats_the_file},
         {"wrong_times", wrong_times},
         {"wrong_numbers", wrong_numbers},
