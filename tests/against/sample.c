@@ -3,6 +3,7 @@
 #include "base/memory.h"
 #include "engine/cell.h"
 #include "model/model.h"
+#include "support.h"
 
 #include <check.h>
 #include <gsl/gsl_cdf.h>
@@ -137,7 +138,7 @@ void check_mean_and_sd(const char *what, const sample_cells *sample, const char 
 
 static void count(const double *values, size_t n, double *counts, size_t n_bins) {
     for (size_t i = 0; i < n; i++) {
-        ck_assert(values[i] >= 0 && values[i] == floor(values[i]));
+        ASSERT_FAST(values[i] >= 0 && values[i] == floor(values[i]), "%g is no count", values[i]);
         counts[values[i] < (double)n_bins ? (size_t)values[i] : n_bins]++;
     }
 }
