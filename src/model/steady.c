@@ -52,8 +52,8 @@ static int fill_chances(promoter_graph *graph, tarry_error *error) {
                                  "the gene '%s' cannot have 'start: steady', since this rate reads "
                                  "species; name a state or give weights, as start: {%s: 1}",
                                  graph->gene->name, graph->states[0].name);
-        graph->chance[move->from * n + move->to] += move->timed ? move->share
-                                                                : segment->rates[move->rate];
+        graph->chance[move->from * n + move->to] = move->timed ? move->share
+                                                               : segment->rates[move->rate];
     }
     for (uint32_t i = 0; i < n; i++) {
         double sum = 0;
