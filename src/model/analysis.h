@@ -64,9 +64,10 @@ enum { TARRY_DISTANCES_MOST = 200 }; /* genes that differ */
 int tarry_analysis_distances(const tarry_network *network, double settle, tarry_arena *arena,
                              tarry_distances *distances, tarry_error *error);
 
-/* The time after the start at which every mean that can be worked out is, and stays, within
- * `tolerance` of its steady value, to 1 % of that time. *n_unknown: products for which it cannot.
- */
+/* The time after the start from which on every mean that can be worked out is within `tolerance` of
+ * its steady value, to 1 % of that time. (Looked for at times that double; a mean that strays again
+ * between them goes unseen.) *n_unknown: products whose mean cannot be worked out. TARRY_NUMERIC
+ * where no such time is found. */
 int tarry_analysis_settle(const tarry_network *network, double tolerance, double *settle,
                           size_t *n_unknown, tarry_error *error);
 

@@ -11,8 +11,6 @@
 #include <stdlib.h>
 #include <string.h>
 
-enum { MOST_STEPS = 32 }; /* between initiation and product */
-
 /* ---- the index ------------------------------------------------------------------------------ */
 
 void tarry_flow_index_release(tarry_flow_index *index) {
@@ -378,23 +376,12 @@ static void check_product(reader *r, size_t product) {
 
 /* The way from initiation to a molecule's present place. */
 typedef struct trail {
-    tarry_flow_step steps[MOST_STEPS];
+    tarry_flow_step steps[TARRY_FLOW_STEPS];
     size_t n_steps;
     size_t depth; /* products on the way */
     double weight;
     const char *tainted; /* a product on the way whose mean cannot be worked out, or NULL */
 } trail;
-
-static void keep_path(reader *r, tarry_flow_product *p, const trail *way) {
-    tarry_flow_step *steps = tarry_arena_calloc(r->arena, way->n_steps, sizeof *steps);
-    if (!steps || tarry_arena_grow(r->arena, (void **)&p->paths, &p->paths_capacity, p->n_paths + 1,
-                                   sizeof *p->paths)) {
-        r->short_of_memory = true;
-        return;
-    }
-    memcpy(steps, way->steps, way->n_steps * sizeof *steps);
-    p->paths[p->n_paths++] = (tarry_flow_path){steps, way->n_steps, way->weight};
-}
 
 static void enter(reader *r, size_t product, uint32_t effect, trail way);
 
@@ -470,11 +457,11 @@ static void enter(reader *r, size_t product, uint32_t effect, trail way) {
     const int32_t lag = stage_lag(r->network, effect, p->species);
     if (!p->why && way.tainted)
         p->why = say(r, "it is made from '%s', whose mean cannot be worked out", way.tainted);
-    if (!p->why && way.depth + 2 > MOST_STEPS)
+    if (!p->why && way.depth + 2 > TARRY_FLOW_STEPS)
         p->why = "it is made in too many steps";
     if (!p->why)
         p->why = dwell_in(r, product, lag, &step, &mean);
-    if (++way.depth + 1 > MOST_STEPS || r->short_of_memory)
+    if (++way.depth + 1 > TARRY_FLOW_STEPS || r->short_of_memory)
         return;
     if (p->why)
         way.tainted = r->network->species[p->species].name;
@@ -482,7 +469,7 @@ static void enter(reader *r, size_t product, uint32_t effect, trail way) {
     if (!p->why) {
         met.steps[met.n_steps++] = step;
         met.weight *= mean;
-        keep_path(r, p, &met);
+        r->short_of_memory |= tarry_flow_add_path(p, met.steps, met.n_steps, met.weight, r->arena);
     }
     if (lag != TARRY_NONE)
         leave_stage(r, p->species, &r->network->lags[lag], &way);

@@ -21,7 +21,8 @@ typedef struct tarry_flow_step {
 } tarry_flow_step;
 
 /* The molecules of a product that came one way: `weight` in the steady state for each initiation
- * per unit of time. The time since initiation is the sum of the independent steps. */
+ * per unit of time. The time since initiation is the sum of the independent steps, whose laws are
+ * no totals. */
 typedef struct tarry_flow_path {
     const tarry_flow_step *steps;
     size_t n_steps;
@@ -68,6 +69,20 @@ void tarry_flow_index_release(tarry_flow_index *index);
 /* The flow of a gene (not a named track), in `arena`. 0 or TARRY_MEMORY. */
 int tarry_flow_read(const tarry_flow_index *index, uint32_t gene, tarry_arena *arena,
                     tarry_flow *flow, tarry_error *error);
+
+enum { TARRY_FLOW_STEPS = 32 }; /* most steps of a path */
+
+/* Add a path (analysis_paths.c): a lag that is a total of several becomes a step for each part, and
+ * a molecule that is met within a total is met in one of its parts: a path for each. Sets `why`
+ * where that makes too many steps or paths. 0, or 1 when memory is short. */
+int tarry_flow_add_path(tarry_flow_product *product, const tarry_flow_step *steps, size_t n_steps,
+                        double weight, tarry_arena *arena);
+
+/* 1 - mean/steady mean, a time t after the start, of the molecules that come by this path, `rate`
+ * being the mean rate of initiation in the steady state. *too_long: it has too many stages to be
+ * worked out. Errors: TARRY_MEMORY, TARRY_NUMERIC. */
+int tarry_flow_deficit(const tarry_flow *flow, const tarry_flow_path *path, double rate, double t,
+                       double *deficit, bool *too_long, tarry_error *error);
 
 /* The reactant and rate constant of a reaction with rate * count; false where it is not of that
  * form. *reads: its rate reads species. */

@@ -6,20 +6,16 @@
  * promoter its dwell. Random amounts force a weight of 0. The alleles' hidden states are left to
  * their sums. The protocol is not looked at but for the time until which a sum holds.
  *
- * Each group of connected unknowns is solved by itself, by exact elimination in whole numbers kept
- * small by their greatest common divisors; products are formed in 128 bits and checked. The basis
- * found is then made readable: sums and differences of its vectors, until as many as possible have
- * no negative weight and none contains another. */
+ * Each group of connected unknowns is solved by itself, in whole numbers (nullspace.h). */
 
 #include "model/analysis.h"
 
 #include "base/error.h"
+#include "model/nullspace.h"
 
 #include <math.h>
 #include <stdlib.h>
 #include <string.h>
-
-__extension__ typedef __int128 wide;
 
 /* One thing that can happen: entries[from .. to). */
 typedef struct entry {
@@ -162,207 +158,12 @@ static void join_rows(solver *s) {
             join(s->parent, s->entries[s->row_starts[r]].unknown, s->entries[i].unknown);
 }
 
-/* ---- whole numbers -------------------------------------------------------------------------- */
-
-static uint64_t magnitude(int64_t x) {
-    return x < 0 ? (uint64_t)0 - (uint64_t)x : (uint64_t)x;
-}
-
-static uint64_t divisor(uint64_t a, uint64_t b) {
-    while (b) {
-        const uint64_t rest = a % b;
-        a = b;
-        b = rest;
-    }
-    return a;
-}
-
-/* row = a * row + b * other, over its greatest common divisor. False where a number does not fit;
- * the row is then spoilt. */
-static bool combine(int64_t *row, int64_t a, const int64_t *other, int64_t b, size_t n) {
-    uint64_t common = divisor(magnitude(a), magnitude(b));
-    if (common > INT64_MAX)
-        return false;
-    a /= (int64_t)common;
-    b /= (int64_t)common;
-    common = 0;
-    for (size_t i = 0; i < n; i++) {
-        const wide value = (wide)a * row[i] + (wide)b * other[i];
-        if (value > INT64_MAX || value < -INT64_MAX)
-            return false;
-        row[i] = (int64_t)value;
-        common = divisor(magnitude(row[i]), common);
-    }
-    for (size_t i = 0; i < n && common > 1; i++)
-        row[i] /= (int64_t)common;
-    return true;
-}
-
 /* ---- one group ------------------------------------------------------------------------------ */
 
 typedef struct group {
-    size_t n;           /* unknowns */
-    uint32_t *unknowns; /* ascending */
-    int64_t *pivots;    /* [column][n]: the row that leads in this column, where `leads` */
-    bool *leads;        /* [column] */
-    int64_t *basis;     /* [n_basis][n] */
-    size_t n_basis;
-    int64_t *row; /* scratch */
+    size_t n;                 /* unknowns */
+    const uint32_t *unknowns; /* ascending */
 } group;
-
-static void group_release(group *g) {
-    free(g->unknowns);
-    free(g->pivots);
-    free(g->leads);
-    free(g->basis);
-    free(g->row);
-}
-
-static int group_init(group *g, size_t n) {
-    g->n = n;
-    g->unknowns = tarry_calloc(n, sizeof *g->unknowns);
-    g->pivots = tarry_calloc(n, n * sizeof *g->pivots);
-    g->leads = tarry_calloc(n, sizeof *g->leads);
-    g->basis = tarry_calloc(n, n * sizeof *g->basis);
-    g->row = tarry_calloc(n, sizeof *g->row);
-    return !g->unknowns || !g->pivots || !g->leads || !g->basis || !g->row;
-}
-
-/* Take the equation g->row in: reduced by what is known, it is spent or leads in a new column. */
-static bool take_row(group *g) {
-    for (size_t c = 0; c < g->n; c++) {
-        if (g->row[c] == 0)
-            continue;
-        int64_t *pivot = g->pivots + c * g->n;
-        if (!g->leads[c]) {
-            memcpy(pivot, g->row, g->n * sizeof *pivot);
-            g->leads[c] = true;
-            return true;
-        }
-        if (!combine(g->row, pivot[c], pivot, -g->row[c], g->n))
-            return false;
-    }
-    return true;
-}
-
-/* Clear every leading column above its own row. */
-static bool reduce_back(group *g) {
-    for (size_t c = g->n; c-- > 0;) {
-        if (!g->leads[c])
-            continue;
-        const int64_t *pivot = g->pivots + c * g->n;
-        for (size_t above = 0; above < c; above++) {
-            int64_t *row = g->pivots + above * g->n;
-            if (g->leads[above] && row[c] != 0 && !combine(row, pivot[c], pivot, -row[c], g->n))
-                return false;
-        }
-    }
-    return true;
-}
-
-/* The solution with weight in one free column and in leading ones: row[c] y[c] = -row[f] y[f]. */
-static bool solve_free(const group *g, size_t f, int64_t *y) {
-    uint64_t scale = 1;
-    for (size_t c = 0; c < f; c++) {
-        const int64_t *row = g->pivots + c * g->n;
-        if (!g->leads[c] || row[f] == 0)
-            continue;
-        const uint64_t lead = magnitude(row[c]) / divisor(magnitude(row[c]), magnitude(row[f]));
-        const uint64_t factor = lead / divisor(lead, scale);
-        if (scale > (uint64_t)INT32_MAX || factor > (uint64_t)INT32_MAX)
-            return false;
-        scale *= factor;
-    }
-    memset(y, 0, g->n * sizeof *y);
-    if (scale > (uint64_t)INT64_MAX)
-        return false;
-    y[f] = (int64_t)scale;
-    for (size_t c = 0; c < f; c++) {
-        const int64_t *row = g->pivots + c * g->n;
-        if (!g->leads[c] || row[f] == 0)
-            continue;
-        const wide value = -(wide)row[f] * (int64_t)scale / row[c];
-        if (value > INT64_MAX || value < -INT64_MAX)
-            return false;
-        y[c] = (int64_t)value;
-    }
-    return true;
-}
-
-static bool solve_group(group *g) {
-    if (!reduce_back(g))
-        return false;
-    for (size_t f = 0; f < g->n; f++)
-        if (!g->leads[f] && !solve_free(g, f, g->basis + g->n_basis++ * g->n))
-            return false;
-    return true;
-}
-
-/* ---- a readable basis ----------------------------------------------------------------------- */
-
-static bool is_positive(const int64_t *y, size_t n) {
-    for (size_t i = 0; i < n; i++)
-        if (y[i] < 0)
-            return false;
-    return true;
-}
-
-/* Add vectors without negative weights until this one has none either, where that can be done. */
-static void lift(group *g, size_t index) {
-    const size_t n = g->n;
-    int64_t *y = g->basis + index * n;
-    for (size_t i = 0; i < n; i++) {
-        if (y[i] >= 0)
-            continue;
-        for (size_t k = 0; k < g->n_basis; k++) {
-            const int64_t *other = g->basis + k * n;
-            if (k == index || other[i] <= 0 || !is_positive(other, n))
-                continue;
-            memcpy(g->row, y, n * sizeof *y);
-            if (combine(g->row, other[i], other, -y[i], n))
-                memcpy(y, g->row, n * sizeof *y);
-            break;
-        }
-    }
-}
-
-/* Take another vector off as often as it fits. */
-static void take_off(group *g, size_t index, size_t k) {
-    int64_t *y = g->basis + index * g->n;
-    const int64_t *other = g->basis + k * g->n;
-    int64_t times = INT64_MAX;
-    for (size_t i = 0; i < g->n; i++)
-        if (other[i] > 0 && y[i] / other[i] < times)
-            times = y[i] / other[i];
-    if (times > 0)
-        combine(y, 1, other, -times, g->n);
-}
-
-/* The first weight is positive; a vector without a positive weight changes its sign. */
-static void orient(int64_t *y, size_t n) {
-    bool negative = false, seen = false;
-    for (size_t i = 0; i < n && !seen; i++) {
-        seen = y[i] != 0;
-        negative = y[i] < 0;
-    }
-    for (size_t i = 0; i < n && negative; i++)
-        y[i] = -y[i];
-}
-
-/* Two rounds settle all but contrived cases; every step keeps the basis a basis. */
-static void tidy_basis(group *g) {
-    const size_t n = g->n;
-    for (int round = 0; round < 2; round++) {
-        for (size_t b = 0; b < g->n_basis; b++) {
-            orient(g->basis + b * n, n);
-            lift(g, b);
-        }
-        for (size_t b = 0; b < g->n_basis; b++)
-            for (size_t k = 0; k < g->n_basis; k++)
-                if (k != b && is_positive(g->basis + b * n, n) && is_positive(g->basis + k * n, n))
-                    take_off(g, b, k);
-    }
-}
 
 /* ---- values --------------------------------------------------------------------------------- */
 
@@ -552,38 +353,34 @@ static void order_fill(order *o, const solver *s) {
     }
 }
 
-static bool eliminate(const solver *s, const order *o, uint32_t root, group *g) {
+static bool eliminate(const solver *s, const order *o, uint32_t root, tarry_nullspace *space) {
     for (size_t i = o->row_starts[root]; i < o->row_starts[root + 1]; i++) {
-        memset(g->row, 0, g->n * sizeof *g->row);
+        memset(space->row, 0, space->n * sizeof *space->row);
         for (size_t k = s->row_starts[o->rows[i]]; k < s->row_starts[o->rows[i] + 1]; k++)
-            g->row[o->column[s->entries[k].unknown]] += s->entries[k].amount;
-        if (!take_row(g))
+            space->row[o->column[s->entries[k].unknown]] += s->entries[k].amount;
+        if (!tarry_nullspace_take(space))
             return false;
     }
-    return solve_group(g);
+    return tarry_nullspace_solve(space);
 }
 
 static int do_group(solver *s, const order *o, uint32_t root) {
-    const size_t n = o->unknown_starts[root + 1] - o->unknown_starts[root];
-    if (n == 0)
+    const group g = {o->unknown_starts[root + 1] - o->unknown_starts[root],
+                     o->unknowns + o->unknown_starts[root]};
+    tarry_nullspace space = {0};
+    if (g.n == 0)
         return 0;
-    if (n > TARRY_SUMS_LARGEST) {
+    if (g.n > TARRY_SUMS_LARGEST) {
         s->n_large++;
         return 0;
     }
-    group g = {0};
-    int short_of_memory = group_init(&g, n);
-    if (!short_of_memory) {
-        memcpy(g.unknowns, o->unknowns + o->unknown_starts[root], n * sizeof *g.unknowns);
-        if (eliminate(s, o, root, &g)) {
-            tidy_basis(&g);
-            for (size_t b = 0; b < g.n_basis && !short_of_memory; b++)
-                short_of_memory = keep_sum(s, &g, g.basis + b * n);
-        } else {
-            s->n_overflow++;
-        }
-    }
-    group_release(&g);
+    int short_of_memory = tarry_nullspace_init(&space, g.n);
+    if (!short_of_memory && !eliminate(s, o, root, &space))
+        s->n_overflow++;
+    else
+        for (size_t b = 0; b < space.n_basis && !short_of_memory; b++)
+            short_of_memory = keep_sum(s, &g, space.basis + b * g.n);
+    tarry_nullspace_release(&space);
     return short_of_memory;
 }
 
