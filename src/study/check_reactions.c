@@ -145,12 +145,8 @@ static void put_equation(const writer *w, const tarry_effect *effect,
     add_changes(w, effect, reaction, &left, &right);
     const bool failed = left.text.failed || right.text.failed;
     w->page->text->failed = w->page->text->failed || failed;
-    if (!left.any && !right.any)
-        tarry_sheet_cell(&w->page->sheet, column, "nothing");
-    else
-        tarry_sheet_cell(&w->page->sheet, column, "%s%s->%s%s", left.any ? left.text.data : "",
-                         left.any ? " " : "", right.any ? " " : "",
-                         right.any ? right.text.data : "");
+    tarry_sheet_cell(&w->page->sheet, column, "%s -> %s", left.any ? left.text.data : "nothing",
+                     right.any ? right.text.data : "nothing");
     tarry_text_release(&left.text);
     tarry_text_release(&right.text);
 }
