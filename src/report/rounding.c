@@ -1,7 +1,8 @@
 #include "report/rounding.h"
 
+#include "base/number.h"
+
 #include <math.h>
-#include <stdio.h>
 #include <string.h>
 
 enum { MOST_DIGITS = 7, PLAIN_DIGITS = 4 };
@@ -17,9 +18,9 @@ static int leading_place(double x) {
 
 static void put(double x, int decimals, int digits, int with_power, char out[TARRY_ROUNDED]) {
     if (with_power)
-        snprintf(out, TARRY_ROUNDED, "%.*e", digits > 1 ? digits - 1 : 0, x);
+        tarry_number_write_power(x, digits > 1 ? digits - 1 : 0, out);
     else
-        snprintf(out, TARRY_ROUNDED, "%.*f", decimals > 0 ? decimals : 0, x);
+        tarry_number_write_fixed(x, decimals > 0 ? decimals : 0, out);
     /* "-0.00" says nothing that "0.00" does not. */
     if (out[0] == '-' && strspn(out + 1, "0.") == strlen(out + 1))
         memmove(out, out + 1, strlen(out));
@@ -27,11 +28,11 @@ static void put(double x, int decimals, int digits, int with_power, char out[TAR
 
 void tarry_round_plain(double value, char out[TARRY_ROUNDED]) {
     if (isnan(value))
-        snprintf(out, TARRY_ROUNDED, "-");
+        strcpy(out, "-");
     else if (value == floor(value) && fabs(value) < LARGEST)
-        snprintf(out, TARRY_ROUNDED, "%.0f", value + 0.0);
+        tarry_number_write(value, out);
     else
-        snprintf(out, TARRY_ROUNDED, "%.*g", PLAIN_DIGITS, value);
+        tarry_number_write_rounded(value, PLAIN_DIGITS, out);
 }
 
 void tarry_round(double value, double low, double high, tarry_rounded *out) {

@@ -1,9 +1,11 @@
 #ifndef TARRY_REPORT_ROUNDING_H
 #define TARRY_REPORT_ROUNDING_H
 
+#include "base/number.h"
+
 /* Numbers for reading: as many digits as their interval bears. Files have all digits. */
 
-enum { TARRY_ROUNDED = 24 };
+enum { TARRY_ROUNDED = TARRY_NUMBER_SIZE };
 
 typedef struct tarry_rounded {
     char value[TARRY_ROUNDED]; /* "-" where there is none */
