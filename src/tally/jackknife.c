@@ -2,7 +2,7 @@
  *
  * The spread is taken about the figure from all groups, as Kott (2001) does, not about the mean of
  * the replicates. Groups differ in size by at most one cell; for a mean the variance so estimated
- * is then high by less than 2 % (docs/statistics.md). */
+ * is then high by 0.2 % at most (docs/statistics.md). */
 #include "tally/jackknife.h"
 
 #include <gsl/gsl_cdf.h>
