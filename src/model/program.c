@@ -145,7 +145,7 @@ double tarry_expression_value(const tarry_expression *expression, const double *
 
 static size_t operands(tarry_operation code) {
     static const unsigned char takes[] = {
-#define TARRY_OPERATION_TAKES(name, n) [TARRY_OP_##name] = n,
+#define TARRY_OPERATION_TAKES(name, n) [TARRY_OP_##name] = (n),
         TARRY_OPERATIONS(TARRY_OPERATION_TAKES)
 #undef TARRY_OPERATION_TAKES
     };
@@ -260,7 +260,7 @@ static const uint32_t *list(const tarry_program *program, tarry_operation code, 
 int tarry_program_finish(const tarry_program *program, tarry_arena *arena, tarry_expression *out,
                          tarry_error *error) {
     tarry_instruction *instructions = NULL;
-    if (!program->failed)
+    if (!program->failed && program->instructions != NULL)
         instructions = tarry_arena_calloc(arena, program->n, sizeof *instructions);
     if (instructions == NULL)
         return tarry_fail_memory(error, "an expression");

@@ -281,7 +281,7 @@ static int read_list(protocol_reader *in, const tarry_node *list, tarry_error *e
         code = tarry_read_until(in->builder, run, &until, error);
     for (size_t i = 0; code == 0 && i < list->n; i++)
         code = read_step(in, list->entries[i].node, until, i, error);
-    if (code != 0)
+    if (code != 0 || list->n == 0)
         return code;
     qsort(in->steps, list->n, sizeof *in->steps, by_time);
     for (size_t i = 0, taken = 0; code == 0 && i < list->n; i += taken)

@@ -4,6 +4,7 @@
 #include "model/builder.h"
 
 #include "base/error.h"
+#include "base/number.h"
 #include "model/expect.h"
 
 static const char *const SIGNAL_KEYS[] = {"of",         "sum",   "ramp",  "brightness",
@@ -58,6 +59,16 @@ static int add_weight(signal_reader *in, uint32_t species, double weight, tarry_
     return TARRY_APPEND(&in->builder->weights, row) == 0 ? 0 : tarry_fail_memory(error, "a signal");
 }
 
+static int fail_fractions(tarry_place place, const tarry_ramp *ramp, tarry_error *error) {
+    char from[TARRY_NUMBER_SIZE], to[TARRY_NUMBER_SIZE];
+    tarry_number_write(ramp->from, from);
+    tarry_number_write(ramp->to, to);
+    return tarry_fail_at(error, TARRY_INPUT, place,
+                         "a ramp goes from a fraction of the dwell to a later one, both from 0 to "
+                         "1, as in ramp: {from: 0.1, to: 0.4}; this one goes from %s to %s",
+                         from, to);
+}
+
 static int read_fractions(signal_reader *in, const tarry_node *map, tarry_ramp *ramp,
                           tarry_error *error) {
     static const char *const keys[] = {"from", "to"};
@@ -72,11 +83,7 @@ static int read_fractions(signal_reader *in, const tarry_node *map, tarry_ramp *
     if (code == 0)
         code = read_number(in, map, "to", &ramp->to, error);
     if (code == 0 && !(ramp->from >= 0 && ramp->from <= ramp->to && ramp->to <= 1))
-        code = tarry_fail_at(error, TARRY_INPUT, map->place,
-                             "a ramp goes from a fraction of the dwell to a later one, both from 0 "
-                             "to 1, as in ramp: {from: 0.1, to: 0.4}; this one goes from %.9g to "
-                             "%.9g",
-                             ramp->from, ramp->to);
+        code = fail_fractions(map->place, ramp, error);
     return code;
 }
 

@@ -95,12 +95,14 @@ static int check_every(const tarry_run_value *from, double until, double every, 
                          error);
     const double ratio = until / every;
     if (ratio > MOST_FRAMES) {
-        char text[TARRY_NUMBER_SIZE];
-        tarry_number_write(floor(ratio) + 1, text);
+        char one[TARRY_NUMBER_SIZE], two[TARRY_NUMBER_SIZE], n[TARRY_NUMBER_SIZE];
+        tarry_number_write(every, one);
+        tarry_number_write(until, two);
+        tarry_number_write(floor(ratio) + 1, n);
         return tarry_fail_at(error, TARRY_INPUT, from->node->place,
-                             "a frame every %.9g up to %.9g makes %s frames; at most 100000000 can "
+                             "a frame every %s up to %s makes %s frames; at most 100000000 can "
                              "be recorded, so take a longer 'every'",
-                             every, until, text);
+                             one, two, n);
     }
     *frames = fmax(round(ratio), 1);
     if (fabs(ratio - *frames) > SLACK * *frames)
@@ -201,7 +203,9 @@ static int read_snapshot(tarry_builder *builder, const tarry_node *node, double 
 static int fill_snapshots(tarry_builder *builder, const tarry_node *list, tarry_error *error) {
     tarry_run_plan *plan = &builder->network->run;
     double *times = tarry_arena_calloc(builder->arena, list->n, sizeof *times);
-    int code = times == NULL ? tarry_fail_memory(error, "the snapshots") : 0;
+    int code = 0;
+    if (times == NULL)
+        return tarry_fail_memory(error, "the snapshots");
     for (size_t i = 0; code == 0 && i < list->n; i++)
         code = read_snapshot(builder, list->entries[i].node, &times[i], error);
     if (code != 0)

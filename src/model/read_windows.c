@@ -111,8 +111,8 @@ static int make_spans(tarry_builder *builder, tarry_window *windows, uint32_t n_
     if (bounds == NULL)
         return tarry_fail_memory(error, "the windows");
     for (uint32_t i = 0; i < n_windows; i++) {
-        bounds[2 * i] = windows[i].from;
-        bounds[2 * i + 1] = windows[i].to;
+        bounds[2 * (size_t)i] = windows[i].from;
+        bounds[2 * (size_t)i + 1] = windows[i].to;
     }
     bounds[most - 2] = 0;
     bounds[most - 1] = plan->until;
