@@ -7,6 +7,7 @@
  * Formulas: docs/statistics.md, "Autocorrelation". */
 #include "base/error.h"
 #include "base/memory.h"
+#include "base/number.h"
 #include "base/table.h"
 #include "tally/correlation.h"
 #include "tally/kinds.h"
@@ -459,20 +460,22 @@ static int note_decay(report_state *reporting, const window_view *view, const ch
     const double longest = (double)(view->shape.n_lags - 1) * run->every;
     const double decay = ask(reporting, figure + DECAY_TIME, TARRY_SCALE_LOG).value;
     const double amplitude = ask(reporting, figure + AMPLITUDE, TARRY_SCALE_LOG).value;
+    char time[TARRY_NUMBER_SIZE];
     const bool is_long = isnan(decay) || decay > long_decay * longest;
     if (!isfinite(amplitude) || (!is_long && decay >= run->every) ||
         reporting->n_caveats++ >= MOST_CAVEATS)
         return TARRY_OK;
+    tarry_number_write(is_long ? longest : run->every, time);
     if (is_long)
         return tarry_notes_add(&reporting->results->notes, (tarry_place){0}, error,
                                "%s, window %s: the correlation has not levelled off at the longest "
-                               "lag (%g %s), so that its plateau is high and its decay time short "
+                               "lag (%s %s), so that its plateau is high and its decay time short "
                                "or missing; a larger `lags` would help",
-                               name, view->window->name, longest, reporting->network->time_unit);
+                               name, view->window->name, time, reporting->network->time_unit);
     return tarry_notes_add(&reporting->results->notes, (tarry_place){0}, error,
-                           "%s, window %s: the correlation decays within one frame (%g %s); its "
+                           "%s, window %s: the correlation decays within one frame (%s %s); its "
                            "decay time is no more than a bound",
-                           name, view->window->name, run->every, reporting->network->time_unit);
+                           name, view->window->name, time, reporting->network->time_unit);
 }
 
 static int report_series(report_state *reporting, const window_view *view,
