@@ -125,20 +125,29 @@ void hand_counts(const hand *h, tarry_record *record, uint32_t track, const int6
         record->counts[bound * h->network.n_tracks + track] = counts[bound];
 }
 
-tarry_results *hand_results(const hand *h, const tarry_tally_kind *kind,
-                            const tarry_record *records, size_t n) {
-    tarry_tally_set *set;
-    tarry_results *results;
+int hand_try(const hand *h, const tarry_tally_kind *kind, const tarry_record *records, size_t n,
+             tarry_results **results) {
+    *results = NULL;
+    tarry_tally_set *set = NULL;
     double *scratch = calloc(tarry_tally_set_scratch(&h->network) + 1, sizeof *scratch);
-    ck_assert_ptr_nonnull(scratch);
-    ck_assert_int_eq(tarry_tally_set_new_of(&h->network, &kind, 1, &set, NULL), TARRY_OK);
-    for (size_t i = 0; i < n; i++)
-        ck_assert_int_eq(tarry_tally_set_add(set, &records[i], scratch, NULL), TARRY_OK);
-    ck_assert_int_eq(tarry_tally_set_finish(set, 1, NULL), TARRY_OK);
-    ck_assert_int_eq(tarry_results_new(&results, NULL), TARRY_OK);
-    ck_assert_int_eq(tarry_tally_set_report(set, results, NULL), TARRY_OK);
+    int code = scratch ? tarry_tally_set_new_of(&h->network, &kind, 1, &set, NULL) : TARRY_MEMORY;
+    for (size_t i = 0; !code && i < n; i++)
+        code = tarry_tally_set_add(set, &records[i], scratch, NULL);
+    if (!code)
+        code = tarry_tally_set_finish(set, 1, NULL);
+    if (!code)
+        code = tarry_results_new(results, NULL);
+    if (!code)
+        code = tarry_tally_set_report(set, *results, NULL);
     tarry_tally_set_free(set);
     free(scratch);
+    return code;
+}
+
+tarry_results *hand_results(const hand *h, const tarry_tally_kind *kind,
+                            const tarry_record *records, size_t n) {
+    tarry_results *results;
+    ck_assert_int_eq(hand_try(h, kind, records, n, &results), TARRY_OK);
     return results;
 }
 

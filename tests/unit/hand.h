@@ -54,6 +54,10 @@ void hand_counts(const hand *h, tarry_record *record, uint32_t track, const int6
 tarry_results *hand_results(const hand *h, const tarry_tally_kind *kind,
                             const tarry_record *records, size_t n);
 
+/* The same, returning its code; *results is to be freed whatever that is. */
+int hand_try(const hand *h, const tarry_tally_kind *kind, const tarry_record *records, size_t n,
+             tarry_results **results);
+
 /* The first row in which the first text columns hold these texts (as many as there are, NULL ends
  * the list); the test fails where there is none. */
 size_t hand_row(const tarry_table *table, const char *first, const char *second, const char *third);

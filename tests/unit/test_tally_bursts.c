@@ -2,6 +2,7 @@
  * two-state promoter, whose figures are known. */
 
 #include "base/random.h"
+#include "faults.h"
 #include "hand.h"
 #include "support.h"
 #include "tally/bins.h"
@@ -651,6 +652,36 @@ START_TEST(test_telegraph_cut_off) {
 }
 END_TEST
 
+/* Every allocation fails once: the code says so, and nothing is lost or used after. */
+START_TEST(test_memory) {
+    static const tarry_tally_kind *const kinds[] = {&tarry_tally_bursts, &tarry_tally_burst_sizes,
+                                                    &tarry_tally_dwells,
+                                                    &tarry_tally_autocorrelation};
+    hand h;
+    tarry_record records[2];
+    hand_init(&h, 10, 100, 11);
+    hand_gene(&h, "vela", 2, true);
+    hand_species(&h, "vela.transcript", 0);
+    hand_signal(&h, "spot", 0, 0);
+    hand_signal(&h, "haze", 0, 0);
+    write_two_cells(&h, records, (const int64_t[]){0, 7}, (const int64_t[]){0, 4},
+                    (const int64_t[]){0, 1});
+    for (size_t k = 0; k < sizeof kinds / sizeof kinds[0]; k++)
+        for (long n = 0;; n++) {
+            tarry_results *results;
+            faults_arm(FAULT_MEMORY, n, 0);
+            const int code = hand_try(&h, kinds[k], records, 2, &results);
+            const bool struck = faults_struck();
+            faults_clear();
+            tarry_results_free(results);
+            ck_assert_int_eq(code, struck ? TARRY_MEMORY : TARRY_OK);
+            if (!struck)
+                break;
+        }
+    release(records, 2);
+}
+END_TEST
+
 int main(void) {
     const test_entry tests[] = {
         {"figures", test_figures},
@@ -670,6 +701,7 @@ int main(void) {
         {"sizes by window", test_sizes_by_window},
         {"sizes left out", test_sizes_left_out},
         {"long tail", test_long_tail_is_noted},
+        {"memory", test_memory},
         {"telegraph", test_telegraph},
         {"telegraph, cut off", test_telegraph_cut_off},
     };
