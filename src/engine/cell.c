@@ -15,7 +15,7 @@
 #include <stdlib.h>
 #include <string.h>
 
-static const double most_count = 0x1p53;
+static const double most_count = 0x1p53 - 1; /* 2^53 + 1 would be 2^53 again */
 
 static void stop(tarry_cell *cell, tarry_stop why, uint32_t index) {
     if (cell->stop == TARRY_GO) {

@@ -7,12 +7,13 @@
  * which only the head stands in the heap; drawn lengths go into the heap one by one. The heap is a
  * flat binary one; entries compare as single numbers of 128 bits. */
 
+#include "tarry/error.h"
+
+#include <math.h>
 #include <stdbool.h>
 #include <stddef.h>
-#include <math.h>
 #include <stdint.h>
 #include <string.h>
-#include "tarry/error.h"
 
 /* 24 bits for the lag, 39 for the order scheduled, the lowest for "head of a ring". */
 enum { TARRY_PENDING_LAG_SHIFT = 40, TARRY_PENDING_MOST_LAGS = 1 << 24 };
