@@ -513,14 +513,14 @@ START_TEST(first_failure_is_told) {
 }
 END_TEST
 
-/* Everything once with allocation n failing, for every n. */
-static int whole_life(const hand *h, const tarry_record *records, int n_records) {
+/* Everything once with every estimator of a run, allocation n failing. */
+static int whole_life(const hand *h, const tarry_record *records, int n_records, double *scratch) {
     tarry_tally_set *set = NULL;
     tarry_results *results = NULL;
     tarry_error error = {0};
-    int code = tarry_tally_set_new_of(&h->network, toys, 2, &set, &error);
+    int code = tarry_tally_set_new(&h->network, &set, &error);
     for (int i = 0; !code && i < n_records; i++)
-        code = tarry_tally_set_add(set, &records[i], NULL, &error);
+        code = tarry_tally_set_add(set, &records[i], scratch, &error);
     if (!code)
         code = tarry_tally_set_finish(set, 1, &error);
     if (!code)
@@ -533,24 +533,33 @@ static int whole_life(const hand *h, const tarry_record *records, int n_records)
 }
 
 START_TEST(no_memory_is_an_error) {
+    enum { N_RECORDS = 3, N_FRAMES = 4 };
     hand h;
-    toy_network(&h);
-    tarry_record records[3];
-    for (int i = 0; i < 3; i++)
-        hand_record(&h, &records[i], i);
+    hand_init(&h, 0, 6, N_FRAMES);
+    hand_species(&h, "vela.transcript", (int32_t)hand_gene(&h, "vela", 1, true));
+    hand_signal(&h, "spot", 0.5, 0.1);
+    tarry_record records[N_RECORDS];
+    for (int c = 0; c < N_RECORDS; c++) {
+        hand_record(&h, &records[c], c);
+        for (int i = 0; i < 2 * N_FRAMES; i++)
+            records[c].frames[i] = 3.0 * c + 1000.0 * i * i; /* drifts */
+    }
+    double *scratch = calloc(tarry_tally_set_scratch(&h.network) + 1, sizeof *scratch);
+    ck_assert_ptr_nonnull(scratch);
     long n = 0;
     for (;; n++) {
         faults_arm(FAULT_MEMORY, n, 0);
-        const int code = whole_life(&h, records, 3);
+        const int code = whole_life(&h, records, N_RECORDS, scratch);
         const bool struck = faults_struck();
         faults_clear();
         ck_assert_msg(code == (struck ? TARRY_MEMORY : TARRY_OK), "call %ld", n);
         if (!struck)
             break;
     }
-    ck_assert_int_gt(n, 20);
-    for (int i = 0; i < 3; i++)
-        tarry_record_release(&records[i]);
+    ck_assert_int_gt(n, 100);
+    free(scratch);
+    for (int c = 0; c < N_RECORDS; c++)
+        tarry_record_release(&records[c]);
 }
 END_TEST
 
