@@ -1,8 +1,8 @@
 /* How many initiations a burst holds: burst_sizes.csv.
  *
  * Bursts that start in the window and have closed, alleles and cells pooled, in the bins of counts
- * (tally/bins.h). What was cut off is left out: its size is not known. Formulas:
- * docs/statistics.md, "Bursts". */
+ * (tally/bins.h); bins that no burst fell into are not listed. What was cut off is left out: its
+ * size is not known. Formulas: docs/statistics.md, "Bursts". */
 #include "base/error.h"
 #include "base/memory.h"
 #include "base/table.h"
@@ -84,13 +84,6 @@ static double totals_of(const tarry_tally_set *set, const tarry_tally_kind *kind
     return all;
 }
 
-static size_t last_used_bin(const tarry_blocks *blocks, size_t first) {
-    size_t bin = TARRY_BINS - 1;
-    while (bin > 0 && tarry_blocks_get(blocks, first + bin) <= 0.0)
-        bin--;
-    return bin;
-}
-
 static int report_window(const tarry_network *network, const tarry_tally_set *set,
                          const tarry_tally_kind *kind, uint32_t gene, size_t first,
                          const tarry_window *window, tarry_table *table, tarry_error *error) {
@@ -98,9 +91,10 @@ static int report_window(const tarry_network *network, const tarry_tally_set *se
     if (totals_of(set, kind, first, totals) <= 0.0)
         return TARRY_OK;
     const tarry_blocks *blocks = tarry_tally_blocks(set, kind);
-    const size_t last = last_used_bin(blocks, first);
     int code = TARRY_OK;
-    for (size_t bin = 0; !code && bin <= last; bin++) {
+    for (size_t bin = 0; !code && bin < TARRY_BINS; bin++) {
+        if (tarry_blocks_get(blocks, first + bin) <= 0.0)
+            continue;
         for (size_t g = 0; g < tarry_tally_n_groups(set); g++)
             counts[g] = tarry_blocks_get(tarry_tally_group_blocks(set, kind, g), first + bin);
         const tarry_estimate share = tarry_jackknife_share(tarry_tally_jackknife(set), counts,

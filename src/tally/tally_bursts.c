@@ -89,8 +89,8 @@ enum {
 static const double small_share = 0.01;
 
 /* Above this relative standard error of a variance, sqrt((kurtosis + 2) / n), its interval is
- * short: at 0.26 it held the truth in 89 % of trials (docs/statistics.md). */
-static const double large_spread = 0.2;
+ * short: it then held the truth in 93 % of trials or fewer (docs/statistics.md, "Bursts"). */
+static const double large_spread = 0.15;
 
 /* A spread below this share of the mean cannot be told from rounding in sums of squares. */
 static const double least_spread = 1e-6;
@@ -342,7 +342,7 @@ static const char *unit_text(const tarry_network *network, const burst_row *row,
     case TIME:
         return network->time_unit;
     case SHARE:
-        return "share";
+        return "1";
     case INITIATION:
         break;
     }
