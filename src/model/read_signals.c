@@ -20,12 +20,12 @@ typedef struct signal_reader {
  */
 
 /* The number under `key`; `value` stays where there is none. */
-static int read_number(signal_reader *in, const tarry_node *map, const char *key, double *value,
-                       tarry_error *error) {
+static int read_number(signal_reader *in, const tarry_node *map, const char *key, const char *what,
+                       double *value, tarry_error *error) {
     const tarry_node *node = tarry_node_get(map, key);
     if (node == NULL)
         return 0;
-    return tarry_builder_constant_value(in->builder, node, TARRY_PURE, key, value, error);
+    return tarry_builder_constant_value(in->builder, node, TARRY_PURE, what, value, error);
 }
 
 static int read_noise(signal_reader *in, const tarry_node *map, double *noise, tarry_error *error) {
@@ -44,7 +44,7 @@ static int read_noise(signal_reader *in, const tarry_node *map, double *noise, t
         key = "fixed";
     }
     if (code == 0)
-        code = read_number(in, map, key, noise, error);
+        code = read_number(in, map, key, "the noise of a signal", noise, error);
     if (code == 0 && *noise < 0)
         code = tarry_fail_at(error, TARRY_INPUT, node->place,
                              "'noise' is the sd of the read-out noise and not below 0");
@@ -79,9 +79,9 @@ static int read_fractions(signal_reader *in, const tarry_node *map, tarry_ramp *
     if (code == 0)
         code = tarry_expect_value(map, "'ramp'", "to", &to, error);
     if (code == 0)
-        code = read_number(in, map, "from", &ramp->from, error);
+        code = read_number(in, map, "from", "the start of a ramp", &ramp->from, error);
     if (code == 0)
-        code = read_number(in, map, "to", &ramp->to, error);
+        code = read_number(in, map, "to", "the end of a ramp", &ramp->to, error);
     if (code == 0 && !(ramp->from >= 0 && ramp->from <= ramp->to && ramp->to <= 1))
         code = fail_fractions(map->place, ramp, error);
     return code;
@@ -116,7 +116,8 @@ static int read_of(signal_reader *in, const tarry_node *signal, const tarry_node
         code = tarry_builder_need(in->builder, TARRY_SYMBOL_SPECIES, of->text, of->place, &species,
                                   error);
     if (code == 0)
-        code = read_number(in, signal, "brightness", &brightness, error);
+        code = read_number(in, signal, "brightness", "the brightness of a signal", &brightness,
+                           error);
     return code != 0 ? code : add_part(in, signal, species, of->place, brightness, error);
 }
 
@@ -130,13 +131,14 @@ static int read_term(signal_reader *in, const tarry_entry *entry, tarry_error *e
     if (code != 0)
         return code;
     if (entry->node->kind == TARRY_NODE_SCALAR) {
-        code = tarry_builder_constant_value(in->builder, entry->node, TARRY_PURE, "a weight",
-                                            &weight, error);
+        code = tarry_builder_constant_value(in->builder, entry->node, TARRY_PURE,
+                                            "the weight of a species in a signal", &weight, error);
         return code != 0 ? code : add_weight(in, species, weight, error);
     }
     code = tarry_expect_keys(entry->node, entry->key, keys, 2, error);
     if (code == 0)
-        code = read_number(in, entry->node, "brightness", &weight, error);
+        code = read_number(in, entry->node, "brightness", "the brightness of a signal", &weight,
+                           error);
     return code != 0 ? code : add_part(in, entry->node, species, entry->place, weight, error);
 }
 
@@ -185,7 +187,8 @@ static int read_signal(signal_reader *in, const tarry_entry *entry, tarry_error 
                              entry->key);
     code = of != NULL ? read_of(in, node, of, error) : read_sum(in, node, sum, error);
     if (code == 0)
-        code = read_number(in, node, "background", &signal.background, error);
+        code = read_number(in, node, "background", "the background of a signal", &signal.background,
+                           error);
     if (code == 0)
         code = read_noise(in, node, &signal.noise, error);
     signal.weights.to = (uint32_t)builder->weights.n;

@@ -87,8 +87,9 @@ static const struct {
     const char *ours;
 } problems[] = {
     {"mapping values are not allowed in this context",
-     "a ':' does not fit here: one line holds one 'key: value', and a text with ': ' in it stands "
-     "in quotes"},
+     "a ':' does not fit here: one line holds one 'key: value', indented as the line before it, "
+     "and "
+     "a text with ': ' in it stands in quotes"},
     {"block sequence entries are not allowed in this context",
      "a '- ' does not fit here: a list begins on the line after its key"},
     {"mapping keys are not allowed in this context",
