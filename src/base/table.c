@@ -94,10 +94,12 @@ tarry_table *tarry_table_new(const char *name, const char *columns) {
 void tarry_table_free(tarry_table *table) {
     if (table == NULL)
         return;
-    word *each, *next;
-    HASH_ITER(hh, table->words, each, next) {
-        HASH_DEL(table->words, each);
+    word *each = table->words;
+    HASH_CLEAR(hh, table->words); /* the words themselves stay, and stay linked */
+    while (each != NULL) {
+        word *next = each->hh.next;
         free(each);
+        each = next;
     }
     free(table->cells);
     tarry_arena_release(&table->names);
