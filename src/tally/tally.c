@@ -95,15 +95,14 @@ static void group_release(tally_group *group, size_t n_kinds) {
     *group = (tally_group){0};
 }
 
-/* Zeroed sums and no blocks taken. Returns 0, or 1 when memory is short. */
+/* Zeroed sums and no blocks taken. Returns 0, or 1 when memory is short: then half of it is there,
+ * to be released with the set. */
 static int group_init(tally_group *group, const tarry_tally_set *set) {
     group->sums = tarry_calloc(set->n_sums + 1, sizeof *group->sums);
     group->blocks = tarry_calloc(set->n_kinds, sizeof *group->blocks);
     int failed = !group->sums || !group->blocks;
     for (size_t k = 0; !failed && k < set->n_kinds; k++)
         failed = tarry_blocks_init(&group->blocks[k], set->parts[k].n_blocks);
-    if (failed)
-        group_release(group, set->n_kinds);
     return failed;
 }
 
