@@ -9,6 +9,7 @@
 #include "base/notes.h"
 #include "model/analysis.h"
 #include "model/model.h"
+#include "model/nullspace.h"
 #include "tarry/tarry.h"
 
 #include <gsl/gsl_cdf.h>
@@ -143,14 +144,13 @@ START_TEST(test_sums_skipped) {
 END_TEST
 
 START_TEST(test_sums_broken) {
-    /* A random amount of b: only c + e is left. */
-    ASSERT_SUMS("1 c + 1 e = 5",
-                "species: {a: 4, b: 0, c: 5, e: 0}\n"
-                "reactions:\n"
-                "  burst: {uses: {a: 1}, makes: {b: {geometric: {mean: 5}}}, rate: 1}\n"
-                "  back: {uses: {b: 5}, makes: {a: 1}, rate: 1}\n"
-                "  turn: {uses: {c: 1}, makes: {e: 1}, rate: 1}\n"
-                "run: {until: 10}\n");
+    /* Random amounts of b: the sum of b and e is not kept, that of c and g is. */
+    ASSERT_SUMS("1 c + 1 g = 5", "species: {b: 2, c: 5, e: 0, g: 0}\n"
+                                 "reactions:\n"
+                                 "  burst: {makes: {b: {geometric: {mean: 5}}}, rate: 1}\n"
+                                 "  fade: {uses: {b: 1}, makes: {e: 1}, rate: 1}\n"
+                                 "  turn: {uses: {c: 1}, makes: {g: 1}, rate: 1}\n"
+                                 "run: {until: 10}\n");
     /* An amount made from nothing conserves nothing. */
     ASSERT_SUMS("", "species: {a: 4}\n"
                     "reactions: {make: {makes: {a: 1}, rate: 1}, end: {uses: {a: 1}, rate: 1}}\n"
@@ -217,6 +217,20 @@ START_TEST(test_sums_limits) {
         ck_assert_str_eq(found, pass == 0 ? " overflow 1" : " large 1");
         tarry_model_free(model);
     }
+}
+END_TEST
+
+/* 5 (M/2) - 3 (M/2 - 1) is just over M = 2^63 - 1. */
+START_TEST(test_nullspace_overflow) {
+    tarry_nullspace space;
+    ck_assert_int_eq(tarry_nullspace_init(&space, 2), 0);
+    space.row[0] = INT64_MAX / 2;
+    space.row[1] = 3;
+    ck_assert(tarry_nullspace_take(&space));
+    space.row[0] = INT64_MAX / 2 - 1;
+    space.row[1] = 5;
+    ck_assert(!tarry_nullspace_take(&space));
+    tarry_nullspace_release(&space);
 }
 END_TEST
 
@@ -426,6 +440,11 @@ static double present(double x, void *context) {
     return gsl_cdf_gamma_Q(x, s->with, s->scale) - gsl_cdf_gamma_Q(x, s->before, s->scale);
 }
 
+static double survives(double x, void *context) {
+    const shapes *s = context;
+    return gsl_cdf_gamma_Q(x, s->with, s->scale);
+}
+
 START_TEST(test_means_two_drawn_stages) {
     tarry_model *model = read_model(
         "genes:\n"
@@ -437,12 +456,12 @@ START_TEST(test_means_two_drawn_stages) {
         "      lifetime: {gamma: {mean: 10, sd: 4.4721359549995796}}\n"
         "run: {until: 10}\n");
     static const double times[] = {3, 9, 15, 40};
-    const shapes parts[] = {{0, 3, 2}, {3, 4.5, 2}, {4.5, 9.5, 2}};
+    static const shapes parts[] = {{0, 3, 2}, {3, 4.5, 2}, {4.5, 9.5, 2}};
     static const char *const names[] = {"vela.one", "vela.two", "vela.transcript"};
     gsl_integration_workspace *room = gsl_integration_workspace_alloc(1000);
     for (size_t k = 0; k < 4; k++)
-        for (size_t p = 1; p < 3; p++) {
-            gsl_function function = {present, (void *)&parts[p]};
+        for (size_t p = 0; p < 3; p++) {
+            gsl_function function = {p > 0 ? present : survives, (void *)&parts[p]};
             double value = 0, error = 0;
             gsl_integration_qag(&function, 0, times[k], 1e-10, 1e-9, 1000, GSL_INTEG_GAUSS61, room,
                                 &value, &error);
@@ -450,6 +469,41 @@ START_TEST(test_means_two_drawn_stages) {
         }
     gsl_integration_workspace_free(room);
     tarry_model_free(model);
+}
+END_TEST
+
+/* The same two gammas as one stage: a total is met within one of its parts; and a mix of it with a
+ * gamma of shape 5, three to one. */
+static double present_mixed(double x, void *context) {
+    (void)context;
+    return 0.25 * gsl_cdf_gamma_Q(x, 4.5, 2) + 0.75 * gsl_cdf_gamma_Q(x, 5, 2);
+}
+
+START_TEST(test_means_total) {
+    static const char total[] =
+        "{total: [{gamma: {mean: 6, sd: 3.4641016151377544}}, {gamma: {mean: "
+        "3, sd: 2.4494897427831781}}]}";
+    static const double times[] = {3, 9, 15};
+    char mix[512];
+    snprintf(mix, sizeof mix,
+             "{mix: [{share: 0.25, lasts: %s}, {share: 0.75, lasts: {gamma: {mean: 10, sd: "
+             "4.4721359549995796}}}]}",
+             total);
+    const shapes part = {0, 4.5, 2};
+    gsl_integration_workspace *room = gsl_integration_workspace_alloc(1000);
+    for (int mixed = 0; mixed < 2; mixed++) {
+        tarry_model *model = read_always_on(3, mixed ? mix : total, 0.1);
+        for (size_t k = 0; k < 3; k++) {
+            gsl_function function = {mixed ? present_mixed : survives, (void *)&part};
+            double value = 0, error = 0;
+            gsl_integration_qag(&function, 0, times[k], 1e-10, 1e-9, 1000, GSL_INTEG_GAUSS61, room,
+                                &value, &error);
+            assert_mean(model, "vela.under_way", times[k], 3 * value,
+                        3 * 3 * grid_jump_error(times[k]));
+        }
+        tarry_model_free(model);
+    }
+    gsl_integration_workspace_free(room);
 }
 END_TEST
 
@@ -555,19 +609,24 @@ END_TEST
 /* 1 - mean/steady is e^(-decay t) for a gene that is always on: 0.1 % are left at log(1000)/decay.
  */
 START_TEST(test_settle) {
-    tarry_model *model = read_model("genes:\n"
-                                    "  vela:\n"
-                                    "    promoter: {on: {initiates: 1}}\n"
-                                    "    transcript: {decay: 0.05}\n"
-                                    "run: {until: 10}\n");
-    double settle = 0;
-    size_t n_unknown = 9;
-    tarry_error error = {0};
-    ck_assert_int_eq(tarry_analysis_settle(&model->network, 1e-3, &settle, &n_unknown, &error), 0);
-    ck_assert_double_ge(settle, log(1000) / 0.05);
-    ck_assert_double_le(settle, 1.01 * log(1000) / 0.05);
-    ck_assert_uint_eq(n_unknown, 0);
-    tarry_model_free(model);
+    static const double decays[] = {0.05, 0.040625, 0.3};
+    for (size_t i = 0; i < 3; i++) {
+        tarry_model *model = read_model("genes:\n"
+                                        "  vela:\n"
+                                        "    promoter: {on: {initiates: 1}}\n"
+                                        "    transcript: {decay: %.17g}\n"
+                                        "run: {until: 10}\n",
+                                        decays[i]);
+        double settle = 0;
+        size_t n_unknown = 9;
+        tarry_error error = {0};
+        ck_assert_int_eq(tarry_analysis_settle(&model->network, 1e-3, &settle, &n_unknown, &error),
+                         0);
+        ck_assert_double_ge(settle, log(1000) / decays[i]);
+        ck_assert_double_le(settle, 1.011 * log(1000) / decays[i]);
+        ck_assert_uint_eq(n_unknown, 0);
+        tarry_model_free(model);
+    }
 }
 END_TEST
 
@@ -696,7 +755,8 @@ START_TEST(test_range) {
                  {"(2 - a)^3", -HUGE_VAL, 8},
                  {"sqrt(a)", 0, HUGE_VAL},
                  {"log(1 + a)", 0, HUGE_VAL},
-                 {"log(a)", -HUGE_VAL, HUGE_VAL}};
+                 {"log(a)", -HUGE_VAL, HUGE_VAL},
+                 {"min(a, 0) * log(a)", 0, 0}};
     for (size_t i = 0; i < sizeof cases / sizeof *cases; i++) {
         tarry_model *model = read_model("species: {a: 3}\n"
                                         "reactions: {odd: {propensity: \"%s\"}}\n"
@@ -723,12 +783,14 @@ int main(void) {
         {"sums: promoter", test_sums_promoter},
         {"sums: protocol", test_sums_protocol},
         {"sums: limits", test_sums_limits},
+        {"null space: overflow", test_nullspace_overflow},
         {"means: two-state gene", test_means_two_state},
         {"means: fixed lag", test_means_fixed_lag},
         {"means: Erlang lags", test_means_erlang},
         {"means: protein", test_means_protein},
         {"means: quadrature", test_means_quadrature},
         {"means: two drawn stages", test_means_two_drawn_stages},
+        {"means: totals and mixes", test_means_total},
         {"means: steady start", test_means_steady_start},
         {"means: refused", test_means_refused},
         {"means: two ends", test_means_two_ends},
