@@ -40,9 +40,6 @@ static const kind_words KINDS[TARRY_N_SYMBOL_KINDS] = {
     [TARRY_SYMBOL_REACTION] = {"a reaction", "reaction", TARRY_SPACE_REACTIONS},
 };
 
-static const char *const RESERVED[] = {"s",   "min", "h",    "d",   "bp",   "nt",     "kb",
-                                       "exp", "log", "sqrt", "max", "hill", "repress"};
-
 /* ---- lists --------------------------------------------------------------------------------------
  */
 
@@ -151,12 +148,11 @@ int tarry_builder_check_name(const char *name, tarry_place place, const char *wh
         return tarry_fail_at(error, TARRY_INPUT, place,
                              "this name of %s has %zu letters; the longest may have %d", what, n,
                              LONGEST_NAME);
-    for (size_t i = 0; i < sizeof RESERVED / sizeof *RESERVED; i++)
-        if (strcmp(name, RESERVED[i]) == 0)
-            return tarry_fail_at(error, TARRY_INPUT, place,
-                                 "'%s' is a unit or a function and cannot name %s; choose another "
-                                 "name",
-                                 name, what);
+    if (tarry_expression_is_reserved(name, n))
+        return tarry_fail_at(error, TARRY_INPUT, place,
+                             "'%s' is a unit or a function and cannot name %s; choose another "
+                             "name",
+                             name, what);
     return 0;
 }
 
