@@ -5,7 +5,7 @@
 #include <math.h>
 #include <string.h>
 
-enum { MOST_DIGITS = 7, PLAIN_DIGITS = 4 };
+enum { PLAIN_DIGITS = 4 };
 
 /* Outside these a power of ten is written. */
 #define SMALLEST 1e-4
@@ -27,15 +27,17 @@ static void put(double x, int decimals, int digits, int with_power, char out[TAR
 }
 
 void tarry_round_plain(double value, char out[TARRY_ROUNDED]) {
+    const double size = fabs(value);
     if (isnan(value))
         strcpy(out, "-");
-    else if (value == floor(value) && fabs(value) < LARGEST)
+    else if (isinf(value) || (value == floor(value) && size < LARGEST))
         tarry_number_write(value, out);
     else
-        tarry_number_write_rounded(value, PLAIN_DIGITS, out);
+        put(value, PLAIN_DIGITS - 1 - leading_place(value), PLAIN_DIGITS,
+            size < SMALLEST || size >= LARGEST, out);
 }
 
-void tarry_round(double value, double low, double high, tarry_rounded *out) {
+void tarry_round(double value, double low, double high, int most, tarry_rounded *out) {
     out->low[0] = out->high[0] = '\0';
     const double half = (high - low) / 2;
     if (!(half > 0) || !isfinite(half) || !isfinite(value)) {
@@ -49,8 +51,8 @@ void tarry_round(double value, double low, double high, tarry_rounded *out) {
     const double largest = fmax(fabs(value), fmax(fabs(low), fabs(high)));
     const int leading = leading_place(largest);
     int last = leading_place(half) - 1; /* the place of the last digit shown */
-    if (last < leading - MOST_DIGITS + 1)
-        last = leading - MOST_DIGITS + 1;
+    if (last < leading - most + 1)
+        last = leading - most + 1;
     if (last > leading)
         last = leading;
     const int with_power = largest < SMALLEST || largest >= LARGEST;

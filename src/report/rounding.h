@@ -5,7 +5,7 @@
 
 /* Numbers for reading: as many digits as their interval bears. Files have all digits. */
 
-enum { TARRY_ROUNDED = TARRY_NUMBER_SIZE };
+enum { TARRY_ROUNDED = TARRY_NUMBER_SIZE, TARRY_ROUND_MOST = 7 };
 
 typedef struct tarry_rounded {
     char value[TARRY_ROUNDED]; /* "-" where there is none */
@@ -13,9 +13,10 @@ typedef struct tarry_rounded {
     char high[TARRY_ROUNDED];
 } tarry_rounded;
 
-/* Value and bounds to the same decimal, at which half the interval has two digits (one to seven
- * digits of the value are kept). Without an interval (NaN, or of no width): four digits. */
-void tarry_round(double value, double low, double high, tarry_rounded *out);
+/* Value and bounds to the same decimal, at which half the interval has two digits (at least one
+ * digit of the value and at most `most` are kept). Without an interval (NaN, or of no width): four
+ * digits. */
+void tarry_round(double value, double low, double high, int most, tarry_rounded *out);
 
 /* A number by itself, to four digits. */
 void tarry_round_plain(double value, char out[TARRY_ROUNDED]);

@@ -10,7 +10,7 @@ case $TARRY in
 *) TARRY=$PWD/$TARRY ;;
 esac
 # shellcheck disable=SC2034 # for those who source this
-models=$PWD/models
+models=$(cd "${0%/*}/../../models" && pwd) || exit 1
 work=$(mktemp -d "${TMPDIR:-/tmp}/tarry-cli-XXXXXX") || exit 1
 trap 'rm -rf "$work"' EXIT
 cd "$work" || exit 1
