@@ -7,6 +7,7 @@
 #include "model/model.h"
 #include "report/figures_table.h"
 #include "report/lines.h"
+#include "report/notes_list.h"
 #include "report/rounding.h"
 #include "report/snapshots.h"
 #include "report/spread.h"
@@ -185,8 +186,7 @@ static void add_notes(table_page *page) {
     tarry_text_add_string(page->text, "\nNotes\n");
     if (page->marked_few)
         tarry_lines_wrap(page->text, "* ", "from fewer than 20 periods or events", page->width);
-    for (size_t i = 0; i < n; i++)
-        tarry_lines_wrap(page->text, "- ", tarry_results_warning(page->results, i), page->width);
+    tarry_notes_list(page->results, page->width, page->text);
 }
 
 int tarry_write_summary_table(const tarry_model *model, const tarry_results *results, int width,

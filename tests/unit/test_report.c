@@ -5,6 +5,7 @@
 #include "model/model.h"
 #include "report/json.h"
 #include "report/lines.h"
+#include "report/notes_list.h"
 #include "report/rounding.h"
 #include "tally/results.h"
 #include "tarry/tarry.h"
@@ -598,6 +599,23 @@ START_TEST(test_lines) {
 }
 END_TEST
 
+START_TEST(test_notes) {
+    static const char *const notes[] = {"a, window w1: too short", "of another form",
+                                        "b, window w1: too short", "c, window w2: too short"};
+    tarry_results *results = NULL;
+    tarry_text text = {0};
+    ck_assert_int_eq(tarry_results_new(&results, NULL), 0);
+    for (size_t i = 0; i < sizeof notes / sizeof *notes; i++)
+        ck_assert_int_eq(tarry_notes_add(&results->notes, (tarry_place){0}, NULL, "%s", notes[i]),
+                         0);
+    tarry_notes_list(results, 80, &text);
+    ck_assert_str_eq(text.data, "- a, b, window w1: too short\n- of another form\n"
+                                "- c, window w2: too short\n");
+    tarry_text_release(&text);
+    tarry_results_free(results);
+}
+END_TEST
+
 /* JSON texts that come back the same through jansson's parser. */
 START_TEST(test_json) {
     const double numbers[] = {0.1, 1e300, 5e-324, -0.0, 123456789012345680.0, 1.0 / 3};
@@ -646,6 +664,7 @@ int main(void) {
     tcase_add_test(tests, test_table_of_windows);
     tcase_add_test(tests, test_table_of_many_genes);
     tcase_add_test(tests, test_lines);
+    tcase_add_test(tests, test_notes);
     tcase_add_test(tests, test_json);
     suite_add_tcase(suite, tests);
     SRunner *runner = srunner_create(suite);
