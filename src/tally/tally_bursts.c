@@ -424,16 +424,6 @@ static int note_cut_off(const burst_row *row, tarry_notes *notes, tarry_error *e
         row->gene->name, row->window->name, active, all_active, inactive, all_inactive);
 }
 
-static int note_untold(const tarry_gene *gene, tarry_notes *notes, tarry_error *error, size_t *n) {
-    if (gene->tells || (*n)++ >= MOST_CAVEATS)
-        return TARRY_OK;
-    return tarry_notes_add(notes, gene->place, error,
-                           "%s initiates in every promoter state, so its bursts cannot be told and "
-                           "their figures are left out; `bursts_in: [STATE, ...]` names the states "
-                           "in which they are counted",
-                           gene->name);
-}
-
 static int note_caveats(const burst_row *row, tarry_notes *notes, tarry_error *error, size_t *n) {
     if (!row->gene->tells)
         return TARRY_OK;
@@ -454,7 +444,6 @@ static int bursts_report(const tarry_network *network, const tarry_tally_set *se
     for (uint32_t g = 0; !code && sums && g < network->n_genes; g++) {
         burst_row row = {.gene = &network->genes[g]};
         const double tracks = row.gene->tracks.to - row.gene->tracks.from;
-        code = note_untold(row.gene, &results->notes, error, &n_caveats);
         for (uint32_t w = 0; !code && w < n_windows; w++) {
             const size_t at = ((size_t)g * n_windows + w) * N_SUMS;
             row.window = &network->run.windows[w];
