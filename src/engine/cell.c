@@ -337,6 +337,8 @@ static void begin_run_on(tarry_cell *cell) {
 
 static int run_cell(tarry_cell *cell, tarry_error *error) {
     start(cell);
+    if (cell->record && cell->now >= 0) /* no settling: what happens at 0 is an event at 0 */
+        tarry_cell_observe(cell, cell->now);
     run_to_end(cell);
     if (cell->stop == TARRY_GO && cell->record) {
         tarry_cell_observe(cell, INFINITY);
