@@ -118,7 +118,7 @@ deps-dev:
 	@CC='$(CC)' sh tests/deps.sh build test dev
 
 demo: deps
-	@$(MAKE) --no-print-directory -j$(JOBS) all
+	@$(MAKE) --no-print-directory -s -j$(JOBS) all
 	@$(BUILD)/tarry run models/two_state.yaml --out two_state.out --overwrite
 
 test: deps-test
@@ -131,7 +131,7 @@ lint: deps-dev
 	@MAKE='$(MAKE)' BUILD='$(BUILD)' JOBS='$(JOBS)' sh tests/lint.sh
 
 bench: deps
-	@$(MAKE) --no-print-directory -j$(JOBS) $(BUILD)/bench
+	@$(MAKE) --no-print-directory -s -j$(JOBS) $(BUILD)/bench
 	@$(BUILD)/bench
 
 format: deps-dev

@@ -207,10 +207,10 @@ static int check_memory(const tarry_network *network, int threads, int64_t keep,
     const double mega = 1e6;
     return tarry_fail(
         error, TARRY_LIMIT,
-        "this run needs %.0f MB of memory (sums of the estimators %.0f MB, %d threads of %.1f MB "
+        "this run needs %.0f MB of memory (sums of the estimators %.0f MB, %d threads of %.0f kB "
         "each, kept traces %.0f MB) and the limit is %.0f MB: record fewer names (run: record), "
         "take frames less often (run: every), use fewer windows%s or raise limits: memory",
-        memory.all / mega, memory.tallies / mega, threads, memory.thread / mega, memory.kept / mega,
+        memory.all / mega, memory.tallies / mega, threads, memory.thread / 1e3, memory.kept / mega,
         limit / mega, keep > 0 ? " or kept cells" : "");
 }
 
