@@ -182,8 +182,10 @@ static int move_to_law(lag_rows *rows, tarry_law_template *law, tarry_error *err
     tarry_expression *weights = tarry_arena_calloc(arena, rows->weights.n, sizeof *weights);
     if (points == NULL || weights == NULL)
         return tarry_fail_memory(error, "a table of lags");
-    memcpy(points, rows->points.items, rows->points.n * sizeof *points);
-    memcpy(weights, rows->weights.items, rows->weights.n * sizeof *weights);
+    for (size_t i = 0; i < rows->points.n; i++)
+        points[i] = rows->points.items[i];
+    for (size_t i = 0; i < rows->weights.n; i++)
+        weights[i] = rows->weights.items[i];
     law->kind = rows->bins ? TARRY_LAW_BINS : TARRY_LAW_VALUES;
     law->n = rows->weights.n;
     law->points = points;
