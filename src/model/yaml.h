@@ -3,7 +3,8 @@
 
 /* YAML text -> a tree of maps, lists and scalars with places, by libyaml's events. Plain scalars
  * stay text. Refused, each with its place: anchors, aliases, tags, merge keys, a second document,
- * nesting deeper than 64, duplicate keys, keys that are not scalars, text that is not UTF-8. */
+ * nesting deeper than 64, duplicate keys, keys that are not scalars, text that is not UTF-8,
+ * control characters, and inside { } and [ ] a call that YAML parts at its commas. */
 
 #include <stdbool.h>
 #include <stddef.h>
@@ -22,7 +23,7 @@ typedef struct tarry_entry {
 
 struct tarry_node {
     tarry_node_kind kind;
-    tarry_place place;
+    tarry_place place;          /* of the first character; inside the quotes where there are any */
     const char *text;           /* scalars: NUL-ended (a NUL inside the text is an error) */
     bool quoted;                /* scalars: written in quotes or as a block */
     size_t n;                   /* maps and lists: number of entries */
