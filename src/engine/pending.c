@@ -12,8 +12,12 @@ static const tarry_pending_entry never = {INT64_MAX, UINT64_MAX};
 
 /* One number of 128 bits for (due, lag, order scheduled): compared without a branch, since which of
  * two children comes first cannot be foretold. */
+static inline wide place_of(tarry_pending_entry entry) {
+    return entry.order * ((wide)1 << 64) + entry.key; /* a product, since order may be negative */
+}
+
 static inline bool is_before(tarry_pending_entry one, tarry_pending_entry other) {
-    return ((wide)one.order << 64 | one.key) < ((wide)other.order << 64 | other.key);
+    return place_of(one) < place_of(other);
 }
 
 static uint32_t lag_of(tarry_pending_entry entry) {
