@@ -42,7 +42,7 @@ static const option_row options[] = {
      "replace the results of an earlier run in that folder"},
     {"cells", "N", VALUE_NUMBER, MODEL_COMMANDS, 0, 1, MOST_CELLS, "cells to simulate"},
     {"settle", "T", VALUE_KEY, MODEL_COMMANDS, 0, 0, 0,
-     "time simulated before the record, or `auto`"},
+     "time simulated before the record"},
     {"until", "T", VALUE_KEY, MODEL_COMMANDS, 0, 0, 0, "length of the record"},
     {"every", "T", VALUE_KEY, MODEL_COMMANDS, 0, 0, 0, "time between frames"},
     {"snapshots", "T,T,...", VALUE_KEY, MODEL_COMMANDS, 0, 0, 0,

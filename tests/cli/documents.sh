@@ -1,0 +1,82 @@
+#!/bin/sh
+# shellcheck disable=SC2317 # cases are functions, called by name
+# What the documents and the example models say is what the program does.
+# shellcheck source=tests/cli/helpers.sh
+. "${0%/*}/helpers.sh"
+root=${models%/models}
+
+for model in "$models"/*.yaml; do
+    sound() {
+        run 0 check "$model" && says out "No warnings." && head -n 1 "$model" | grep -q '^# ' &&
+            sed -n 2p "$model" | grep -q '^# '
+    }
+    # A gene that is always on has no bursts, which is worth a warning.
+    case $model in
+    */delayed_feedback.yaml)
+        sound() {
+            run 0 check "$model" && says out "Warnings (1)"
+        }
+        ;;
+    esac
+    ok "$(basename "$model") is sound, and opens with what it shows" sound
+done
+
+# The first block of YAML in a document.
+first_block() {
+    awk '/^```yaml$/ && !seen { on = 1; next } /^```$/ { if (on) seen = 1; on = 0 } on' "$1"
+}
+
+format() {
+    first_block "$root/docs/model.md" >format.yaml && run 0 check format.yaml && says out "No warnings."
+}
+ok "the model in docs/model.md is sound" format
+
+# Each key told of in the table of the run and nowhere refused.
+not_yet() {
+    for key in fit varies clearance many initiates lost no_overtaking headway from allele share ramp \
+        steps every times; do
+        sed -n '/^## Not yet/,$p' "$root/docs/model.md" | grep -qF "\`$key\`" || return 1
+    done
+}
+ok "docs/model.md lists what is not yet" not_yet
+
+options_known() {
+    for file in README.md docs/model.md docs/files.md; do
+        # shellcheck disable=SC2013 # options are words
+        for option in $(grep -o -- '--[a-z]*' "$root/$file" | sort -u); do
+            "$TARRY" help run | grep -qF -- "  $option" || "$TARRY" version "$option" >out || return 1
+        done
+    done
+}
+ok "every option that the documents name is there" options_known
+
+files_told() {
+    run 0 run "$models/two_colours.yaml" --cells 20 --out all --keep 1 || return 1
+    for file in all/*; do
+        says "$root/docs/files.md" "$(basename "$file")" || return 1
+    done
+    for file in all/*.csv; do
+        [ "$file" = all/cells.csv ] && continue
+        columns=$(head -n 1 "$file" | sed 's/,/, /g')
+        grep -qF "| \`$(basename "$file")\` | $columns |" "$root/docs/files.md" || return 1
+    done
+}
+ok "docs/files.md names every file and its columns" files_told
+
+# Two runs of some seconds each, too long with sanitizers.
+walk() {
+    run 0 run "$models/two_state.yaml" --out short && mv out short.txt &&
+        run 0 run "$models/two_state.yaml" --set "length=8.4 kb" --out long && mv out long.txt ||
+        return 1
+    grep '^    .* to [0-9.]*$' "$root/README.md" | sed 's/^    //' >shown
+    [ "$(wc -l <shown)" -ge 20 ] || return 1
+    while IFS= read -r line; do
+        grep -qxF -- "$line" short.txt long.txt || {
+            echo "    not so: $line"
+            return 1
+        }
+    done <shown
+}
+[ -n "${TARRY_TEST_SMALL:-}" ] || ok "the numbers in README.md are those of the program" walk
+
+finish
