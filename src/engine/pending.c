@@ -7,13 +7,15 @@
 #include <stdlib.h>
 
 __extension__ typedef __int128 wide;
+__extension__ typedef unsigned __int128 unsigned_wide;
 
 static const tarry_pending_entry never = {INT64_MAX, UINT64_MAX};
 
 /* One number of 128 bits for (due, lag, order scheduled): compared without a branch, since which of
  * two children comes first cannot be foretold. */
 static inline wide place_of(tarry_pending_entry entry) {
-    return entry.order * ((wide)1 << 64) + entry.key; /* a product, since order may be negative */
+    /* Unsigned, since order may be negative and such numbers must not be shifted to the left. */
+    return (wide)((unsigned_wide)(uint64_t)entry.order << 64 | entry.key);
 }
 
 static inline bool is_before(tarry_pending_entry one, tarry_pending_entry other) {
