@@ -72,7 +72,8 @@ static tarry_code tell_what(tarry_text *text, const tarry_cell *cell) {
                           cell->most_firings, network->reactions[i].name);
         return TARRY_LIMIT;
     case TARRY_STOP_COUNT:
-        tarry_text_printf(text, "the count of \"%s\" reached 2^53, from where on counts are not exact",
+        tarry_text_printf(text,
+                          "the count of \"%s\" reached 2^53, from where on counts are not exact",
                           network->species[i].name);
         return TARRY_RUN;
     case TARRY_STOP_SHORT:
