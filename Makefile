@@ -127,6 +127,10 @@ test: deps-test
 test-slow: deps-test
 	@MAKE='$(MAKE)' BUILD='$(BUILD)' JOBS='$(JOBS)' sh tests/run.sh slow
 
+coverage: deps-test
+	@$(MAKE) --no-print-directory -j$(JOBS) $(BUILD)/tests/against/slow_coverage
+	@$(BUILD)/tests/against/slow_coverage
+
 lint: deps-dev
 	@MAKE='$(MAKE)' BUILD='$(BUILD)' JOBS='$(JOBS)' sh tests/lint.sh
 
@@ -151,7 +155,7 @@ clean:
 
 FORCE:
 .PHONY: all tests tests-slow everything list-tests list-tests-slow deps deps-test deps-dev demo test \
-  test-slow lint bench format install clean FORCE
+  test-slow coverage lint bench format install clean FORCE
 .SECONDARY:
 .DELETE_ON_ERROR:
 -include $(LIB_OBJECTS:.o=.d) $(CLI_OBJECTS:.o=.d) $(SUPPORT_OBJECTS:.o=.d) $(BENCH_OBJECTS:.o=.d) \
