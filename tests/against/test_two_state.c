@@ -2,12 +2,11 @@
  * Biol. 48:222), its burst limit, and what its bursts look like (common practice: competing
  * exponential times make sizes geometric from 0). */
 
+#include "kummer.h"
 #include "sample.h"
 #include "support.h"
 
 #include <gsl/gsl_randist.h>
-#include <gsl/gsl_sf_gamma.h>
-#include <gsl/gsl_sf_hyperg.h>
 #include <math.h>
 #include <stdio.h>
 #include <stdlib.h>
@@ -15,11 +14,7 @@
 
 enum { CELLS = 40000, MOST = 800 };
 
-typedef struct rates {
-    double open, shut, initiate;
-} rates;
-
-static void write_model(char text[1024], rates r, const char *start, const char *run) {
+static void write_model(char text[1024], two_state_rates r, const char *start, const char *run) {
     snprintf(text, 1024,
              "tarry: 1\n"
              "time: min\n"
@@ -34,21 +29,10 @@ static void write_model(char text[1024], rates r, const char *start, const char 
              start, r.open, r.shut, r.initiate, run);
 }
 
-/* P(n) = nu^n/n! (a)_n/(k)_n 1F1(a + n; k + n; -nu), as exp(-nu) 1F1(shut; k + n; nu): all terms
- * are positive then (Kummer). Rates in units of the transcripts' decay. */
-static double kummer_law(rates r, unsigned n) {
-    const double k = r.open + r.shut;
-    gsl_sf_result f;
-    ck_assert_int_eq(gsl_sf_hyperg_1F1_e(r.shut, k + n, r.initiate, &f), 0);
-    const double log_p = n * log(r.initiate) - gsl_sf_lnfact(n) + gsl_sf_lnpoch(r.open, n) -
-                         gsl_sf_lnpoch(k, n) - r.initiate;
-    return exp(log_p) * f.val;
-}
-
 /* Values for these rates to ten digits, found by solving the master equation directly. */
 START_TEST(test_kummer_law) {
     static const struct {
-        rates rates;
+        two_state_rates rates;
         double mean, fano;
         unsigned n[4];
         double p[4];
@@ -93,7 +77,7 @@ END_TEST
 /* Short active periods: the negative binomial with r = open and b = initiate/shut lies 0.2 % (total
  * variation) from the exact law at these rates, too little for this sample to tell. */
 START_TEST(test_burst_limit) {
-    const rates r = {0.5, 50, 500};
+    const two_state_rates r = {0.5, 50, 500};
     char text[1024];
     write_model(text, r, "steady",
                 "{settle: 30, until: 10, every: 10, snapshots: [10], record: []}");
@@ -116,7 +100,7 @@ END_TEST
 /* From shut and empty: mean nu p (1 - e^-t - (e^-t - e^-kt)/(k - 1)); variances by moment
  * equations. */
 START_TEST(test_induction) {
-    const rates r = {0.5, 2, 20};
+    const two_state_rates r = {0.5, 2, 20};
     static const double t[] = {0.5, 1, 2, 5},
                         variance[] = {3.61729876, 10.93795987, 19.41553742, 22.23344836};
     char text[1024];
@@ -146,7 +130,7 @@ START_TEST(test_copies) {
                                      CELLS);
     static double one[200], both[400];
     for (unsigned n = 0; n < 200; n++)
-        one[n] = kummer_law((rates){0.5, 2, 20}, n);
+        one[n] = kummer_law((two_state_rates){0.5, 2, 20}, n);
     for (size_t i = 0; i < 200; i++)
         for (size_t j = 0; j < 200; j++)
             both[i + j] += one[i] * one[j];
@@ -174,7 +158,7 @@ static size_t list_sizes(const tarry_results *results, double *sizes, size_t mos
  * product rate 0.5, interval 40/3 min. */
 START_TEST(test_bursts) {
     char text[1024];
-    write_model(text, (rates){0.1, 0.3, 2}, "steady",
+    write_model(text, (two_state_rates){0.1, 0.3, 2}, "steady",
                 "{cells: 4000, until: 100, every: 1, lags: 10}");
     tarry_model *model = NULL;
     tarry_results *results = run_results(text, &model);
@@ -206,7 +190,7 @@ END_TEST
 /* Dwells are exponential: the Kaplan-Meier curve over exp(-rate t), by its own band. */
 START_TEST(test_dwells) {
     char text[1024];
-    write_model(text, (rates){0.1, 0.3, 2}, "steady",
+    write_model(text, (two_state_rates){0.1, 0.3, 2}, "steady",
                 "{cells: 4000, until: 100, every: 1, lags: 10}");
     tarry_model *model = NULL;
     tarry_results *results = run_results(text, &model);
