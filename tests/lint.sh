@@ -123,7 +123,7 @@ step_library() {
 
 step_tidy() {
     pick '^src/.*\.c$' | xargs -n 3 -P "$JOBS" sh -c '
-        clang-tidy --quiet "$@" -- -std=c11 -D_POSIX_C_SOURCE=200809L -Iinclude -Isrc 2>&1 |
+        clang-tidy --quiet "$@" -- -std=c11 -D_POSIX_C_SOURCE=200809L -fopenmp -Iinclude -Isrc 2>&1 |
             grep -vE "^[0-9]+ warnings? (generated|treated)|^Suppressed" ; :' sh |
         none "clang-tidy"
 }

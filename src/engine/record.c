@@ -113,6 +113,6 @@ size_t tarry_record_bytes(const tarry_network *network) {
     const record_shape shape = shape_of(network);
     return shape.frames * sizeof(double) + shape.snapshots * sizeof(double) +
            network->n_tracks * sizeof(tarry_track_status) + shape.counts * sizeof(int64_t) +
-           network->n_reactions * sizeof(int64_t) + network->n_lags * 2 * sizeof(int64_t) +
+           network->n_reactions * sizeof(int64_t) + 2 * sizeof(int64_t) * network->n_lags +
            shape.lags * sizeof(tarry_lag_sums) + shape.bins * sizeof(int64_t);
 }

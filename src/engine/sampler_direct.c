@@ -85,7 +85,7 @@ static void sum_paths(tarry_sampler_state *state, const uint32_t *reactions, uin
         uint32_t n_above = 0;
         for (uint32_t i = 0; i < n_parents; i++) {
             const uint32_t k = parents[i];
-            node[k] = node[2 * k] + node[2 * k + 1];
+            node[k] = node[2 * (size_t)k] + node[2 * (size_t)k + 1];
             if (k > 1 && (n_above == 0 || parents[n_above - 1] != k / 2))
                 parents[n_above++] = k / 2;
         }
@@ -103,7 +103,7 @@ static void reset(tarry_sampler_state *state, const double *counts, uint32_t seg
     for (uint32_t r = 0; r < n; r++)
         state->suspicious |= work_out(state, r, &leaf[r], counts);
     for (uint32_t k = state->n_leaves; k-- > 1;)
-        state->values[k] = state->values[2 * k] + state->values[2 * k + 1];
+        state->values[k] = state->values[2 * (size_t)k] + state->values[2 * (size_t)k + 1];
 }
 
 static void changed(tarry_sampler_state *state, const double *counts, const uint32_t *reactions,
@@ -151,8 +151,8 @@ static int32_t search_tree(const tarry_sampler_state *state, double target) {
     const double *node = state->values;
     uint32_t k = 1;
     while (k < state->n_leaves) {
-        const double left = node[2 * k];
-        if (target < left || node[2 * k + 1] == 0) {
+        const double left = node[2 * (size_t)k];
+        if (target < left || node[2 * (size_t)k + 1] == 0) {
             k = 2 * k;
         } else {
             target -= left;

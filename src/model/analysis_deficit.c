@@ -228,7 +228,7 @@ static void convolve(const double *one, const double *other, double *out) {
 /* Masses of all grid steps together; `room` holds 3 (GRID + 2). Returns the array with the result.
  */
 static const double *grid_masses(const sorted *s, double h, double *room) {
-    double *all = room, *one = room + (GRID + 2), *next = room + 2 * (GRID + 2);
+    double *all = room, *one = room + (GRID + 2), *next = room + 2 * (size_t)(GRID + 2);
     step_masses(&s->grid[0], h, all);
     for (size_t i = 1; i < s->n_grid; i++) {
         step_masses(&s->grid[i], h, one);

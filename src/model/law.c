@@ -213,7 +213,7 @@ static double miss(const tarry_law *law, double p, double q, double x) {
 double tarry_law_solve(const tarry_law *law, double p, double q, double low, double high) {
     double a = high, fa = miss(law, p, q, high); /* newest point */
     double b = low, fb = miss(law, p, q, low);   /* b and a enclose the quantile */
-    double c = high, fc = fa;
+    double c, fc;                                /* the point that a or b was before */
     double t = 0.5;
     if (fb >= 0)
         return low;

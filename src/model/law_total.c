@@ -300,7 +300,7 @@ static double convolve(const sum *s, function which, double x) {
     f.rest.parts[first] = f.rest.parts[--f.rest.n];
     f.rest.shift = 0; /* already taken off x */
 
-    const size_t most_breaks = 2 * N_LANDMARKS + count_edges(&f.first) +
+    const size_t most_breaks = 2 * (size_t)N_LANDMARKS + count_edges(&f.first) +
                                count_edges(&f.rest.parts[0]);
     break_list breaks = {.x = x, .at = tarry_calloc(most_breaks, sizeof(double))};
     if (!breaks.at)

@@ -6,6 +6,7 @@
 
 #include "base/memory.h"
 
+#include <assert.h>
 #include <stdlib.h>
 #include <string.h>
 
@@ -121,6 +122,7 @@ static bool solve_free(const tarry_nullspace *space, size_t f, int64_t *y) {
         const int64_t *row = space->pivots + c * space->n;
         if (!space->leads[c] || row[f] == 0)
             continue;
+        assert(row[c] != 0); /* a pivot */
         const wide value = -(wide)row[f] * (int64_t)scale / row[c];
         if (value > INT64_MAX || value < -INT64_MAX)
             return false;

@@ -449,7 +449,7 @@ static void write_warnings(tarry_page *page, const tarry_notes *notes) {
         tarry_text_add_string(page->text, "\nNo warnings.\n");
         return;
     }
-    tarry_page_head(page, "Warnings", (long long)(first->n + notes->n));
+    tarry_page_head(page, "Warnings", (long long)first->n + (long long)notes->n);
     for (size_t i = 0; i < first->n; i++)
         tarry_text_printf(page->text, "  %s\n", first->lines[i]);
     for (size_t i = 0; i < notes->n; i++)

@@ -134,12 +134,12 @@ typedef struct event {
     int kind; /* 0: a transcript, 1: a protein */
 } event;
 
-typedef struct heap {
+typedef struct event_heap {
     event *events;
     size_t n, capacity;
-} heap;
+} event_heap;
 
-static inline int push(heap *heap, double due, int kind) {
+static inline int push(event_heap *heap, double due, int kind) {
     if (heap->n == heap->capacity) {
         const size_t capacity = heap->capacity ? 2 * heap->capacity : 1024;
         event *events = realloc(heap->events, capacity * sizeof *events);
@@ -158,7 +158,7 @@ static inline int push(heap *heap, double due, int kind) {
     return 0;
 }
 
-static inline int pop(heap *heap) {
+static inline int pop(event_heap *heap) {
     event *const e = heap->events;
     const int kind = e[0].kind;
     const event last = e[--heap->n];
@@ -196,7 +196,7 @@ static inline int heap_loop(const hand_model *model, bool is_gamma, double until
     }
     const double k_open = model->k_open, k_shut = model->k_shut, k_init = model->k_init;
     const double dm = model->transcript_decay, kp = model->k_translate, dp = model->protein_decay;
-    heap heap = {0};
+    event_heap heap = {0};
     int64_t firings = 0, completions = 0;
     double t = 0, m = 0, p = 0;
     bool on = false;
@@ -250,12 +250,12 @@ int hand_loop_gamma(const hand_model *model, double until, uint64_t seed, hand_r
 }
 
 /* First in, first out: enough where every lag of a kind has one length. */
-typedef struct ring {
+typedef struct due_ring {
     double *due;
     size_t head, n, capacity; /* a power of two */
-} ring;
+} due_ring;
 
-static inline int append(ring *ring, double due) {
+static inline int append(due_ring *ring, double due) {
     if (ring->n == ring->capacity) {
         const size_t capacity = ring->capacity ? 2 * ring->capacity : 1024;
         double *bigger = malloc(capacity * sizeof *bigger);
@@ -272,11 +272,11 @@ static inline int append(ring *ring, double due) {
     return 0;
 }
 
-static inline double first(const ring *ring) {
+static inline double first(const due_ring *ring) {
     return ring->n ? ring->due[ring->head] : INFINITY;
 }
 
-static inline void drop(ring *ring) {
+static inline void drop(due_ring *ring) {
     ring->head = (ring->head + 1) & (ring->capacity - 1);
     ring->n--;
 }
@@ -287,7 +287,7 @@ int hand_loop_fixed_rings(const hand_model *model, double until, uint64_t seed,
     seed_stream(s, seed);
     const double k_open = model->k_open, k_shut = model->k_shut, k_init = model->k_init;
     const double dm = model->transcript_decay, kp = model->k_translate, dp = model->protein_decay;
-    ring transcripts = {0}, proteins = {0};
+    due_ring transcripts = {0}, proteins = {0};
     int64_t firings = 0, completions = 0;
     double t = 0, m = 0, p = 0;
     bool on = false;

@@ -453,8 +453,8 @@ START_TEST(test_check_gene) {
         "vela 2 copies starts steady: shut 0.714286, open 0.285714 bursts in open",
         "vela.open 0.571429 on average",
         "vela.nascent 0",
-        "vela.shut>open vela.shut -> vela.open rate 0.2 /min, from 12 min on 0.8 (each of 2 "
-        "alleles)",
+        ("vela.shut>open vela.shut -> vela.open rate 0.2 /min, from 12 min on 0.8 (each of 2 "
+         "alleles)"),
         "vela.initiation vela.open -> vela.open + vela.nascent rate 3 /min (each of 2 alleles)",
         "vela.transcript decay vela.transcript -> nothing rate 0.138629 /min",
         "start nothing -> pre rate 2 /min starts start.later",
