@@ -407,38 +407,24 @@ static void write_files(tarry_page *page) {
                           "for each bin or step that is found.\n");
 }
 
-static const char *bytes_text(double bytes, char out[TARRY_NUMBER_SIZE + 4]) {
-    static const char *const units[] = {"B", "kB", "MB", "GB", "TB"};
-    char number[TARRY_NUMBER_SIZE];
-    size_t unit = 0;
-    while (bytes >= 1000 && unit < 4) {
-        bytes /= 1000;
-        unit++;
-    }
-    tarry_number_short(bytes, 3, number);
-    size_t n = strlen(number);
-    memcpy(out, number, n);
-    out[n++] = ' ';
-    memcpy(out + n, units[unit], strlen(units[unit]) + 1);
-    return out;
-}
-
 static int write_memory(tarry_page *page, tarry_notes *notes, tarry_error *error) {
     const int threads = tarry_run_threads(page->network, 0);
     const tarry_run_memory memory = tarry_run_memory_of(page->network, threads, 0);
     const double limit = page->network->run.limit_memory;
-    char one[TARRY_NUMBER_SIZE + 4], other[TARRY_NUMBER_SIZE + 4];
+    char one[TARRY_BYTES_SIZE], other[TARRY_BYTES_SIZE];
     tarry_page_head(page, "Memory", -1);
     tarry_text_printf(page->text, "  %s for the sums of the estimators, %s for each thread",
-                      bytes_text(memory.tallies, one), bytes_text(memory.thread, other));
-    tarry_text_printf(page->text, "; the limit is %s.\n", bytes_text(limit, one));
+                      tarry_bytes_text(memory.tallies, one),
+                      tarry_bytes_text(memory.thread, other));
+    tarry_text_printf(page->text, "; the limit is %s.\n", tarry_bytes_text(limit, one));
     if (memory.all <= limit)
         return 0;
     return tarry_notes_add(notes, (tarry_place){0}, error,
                            "a run would need %s of memory with %d threads, and the limit is %s: "
                            "record fewer names, take frames less often, use fewer windows or raise "
                            "limits: memory",
-                           bytes_text(memory.all, one), threads, bytes_text(limit, other));
+                           tarry_bytes_text(memory.all, one), threads,
+                           tarry_bytes_text(limit, other));
 }
 
 /* ---- warnings -------------------------------------------------------------------------------- */

@@ -18,6 +18,7 @@
 #include "base/text.h"
 #include "engine/cell.h"
 #include "model/model.h"
+#include "study/sheet.h"
 #include "tally/results.h"
 #include "tally/tally.h"
 #include "tarry/run.h"
@@ -204,14 +205,16 @@ static int check_memory(const tarry_network *network, int threads, int64_t keep,
     const double limit = network->run.limit_memory;
     if (memory.all <= limit)
         return 0;
-    const double mega = 1e6;
+    char all[TARRY_BYTES_SIZE], tallies[TARRY_BYTES_SIZE], thread[TARRY_BYTES_SIZE];
+    char kept[TARRY_BYTES_SIZE], most[TARRY_BYTES_SIZE];
     return tarry_fail(
         error, TARRY_LIMIT,
-        "this run needs %.0f MB of memory (sums of the estimators %.0f MB, %d threads of %.0f kB "
-        "each, kept traces %.0f MB) and the limit is %.0f MB: record fewer names (run: record), "
-        "take frames less often (run: every), use fewer windows%s or raise limits: memory",
-        memory.all / mega, memory.tallies / mega, threads, memory.thread / 1e3, memory.kept / mega,
-        limit / mega, keep > 0 ? " or kept cells" : "");
+        "this run needs %s of memory (sums of the estimators %s, %d threads of %s each, kept "
+        "traces %s) and the limit is %s: record fewer names (run: record), take frames less often "
+        "(run: every), use fewer windows%s or raise limits: memory",
+        tarry_bytes_text(memory.all, all), tarry_bytes_text(memory.tallies, tallies), threads,
+        tarry_bytes_text(memory.thread, thread), tarry_bytes_text(memory.kept, kept),
+        tarry_bytes_text(limit, most), keep > 0 ? " or kept cells" : "");
 }
 
 /* ---- the results ---------------------------------------------------------------------------- */

@@ -112,3 +112,19 @@ void tarry_number_short(double value, int digits, char out[TARRY_NUMBER_SIZE]) {
     }
     tarry_number_write(value, out);
 }
+
+const char *tarry_bytes_text(double bytes, char out[TARRY_BYTES_SIZE]) {
+    static const char *const units[] = {"B", "kB", "MB", "GB", "TB"};
+    char number[TARRY_NUMBER_SIZE];
+    size_t unit = 0;
+    while (bytes >= 1000 && unit < 4) {
+        bytes /= 1000;
+        unit++;
+    }
+    tarry_number_short(bytes, 3, number);
+    size_t n = strlen(number);
+    memcpy(out, number, n);
+    out[n++] = ' ';
+    memcpy(out + n, units[unit], strlen(units[unit]) + 1);
+    return out;
+}

@@ -6,7 +6,7 @@
 #include "base/number.h"
 #include "base/text.h"
 
-enum { TARRY_SHEET_COLUMNS = 6 };
+enum { TARRY_SHEET_COLUMNS = 6, TARRY_BYTES_SIZE = TARRY_NUMBER_SIZE + 4 };
 
 /* Rows of cells, to be set out at once. Zero-initialise. */
 typedef struct tarry_sheet {
@@ -28,5 +28,8 @@ void tarry_sheet_release(tarry_sheet *sheet);
 
 /* A number to `digits` significant digits (1 to 15), the fewest that say the same. */
 void tarry_number_short(double value, int digits, char out[TARRY_NUMBER_SIZE]);
+
+/* "2.67 MB"; returns `out`. */
+const char *tarry_bytes_text(double bytes, char out[TARRY_BYTES_SIZE]);
 
 #endif
