@@ -57,7 +57,7 @@ typedef struct tarry_distances {
     size_t n_left_out; /* genes: only so many that differ are worked out */
 } tarry_distances;
 
-enum { TARRY_DISTANCES_MOST = 200 }; /* genes that differ */
+enum { TARRY_DISTANCES_MOST = 100 }; /* genes that differ */
 
 /* Means a time `settle` after the start of the model, against the steady ones, in `arena`. Errors:
  * TARRY_MEMORY, TARRY_NUMERIC. */

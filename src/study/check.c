@@ -12,9 +12,6 @@
 #include <stdlib.h>
 #include <string.h>
 
-/* A mean further from steady than this when the record begins is warned of. */
-static const double far_from_steady = 0.005;
-
 void tarry_page_head(tarry_page *page, const char *title, long long n) {
     tarry_text_printf(page->text, "\n%s", title);
     if (n >= 0)
@@ -216,84 +213,6 @@ static int write_sums(tarry_page *page, tarry_error *error) {
     return code;
 }
 
-/* ---- distance from the steady state ---------------------------------------------------------- */
-
-static void put_percent(tarry_page *page, double relative, size_t column) {
-    char number[TARRY_NUMBER_SIZE];
-    if (isnan(relative)) {
-        tarry_sheet_cell(&page->sheet, column, "-");
-    } else if (fabs(relative) < 5e-7) {
-        tarry_sheet_cell(&page->sheet, column, "0 %%");
-    } else {
-        tarry_number_short(100 * relative, 2, number);
-        tarry_sheet_cell(&page->sheet, column, "%s%s %%", relative > 0 ? "+" : "", number);
-    }
-}
-
-static void put_distance(tarry_page *page, const tarry_distance *d) {
-    char number[TARRY_NUMBER_SIZE];
-    tarry_sheet_row(&page->sheet);
-    tarry_sheet_cell(&page->sheet, 0, "%s", page->network->species[d->species].name);
-    if (d->why) {
-        tarry_sheet_cell(&page->sheet, 4, "cannot be worked out: %s", d->why);
-        return;
-    }
-    tarry_sheet_cell(&page->sheet, 1, "%s", short_number(d->steady, number));
-    tarry_sheet_cell(&page->sheet, 2, "%s", short_number(d->mean, number));
-    put_percent(page, d->relative, 3);
-}
-
-/* Each product that is too far off, in the notes. */
-static int note_far(const tarry_page *page, const tarry_distances *distances, tarry_notes *notes,
-                    tarry_error *error) {
-    enum { MOST_TOLD = 10 };
-    size_t n = 0;
-    int code = 0;
-    for (size_t i = 0; i < distances->n && !code; i++) {
-        const tarry_distance *d = &distances->items[i];
-        char number[TARRY_NUMBER_SIZE];
-        if (d->why || !(fabs(d->relative) > far_from_steady) || n++ >= MOST_TOLD)
-            continue;
-        tarry_number_short(100 * fabs(d->relative), 2, number);
-        code = tarry_notes_add(notes, page->network->species[d->species].place, error,
-                               "when the record begins the mean of '%s' is %s %% %s its steady "
-                               "mean; a longer settle or 'start: steady' brings it nearer, where a "
-                               "steady start is meant",
-                               page->network->species[d->species].name, number,
-                               d->relative < 0 ? "below" : "above");
-    }
-    if (!code && n > MOST_TOLD)
-        code = tarry_notes_add(notes, (tarry_place){0}, error,
-                               "and %zu more means that are not steady when the record begins",
-                               n - MOST_TOLD);
-    return code;
-}
-
-static int write_distances(tarry_page *page, tarry_notes *notes, tarry_error *error) {
-    tarry_arena arena = {0};
-    tarry_distances d;
-    int code = tarry_analysis_distances(page->network, page->network->run.settle, &arena, &d,
-                                        error);
-    if (!code && d.n + d.n_left_out > 0) {
-        tarry_page_head(page, "Means when the record begins, against the steady state", -1);
-        tarry_sheet_row(&page->sheet);
-        tarry_sheet_cell(&page->sheet, 1, "steady");
-        tarry_sheet_cell(&page->sheet, 2, "at 0 %s", page->network->time_unit);
-        tarry_sheet_cell(&page->sheet, 3, "off by");
-        page->sheet.right = 1u << 1 | 1u << 2 | 1u << 3;
-        for (size_t i = 0; i < d.n && i < TARRY_CHECK_MOST; i++)
-            put_distance(page, &d.items[i]);
-        tarry_page_list(page, d.n < TARRY_CHECK_MOST ? d.n : TARRY_CHECK_MOST, d.n, "means");
-        if (d.n_left_out > 0)
-            tarry_text_printf(
-                page->text, "  Not worked out for %zu genes: only the first %d that differ are.\n",
-                d.n_left_out, TARRY_DISTANCES_MOST);
-        code = note_far(page, &d, notes, error);
-    }
-    tarry_arena_release(&arena);
-    return code;
-}
-
 /* ---- the run -------------------------------------------------------------------------------- */
 
 static void write_protocol(tarry_page *page) {
@@ -451,7 +370,7 @@ static int write_page(tarry_page *page, tarry_notes *notes, tarry_error *error) 
     tarry_page_delays(page);
     int code = write_sums(page, error);
     if (!code)
-        code = write_distances(page, notes, error);
+        code = tarry_page_distances(page, notes, error);
     if (code)
         return code;
     write_protocol(page);

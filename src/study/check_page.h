@@ -29,4 +29,7 @@ void tarry_page_completions(tarry_page *page);
 /* Delays with kind, parameters, mean and sd. */
 void tarry_page_delays(tarry_page *page);
 
+/* Distances from the steady means; those that are large go into the notes. */
+int tarry_page_distances(tarry_page *page, tarry_notes *notes, tarry_error *error);
+
 #endif

@@ -500,6 +500,35 @@ START_TEST(test_check_reactions) {
 }
 END_TEST
 
+/* Always on, decay 0.05: e^-0.5 = 61 % are missing after 10 min, 0.1 % after log(1000)/0.05 = 138.2
+ * min, 0.4 % (no warning) after 110.4 min. */
+START_TEST(test_check_steady) {
+    static const char model[] = "tarry: 1\n"
+                                "time: min\n"
+                                "genes:\n"
+                                "  vela:\n"
+                                "    promoter: {on: {initiates: 2}, off: {to: {on: 1}}}\n"
+                                "    transcript: {decay: 0.05}\n"
+                                "run: {settle: %s, until: 10}\n";
+    char text[512];
+    snprintf(text, sizeof text, model, "10");
+    char *report = check_text(text);
+    ck_assert(has_line(report, "vela.transcript 40 15.7388 -61 %"));
+    ck_assert_ptr_nonnull(strstr(
+        report, "when the record begins the mean of 'vela.transcript' is 61 % below its steady"));
+    const char *remedy = strstr(report, "settle for some ");
+    ck_assert_ptr_nonnull(remedy);
+    const double settle = strtod(remedy + strlen("settle for some "), NULL);
+    ck_assert_double_ge(settle, log(1000) / 0.05);
+    ck_assert_double_le(settle, 1.15 * log(1000) / 0.05);
+    free(report);
+    snprintf(text, sizeof text, model, "110.4");
+    report = check_text(text);
+    ck_assert_ptr_null(strstr(report, "when the record begins the"));
+    free(report);
+}
+END_TEST
+
 /* Lists are cut and say so, and the report of 10,000 genes, no two of which are alike, takes less
  * than 2 s of processor time. */
 START_TEST(test_check_many) {
@@ -546,6 +575,7 @@ int main(void) {
         {"memory faults", test_memory_faults},
         {"check: gene", test_check_gene},
         {"check: reactions", test_check_reactions},
+        {"check: steady", test_check_steady},
         {"check: many", test_check_many},
     };
     return run_tests("study", tests, sizeof tests / sizeof *tests);
