@@ -53,12 +53,14 @@ static bool is_far(const tarry_distance *d) {
     return !d->why && fabs(d->relative) > far_from_steady;
 }
 
-/* One gene's products, items[0 .. n): the one that is furthest off is named. */
+/* One gene's products, items[0 .. n), some of them far off: the one that is furthest off is named.
+ */
 static int note_gene(const tarry_network *network, const tarry_distance *items, size_t n,
                      size_t n_far, tarry_notes *notes, tarry_error *error) {
-    const tarry_distance *worst = NULL;
-    for (size_t i = 0; i < n; i++)
-        if (is_far(&items[i]) && (!worst || fabs(items[i].relative) > fabs(worst->relative)))
+    const tarry_distance *worst = items;
+    for (size_t i = 1; i < n; i++)
+        if (is_far(&items[i]) &&
+            (!is_far(worst) || fabs(items[i].relative) > fabs(worst->relative)))
             worst = &items[i];
     char number[TARRY_NUMBER_SIZE], others[64] = "";
     tarry_number_short(100 * fabs(worst->relative), 2, number);
