@@ -247,7 +247,8 @@ static void tell_changed_lags(teller *t) {
     for (uint32_t i = network->n_lags; i-- > 0;)
         lag_of[network->lags[i].delay] = &network->lags[i];
     for (uint32_t k = 1; k < network->n_segments && !t->code; k++)
-        tell_changed_delays(t, &network->segments[k - 1], &network->segments[k], lag_of);
+        if (network->segments[k].moment == TARRY_MOMENT_STEP)
+            tell_changed_delays(t, &network->segments[k - 1], &network->segments[k], lag_of);
     free(lag_of);
     close_kind(t, "steps that change a delay");
 }

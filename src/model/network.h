@@ -224,9 +224,17 @@ typedef struct tarry_setting {
     tarry_place place;
 } tarry_setting;
 
+/* What begins with a segment, of several the first in this list. */
+typedef enum tarry_moment {
+    TARRY_MOMENT_STEP,      /* a step, or a ramp begins */
+    TARRY_MOMENT_RAMP_END,  /* a ramp has come to its last value */
+    TARRY_MOMENT_RAMP_PART, /* the next stretch of a ramp under way: no step of its own */
+} tarry_moment;
+
 /* What is in force from `start` to the next segment's start. Segment 0 starts at -settle. */
 typedef struct tarry_segment {
     double start;
+    tarry_moment moment;
     const double *parameters;         /* n_parameters */
     const double *rates;              /* n_rates, per unit of time */
     const double *means;              /* n_means, of random amounts */

@@ -1,6 +1,6 @@
 /* Steps are put in order of time, those of one time in the order of the file, and each time makes
  * one segment. What a step sets is worked out with the parameters before it. Parameters that are
- * expressions of others follow, unless they have been set themselves. */
+ * expressions of others follow, unless they have been set themselves. A ramp is a row of steps. */
 #include "model/read_run.h"
 
 #include "base/error.h"
@@ -8,6 +8,7 @@
 #include "base/text.h"
 #include "model/expect.h"
 #include "model/parameter_order.h"
+#include "model/protocol_steps.h"
 
 #include <math.h>
 #include <stdio.h>
@@ -19,69 +20,15 @@ static const char PROMOTER[] = ".promoter";
 
 enum { LONGEST_KEY = 160 };
 
-typedef struct protocol_step {
-    double at;
-    size_t number; /* in the file */
-    const tarry_node *set;
-} protocol_step;
-
 typedef struct protocol_reader {
     tarry_builder *builder;
-    protocol_step *steps;
-    bool *fixed;    /* by parameter: a step has set it */
-    double *before; /* parameters before the step that is read */
-    double *now;    /* the segment's own, in the arena */
+    tarry_protocol_steps steps;
+    bool *fixed;                         /* by parameter: a step has set it */
+    const tarry_protocol_ramp **ramping; /* by parameter: the ramp under way, or NULL */
+    double *before;                      /* parameters before the step that is read */
+    double *now;                         /* the segment's own, in the arena */
     tarry_text text;
 } protocol_reader;
-
-/* ---- steps ------------------------------------------------------------------------------------
- */
-
-static int read_time(protocol_reader *in, const tarry_node *item, double until, double *at,
-                     tarry_error *error) {
-    const tarry_node *node = NULL;
-    char one[TARRY_NUMBER_SIZE], two[TARRY_NUMBER_SIZE];
-    int code = tarry_expect_value(item, "a step of the protocol", "at", &node, error);
-    if (code == 0)
-        code = tarry_builder_constant_value(in->builder, node, TARRY_TIME, "the time of a step", at,
-                                            error);
-    if (code != 0 || (*at >= 0 && *at <= until))
-        return code;
-    tarry_number_write(*at, one);
-    tarry_number_write(until, two);
-    return tarry_fail_at(error, TARRY_INPUT, node->place,
-                         "a step at %s lies outside the record, which runs from 0 to %s ('until')",
-                         one, two);
-}
-
-static int read_step(protocol_reader *in, const tarry_node *item, double until, size_t number,
-                     tarry_error *error) {
-    static const char *const keys[] = {"at",    "set",   "from",  "to", "ramp",
-                                       "steps", "every", "times", "do"};
-    static const char *const later[] = {"ramp", "steps", "every", "times", "do", "from", "to"};
-    protocol_step *step = &in->steps[number];
-    int code = tarry_expect_keys(item, "a step of the protocol", keys, 9, error);
-    if (code == 0)
-        code = tarry_expect_not_yet(item, "a step of the protocol", later, 7, error);
-    if (code == 0)
-        code = read_time(in, item, until, &step->at, error);
-    if (code == 0)
-        code = tarry_expect_value(item, "a step of the protocol", "set", &step->set, error);
-    if (code == 0)
-        code = tarry_expect_map(step->set, "'set'", error);
-    if (code == 0 && step->set->n == 0)
-        code = tarry_fail_at(error, TARRY_INPUT, step->set->place,
-                             "'set' is empty; name what the step sets, as in set: {k_open: 0.4}");
-    step->number = number;
-    return code;
-}
-
-static int by_time(const void *one, const void *other) {
-    const protocol_step *a = one, *b = other;
-    if (a->at != b->at)
-        return a->at < b->at ? -1 : 1;
-    return (a->number > b->number) - (a->number < b->number);
-}
 
 /* ---- settings ---------------------------------------------------------------------------------
  */
@@ -103,8 +50,18 @@ static int work_out(protocol_reader *in, const tarry_entry *entry, tarry_dimensi
     return 0;
 }
 
+static int fail_ramping(const tarry_entry *entry, const tarry_protocol_ramp *ramp,
+                        tarry_error *error) {
+    return tarry_fail_at(error, TARRY_INPUT, entry->place,
+                         "'%s' is on its way in the ramp of line %d; no other step can set it "
+                         "before that ramp has ended",
+                         entry->key, ramp->values->place.line);
+}
+
 static int set_parameter(protocol_reader *in, const tarry_entry *entry, uint32_t index,
                          tarry_error *error) {
+    if (in->ramping[index] != NULL)
+        return fail_ramping(entry, in->ramping[index], error);
     in->fixed[index] = true;
     return work_out(in, entry, in->builder->parameters.items[index].dimension, &in->now[index],
                     error);
@@ -220,20 +177,89 @@ static int set_one(protocol_reader *in, const tarry_entry *entry, tarry_error *e
     return code;
 }
 
+/* ---- ramps ------------------------------------------------------------------------------------
+ */
+
+static int ramped_parameter(const protocol_reader *in, const tarry_entry *entry, uint32_t *index,
+                            tarry_error *error) {
+    const tarry_builder *builder = in->builder;
+    const int32_t found = tarry_builder_find(builder, TARRY_SYMBOL_PARAMETER, entry->key);
+    *index = (uint32_t)found;
+    if (found != TARRY_NONE)
+        return 0;
+    if (tarry_builder_find(builder, TARRY_SYMBOL_SPECIES, entry->key) != TARRY_NONE ||
+        find_promoter(builder, entry->key) != TARRY_NONE)
+        return tarry_fail_at(error, TARRY_INPUT, entry->place,
+                             "a ramp changes parameters, and '%s' is none; use 'at' with 'set'",
+                             entry->key);
+    return fail_key(in, entry, error);
+}
+
+/* The line from the value before to the one given. */
+static int begin_line(protocol_reader *in, tarry_protocol_ramp *ramp, size_t i, uint32_t index,
+                      tarry_error *error) {
+    const tarry_entry *entry = &ramp->values->entries[i];
+    char until[TARRY_NUMBER_SIZE];
+    if (in->ramping[index] != NULL)
+        return fail_ramping(entry, in->ramping[index], error);
+    const int code = work_out(in, entry, in->builder->parameters.items[index].dimension,
+                              &ramp->last[i], error);
+    ramp->first[i] = in->before[index];
+    in->fixed[index] = true;
+    in->ramping[index] = ramp;
+    tarry_number_write_rounded(ramp->until, 6, until);
+    tarry_text_printf(&in->text, "%s%s to %s in %u steps until %s %s",
+                      in->text.size > 0 ? ", " : "", entry->key, entry->node->text,
+                      (unsigned)ramp->n, until, in->builder->network->time_unit);
+    return code;
+}
+
+static void note_value(protocol_reader *in, const char *name, double value) {
+    char text[TARRY_NUMBER_SIZE];
+    tarry_number_write_rounded(value, 6, text);
+    tarry_text_printf(&in->text, "%s%s = %s", in->text.size > 0 ? ", " : "", name, text);
+}
+
+/* In a stretch the value at its middle; from the end on what was given. */
+static int go_along(protocol_reader *in, const tarry_protocol_step *step, tarry_error *error) {
+    tarry_protocol_ramp *ramp = step->ramp;
+    const bool ends = step->part == ramp->n;
+    int code = 0;
+    for (size_t i = 0; code == 0 && i < ramp->values->n; i++) {
+        const tarry_entry *entry = &ramp->values->entries[i];
+        uint32_t index = 0;
+        code = ramped_parameter(in, entry, &index, error);
+        if (code == 0 && step->part == 0)
+            code = begin_line(in, ramp, i, index, error);
+        if (code != 0)
+            return code;
+        const double share = (step->part + 0.5) / ramp->n;
+        in->now[index] = ends ? ramp->last[i]
+                              : ramp->first[i] + share * (ramp->last[i] - ramp->first[i]);
+        if (step->part > 0)
+            note_value(in, entry->key, in->now[index]);
+        if (ends)
+            in->ramping[index] = NULL;
+    }
+    return code;
+}
+
 /* ---- segments ---------------------------------------------------------------------------------
  */
 
-static int set_all(protocol_reader *in, const protocol_step *step, tarry_error *error) {
+static int set_all(protocol_reader *in, const tarry_protocol_step *step, tarry_error *error) {
     const tarry_builder *builder = in->builder;
     const size_t n = builder->parameters.n;
     int code = 0;
     if (n > 0)
         memcpy(in->before, in->now, n * sizeof *in->now);
-    for (size_t i = 0; code == 0 && i < step->set->n; i++)
-        code = set_one(in, &step->set->entries[i], error);
+    if (step->ramp != NULL)
+        code = go_along(in, step, error);
+    else
+        for (size_t i = 0; code == 0 && i < step->set->n; i++)
+            code = set_one(in, &step->set->entries[i], error);
     if (code == 0 && tarry_parameter_values(builder, in->fixed, in->now, error) != 0)
-        code = tarry_error_context(error, "after the protocol's step in line %d",
-                                   step->set->place.line);
+        code = tarry_error_context(error, "after the protocol's step in line %d", step->line);
     return code;
 }
 
@@ -243,7 +269,8 @@ static int add_segment(protocol_reader *in, double start, tarry_error *error) {
     const size_t n = builder->parameters.n;
     const double *last = in->now != NULL ? in->now : builder->values;
     const uint32_t settings = (uint32_t)builder->settings.n;
-    tarry_segment segment = {.start = start, .settings = {settings, settings}, .text = ""};
+    tarry_segment segment = {
+        .start = start, .moment = TARRY_MOMENT_STEP, .settings = {settings, settings}, .text = ""};
     in->now = tarry_arena_calloc(builder->arena, n, sizeof *in->now);
     if (in->now == NULL)
         return tarry_fail_memory(error, "the protocol");
@@ -255,18 +282,30 @@ static int add_segment(protocol_reader *in, double start, tarry_error *error) {
                : tarry_fail_memory(error, "the protocol");
 }
 
+/* What a step is to a reader of the protocol; of several at one time the first kind counts. */
+static tarry_moment moment_of(const tarry_protocol_step *step) {
+    if (step->ramp == NULL || step->part == 0)
+        return TARRY_MOMENT_STEP;
+    return step->part == step->ramp->n ? TARRY_MOMENT_RAMP_END : TARRY_MOMENT_RAMP_PART;
+}
+
 /* The steps of one time; returns their code, and their number in *taken. */
-static int read_moment(protocol_reader *in, const protocol_step *steps, size_t n, size_t *taken,
-                       tarry_error *error) {
+static int read_moment(protocol_reader *in, const tarry_protocol_step *steps, size_t n,
+                       size_t *taken, tarry_error *error) {
     tarry_builder *builder = in->builder;
     int code = add_segment(in, steps[0].at, error);
+    tarry_moment moment = TARRY_MOMENT_RAMP_PART;
     in->text.size = 0;
     *taken = 0;
-    while (code == 0 && *taken < n && steps[*taken].at == steps[0].at)
+    while (code == 0 && *taken < n && steps[*taken].at == steps[0].at) {
+        const tarry_moment this = moment_of(&steps[*taken]);
+        moment = this < moment ? this : moment;
         code = set_all(in, &steps[(*taken)++], error);
+    }
     if (code != 0)
         return code;
     tarry_segment *segment = &builder->segments.items[builder->segments.n - 1];
+    segment->moment = moment;
     segment->settings.to = (uint32_t)builder->settings.n;
     if (!in->text.failed)
         segment->text = tarry_arena_text(builder->arena, in->text.data, in->text.size);
@@ -279,13 +318,10 @@ static int read_list(protocol_reader *in, const tarry_node *list, tarry_error *e
     int code = tarry_run_map(in->builder, &run, error);
     if (code == 0)
         code = tarry_read_until(in->builder, run, &until, error);
-    for (size_t i = 0; code == 0 && i < list->n; i++)
-        code = read_step(in, list->entries[i].node, until, i, error);
-    if (code != 0 || list->n == 0)
-        return code;
-    qsort(in->steps, list->n, sizeof *in->steps, by_time);
-    for (size_t i = 0, taken = 0; code == 0 && i < list->n; i += taken)
-        code = read_moment(in, in->steps + i, list->n - i, &taken, error);
+    if (code == 0)
+        code = tarry_read_protocol_steps(in->builder, list, until, &in->steps, error);
+    for (size_t i = 0, taken = 0; code == 0 && i < in->steps.n; i += taken)
+        code = read_moment(in, in->steps.items + i, in->steps.n - i, &taken, error);
     return code;
 }
 
@@ -297,14 +333,15 @@ int tarry_read_protocol(tarry_builder *builder, tarry_error *error) {
         code = tarry_expect_list(list, "'protocol'", error);
     if (code != 0 || list == NULL)
         return code;
-    in.steps = tarry_calloc(list->n, sizeof *in.steps);
     in.fixed = tarry_calloc(builder->parameters.n, sizeof *in.fixed);
+    in.ramping = tarry_calloc(builder->parameters.n, sizeof *in.ramping);
     in.before = tarry_calloc(builder->parameters.n, sizeof *in.before);
-    if (in.steps == NULL || in.fixed == NULL || in.before == NULL)
+    if (in.ramping == NULL || in.fixed == NULL || in.before == NULL)
         code = tarry_fail_memory(error, "the protocol");
     if (code == 0)
         code = read_list(&in, list, error);
-    free(in.steps);
+    free(in.steps.items);
+    free(in.ramping);
     free(in.fixed);
     free(in.before);
     tarry_text_release(&in.text);

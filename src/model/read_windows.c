@@ -1,15 +1,18 @@
 /* A window is a stretch of the record for which figures are made. The engine counts in spans, the
  * stretches between neighbouring bounds of windows, so that windows may overlap. Without `windows:`
- * there is one, `all`, or where protocol steps fall within the record `w1`, `w2`, ... between them.
- */
+ * there is one, `all`, or where protocol steps fall within the record `w1`, `w2`, ... between them;
+ * a ramp is one window. */
 #include "model/read_run.h"
 
 #include "base/error.h"
+#include "base/notes.h"
 #include "base/number.h"
 #include "model/expect.h"
 
 #include <math.h>
 #include <stdlib.h>
+
+enum { MOST_BY_DEFAULT = 20 };
 
 /* ---- what is wrong -----------------------------------------------------------------------------
  */
@@ -62,24 +65,48 @@ static int read_named(tarry_builder *builder, const tarry_node *map, tarry_windo
     return code;
 }
 
-/* Windows between the steps of the protocol, of which there is room for one more than segments. */
-static int make_default(const tarry_builder *builder, tarry_window *windows, uint32_t *n,
-                        tarry_error *error) {
+/* Where a window of the protocol begins: at a step, at both ends of a ramp. */
+static bool parts_windows(const tarry_builder *builder, size_t segment) {
+    const tarry_segment *segments = builder->segments.items;
+    return segments[segment].moment != TARRY_MOMENT_RAMP_PART && segments[segment].start > 0 &&
+           segments[segment].start < builder->network->run.until;
+}
+
+static size_t count_default(const tarry_builder *builder) {
+    size_t n = 1;
+    for (size_t i = 1; i < builder->segments.n; i++)
+        n += parts_windows(builder, i);
+    return n;
+}
+
+/* Windows between the steps of the protocol, or the whole record where there are none or too many.
+ * `windows` has room for count_default. */
+static int make_default(tarry_builder *builder, const tarry_node *run, tarry_window *windows,
+                        uint32_t *n, tarry_error *error) {
     const double until = builder->network->run.until;
+    const size_t most = *n;
     double from = 0;
+    *n = 1;
+    windows[0] = (tarry_window){.name = "all", .from = 0, .to = until};
+    if (most > MOST_BY_DEFAULT)
+        return tarry_notes_add(&builder->model->notes, run->place, error,
+                               "the protocol would part the record into %zu windows; above %d "
+                               "there is one, 'all'. Name those you want under 'windows'.",
+                               most, (int)MOST_BY_DEFAULT);
+    if (most == 1)
+        return 0;
     *n = 0;
     for (size_t i = 1; i <= builder->segments.n; i++) {
-        const double to = i < builder->segments.n ? builder->segments.items[i].start : until;
-        if (to > from) {
-            windows[*n] = (tarry_window){.from = from, .to = to};
-            windows[*n].name = tarry_arena_format(builder->arena, "w%u", (unsigned)*n + 1);
-            if (windows[(*n)++].name == NULL)
-                return tarry_fail_memory(error, "the windows");
-            from = to;
-        }
+        const bool last = i == builder->segments.n;
+        const double to = last ? until : builder->segments.items[i].start;
+        if (!last && !parts_windows(builder, i))
+            continue;
+        windows[*n] = (tarry_window){.from = from, .to = to};
+        windows[*n].name = tarry_arena_format(builder->arena, "w%u", (unsigned)*n + 1);
+        if (windows[(*n)++].name == NULL)
+            return tarry_fail_memory(error, "the windows");
+        from = to;
     }
-    if (*n == 1)
-        windows[0].name = "all";
     return 0;
 }
 
@@ -181,12 +208,12 @@ int tarry_read_windows(tarry_builder *builder, const tarry_node *run, tarry_erro
                              "'windows' names no window; leave it out for the whole record");
     if (code != 0)
         return code;
-    uint32_t n = map != NULL ? (uint32_t)map->n : (uint32_t)builder->segments.n;
+    uint32_t n = map != NULL ? (uint32_t)map->n : (uint32_t)count_default(builder);
     tarry_window *windows = tarry_arena_calloc(builder->arena, n, sizeof *windows);
     if (windows == NULL)
         return tarry_fail_memory(error, "the windows");
     code = map != NULL ? read_named(builder, map, windows, error)
-                       : make_default(builder, windows, &n, error);
+                       : make_default(builder, run, windows, &n, error);
     if (code == 0)
         code = make_spans(builder, windows, n, error);
     if (code == 0)

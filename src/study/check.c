@@ -217,11 +217,16 @@ static int write_sums(tarry_page *page, tarry_error *error) {
 
 static void write_protocol(tarry_page *page) {
     const tarry_network *network = page->network;
-    size_t shown = 0;
-    if (network->n_segments < 2)
+    size_t all = 0, shown = 0;
+    for (uint32_t k = 1; k < network->n_segments; k++)
+        all += network->segments[k].moment != TARRY_MOMENT_RAMP_PART;
+    if (all == 0)
         return;
-    tarry_page_head(page, "Protocol", (long long)network->n_segments - 1);
-    for (uint32_t k = 1; k < network->n_segments && shown < TARRY_CHECK_MOST; k++, shown++) {
+    tarry_page_head(page, "Protocol", (long long)all);
+    for (uint32_t k = 1; k < network->n_segments && shown < TARRY_CHECK_MOST; k++) {
+        if (network->segments[k].moment == TARRY_MOMENT_RAMP_PART)
+            continue;
+        shown++;
         char at[TARRY_NUMBER_SIZE];
         tarry_sheet_row(&page->sheet);
         tarry_sheet_cell(&page->sheet, 0, "at %s %s", short_number(network->segments[k].start, at),
@@ -229,7 +234,7 @@ static void write_protocol(tarry_page *page) {
         if (network->segments[k].text)
             tarry_sheet_cell(&page->sheet, 1, "%s", network->segments[k].text);
     }
-    tarry_page_list(page, shown, network->n_segments - 1, "steps");
+    tarry_page_list(page, shown, all, "steps");
 }
 
 static void write_windows(tarry_page *page) {

@@ -153,14 +153,17 @@ static void put_equation(const writer *w, const tarry_effect *effect,
 
 /* ---- reactions ------------------------------------------------------------------------------ */
 
-/* "; 0.4 from 60 min" for each step that changes a rate, up to two. */
+/* "; 0.4 from 60 min" for each step that changes a rate, up to two; of a ramp the first value
+ * and the last. */
 static void add_steps(const writer *w, uint32_t rate, tarry_text *text) {
     const tarry_network *network = w->network;
     int n = 0;
+    double before = network->segments[0].rates[rate];
     for (uint32_t k = 1; k < network->n_segments; k++) {
         const double value = network->segments[k].rates[rate];
-        if (value == network->segments[k - 1].rates[rate])
+        if (value == before || network->segments[k].moment == TARRY_MOMENT_RAMP_PART)
             continue;
+        before = value;
         if (++n > 2) {
             tarry_text_add_string(text, ", ...");
             return;
@@ -348,14 +351,18 @@ static void put_delay(tarry_page *page, const tarry_segment *segment, uint32_t d
     put_parameters(page, law, 4);
 }
 
-/* A delay in every segment in which it differs from the one before. */
+/* A delay in every segment in which it differs from the one shown before; of a ramp the first value
+ * and the last. */
 static void put_delay_steps(tarry_page *page, uint32_t delay, const char *name) {
     const tarry_network *network = page->network;
     put_delay(page, &network->segments[0], delay, name);
+    const tarry_segment *before = &network->segments[0];
     for (uint32_t k = 1; k < network->n_segments; k++) {
         const tarry_segment *segment = &network->segments[k];
-        if (tarry_law_same(&segment[-1].laws[delay], &segment->laws[delay]))
+        if (segment->moment == TARRY_MOMENT_RAMP_PART ||
+            tarry_law_same(&before->laws[delay], &segment->laws[delay]))
             continue;
+        before = segment;
         char at[TARRY_NUMBER_SIZE];
         tarry_number_short(segment->start, 6, at);
         put_delay(page, segment, delay, "");

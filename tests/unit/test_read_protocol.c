@@ -2,7 +2,7 @@
 #include "reading.h"
 #include "support.h"
 
-#include <string.h>
+#include <stdio.h>
 
 /* A gene of two alleles and a plain species, without the rest of the reader of models. */
 static int make_names(tarry_builder *builder, tarry_error *error) {
@@ -45,10 +45,6 @@ static reader *const readers[] = {tarry_read_parameters, make_names, tarry_read_
 
 static void refused(const char *text, int line, int column, const char *words) {
     reading_refused(text, NULL, 0, readers, 3, TARRY_INPUT, line, column, words);
-}
-
-static void not_yet(const char *text, int line, int column, const char *words) {
-    reading_refused(text, NULL, 0, readers, 3, TARRY_NOT_YET, line, column, words);
 }
 
 static void check_values(const tarry_segment *segment, double start, const double *values,
@@ -160,9 +156,150 @@ START_TEST(what_cannot_be_set) {
 }
 END_TEST
 
-START_TEST(later_versions) {
-    not_yet(HEAD "- {from: 0, to: 10, ramp: {k: 2}, steps: 50}\n", 4, 21, "'ramp' cannot be used");
-    not_yet(HEAD "- {every: 2 h, times: 5, do: []}\n", 4, 4, "'every' cannot be used yet");
+/* ---- ramps and repeats ------------------------------------------------------------------------
+ */
+
+/* Values at the middles of four stretches of a line from 1 to 3, then 3 (docs/model.md). */
+START_TEST(ramp) {
+    static const double k[] = {1.25, 1.75, 2.25, 2.75, 3};
+    static const tarry_moment moments[] = {TARRY_MOMENT_STEP, TARRY_MOMENT_RAMP_PART,
+                                           TARRY_MOMENT_RAMP_PART, TARRY_MOMENT_RAMP_PART,
+                                           TARRY_MOMENT_RAMP_END};
+    reading in;
+    reading_start(&in, HEAD "- {from: 10, to: 30, ramp: {k: 3 * k}, steps: 4}\n", NULL, 0);
+    reading_pass(&in, readers, 3);
+    ck_assert_uint_eq(in.builder.segments.n, 6);
+    for (size_t i = 0; i < 5; i++) {
+        const tarry_segment *segment = &in.builder.segments.items[1 + i];
+        char text[64] = "k to 3 * k in 4 steps until 30 min";
+        if (i > 0)
+            snprintf(text, sizeof text, "k = %g", k[i]);
+        check_values(segment, 10 + 5 * (double)i, (double[]){k[i], 2 * k[i], 5, 4 * k[i]}, text);
+        ck_assert_int_eq(segment->moment, moments[i]);
+    }
+    reading_end(&in);
+}
+END_TEST
+
+/* A ramp begins where the one before has ended, also where the file names it first; a step in its
+ * midst sets something else, and makes its time a step. */
+START_TEST(ramps_meet_steps) {
+    reading in;
+    reading_start(&in,
+                  HEAD "- {from: 20, to: 30, ramp: {k: 13}, steps: 1}\n"
+                       "- {from: 0, to: 20, ramp: {k: 3, lag: 6}, steps: 2}\n"
+                       "- {at: 10, set: {load: 4 * k}}\n"
+                       "- {at: 30, set: {k: k + 1}}\n",
+                  NULL, 0);
+    reading_pass(&in, readers, 3);
+    const tarry_segment *segments = in.builder.segments.items;
+    ck_assert_uint_eq(in.builder.segments.n, 5);
+    check_values(&segments[1], 0, (double[]){1.5, 3, 5.25, 6},
+                 "k to 3 in 2 steps until 20 min, lag to 6 in 2 steps until 20 min");
+    check_values(&segments[2], 10, (double[]){2.5, 5, 5.75, 10},
+                 "k = 2.5, lag = 5.75, load = 4 * k");
+    ck_assert_int_eq(segments[2].moment, TARRY_MOMENT_STEP);
+    ck_assert(in.builder.settings.items[0].value == 10);
+    check_values(&segments[3], 20, (double[]){8, 16, 6, 32},
+                 "k = 3, lag = 6, k to 13 in 1 steps until 30 min");
+    check_values(&segments[4], 30, (double[]){14, 28, 6, 56}, "k = 13, k = k + 1");
+    reading_end(&in);
+}
+END_TEST
+
+/* Two readings come to the same segments. */
+static void check_same(const char *one_text, const char *other_text, size_t n) {
+    reading one, other;
+    reading_start(&one, one_text, NULL, 0);
+    reading_pass(&one, readers, 3);
+    reading_start(&other, other_text, NULL, 0);
+    reading_pass(&other, readers, 3);
+    ck_assert_uint_eq(one.builder.segments.n, n);
+    ck_assert_uint_eq(other.builder.segments.n, n);
+    for (size_t i = 0; i < n; i++) {
+        const tarry_segment *a = &one.builder.segments.items[i];
+        const tarry_segment *b = &other.builder.segments.items[i];
+        check_values(a, b->start, b->parameters, b->text);
+        ck_assert_int_eq(a->moment, b->moment);
+        ck_assert_uint_eq(a->settings.from, b->settings.from);
+        ck_assert_uint_eq(a->settings.to, b->settings.to);
+    }
+    reading_end(&one);
+    reading_end(&other);
+}
+
+START_TEST(repeats) {
+    check_same(HEAD
+               "- {every: 10, times: 3, do: [{at: 4, set: {k: 5}}, {at: 1, set: {k: k + 1}}]}\n",
+               HEAD "- {at: 1, set: {k: k + 1}}\n"
+                    "- {at: 4, set: {k: 5}}\n"
+                    "- {at: 11, set: {k: k + 1}}\n"
+                    "- {at: 14, set: {k: 5}}\n"
+                    "- {at: 21, set: {k: k + 1}}\n"
+                    "- {at: 24, set: {k: 5}}\n",
+               7);
+    check_same(HEAD "- {from: 30, every: 0.5 h, times: 2, do: [{from: 5, to: 10, ramp: {k: 2 * k}, "
+                    "steps: 2}, {at: 20, set: {lag: 1, load: 3}}]}\n",
+               HEAD "- {from: 65, to: 70, ramp: {k: 2 * k}, steps: 2}\n"
+                    "- {from: 35, to: 40, ramp: {k: 2 * k}, steps: 2}\n"
+                    "- {at: 50, set: {lag: 1, load: 3}}\n"
+                    "- {at: 80, set: {lag: 1, load: 3}}\n",
+               9);
+}
+END_TEST
+
+START_TEST(wrong_ramps) {
+    refused(HEAD "- {to: 9, ramp: {k: 2}, steps: 5}\n", 4, 3,
+            "a ramp of the protocol needs 'from'");
+    refused(HEAD "- {from: 1, ramp: {k: 2}, steps: 5}\n", 4, 3,
+            "a ramp of the protocol needs 'to'");
+    refused(HEAD "- {from: 1, to: 9, ramp: {k: 2}}\n", 4, 3,
+            "a ramp of the protocol needs 'steps'");
+    refused(HEAD "- {from: 1, to: 9, steps: 5}\n", 4, 3, "a ramp of the protocol needs 'ramp'");
+    refused(HEAD "- {from: 1, to: 9, ramp: {k: 2}, steps: 5, set: {k: 1}}\n", 4, 44,
+            "a ramp of the protocol has no key 'set'");
+    refused(HEAD "- {from: 1, to: 9, ramp: {}, steps: 5}\n", 4, 26, "'ramp' is empty");
+    refused(HEAD "- {from: 1, to: 9, ramp: {k: 2}, steps: 0}\n", 4, 41,
+            "'steps' must be a whole number from 1 to 10000");
+    refused(HEAD "- {from: 9, to: 9, ramp: {k: 2}, steps: 5}\n", 4, 17, "must end after it begins");
+    refused(HEAD "- {from: -1, to: 9, ramp: {k: 2}, steps: 5}\n", 4, 10,
+            "a step at -1 lies outside");
+    refused(HEAD "- {from: 1, to: 101, ramp: {k: 2}, steps: 5}\n", 4, 17,
+            "a step at 101 lies outside the record");
+    refused(HEAD "- {from: 1, to: 9, ramp: {load: 2}, steps: 5}\n", 4, 27,
+            "a ramp changes parameters, and 'load' is none");
+    refused(HEAD "- {from: 1, to: 9, ramp: {vela.promoter: open}, steps: 5}\n", 4, 27,
+            "and 'vela.promoter' is none");
+    refused(HEAD "- {from: 1, to: 9, ramp: {laag: 2}, steps: 5}\n", 4, 27, "did you mean 'lag'?");
+    refused(HEAD "- {from: 1, to: 9, ramp: {lag: 2 kb}, steps: 5}\n", 4, 32, "is a length where");
+    refused(HEAD "- {from: 1, to: 9, ramp: {k: 2}, steps: 5}\n- {at: 5, set: {k: 7}}\n", 5, 17,
+            "'k' is on its way in the ramp of line 4");
+    refused(HEAD "- {from: 1, to: 9, ramp: {k: 2}, steps: 5}\n"
+                 "- {from: 8, to: 10, ramp: {k: 2}, steps: 5}\n",
+            5, 28, "'k' is on its way in the ramp of line 4");
+}
+END_TEST
+
+START_TEST(wrong_repeats) {
+    refused(HEAD "- {every: 5, times: 2}\n", 4, 3, "a repeat of the protocol needs 'do'");
+    refused(HEAD "- {every: 5, do: [{at: 1, set: {k: 2}}]}\n", 4, 3, "needs 'times'");
+    refused(HEAD "- {times: 5, do: [{at: 1, set: {k: 2}}]}\n", 4, 3, "needs 'every'");
+    refused(HEAD "- {every: 0, times: 2, do: [{at: 1, set: {k: 2}}]}\n", 4, 11,
+            "'every' is the time from one repeat to the next and above 0, not 0");
+    refused(HEAD "- {every: 5, times: 0, do: [{at: 1, set: {k: 2}}]}\n", 4, 21,
+            "'times' must be a whole number from 1");
+    refused(HEAD "- {every: 5, times: 2, do: []}\n", 4, 28, "'do' is empty");
+    refused(HEAD "- {every: 5, times: 2, do: {at: 1}}\n", 4, 28, "'do' must be a list");
+    refused(HEAD "- {every: 5, times: 2, do: [7]}\n", 4, 29, "a step under 'do' must be a map");
+    refused(HEAD "- {every: 5, times: 2, do: [{every: 1, times: 2, do: []}]}\n", 4, 29,
+            "a repeat cannot stand in another one");
+    refused(HEAD "- {every: 5, times: 2, do: [{set: {k: 1}}]}\n", 4, 29, "needs 'at'");
+    refused(HEAD "- {every: 5, times: 2, at: 3, do: [{at: 1, set: {k: 2}}]}\n", 4, 24,
+            "a repeat of the protocol has no key 'at'");
+    refused(HEAD "- {every: 25, times: 5, do: [{at: 1, set: {k: 2}}]}\n", 4, 35,
+            "a step at 101 (repeat 5) lies outside the record");
+    refused(HEAD "- {every: 0.00001, times: 1000000, do: [{at: 1, set: {k: 2}}]}\n", 4, 46,
+            "more than 100000 steps");
 }
 END_TEST
 
@@ -173,7 +310,11 @@ int main(void) {
         {"species_and_promoters", species_and_promoters},
         {"wrong_steps", wrong_steps},
         {"what_cannot_be_set", what_cannot_be_set},
-        {"later_versions", later_versions},
+        {"ramp", ramp},
+        {"ramps_meet_steps", ramps_meet_steps},
+        {"repeats", repeats},
+        {"wrong_ramps", wrong_ramps},
+        {"wrong_repeats", wrong_repeats},
     };
     return run_tests("read_protocol", tests, sizeof tests / sizeof *tests);
 }

@@ -244,6 +244,40 @@ START_TEST(windows_between_steps) {
 }
 END_TEST
 
+/* A ramp is one window; a row of steps that would give too many gives one. */
+START_TEST(windows_of_ramps_and_repeats) {
+    reading in;
+    const tarry_run_plan *plan = read_plan(
+        &in,
+        "parameters: {k: 1}\n"
+        "protocol: [{from: 10, to: 60, ramp: {k: 2}, steps: 50}]\n"
+        "run: {until: 100, every: 1}\n",
+        NULL, 0);
+    ck_assert_uint_eq(plan->n_windows, 3);
+    check_window(&plan->windows[0], "w1", 0, 10, 0, 1, 0, 10);
+    check_window(&plan->windows[1], "w2", 10, 60, 1, 2, 10, 60);
+    check_window(&plan->windows[2], "w3", 60, 100, 2, 3, 60, 101);
+    reading_end(&in);
+    static const char repeats[] = "parameters: {k: 1}\n"
+                                  "protocol: [{every: 1, times: %d, do: [{at: 0, set: {k: 2}}]}]\n"
+                                  "run: {until: 100, every: 1}\n";
+    char text[256];
+    snprintf(text, sizeof text, repeats, 20); /* the first at 0, where a window begins anyway */
+    plan = read_plan(&in, text, NULL, 0);
+    ck_assert_uint_eq(plan->n_windows, 20);
+    ck_assert_uint_eq(in.model.notes.n, 0);
+    reading_end(&in);
+    snprintf(text, sizeof text, repeats, 21);
+    plan = read_plan(&in, text, NULL, 0);
+    ck_assert_uint_eq(plan->n_windows, 1);
+    check_window(&plan->windows[0], "all", 0, 100, 0, 1, 0, 101);
+    ck_assert_uint_eq(in.model.notes.n, 1);
+    ck_assert_ptr_nonnull(
+        strstr(in.model.notes.lines[0], "into 21 windows; above 20 there is one"));
+    reading_end(&in);
+}
+END_TEST
+
 START_TEST(named_windows) {
     reading in;
     const tarry_run_plan *plan = read_plan(
@@ -358,6 +392,7 @@ int main(void) {
         {"wrong_numbers", wrong_numbers},
         {"wrong_options", wrong_options},
         {"windows_between_steps", windows_between_steps},
+        {"windows_of_ramps_and_repeats", windows_of_ramps_and_repeats},
         {"named_windows", named_windows},
         {"wrong_windows", wrong_windows},
         {"what_is_recorded", what_is_recorded},
