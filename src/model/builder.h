@@ -18,6 +18,7 @@
  *   tarry_read_protocol     segments and settings
  *   tarry_read_run          plan, windows, limits, channels; puts -settle into segments[0].start
  *   tarry_finish
+ *   tarry_settle            with `settle: auto`, the time to settle from the finished network
  *
  * A reader gets the whole file by `root` and looks for its own keys; where they are missing it
  * leaves its lists empty or puts in the defaults. Texts, expressions and small arrays that last
@@ -307,5 +308,6 @@ int tarry_read_signals(tarry_builder *builder, tarry_error *error);
 int tarry_read_protocol(tarry_builder *builder, tarry_error *error);
 int tarry_read_run(tarry_builder *builder, tarry_error *error);
 int tarry_finish(tarry_builder *builder, tarry_error *error);
+int tarry_settle(tarry_builder *builder, tarry_error *error);
 
 #endif

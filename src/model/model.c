@@ -23,7 +23,7 @@ static const char *const LATER[] = {"fit"};
 static int (*const READERS[])(tarry_builder *builder, tarry_error *error) = {
     tarry_read_parameters, tarry_read_delays,    tarry_declare_genes, tarry_declare_species,
     tarry_read_genes,      tarry_read_reactions, tarry_read_bursts,   tarry_read_signals,
-    tarry_read_protocol,   tarry_read_run,       tarry_finish,
+    tarry_read_protocol,   tarry_read_run,       tarry_finish,        tarry_settle,
 };
 
 /* ---- the head of the file -----------------------------------------------------------------------

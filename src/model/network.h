@@ -269,6 +269,7 @@ typedef struct tarry_run_plan {
     int64_t cells;
     uint64_t seed;
     double settle;     /* >= 0 */
+    bool settle_auto;  /* it was worked out from the means */
     double until;      /* > 0 */
     double every;      /* until / (n_frames - 1) */
     uint32_t n_frames; /* at 0, every, ..., until: frame i is at i * every, the last at until */

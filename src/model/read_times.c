@@ -53,22 +53,20 @@ int tarry_read_until(tarry_builder *builder, const tarry_node *run, double *unti
 
 static int read_settle(tarry_builder *builder, const tarry_node *run, tarry_error *error) {
     tarry_run_value from;
+    tarry_run_plan *plan = &builder->network->run;
     double settle = 0;
-    int code = 0;
     tarry_run_find(builder, run, "settle", &from);
-    if (from.node != NULL && from.node->kind == TARRY_NODE_SCALAR &&
-        strcmp(from.node->text, "auto") == 0)
-        code = tarry_fail_at(error, TARRY_NOT_YET, from.node->place,
-                             "'settle: auto' cannot be used yet; give a time, of some five times "
-                             "the longest lifetime in the model");
-    if (code == 0)
-        code = read_time(builder, &from, "'settle'", &settle, error);
+    plan->settle_auto = from.node != NULL && from.node->kind == TARRY_NODE_SCALAR &&
+                        strcmp(from.node->text, "auto") == 0;
+    if (plan->settle_auto)
+        return 0; /* tarry_settle works it out from the whole network */
+    int code = read_time(builder, &from, "'settle'", &settle, error);
     if (code == 0 && settle < 0)
         code = fail_time(&from,
                          "'settle' is the time simulated before the record and not below 0, "
                          "as ",
                          settle, " is", error);
-    builder->network->run.settle = settle;
+    plan->settle = settle;
     if (code == 0)
         builder->segments.items[0].start = settle > 0 ? -settle : 0;
     return tarry_run_context(&from, code, error);

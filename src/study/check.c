@@ -263,8 +263,8 @@ static void write_run(tarry_page *page) {
                      (unsigned long long)run->seed);
     tarry_sheet_row(&page->sheet);
     tarry_sheet_cell(&page->sheet, 0, "settle");
-    tarry_sheet_cell(&page->sheet, 1, "%s %s before the record", short_number(run->settle, one),
-                     unit);
+    tarry_sheet_cell(&page->sheet, 1, "%s %s before the record%s", short_number(run->settle, one),
+                     unit, run->settle_auto ? " (auto: means within 0.1 % of steady)" : "");
     tarry_sheet_row(&page->sheet);
     tarry_sheet_cell(&page->sheet, 0, "record");
     tarry_sheet_cell(&page->sheet, 1, "%s %s, a frame every %s %s (%u frames), %u snapshot%s",

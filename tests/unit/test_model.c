@@ -32,6 +32,15 @@ static void refused(const char *text, int line, int column, const char *words) {
     ck_assert_ptr_null(model);
 }
 
+/* The first note with these words. */
+static const char *noted(const tarry_model *model, const char *words) {
+    for (size_t i = 0; i < tarry_model_n_warnings(model); i++)
+        if (strstr(tarry_model_warning(model, i), words) != NULL)
+            return tarry_model_warning(model, i);
+    ck_abort_msg("no note says '%s'", words);
+    return "";
+}
+
 START_TEST(head_of_the_file) {
     refused("", 1, 1, "");
     refused("- tarry\n", 1, 1, "must be a map");
@@ -145,6 +154,30 @@ START_TEST(tables_lie_beside_the_model) {
 }
 END_TEST
 
+/* What the time to settle does not take into account is said. */
+START_TEST(settle_by_itself) {
+    tarry_model *model = read_text(
+        "tarry: 1\ntime: min\nspecies: {x: 0, y: 3}\nreactions: {go: {makes: {x: 1}, rate: 1}}\n"
+        "genes:\n"
+        "  vela: {promoter: {on: {initiates: 2}}, transcript: {decay: 0.1}}\n"
+        "  mira: {promoter: {on: {initiates: x}}, transcript: {decay: 0.1}}\n"
+        "run: {until: 10, settle: auto}\n");
+    ck_assert(model->network.run.settle > 60);
+    ck_assert_ptr_nonnull(
+        strstr(noted(model, "goes by"),
+               "m.yaml:8:26: 'settle: auto' goes by the 1 mean that can be worked "
+               "out; 1 cannot, and may take longer to be steady "
+               "('mira.transcript': the rate of 'mira.initiation' reads counts of "
+               "species)"));
+    ck_assert_ptr_nonnull(strstr(noted(model, "plain"), "of which 1 changes in this model"));
+    tarry_model_free(model);
+    refused("tarry: 1\ntime: min\ngenes:\n"
+            "  mira: {promoter: {on: {initiates: mira.transcript}}, transcript: {decay: 0.1}}\n"
+            "run: {until: 10, settle: auto}\n",
+            5, 26, "no product has a steady mean that is known ('mira.transcript': the rate of");
+}
+END_TEST
+
 START_TEST(no_memory) {
     static const char text[] =
         "tarry: 1\n"
@@ -156,14 +189,17 @@ START_TEST(no_memory) {
         "    start: steady\n"
         "    promoter: {shut: {lasts: a, then: open}, open: {to: {shut: 2}, initiates: x}}\n"
         "    transcript: {stages: {nascent: b}, lifetime: 3}\n"
-        "  mira: {start: steady, promoter: {on: {initiates: 1}}}\n"
+        "  mira: {start: steady, promoter: {on: {initiates: 1}}, transcript: {decay: 1}}\n"
         "species: {x: 14, y: 0}\n"
         "reactions:\n"
         "  go: {uses: {x: 1}, makes: {y: {table: {values: [1, 2], weights: [1, 1]}}}, rate: 1,\n"
         "       later: [{after: a, uses: {y: 1}, makes: {x: {poisson: {mean: 3}}}}]}\n"
+        "parameters: {k: 1}\n"
         "bursts: {go_on: {opens: [go], closes: [go]}}\n"
         "signals: {spot: {of: vela.nascent, ramp: {from: 0, to: 1}, brightness: 1}}\n"
-        "run: {until: 10}\n";
+        "protocol: [{from: 1, to: 2, ramp: {k: 2}, steps: 2},\n"
+        "           {every: 1, times: 2, do: [{at: 3, set: {x: 1}}]}]\n"
+        "run: {until: 10, settle: auto}\n";
     long n = 0;
     for (;; n++) {
         tarry_model *model = NULL;
@@ -225,6 +261,7 @@ int main(void) {
         {"values change at a step", values_change_at_a_step},
         {"values that go wrong at a step", values_that_go_wrong_at_a_step},
         {"tables lie beside the model", tables_lie_beside_the_model},
+        {"settle by itself", settle_by_itself},
         {"no memory", no_memory},
         {"many genes", many_genes},
     };

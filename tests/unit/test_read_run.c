@@ -172,8 +172,6 @@ START_TEST(wrong_times) {
             "a snapshot at 11 lies outside the record, which runs from 0 to 10");
     refused("run: {until: 10, snapshots: [-1]}\n", 1, 30, "a snapshot at -1 lies outside");
     refused("run: {until: 10, snapshots: {a: 1}}\n", 1, 29, "'snapshots' must be a list");
-    reading_refused("run: {until: 10, settle: auto}\n", NULL, 0, readers, N_READERS, TARRY_NOT_YET,
-                    1, 26, "'settle: auto' cannot be used yet");
 }
 END_TEST
 
