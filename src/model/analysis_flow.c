@@ -249,9 +249,12 @@ static void read_move(reader *r, const tarry_reaction *reaction) {
     double rate = 0;
     bool reads = false;
     const bool linear = tarry_flow_linear(r->network, reaction, &species, &rate, &reads);
+    if (reaction->factors.to - reaction->factors.from > 1) {
+        r->flow->why = say(r, "'%s' waits for the clearance", reaction->name);
+        return;
+    }
     if (!linear || reads) {
-        if (reaction->allele == (int32_t)first_promoter(r)->allele)
-            r->flow->why = say(r, "the rate of '%s' reads counts of species", reaction->name);
+        r->flow->why = say(r, "the rate of '%s' reads counts of species", reaction->name);
         return;
     }
     const int32_t from = state_of(r, species);

@@ -142,8 +142,10 @@ typedef struct tarry_builder_move {
     uint32_t from, to; /* numbers of states */
     bool timed;        /* the state lasts, and `share` of its ends lead here; else at a rate */
     double share;
-    bool formula;  /* the rate reads species */
-    uint32_t rate; /* index into formulas or rates */
+    bool formula;   /* the rate reads species */
+    uint32_t rate;  /* index into formulas or rates */
+    bool initiates; /* a transcript is started by the move itself */
+    bool waits;     /* it initiates, and so is held back while the allele clears */
     tarry_place place;
 } tarry_builder_move;
 

@@ -24,9 +24,12 @@ static int add_species(tarry_builder *builder, const char *name, tarry_species_r
     return tarry_builder_enter(builder, TARRY_SYMBOL_SPECIES, name, index, place, error);
 }
 
-static int check_part_name(const tarry_entry *entry, const char *what, tarry_error *error) {
-    static const char *const kept[] = {"promoter", "transcript", "protein", "steady"};
-    for (size_t i = 0; i < sizeof kept / sizeof *kept; i++)
+static int check_part_name(const tarry_gene_layout *layout, const tarry_entry *entry,
+                           const char *what, tarry_error *error) {
+    static const char *const kept[] = {"promoter", "transcript", "protein", "steady", "clearance"};
+    /* The last only where the gene has one: figures of both would stand under one name. */
+    const size_t n = sizeof kept / sizeof *kept - (layout->clearance == NULL);
+    for (size_t i = 0; i < n; i++)
         if (strcmp(entry->key, kept[i]) == 0)
             return tarry_fail_at(error, TARRY_INPUT, entry->place,
                                  "'%s' has a meaning of its own in a gene and cannot name %s; "
@@ -43,7 +46,7 @@ static int declare_states(tarry_builder *builder, const tarry_gene_layout *layou
     int code = 0;
     for (uint32_t i = 0; code == 0 && i < layout->n_states; i++) {
         const tarry_entry *state = &layout->promoter->entries[i];
-        code = check_part_name(state, "a promoter state", error);
+        code = check_part_name(layout, state, "a promoter state", error);
         if (code == 0)
             code = add_species(
                 builder, tarry_arena_format(builder->arena, "%s.%s", layout->name, state->key),
@@ -59,6 +62,21 @@ static int declare_states(tarry_builder *builder, const tarry_gene_layout *layou
                                                   state->key, allele + 1),
                                TARRY_SPECIES_ALLELE, gene, state->place, error);
         }
+    return code;
+}
+
+/* Whether each allele is ready to initiate; at the start it is. */
+static int declare_ready(tarry_builder *builder, const tarry_gene_layout *layout, int32_t gene,
+                         tarry_error *error) {
+    int code = 0;
+    if (layout->clearance == NULL)
+        return 0;
+    for (uint32_t allele = 0; code == 0 && allele < layout->n_copies; allele++) {
+        code = add_species(builder, tarry_arena_format(builder->arena, "ready %s", layout->name),
+                           TARRY_SPECIES_ALLELE, gene, layout->clearance->place, error);
+        if (code == 0)
+            builder->species.items[builder->species.n - 1].start = 1;
+    }
     return code;
 }
 
@@ -99,7 +117,7 @@ static int declare_product(tarry_builder *builder, const tarry_gene_layout *layo
     int code = 0;
     for (size_t i = 0; code == 0 && stages != NULL && i < stages->n; i++) {
         const tarry_entry *stage = &stages->entries[i];
-        code = check_part_name(stage, "a stage", error);
+        code = check_part_name(layout, stage, "a stage", error);
         if (code == 0 && TARRY_APPEND(&builder->products, (uint32_t)builder->species.n) != 0)
             code = tarry_fail_memory(error, "a species");
         if (code == 0)
@@ -134,6 +152,8 @@ static int declare_gene(tarry_builder *builder, const tarry_entry *entry, tarry_
     gene.n_copies = layout.n_copies;
     gene.products.from = (uint32_t)builder->products.n;
     code = declare_states(builder, &layout, index, error);
+    if (code == 0)
+        code = declare_ready(builder, &layout, index, error);
     if (code == 0)
         code = declare_promoters(builder, &layout, &gene, error);
     if (code == 0 && layout.transcript != NULL)

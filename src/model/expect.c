@@ -92,6 +92,20 @@ int tarry_expect_not_yet(const tarry_node *node, const char *what, const char *c
     return 0;
 }
 
+int tarry_expect_answer(const tarry_node *node, const char *what, bool *answer,
+                        tarry_error *error) {
+    static const char *const words[] = {"no", "yes", "false", "true"};
+    const int code = tarry_expect_scalar(node, what, error);
+    for (int i = 0; code == 0 && i < 4; i++)
+        if (strcmp(node->text, words[i]) == 0) {
+            *answer = i % 2 == 1;
+            return 0;
+        }
+    return code != 0 ? code
+                     : tarry_fail_at(error, TARRY_INPUT, node->place, "%s is yes or no, not '%s'",
+                                     what, node->text);
+}
+
 int tarry_expect_value(const tarry_node *map, const char *what, const char *key,
                        const tarry_node **value, tarry_error *error) {
     *value = tarry_node_get(map, key);

@@ -26,6 +26,9 @@ int tarry_expect_value(const tarry_node *map, const char *what, const char *key,
 int tarry_expect_count(const tarry_node *node, const char *what, double least, double most,
                        double *value, tarry_error *error);
 
+/* `yes` or `no`, or `true` or `false`. */
+int tarry_expect_answer(const tarry_node *node, const char *what, bool *answer, tarry_error *error);
+
 /* TARRY_INPUT about a number that came out wrong: its text stands between `before` and `after`. */
 int tarry_fail_number(tarry_error *error, tarry_place place, const char *before, double number,
                       const char *after);

@@ -14,13 +14,12 @@ enum { MOST_COPIES = 1000, MOST_STATES = 250 };
 
 static const char *const GENE_KEYS[] = {"copies",  "start",     "promoter",  "transcript",
                                         "protein", "bursts_in", "clearance", "many"};
-static const char *const GENE_LATER[] = {"clearance", "many"};
+static const char *const GENE_LATER[] = {"many"};
 static const char *const TRANSCRIPT_KEYS[] = {"stages",   "half_life",     "decay",
                                               "lifetime", "no_overtaking", "headway"};
 static const char *const TRANSCRIPT_LATER[] = {"no_overtaking", "headway"};
 static const char *const PROTEIN_KEYS[] = {"translation", "stages",   "half_life",
                                            "decay",       "lifetime", "from"};
-static const char *const PROTEIN_LATER[] = {"from"};
 
 /* The keys of a transcript or protein, and its stages. */
 static int read_product(const tarry_node *gene, const char *key, const char *const *keys,
@@ -64,9 +63,10 @@ int tarry_gene_layout_read(const tarry_entry *gene, tarry_gene_layout *layout, t
     *layout = (tarry_gene_layout){.name = gene->key, .node = gene->node, .n_copies = 1};
     int code = tarry_expect_keys(gene->node, gene->key, GENE_KEYS, 8, error);
     if (code == 0)
-        code = tarry_expect_not_yet(gene->node, gene->key, GENE_LATER, 2, error);
+        code = tarry_expect_not_yet(gene->node, gene->key, GENE_LATER, 1, error);
     if (code != 0)
         return code;
+    layout->clearance = tarry_node_get(gene->node, "clearance");
     const tarry_node *copies = tarry_node_get(gene->node, "copies");
     double n_copies = 1;
     if (copies != NULL)
@@ -79,9 +79,8 @@ int tarry_gene_layout_read(const tarry_entry *gene, tarry_gene_layout *layout, t
                             &layout->transcript, &layout->transcript_stages,
                             &layout->n_transcript_stages, error);
     if (code == 0)
-        code = read_product(gene->node, "protein", PROTEIN_KEYS, 6, PROTEIN_LATER, 1,
-                            &layout->protein, &layout->protein_stages, &layout->n_protein_stages,
-                            error);
+        code = read_product(gene->node, "protein", PROTEIN_KEYS, 6, NULL, 0, &layout->protein,
+                            &layout->protein_stages, &layout->n_protein_stages, error);
     if (code == 0 && layout->protein != NULL && layout->transcript == NULL)
         return tarry_fail_at(error, TARRY_INPUT, tarry_key_place(gene->node, "protein"),
                              "the gene '%s' has a protein but no transcript to translate; give it "
@@ -103,9 +102,13 @@ uint32_t tarry_layout_state(const tarry_gene_layout *layout, uint32_t allele, ui
     return layout->first + (1 + allele) * layout->n_states + state;
 }
 
-uint32_t tarry_layout_transcript(const tarry_gene_layout *layout) {
+uint32_t tarry_layout_ready(const tarry_gene_layout *layout, uint32_t allele) {
     const uint32_t n_rows = layout->n_copies == 1 ? 1 : 1 + layout->n_copies;
-    return layout->first + n_rows * layout->n_states;
+    return layout->first + n_rows * layout->n_states + allele;
+}
+
+uint32_t tarry_layout_transcript(const tarry_gene_layout *layout) {
+    return tarry_layout_ready(layout, layout->clearance == NULL ? 0 : layout->n_copies);
 }
 
 uint32_t tarry_layout_protein(const tarry_gene_layout *layout) {

@@ -26,7 +26,8 @@ enum { TARRY_NONE = -1 };
 typedef enum tarry_species_role {
     TARRY_SPECIES_PLAIN,   /* declared under `species:` */
     TARRY_SPECIES_STATE,   /* a promoter state, summed over alleles: "vela.open" */
-    TARRY_SPECIES_ALLELE,  /* one allele's 0 or 1 of a state where copies > 1; hidden from output */
+    TARRY_SPECIES_ALLELE,  /* one allele's 0 or 1, of a state where copies > 1 or of being
+                              ready to initiate; hidden from output */
     TARRY_SPECIES_STAGE,   /* "vela.nascent" */
     TARRY_SPECIES_PRODUCT, /* "vela.transcript", "vela.protein" */
 } tarry_species_role;
@@ -115,6 +116,7 @@ typedef struct tarry_lag {
     int32_t stage;          /* the species that holds the molecules under way, or TARRY_NONE */
     int32_t promoter;       /* the promoter whose state lasts this long, or TARRY_NONE */
     int32_t gene;           /* or TARRY_NONE */
+    uint32_t allele;        /* whose lag it is, where each has one; else 0 */
     tarry_place place;
 } tarry_lag;
 

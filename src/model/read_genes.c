@@ -7,11 +7,12 @@
 #include "base/error.h"
 #include "base/memory.h"
 #include "base/notes.h"
+#include "base/text.h"
 #include "model/expect.h"
 
 #include <string.h>
 
-enum { MOST_NOTES = 10 };
+enum { MOST_NOTES = 10, MOST_WORDS = 32 };
 
 /* One product with the stages before it, and how it goes away. */
 typedef struct product_plan {
@@ -27,9 +28,9 @@ typedef struct product_plan {
     tarry_place place;
 } product_plan;
 
-int tarry_gene_reaction(const tarry_gene_work *work, const char *name, tarry_factor factor,
-                        bool formula, uint32_t rate, int32_t allele, tarry_draft *draft,
-                        tarry_place place, tarry_error *error) {
+int tarry_gene_reaction(const tarry_gene_work *work, const char *name, const tarry_factor *factors,
+                        size_t n_factors, bool formula, uint32_t rate, int32_t allele,
+                        tarry_draft *draft, tarry_place place, tarry_error *error) {
     if (name == NULL)
         return tarry_fail_memory(error, "a reaction");
     tarry_reaction reaction = {
@@ -37,7 +38,7 @@ int tarry_gene_reaction(const tarry_gene_work *work, const char *name, tarry_fac
     const int code = tarry_builder_effect(work->builder, draft, &reaction.effect, error);
     if (code != 0)
         return code;
-    return tarry_builder_reaction(work->builder, reaction, formula, &factor, 1, error);
+    return tarry_builder_reaction(work->builder, reaction, formula, factors, n_factors, error);
 }
 
 /* ---- lags ---------------------------------------------------------------------------------------
@@ -160,35 +161,106 @@ static int build_product(tarry_gene_work *work, const product_plan *plan, tarry_
     const tarry_factor factor = {.species = plan->species, .used = 1};
     code = tarry_draft_change(&draft, plan->species, -1, error);
     if (code == 0)
-        code = tarry_gene_reaction(work, name, factor, plan->formula, plan->rate, TARRY_NONE,
+        code = tarry_gene_reaction(work, name, &factor, 1, plan->formula, plan->rate, TARRY_NONE,
                                    &draft, plan->place, error);
     tarry_draft_release(&draft);
     return code;
 }
 
-/* Proteins are started from finished transcripts. */
+/* How proteins are started. */
+typedef struct translation_plan {
+    const char *name;
+    bool formula;
+    uint32_t rate;
+    uint32_t made; /* the first stage of the protein, or the protein */
+    tarry_place place;
+} translation_plan;
+
+/* One molecule of `species` is translated. `name`: of the reaction. */
+static int build_source(tarry_gene_work *work, const translation_plan *plan, const char *name,
+                        uint32_t species, tarry_error *error) {
+    const tarry_factor factor = {.species = species, .needed = 1};
+    tarry_draft draft = {0};
+    int code = tarry_draft_make(&draft, work->builder, plan->made, 1, error);
+    if (code == 0)
+        code = tarry_gene_reaction(work, name, &factor, 1, plan->formula, plan->rate, TARRY_NONE,
+                                   &draft, plan->place, error);
+    tarry_draft_release(&draft);
+    return code;
+}
+
+/* The species that a name under `from` means: a stage of the transcript, or the transcript. */
+static int find_source(const tarry_gene_work *work, const product_plan *transcript,
+                       const tarry_node *name, uint32_t *species, tarry_error *error) {
+    const char *words[MOST_WORDS] = {"transcript"};
+    size_t n_words = 1;
+    int code = tarry_expect_scalar(name, "a name under 'from'", error);
+    if (code != 0)
+        return code;
+    *species = transcript->species;
+    if (strcmp(name->text, "transcript") == 0)
+        return 0;
+    for (uint32_t i = 0; i < transcript->n_stages; i++) {
+        const char *stage = transcript->stages->entries[i].key;
+        *species = transcript->first + i;
+        if (strcmp(stage, name->text) == 0)
+            return 0;
+        if (n_words < MOST_WORDS)
+            words[n_words++] = stage;
+    }
+    const char *nearest = tarry_nearest_word(name->text, words, n_words);
+    return tarry_fail_at(error, TARRY_INPUT, name->place,
+                         "the transcript of '%s' has no stage '%s'%s%s%s", work->layout.name,
+                         name->text, nearest == NULL ? "" : "; did you mean '",
+                         nearest == NULL ? "" : nearest, nearest == NULL ? "" : "'?");
+}
+
+/* `from: [nascent, transcript]`: a reaction for each that is translated, in this order. */
+static int build_sources(tarry_gene_work *work, const product_plan *transcript,
+                         const translation_plan *plan, const tarry_node *from, tarry_error *error) {
+    int code = tarry_expect_list(from, "'from'", error);
+    if (code == 0 && from->n == 0)
+        code = tarry_fail_at(error, TARRY_INPUT, from->place,
+                             "'from' is empty; name what is translated, as in from: [transcript]");
+    for (size_t i = 0; code == 0 && i < from->n; i++) {
+        const tarry_node *node = from->entries[i].node;
+        uint32_t species = 0;
+        code = find_source(work, transcript, node, &species, error);
+        for (size_t k = 0; code == 0 && k < i; k++)
+            if (strcmp(from->entries[k].node->text, node->text) == 0)
+                code = tarry_fail_at(error, TARRY_INPUT, node->place,
+                                     "'from' names '%s' twice; leave one of them out", node->text);
+        if (code != 0)
+            return code;
+        const char *name = tarry_arena_format(work->builder->arena, "%s from %s", plan->name,
+                                              node->text);
+        if (name == NULL)
+            return tarry_fail_memory(error, "a gene");
+        code = build_source(work, plan, from->n == 1 ? plan->name : name, species, error);
+    }
+    return code;
+}
+
+/* Proteins are started from finished transcripts, or from what `from` names. */
 static int build_translation(tarry_gene_work *work, const product_plan *transcript,
                              const product_plan *protein, tarry_error *error) {
     tarry_builder *builder = work->builder;
     const tarry_node *node = work->layout.protein;
-    const tarry_node *translation = NULL;
-    const char *name = tarry_arena_format(builder->arena, "%s.translation", work->layout.name);
-    if (name == NULL)
+    const tarry_node *translation = NULL, *from = tarry_node_get(node, "from");
+    translation_plan plan = {
+        .name = tarry_arena_format(builder->arena, "%s.translation", work->layout.name),
+        .made = protein->first,
+        .place = tarry_key_place(node, "translation")};
+    if (plan.name == NULL)
         return tarry_fail_memory(error, "a gene");
-    const tarry_factor factor = {.species = transcript->species, .needed = 1};
-    tarry_draft draft = {0};
-    bool formula = false;
-    uint32_t rate = 0;
     int code = tarry_expect_value(node, "'protein'", "translation", &translation, error);
     if (code == 0)
-        code = tarry_builder_rate(builder, translation, false, name, &formula, &rate, error);
-    if (code == 0)
-        code = tarry_draft_make(&draft, builder, protein->first, 1, error);
-    if (code == 0)
-        code = tarry_gene_reaction(work, name, factor, formula, rate, TARRY_NONE, &draft,
-                                   tarry_key_place(node, "translation"), error);
-    tarry_draft_release(&draft);
-    return code;
+        code = tarry_builder_rate(builder, translation, false, plan.name, &plan.formula, &plan.rate,
+                                  error);
+    if (code != 0)
+        return code;
+    return from == NULL ? build_source(work, &plan, plan.name, transcript->species, error)
+                        : build_sources(work, transcript, &plan, from, error);
 }
 
 static int read_gene(tarry_builder *builder, const tarry_entry *entry, uint32_t gene,

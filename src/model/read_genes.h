@@ -21,6 +21,7 @@ typedef struct tarry_gene_work {
     uint32_t gene;
     tarry_gene_layout layout;
     tarry_state_plan *states; /* in the arena */
+    uint32_t clearance;       /* the lag of the first allele; those of the others follow */
 } tarry_gene_work;
 
 /* Read the states, the start and what is active; makes the lags of states that last. */
@@ -29,9 +30,9 @@ int tarry_read_promoter(tarry_gene_work *work, tarry_error *error);
 /* Make the moves and initiations of every allele. */
 int tarry_build_promoter(const tarry_gene_work *work, tarry_error *error);
 
-/* A reaction of a gene with one factor; its effect is `draft`. */
-int tarry_gene_reaction(const tarry_gene_work *work, const char *name, tarry_factor factor,
-                        bool formula, uint32_t rate, int32_t allele, tarry_draft *draft,
-                        tarry_place place, tarry_error *error);
+/* A reaction of a gene with the factors given (ascending); its effect is `draft`. */
+int tarry_gene_reaction(const tarry_gene_work *work, const char *name, const tarry_factor *factors,
+                        size_t n_factors, bool formula, uint32_t rate, int32_t allele,
+                        tarry_draft *draft, tarry_place place, tarry_error *error);
 
 #endif

@@ -17,18 +17,19 @@ static const double SHARE_SLIP = 1e-6;
 /* ---- ways out of a state ------------------------------------------------------------------------
  */
 
-/* The rate of a move: a scalar, or {rate: ...}, which has room for more in later versions. */
-static int rate_node(const tarry_node *node, const tarry_node **rate, tarry_error *error) {
+/* The rate of a move: a scalar, or {rate: ..., initiates: yes}. */
+static int rate_node(const tarry_node *node, const tarry_node **rate, bool *initiates,
+                     tarry_error *error) {
     static const char *const keys[] = {"rate", "initiates"};
-    static const char *const later[] = {"initiates"};
     *rate = node;
     if (node->kind != TARRY_NODE_MAP)
         return 0;
     int code = tarry_expect_keys(node, "a move", keys, 2, error);
     if (code == 0)
-        code = tarry_expect_not_yet(node, "a move", later, 1, error);
-    if (code == 0)
         code = tarry_expect_value(node, "a move", "rate", rate, error);
+    const tarry_node *answer = tarry_node_get(node, "initiates");
+    if (code == 0 && answer != NULL)
+        code = tarry_expect_answer(answer, "'initiates' of a move", initiates, error);
     return code;
 }
 
@@ -60,7 +61,10 @@ static int read_rates(tarry_gene_work *work, uint32_t from, const tarry_node *ma
             return tarry_fail_memory(error, "a promoter");
         const tarry_node *rate = NULL;
         tarry_builder_move move = {.share = 1};
-        code = rate_node(to->node, &rate, error);
+        code = rate_node(to->node, &rate, &move.initiates, error);
+        move.waits = move.initiates && work->layout.clearance != NULL;
+        if (move.initiates)
+            work->states[from].active = true;
         if (code == 0)
             code = tarry_builder_rate(builder, rate, false, what, &move.formula, &move.rate, error);
         if (code == 0)
@@ -245,6 +249,35 @@ static int read_start(tarry_gene_work *work, tarry_error *error) {
 /* ---- reading ------------------------------------------------------------------------------------
  */
 
+/* A lag of each allele at whose end the allele is ready to initiate again. */
+static int make_clearance(tarry_gene_work *work, tarry_error *error) {
+    tarry_builder *builder = work->builder;
+    tarry_lag lag = {.name = tarry_arena_format(builder->arena, "%s.clearance", work->layout.name),
+                     .stage = TARRY_NONE,
+                     .promoter = TARRY_NONE,
+                     .gene = (int32_t)work->gene,
+                     .place = tarry_key_place(work->layout.node, "clearance")};
+    if (lag.name == NULL)
+        return tarry_fail_memory(error, "a promoter");
+    int code = tarry_builder_delay_index(builder, work->layout.clearance, &lag.delay, error);
+    for (uint32_t allele = 0; code == 0 && allele < work->layout.n_copies; allele++) {
+        tarry_draft draft = {0};
+        uint32_t index = 0, effect = 0;
+        lag.allele = allele;
+        code = tarry_builder_lag(builder, lag, &index, error);
+        if (allele == 0)
+            work->clearance = index;
+        if (code == 0)
+            code = tarry_draft_change(&draft, tarry_layout_ready(&work->layout, allele), 1, error);
+        if (code == 0)
+            code = tarry_builder_effect(builder, &draft, &effect, error);
+        if (code == 0)
+            code = tarry_builder_outcome(builder, index, 1, effect, error);
+        tarry_draft_release(&draft);
+    }
+    return code;
+}
+
 static int make_lags(const tarry_gene_work *work, tarry_error *error) {
     tarry_builder *builder = work->builder;
     const tarry_range promoters = builder->genes.items[work->gene].promoters;
@@ -260,6 +293,7 @@ static int make_lags(const tarry_gene_work *work, tarry_error *error) {
                                    .stage = TARRY_NONE,
                                    .promoter = (int32_t)i,
                                    .gene = (int32_t)work->gene,
+                                   .allele = i - promoters.from,
                                    .place = work->states[j].place};
             uint32_t index = 0;
             code = tarry_builder_lag(builder, lag, &index, error);
@@ -287,11 +321,30 @@ int tarry_read_promoter(tarry_gene_work *work, tarry_error *error) {
     code = read_start(work, error);
     if (code == 0)
         code = make_lags(work, error);
+    if (code == 0 && work->layout.clearance != NULL)
+        code = make_clearance(work, error);
     return code;
 }
 
 /* ---- building -----------------------------------------------------------------------------------
  */
+
+/* What an initiation does on one allele, but for a change of state. */
+static int draft_initiation(const tarry_gene_work *work, uint32_t allele, tarry_draft *draft,
+                            tarry_error *error) {
+    const tarry_builder *builder = work->builder;
+    const tarry_gene_layout *layout = &work->layout;
+    const uint32_t track = builder->genes.items[work->gene].tracks.from + allele;
+    int code = tarry_draft_mark(draft, track, TARRY_MARK_COUNT, error);
+    if (code == 0 && layout->transcript != NULL)
+        code = tarry_draft_make(draft, builder, tarry_layout_transcript(layout), 1, error);
+    if (code != 0 || layout->clearance == NULL)
+        return code;
+    code = tarry_draft_change(draft, tarry_layout_ready(layout, allele), -1, error);
+    if (code == 0)
+        code = tarry_draft_schedule(draft, work->clearance + allele, error);
+    return code;
+}
 
 /* What a change of state does to one allele. */
 static int draft_move(const tarry_gene_work *work, uint32_t allele, const tarry_builder_move *move,
@@ -322,12 +375,17 @@ static int build_rate(const tarry_gene_work *work, uint32_t allele, const tarry_
     const char *name = tarry_arena_format(work->builder->arena, "%s.%s>%s", work->layout.name,
                                           work->states[move->from].name,
                                           work->states[move->to].name);
-    const tarry_factor factor = {.species = tarry_layout_state(&work->layout, allele, move->from),
-                                 .used = 1};
-    int code = draft_move(work, allele, move, &draft, error);
+    const tarry_factor factors[] = {
+        {.species = tarry_layout_state(&work->layout, allele, move->from), .used = 1},
+        {.species = tarry_layout_ready(&work->layout, allele), .used = 1}};
+    int code = 0;
+    if (move->initiates)
+        code = draft_initiation(work, allele, &draft, error);
     if (code == 0)
-        code = tarry_gene_reaction(work, name, factor, move->formula, move->rate, (int32_t)allele,
-                                   &draft, move->place, error);
+        code = draft_move(work, allele, move, &draft, error);
+    if (code == 0)
+        code = tarry_gene_reaction(work, name, factors, move->waits ? 2 : 1, move->formula,
+                                   move->rate, (int32_t)allele, &draft, move->place, error);
     tarry_draft_release(&draft);
     return code;
 }
@@ -364,19 +422,18 @@ static int build_initiation(const tarry_gene_work *work, uint32_t allele, uint32
                             tarry_error *error) {
     const tarry_builder *builder = work->builder;
     const tarry_state_plan *state = &work->states[index];
-    const uint32_t track = builder->genes.items[work->gene].tracks.from + allele;
     const char *name = only ? tarry_arena_format(builder->arena, "%s.initiation", work->layout.name)
                             : tarry_arena_format(builder->arena, "%s.initiation in %s",
                                                  work->layout.name, state->name);
-    const tarry_factor factor = {.species = tarry_layout_state(&work->layout, allele, index),
-                                 .needed = 1};
+    const tarry_factor factors[] = {
+        {.species = tarry_layout_state(&work->layout, allele, index), .needed = 1},
+        {.species = tarry_layout_ready(&work->layout, allele), .used = 1}};
     tarry_draft draft = {0};
-    int code = tarry_draft_mark(&draft, track, TARRY_MARK_COUNT, error);
-    if (code == 0 && work->layout.transcript != NULL)
-        code = tarry_draft_make(&draft, builder, tarry_layout_transcript(&work->layout), 1, error);
+    int code = draft_initiation(work, allele, &draft, error);
     if (code == 0)
-        code = tarry_gene_reaction(work, name, factor, state->formula, state->rate, (int32_t)allele,
-                                   &draft, state->place, error);
+        code = tarry_gene_reaction(work, name, factors, work->layout.clearance != NULL ? 2 : 1,
+                                   state->formula, state->rate, (int32_t)allele, &draft,
+                                   state->place, error);
     tarry_draft_release(&draft);
     return code;
 }

@@ -47,6 +47,12 @@ static int fill_chances(promoter_graph *graph, tarry_error *error) {
     const uint32_t n = graph->n;
     for (size_t i = 0; i < graph->n_moves; i++) {
         const tarry_builder_move *move = &graph->moves[i];
+        if (move->waits)
+            return tarry_fail_at(error, TARRY_INPUT, move->place,
+                                 "the gene '%s' cannot have 'start: steady', since this move waits "
+                                 "for the clearance; name a state or give weights, as start: {%s: "
+                                 "1}",
+                                 graph->gene->name, graph->states[0].name);
         if (!move->timed && move->formula)
             return tarry_fail_at(error, TARRY_INPUT, move->place,
                                  "the gene '%s' cannot have 'start: steady', since this rate reads "

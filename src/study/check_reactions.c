@@ -237,8 +237,9 @@ void tarry_page_reactions(tarry_page *page) {
 
 /* ---- completions ---------------------------------------------------------------------------- */
 
-static bool is_told(const tarry_network *network, const tarry_lag *lag) {
-    return lag->promoter == TARRY_NONE || network->promoters[lag->promoter].allele == 0;
+/* What an allele of its own has is told for the first. */
+static bool is_told(const tarry_lag *lag) {
+    return lag->allele == 0;
 }
 
 /* "with probability 0.9", "what lacks is skipped". */
@@ -277,14 +278,14 @@ void tarry_page_completions(tarry_page *page) {
     writer w;
     size_t all = 0, shown = 0;
     for (uint32_t i = 0; i < network->n_lags; i++)
-        all += is_told(network, &network->lags[i]);
+        all += is_told(&network->lags[i]);
     if (all == 0)
         return;
     tarry_page_head(page, "Completions", (long long)all);
     if (writer_init(&w, page))
         page->text->failed = true;
     for (uint32_t i = 0; i < network->n_lags && shown < TARRY_CHECK_MOST && w.name_of; i++) {
-        if (!is_told(network, &network->lags[i]))
+        if (!is_told(&network->lags[i]))
             continue;
         shown++;
         put_lag(&w, &network->lags[i]);

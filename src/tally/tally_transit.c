@@ -1,8 +1,8 @@
 /* Molecules under way: transit.csv, one row for each delayed step and window.
  *
  * The sums are those of the record (engine/record.h), added over cells; a window's are those of its
- * spans. Alleles of one gene have steps of one name (a promoter state that lasts), which are pooled
- * as bursts are. Formulas: docs/statistics.md, "In transit". */
+ * spans. Alleles of one gene have steps of one name (a promoter state that lasts, a clearance),
+ * which are pooled as bursts are. Formulas: docs/statistics.md, "In transit". */
 #include "base/table.h"
 #include "tally/kinds.h"
 #include "tally/results.h"
@@ -38,8 +38,8 @@ static void transit_add(const tarry_network *network, const tarry_record *record
 static bool alike(const tarry_lag *one, const tarry_lag *other) {
     if (one == other)
         return true;
-    return one->promoter != TARRY_NONE && other->promoter != TARRY_NONE &&
-           one->gene == other->gene && strcmp(one->name, other->name) == 0;
+    return one->gene != TARRY_NONE && one->gene == other->gene &&
+           strcmp(one->name, other->name) == 0;
 }
 
 /* Has an earlier lag of the same gene reported for this one? A gene's lags are neighbours. */

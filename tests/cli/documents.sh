@@ -33,7 +33,7 @@ ok "the model in docs/model.md is sound" format
 
 # Each key told of in the table of the run and nowhere refused.
 not_yet() {
-    for key in fit varies clearance many initiates lost no_overtaking headway from allele share ramp \
+    for key in fit varies many lost no_overtaking headway allele share ramp \
         steps every times; do
         sed -n '/^## Not yet/,$p' "$root/docs/model.md" | grep -qF "\`$key\`" || return 1
     done

@@ -244,14 +244,14 @@ static void write_targets(maker *m, const gene_plan *gene, unsigned s, bool last
               second);
         return;
     }
-    WRITE("          s%u: ", first);
-    write_rate(m, 0.1, 1.5, !gene->steady);
-    WRITE("\n");
-    if (!two)
-        return;
-    WRITE("          s%u: ", second);
-    write_rate(m, 0.1, 1.5, !gene->steady);
-    WRITE("\n");
+    for (unsigned i = 0; i < (two ? 2u : 1u); i++) {
+        const bool initiates = chance(m, 15);
+        WRITE(initiates ? "          s%u:\n            initiates: yes\n            rate: "
+                        : "          s%u: ",
+              i == 0 ? first : second);
+        write_rate(m, 0.1, 1.5, !gene->steady);
+        WRITE("\n");
+    }
 }
 
 static void write_state(maker *m, const gene_plan *gene, unsigned s) {
@@ -309,6 +309,11 @@ static void write_gene(maker *m, unsigned g) {
         WRITE("    start: {s0: 0.3, s1: 0.7}\n");
     if (chance(m, 15))
         WRITE("    bursts_in: [s%u]\n", pick(m, gene->n_states));
+    if (chance(m, 25)) {
+        WRITE("    clearance: ");
+        write_lag(m);
+        WRITE("\n");
+    }
     WRITE("    promoter:\n");
     for (unsigned s = 0; s < gene->n_states; s++)
         write_state(m, gene, s);
@@ -328,6 +333,8 @@ static void write_gene(maker *m, unsigned g) {
     WRITE("    protein:\n      translation: ");
     write_rate(m, 0.2, 1.5, chance(m, 30));
     WRITE("\n");
+    if (gene->n_stages > 0 && chance(m, 40))
+        WRITE("      from: [t0%s]\n", chance(m, 50) ? ", transcript" : "");
     if (chance(m, 50)) {
         WRITE("      stages:\n        folding: ");
         write_lag(m);

@@ -39,16 +39,11 @@ START_TEST(keys_of_a_gene) {
 END_TEST
 
 START_TEST(what_this_version_cannot_do) {
-    not_yet(PROMOTER "    clearance: 2 min\n", 4, 5, "'clearance' cannot be used yet");
     not_yet(PROMOTER "    many: 3\n", 4, 5, "'many' cannot be used yet");
     not_yet(PROMOTER "    transcript: {no_overtaking: true}\n", 4, 18, "'no_overtaking' cannot");
     not_yet(PROMOTER "    transcript: {headway: 1}\n", 4, 18, "'headway' cannot be used yet");
     not_yet(PROMOTER "    transcript: {stages: {nascent: {lasts: 3, lost: 1}}}\n", 4, 47,
             "nascent: 'lost' cannot be used yet");
-    not_yet(PROMOTER "    transcript: {decay: 1}\n    protein: {translation: 1, from: [nascent]}\n",
-            5, 31, "'from' cannot be used yet");
-    not_yet("    promoter: {a: {to: {b: {rate: 1, initiates: yes}}}, b: {}}\n", 3, 38,
-            "'initiates' cannot be used yet");
 }
 END_TEST
 
@@ -74,6 +69,38 @@ START_TEST(states) {
         "    promoter: {a: {lasts: 0, then: b}, b: {lasts: {uniform: {from: 0, to: 1}}, then: c},"
         " c: {lasts: 0 s, then: a}, f: {lasts: 0, then: e}, e: {lasts: 0, then: f}}\n",
         2, 3, "'f' among them, in no time");
+}
+END_TEST
+
+START_TEST(moves_that_initiate_and_clearance) {
+    refused("    promoter: {a: {to: {b: {rate: 1, initiates: maybe}}}, b: {}}\n", 3, 49,
+            "'initiates' of a move is yes or no, not 'maybe'");
+    refused("    promoter: {a: {to: {b: {initiates: yes}}}, b: {}}\n", 3, 28,
+            "a move needs 'rate'");
+    refused("    promoter: {a: {to: {b: {rate: 1, initiate: yes}}}, b: {}}\n", 3, 38,
+            "did you mean 'initiates'?");
+    refused(PROMOTER "    clearance: {gama: 3}\n", 4, 17, "did you mean 'gamma'?");
+    refused(PROMOTER "    clearance: 3 kb\n", 4, 16, "a time");
+    refused(PROMOTER "    clearance: 1\n    transcript: {stages: {clearance: 1}}\n", 5, 27,
+            "'clearance' has a meaning of its own");
+    refused("    start: steady\n    clearance: 1\n"
+            "    promoter: {a: {to: {b: {rate: 1, initiates: yes}}}, b: {to: {a: 1}}}\n",
+            5, 25, "since this move waits for the clearance");
+    /* A stage may be called so where there is no clearance. */
+    const tarry_network *network = network_of("genes:\n  vela:\n" PROMOTER
+                                              "    transcript: {stages: {clearance: 1}}\n");
+    ck_assert_uint_eq(network->n_lags, 1);
+    network_end();
+}
+END_TEST
+
+START_TEST(active_states) {
+    const tarry_network *network = network_of(
+        "genes: {vela: {promoter: {a: {to: {b: {rate: 1, initiates: yes}, c: 1}},\n"
+        "  b: {to: {a: {rate: 1, initiates: no}}}, c: {initiates: 1, to: {a: 1}}}}}\n");
+    ck_assert(network->genes[0].tells);
+    ck_assert(network->states[0].active && !network->states[1].active && network->states[2].active);
+    network_end();
 }
 END_TEST
 
@@ -113,6 +140,21 @@ START_TEST(transcripts_and_proteins) {
             "nascent has no key 'x'");
     refused(PROMOTER "    transcript: {}\n    protein: {half_life: 2}\n", 5, 14,
             "'protein' needs 'translation'");
+}
+END_TEST
+
+#define STAGES "    transcript: {stages: {nascent: 1, nuclear: 1}}\n"
+
+START_TEST(what_is_translated) {
+    refused(PROMOTER STAGES "    protein: {translation: 1, from: nascent}\n", 5, 37,
+            "'from' must be a list");
+    refused(PROMOTER STAGES "    protein: {translation: 1, from: []}\n", 5, 37, "'from' is empty");
+    refused(PROMOTER STAGES "    protein: {translation: 1, from: [nacent]}\n", 5, 38,
+            "the transcript of 'vela' has no stage 'nacent'; did you mean 'nascent'?");
+    refused(PROMOTER STAGES "    protein: {translation: 1, from: [[nascent]]}\n", 5, 38,
+            "must be a single value");
+    refused(PROMOTER STAGES "    protein: {translation: 1, from: [nuclear, nuclear]}\n", 5, 47,
+            "'from' names 'nuclear' twice");
 }
 END_TEST
 
@@ -187,6 +229,9 @@ int main(void) {
         {"keys of a gene", keys_of_a_gene},
         {"what this version cannot do", what_this_version_cannot_do},
         {"states", states},
+        {"moves that initiate and clearance", moves_that_initiate_and_clearance},
+        {"active states", active_states},
+        {"what is translated", what_is_translated},
         {"where bursts are and how a gene starts", where_bursts_are_and_how_a_gene_starts},
         {"transcripts and proteins", transcripts_and_proteins},
         {"notes where bursts cannot be told", notes_where_bursts_cannot_be_told},
