@@ -31,10 +31,11 @@ ok() {
 }
 
 # run STATUS ARGUMENTS... : true if the program ends with this status; out and err keep what it said
+# (a case that should be refused at once must not run on for hours when it is not)
 run() {
     wanted=$1
     shift
-    "$TARRY" "$@" >out 2>err </dev/null
+    timeout 120 "$TARRY" "$@" >out 2>err </dev/null
     status=$?
     [ "$status" = "$wanted" ] || echo "    status $status instead of $wanted"
     [ "$status" = "$wanted" ]
