@@ -166,9 +166,8 @@ static void start_promoter(tarry_cell *cell, uint32_t index, tarry_stream *start
         schedule(cell, lag);
         return;
     }
-    const tarry_law *law = &cell->network->segments[0].laws[cell->network->lags[lag].delay];
-    const double share = tarry_unit(tarry_stream_next(start));
-    schedule_remaining(cell, lag, tarry_law_remaining_quantile(law, share));
+    const tarry_drawer *drawer = cell->drawers[cell->network->lags[lag].delay];
+    schedule_remaining(cell, lag, tarry_draw_remaining(drawer, start));
 }
 
 static void use_segment(tarry_cell *cell, uint32_t segment) {

@@ -45,6 +45,8 @@ struct tarry_drawer {
     double n_guide;            /* a power of two */
     uint32_t n_parts;          /* MIX, TOTAL */
     const struct tarry_drawer *parts;
+    const double *met;    /* MIX, TOTAL: cumulative chances that a part is the one met */
+    const tarry_law *law; /* for what is left of a lag */
 };
 
 typedef struct shared_table {
@@ -174,13 +176,26 @@ static int make_rows(tarry_drawer_set *set, const tarry_law *law, tarry_drawer *
 static int make(tarry_drawer_set *set, const tarry_law *law, tarry_drawer *drawer,
                 tarry_error *error);
 
+/* Of a lag met at a random moment: long parts are met more often. */
+static void list_met(const tarry_law *law, double *met) {
+    double sum = 0;
+    for (size_t i = 0; i < law->n; i++) {
+        const double share = law->kind == TARRY_LAW_MIX ? law->weights[i] : 1;
+        sum += share * tarry_law_mean(&law->parts[i]);
+        met[i] = sum;
+    }
+    for (size_t i = 0; i < law->n; i++)
+        met[i] = i + 1 < law->n ? met[i] / sum : 1;
+}
+
 static int make_parts(tarry_drawer_set *set, const tarry_law *law, tarry_drawer *drawer,
                       tarry_error *error) {
     tarry_drawer *parts = tarry_arena_calloc(&set->arena, law->n, sizeof *parts);
     row *rows = tarry_arena_calloc(&set->arena, law->n, sizeof *rows);
+    double *met = tarry_arena_calloc(&set->arena, law->n, sizeof *met);
     bool all_fixed = true;
     double length = 0, sum = 0;
-    if (!parts || !rows)
+    if (!parts || !rows || !met)
         return tarry_fail_memory(error, "the parts of a lag");
     for (size_t i = 0; i < law->n; i++) {
         const int code = make(set, &law->parts[i], &parts[i], error);
@@ -197,7 +212,9 @@ static int make_parts(tarry_drawer_set *set, const tarry_law *law, tarry_drawer 
         drawer->a = length;
     }
     drawer->n_parts = (uint32_t)law->n;
+    list_met(law, met);
     drawer->parts = parts;
+    drawer->met = met;
     drawer->rows = rows;
     return TARRY_OK;
 }
@@ -205,6 +222,7 @@ static int make_parts(tarry_drawer_set *set, const tarry_law *law, tarry_drawer 
 static int make(tarry_drawer_set *set, const tarry_law *law, tarry_drawer *drawer,
                 tarry_error *error) {
     drawer->a = law->a;
+    drawer->law = law;
     switch (law->kind) {
     case TARRY_LAW_FIXED:
         drawer->formula = FIXED;
@@ -312,4 +330,19 @@ double tarry_draw(const tarry_drawer *drawer, tarry_stream *stream) {
     default:
         return tarry_draw_at(drawer, tarry_stream_next(stream));
     }
+}
+
+double tarry_draw_remaining(const tarry_drawer *drawer, tarry_stream *stream) {
+    const double u = tarry_unit(tarry_stream_next(stream));
+    uint32_t i = 0;
+    if (drawer->formula == FIXED)
+        return u * drawer->a;
+    if (drawer->formula != MIX && drawer->formula != TOTAL)
+        return tarry_law_remaining_quantile(drawer->law, u);
+    while (!(u < drawer->met[i]) && i + 1 < drawer->n_parts)
+        i++;
+    double length = tarry_draw_remaining(&drawer->parts[i], stream);
+    while (drawer->formula == TOTAL && ++i < drawer->n_parts)
+        length += tarry_draw(&drawer->parts[i], stream);
+    return length;
 }

@@ -29,6 +29,12 @@ double tarry_drawer_fixed(const tarry_drawer *drawer);
 /* Draw one lag. */
 double tarry_draw(const tarry_drawer *drawer, tarry_stream *stream);
 
+/* Draw what is left of a lag that is met at a random moment, as a dwell is at a steady start: its
+ * density is survival / mean. An elementary law takes one number, by tarry_law_remaining_quantile.
+ * A mix: one number chooses the part, by share times mean. A total: one number chooses the part
+ * that is under way, by its mean; what is left of that is drawn, then the later parts, in order. */
+double tarry_draw_remaining(const tarry_drawer *drawer, tarry_stream *stream);
+
 /* The lag at u = tarry_unit(bits), for drawers of one elementary law (tests). */
 double tarry_draw_at(const tarry_drawer *drawer, uint64_t bits);
 

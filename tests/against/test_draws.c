@@ -187,6 +187,77 @@ START_TEST(values_come_with_their_shares) {
 }
 END_TEST
 
+/* ---- what is left of a lag ---- */
+
+/* The share of the time that is over by x: the integral of the survival over the mean. */
+
+static double fixed_left(double x, double a, double b) {
+    (void)b;
+    return gsl_cdf_flat_P(x, 0, a);
+}
+
+/* x Q(a, x/b) + a b P(a + 1, x/b), by parts. */
+static double gamma_left(double x, double a, double b) {
+    return (x * gsl_cdf_gamma_Q(x, a, b) + a * b * gsl_cdf_gamma_P(x, a + 1, b)) / (a * b);
+}
+
+/* 30 % uniform on [0, 1) and 70 % gamma, each by its share of the mean. */
+static double mix_left(double x, double a, double b) {
+    const double in = fmin(x, 1), uniform = 0.3 * (in - in * in / 2);
+    return (uniform + 0.7 * a * b * gamma_left(x, a, b)) / (0.3 * 0.5 + 0.7 * a * b);
+}
+
+/* 2, and then a gamma lag. */
+static double total_left(double x, double a, double b) {
+    return (fmin(x, 2) + a * b * gamma_left(fmax(x - 2, 0), a, b)) / (2 + a * b);
+}
+
+/* Values 1 and 3, one half each. */
+static double values_left(double x, double a, double b) {
+    (void)a;
+    (void)b;
+    return (0.5 * fmin(x, 1) + 0.5 * fmin(x, 3)) / 2;
+}
+
+static const double two_values[] = {1, 3}, two_shares[] = {0.5, 0.5};
+
+static const known all_left[] = {
+    {"exponential", {.kind = TARRY_LAW_EXPONENTIAL, .a = 3}, exponential_lower, 3, 0},
+    {"fixed", {.kind = TARRY_LAW_FIXED, .a = 3}, fixed_left, 3, 0},
+    {"gamma 4", {.kind = TARRY_LAW_GAMMA, .a = 8, .b = 4}, gamma_left, 4, 2},
+    {"values",
+     {.kind = TARRY_LAW_VALUES, .n = 2, .points = two_values, .weights = two_shares},
+     values_left,
+     0,
+     0},
+    {"mix",
+     {.kind = TARRY_LAW_MIX, .n = 2, .weights = mix_shares, .parts = mix_parts},
+     mix_left,
+     4,
+     2},
+    {"total", {.kind = TARRY_LAW_TOTAL, .n = 3, .parts = total_parts}, total_left, 4, 2},
+};
+
+START_TEST(what_is_left_of_lags) {
+    const size_t n = sample_size(N_DRAWS / 4);
+    double *draws = malloc(n * sizeof *draws);
+    tarry_drawer_set *set;
+    ck_assert_ptr_nonnull(draws);
+    ck_assert_int_eq(tarry_drawer_set_new(&set, NULL), TARRY_OK);
+    for (size_t i = 0; i < N_OF(all_left); i++) {
+        known k = all_left[i];
+        const tarry_drawer *drawer = add(set, &k.law);
+        tarry_stream stream;
+        tarry_stream_init(&stream, 1, 700 + i, TARRY_STREAM_START);
+        for (size_t j = 0; j < n; j++)
+            draws[j] = tarry_draw_remaining(drawer, &stream);
+        check_continuous(k.name, draws, n, known_lower, &k);
+    }
+    tarry_drawer_set_free(set);
+    free(draws);
+}
+END_TEST
+
 /* ---- lags: the tables ---- */
 
 /* A law with GSL's functions of its shape in standard units. */
@@ -421,6 +492,7 @@ int main(void) {
     const test_entry tests[] = {
         {"lags follow their laws", lags_follow_their_laws},
         {"values come with their shares", values_come_with_their_shares},
+        {"what is left of lags", what_is_left_of_lags},
         {"gamma tables", gamma_tables_hold_gsls_quantiles},
         {"lognormal tables", lognormal_tables_hold_gsls_quantiles},
         {"normal tables", normal_tables_hold_gsls_quantiles},

@@ -478,9 +478,7 @@ static int start_cell(plain *p, int64_t cell, tarry_error *error) {
         const uint32_t lag = (uint32_t)state->lag;
         int code;
         if (promoter->steady) {
-            const double v = tarry_unit(tarry_stream_next(&start));
-            const tarry_law *law = &p->segment->laws[network->lags[lag].delay];
-            code = put_pending(p, lag, tarry_law_remaining_quantile(law, v), error);
+            code = put_pending(p, lag, tarry_draw_remaining(drawer_of(p, lag), &start), error);
         } else {
             code = schedule(p, lag, error);
         }

@@ -149,7 +149,10 @@ static void write_delay(maker *m, int depth) {
     case 0:
     case 1:
     case 2:
-        WRITE("{fixed: %s}", rounds[pick(m, 6)]);
+        if (m->n_parameters > 0 && chance(m, 30)) /* a step of the protocol may change it */
+            WRITE("{fixed: 1 / (k%u + 0.5)}", pick(m, m->n_parameters));
+        else
+            WRITE("{fixed: %s}", rounds[pick(m, 6)]);
         break;
     case 3:
         WRITE("{exponential: {mean: ");
@@ -513,7 +516,7 @@ static void write_protocol(maker *m) {
     const unsigned n = 1 + pick(m, 3);
     unsigned at = pick(m, 4);
     WRITE("protocol:\n");
-    for (unsigned i = 0; i < n && at < UNTIL; i++, at += 1 + pick(m, 8)) {
+    for (unsigned i = 0; i < n && at <= UNTIL; i++, at += 1 + pick(m, 8)) {
         WRITE("  - at: %u%s\n    set:\n", at, chance(m, 30) ? ".25" : "");
         write_setting(m);
     }

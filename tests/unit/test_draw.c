@@ -163,6 +163,30 @@ START_TEST(one_number_for_each_elementary_law) {
 }
 END_TEST
 
+/* What is left of an elementary lag takes one number, of a total one more and those of later parts.
+ */
+START_TEST(what_is_left_by_hand) {
+    const tarry_law parts[] = {exponential, fixed, uniform};
+    const tarry_law law = {.kind = TARRY_LAW_TOTAL, .n = 3, .parts = parts};
+    set_up();
+    const tarry_drawer *whole = add(&law), *last = add(&uniform);
+    tarry_stream stream, other;
+    tarry_stream_init(&stream, 1, 0, TARRY_STREAM_START);
+    other = stream;
+    for (int k = 0; k < 1000; k++) {
+        const double met = 9 * tarry_unit(tarry_stream_next(&other)); /* of 3 + 2.5 + 3.5 */
+        const double p = tarry_unit(tarry_stream_next(&other));
+        double left = met < 3     ? tarry_law_remaining_quantile(&exponential, p) + 2.5
+                      : met < 5.5 ? 2.5 * p
+                                  : tarry_law_remaining_quantile(&uniform, p);
+        if (met < 5.5)
+            left += tarry_draw(last, &other);
+        check_near(tarry_draw_remaining(whole, &stream), left, 1e-14);
+    }
+    tarry_drawer_set_free(set);
+}
+END_TEST
+
 /* One number chooses the part, then the part takes its own; parts of a total in order. */
 START_TEST(mixes_and_totals_part_by_part) {
     set_up();
@@ -275,6 +299,7 @@ int main(void) {
         {"long tables", long_tables_by_a_plain_walk},
         {"one number for each elementary law", one_number_for_each_elementary_law},
         {"mixes and totals", mixes_and_totals_part_by_part},
+        {"what is left", what_is_left_by_hand},
         {"one table for one shape", one_table_for_one_shape},
         {"draws rise with the number", draws_rise_with_the_number},
         {"hopeless shapes", hopeless_shapes_are_named},
