@@ -41,7 +41,7 @@ static const option_row options[] = {
     {"overwrite", NULL, VALUE_NONE, TARRY_FOR_RUN, FIELD(overwrite), 0, 0,
      "replace the results of an earlier run in that folder"},
     {"cells", "N", VALUE_NUMBER, MODEL_COMMANDS, 0, 1, MOST_CELLS, "cells to simulate"},
-    {"settle", "T", VALUE_KEY, MODEL_COMMANDS, 0, 0, 0, "time simulated before the record"},
+    {"settle", "T", VALUE_KEY, MODEL_COMMANDS, 0, 0, 0, "time simulated before the record, or `auto`"},
     {"until", "T", VALUE_KEY, MODEL_COMMANDS, 0, 0, 0, "length of the record"},
     {"every", "T", VALUE_KEY, MODEL_COMMANDS, 0, 0, 0, "time between frames"},
     {"snapshots", "T,T,...", VALUE_KEY, MODEL_COMMANDS, 0, 0, 0,

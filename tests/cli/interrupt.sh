@@ -68,4 +68,21 @@ ignored() {
 }
 ok "a signal that was ignored stays ignored" ignored
 
+# on_terminal TERM : what the program says on a terminal of this kind, in two seconds of a long run;
+# script(1) gives it one.
+on_terminal() {
+    rm -rf bar
+    echo "timeout --foreground -s INT 2 '$TARRY' run small.yaml $many --out bar >out" >bar.sh
+    TERM=$1 script -qc "sh bar.sh" talk >/dev/null </dev/null
+    says out "(interrupted)" && says talk "interrupted" && ! says out " left"
+}
+
+bar() {
+    on_terminal xterm && says talk " of 1000000000 cells, " && says talk " left" &&
+        on_terminal dumb && ! says talk " left"
+}
+if command -v script >/dev/null; then
+    ok "a bar with the time left, on a terminal that can show it" bar
+fi
+
 finish
