@@ -35,7 +35,8 @@ double tarry_draw(const tarry_drawer *drawer, tarry_stream *stream);
  * that is under way, by its mean; what is left of that is drawn, then the later parts, in order. */
 double tarry_draw_remaining(const tarry_drawer *drawer, tarry_stream *stream);
 
-/* The lag at u = tarry_unit(bits), for drawers of one elementary law (tests). */
+/* The lag at u = tarry_unit(bits), for drawers of one elementary law (tests). Exponential and
+ * Weibull lags fall with u, all others rise. */
 double tarry_draw_at(const tarry_drawer *drawer, uint64_t bits);
 
 /* Bytes of all tables of the set. */

@@ -84,7 +84,8 @@ double tarry_law_quantile(const tarry_law *law, double p, double q);
 double tarry_law_survival_integral(const tarry_law *law, double x);
 
 /* The elapsed part of integral S / mean that a share p of it lies below: draws the remaining time
- * of a lag met at a random moment. */
+ * of a lag met at a random moment. Slow for a total of several unlike parts (see law_total.c): the
+ * engine draws what is left of those part by part (engine/draw.h). */
 double tarry_law_remaining_quantile(const tarry_law *law, double p);
 
 /* Earliest and latest possible value (infinity where there is none). */
