@@ -96,16 +96,28 @@ static int add_figures(table_page *page, tarry_result_table which, tarry_error *
 
 /* ---- counts at the snapshots ---------------------------------------------------------------- */
 
+/* The species of a name, or NULL. Names come in the order of species: the search goes on from the
+ * last one found. */
+static const tarry_species *find_species(const tarry_network *network, const char *name,
+                                         uint32_t *at) {
+    for (uint32_t i = 0; i < network->n_species; i++) {
+        const uint32_t here = (*at + i) % network->n_species;
+        if (!strcmp(network->species[here].name, name)) {
+            *at = here;
+            return &network->species[here];
+        }
+    }
+    return NULL;
+}
+
 /* Counts have lines here if nothing above tells of them (plain species), or if they change with
  * time. Promoter states have theirs among the times. */
-static bool is_shown(const tarry_network *network, const char *name) {
+static bool is_shown(const tarry_network *network, const tarry_species *species) {
     const bool changes = network->n_segments > 1 || !(network->run.settle > 0);
-    for (uint32_t i = 0; i < network->n_species; i++)
-        if (!strcmp(network->species[i].name, name))
-            return network->species[i].role == TARRY_SPECIES_PLAIN ||
-                   (changes && network->run.n_snapshots > 1 &&
-                    network->species[i].role != TARRY_SPECIES_STATE);
-    return false;
+    if (!species)
+        return false;
+    return species->role == TARRY_SPECIES_PLAIN ||
+           (changes && network->run.n_snapshots > 1 && species->role != TARRY_SPECIES_STATE);
 }
 
 static void add_numbers(tarry_text *text, const tarry_table *table, size_t row,
@@ -132,11 +144,12 @@ static int add_counts(table_page *page, tarry_error *error) {
     static const char *const columns[] = {"time", "mean", "mean_se", "sd", "fano"};
     const tarry_table *means = tarry_results_table(page->results, TARRY_TABLE_means);
     tarry_snapshots snapshots = {0};
+    uint32_t at = 0;
     size_t n = 0;
     const int status = tarry_snapshots_init(&snapshots, &page->network->run, means, error);
     for (size_t i = 0; !status && i < snapshots.n && n <= LINES_SHOWN; i++) {
         const tarry_snapshot *item = &snapshots.items[i];
-        if (!is_shown(page->network, item->name))
+        if (!is_shown(page->network, find_species(page->network, item->name, &at)))
             continue;
         if (!n)
             add_counts_head(page);

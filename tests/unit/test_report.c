@@ -540,6 +540,34 @@ START_TEST(test_table) {
     ck_assert_ptr_nonnull(strstr(table, "0.10*  0.10 to 0.30")); /* 12 periods only */
     ck_assert_ptr_nonnull(strstr(table, "4.25  4.00 to 4.50"));
     ck_assert_ptr_nonnull(strstr(table, "\n- A note that"));
+    ck_assert_ptr_nonnull(strstr(table, "  clasp "));
+    ck_assert_ptr_null(strstr(table, "vela.open"));
+    free(table);
+    tarry_results_free(results);
+}
+END_TEST
+
+START_TEST(test_faults_of_table) {
+    tarry_model model;
+    tarry_results *results = make_results();
+    char *table = NULL;
+    long n = 0;
+    fill_model(&model, 1);
+    for (;; n++) {
+        tarry_error error = {0};
+        faults_arm(FAULT_MEMORY, n, 0);
+        const int status = tarry_write_summary_table(&model, results, 80, &table, &error);
+        const bool struck = faults_struck();
+        faults_clear();
+        if (!struck) {
+            ck_assert_int_eq(status, 0);
+            break;
+        }
+        ck_assert_int_eq(status, TARRY_MEMORY);
+        ck_assert_int_eq((int)error.code, TARRY_MEMORY);
+        ck_assert_ptr_null(table);
+    }
+    ck_assert_int_ge(n, 10);
     free(table);
     tarry_results_free(results);
 }
@@ -661,6 +689,7 @@ int main(void) {
     tcase_add_test(tests, test_full_disk);
     tcase_add_test(tests, test_rounding);
     tcase_add_test(tests, test_table);
+    tcase_add_test(tests, test_faults_of_table);
     tcase_add_test(tests, test_table_of_windows);
     tcase_add_test(tests, test_table_of_many_genes);
     tcase_add_test(tests, test_lines);
