@@ -92,7 +92,8 @@ static void say_what_was_done(const tarry_results *results, const tarry_provenan
                    "in %s",
                    n, tarry_results_n_cells_asked(results), duration, folder);
     else
-        tarry_talk("%" PRId64 " cells in %s; results in %s", n, duration, folder);
+        tarry_talk("%" PRId64 " cell%s in %s; results in %s", n, n == 1 ? "" : "s", duration,
+                   folder);
 }
 
 /* Files first; the table comes in any case, since the work is done. */

@@ -10,6 +10,10 @@ static int count_characters(const char *word, size_t n) {
     return count;
 }
 
+int tarry_lines_characters(const char *word) {
+    return count_characters(word, strlen(word));
+}
+
 static void add_bytes(tarry_text *text, const char *word, size_t n) {
     for (size_t i = 0; i < n; i++) {
         const unsigned char byte = (unsigned char)word[i];

@@ -5,6 +5,9 @@
 
 #include "base/text.h"
 
+/* Characters of a text. */
+int tarry_lines_characters(const char *word);
+
 /* Append a text without control characters. */
 void tarry_lines_add(tarry_text *text, const char *word);
 

@@ -7,6 +7,9 @@
 
 enum { PLAIN_DIGITS = 4 };
 
+/* What rounding to PLAIN_DIGITS may add at most: 0.09999996 leads with the 1 of 0.1000. */
+#define ROUNDS_UP (1 + 5e-5)
+
 /* Outside these a power of ten is written. */
 #define SMALLEST 1e-4
 #define LARGEST 1e7
@@ -33,7 +36,7 @@ void tarry_round_plain(double value, char out[TARRY_ROUNDED]) {
     else if (isinf(value) || (value == floor(value) && size < LARGEST))
         tarry_number_write(value, out);
     else
-        put(value, PLAIN_DIGITS - 1 - leading_place(value), PLAIN_DIGITS,
+        put(value, PLAIN_DIGITS - 1 - leading_place(value * ROUNDS_UP), PLAIN_DIGITS,
             size < SMALLEST || size >= LARGEST, out);
 }
 

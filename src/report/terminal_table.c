@@ -43,7 +43,7 @@ static void describe_run(const table_page *page, tarry_text *line) {
     tarry_number_write(plan->until, until);
     tarry_number_write(plan->every, every);
     tarry_number_write(plan->settle, settle);
-    tarry_text_printf(line, "%lld cells", (long long)n);
+    tarry_text_printf(line, "%lld cell%s", (long long)n, n == 1 ? "" : "s");
     if (n < asked)
         tarry_text_printf(line, " of %lld (interrupted)", (long long)asked);
     tarry_text_printf(line, ", %s %s recorded every %s %s", until, unit, every, unit);
@@ -120,6 +120,17 @@ static bool is_shown(const tarry_network *network, const tarry_species *species)
            (changes && network->run.n_snapshots > 1 && species->role != TARRY_SPECIES_STATE);
 }
 
+/* A name before its numbers; one that is too long has a line of its own. */
+static void add_name(tarry_text *text, const char *name, int width) {
+    if (tarry_lines_characters(name) < width) {
+        tarry_lines_left(text, name, width);
+        return;
+    }
+    tarry_lines_add(text, name);
+    tarry_text_add(text, "\n", 1);
+    tarry_lines_left(text, "", width);
+}
+
 static void add_numbers(tarry_text *text, const tarry_table *table, size_t row,
                         const char *const *columns, size_t n, int width) {
     for (size_t i = 0; i < n; i++) {
@@ -158,7 +169,7 @@ static int add_counts(table_page *page, tarry_error *error) {
             break;
         }
         tarry_text_add(page->text, "  ", 2);
-        tarry_lines_left(page->text, item->name, LABEL);
+        add_name(page->text, item->name, LABEL);
         add_numbers(page->text, means, item->row, columns, COUNT(columns), COLUMN);
     }
     tarry_snapshots_release(&snapshots);
@@ -183,7 +194,7 @@ static void add_transit(table_page *page) {
     for (size_t row = 0; row < n && row < LINES_SHOWN; row++) {
         snprintf(words, sizeof words, "  %s%s%s", tarry_table_text(transit, row, 0),
                  one_window ? "" : ", ", one_window ? "" : tarry_table_text(transit, row, 2));
-        tarry_lines_left(page->text, words, LABEL + 2);
+        add_name(page->text, words, LABEL + 2);
         add_numbers(page->text, transit, row, columns, COUNT(columns), 12);
     }
     if (n > LINES_SHOWN)

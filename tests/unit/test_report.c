@@ -25,6 +25,8 @@
 
 static char model_text[] = "tarry: 1\ntitle: \"Tab\\tand \\u00e4\"\n";
 
+static const char long_name[] = "a_plain_species_whose_name_is_so_long_that_it_needs_a_line";
+
 /* A model as the writers see it: names, a plan, one gene with two alleles. */
 static void fill_model(tarry_model *model, uint32_t n_windows) {
     static const double snapshots[] = {0, 600};
@@ -35,7 +37,8 @@ static void fill_model(tarry_model *model, uint32_t n_windows) {
     static const tarry_window all = {.name = "all", .from = 0, .to = 600};
     static const tarry_gene genes[] = {{.name = "vela", .n_copies = 2}};
     static const tarry_species species[] = {{.name = "vela.open", .role = TARRY_SPECIES_STATE},
-                                            {.name = "clasp", .role = TARRY_SPECIES_PLAIN}};
+                                            {.name = "clasp", .role = TARRY_SPECIES_PLAIN},
+                                            {.name = long_name, .role = TARRY_SPECIES_PLAIN}};
     memset(model, 0, sizeof *model);
     model->text = model_text;
     model->text_size = strlen(model_text);
@@ -45,7 +48,7 @@ static void fill_model(tarry_model *model, uint32_t n_windows) {
     network->time_unit = "min";
     network->n_genes = 1;
     network->genes = genes;
-    network->n_species = 2;
+    network->n_species = 3;
     network->species = species;
     network->run = (tarry_run_plan){
         .cells = 200,
@@ -514,6 +517,21 @@ START_TEST(test_rounding) {
 }
 END_TEST
 
+START_TEST(test_rounding_alone) {
+    static const struct {
+        double value;
+        const char *text;
+    } cases[] = {
+        {0.09999996, "0.1000"}, {0.0999949, "0.09999"}, {2.3333333, "2.333"}, {4, "4"},  {0, "0"},
+        {123456.7, "123457"},   {1e-7, "1.000e-07"},    {3.5e9, "3.500e+09"}, {NAN, "-"}};
+    for (size_t i = 0; i < sizeof cases / sizeof *cases; i++) {
+        char text[TARRY_ROUNDED];
+        tarry_round_plain(cases[i].value, text);
+        ck_assert_str_eq(text, cases[i].text);
+    }
+}
+END_TEST
+
 static void check_width(const char *text, int width) {
     for (const char *at = text; *at;) {
         int n = 0;
@@ -529,6 +547,7 @@ START_TEST(test_table) {
     tarry_results *results = make_results();
     char *table = NULL;
     fill_model(&model, 1);
+    add_mean(results, long_name, 600, 5);
     ck_assert_int_eq(tarry_notes_add(&results->notes, (tarry_place){0}, NULL,
                                      "A note that is long enough to be broken into two lines, "
                                      "since %d characters do not fit into one",
@@ -688,6 +707,7 @@ int main(void) {
     tcase_add_test(tests, test_faults_of_json);
     tcase_add_test(tests, test_full_disk);
     tcase_add_test(tests, test_rounding);
+    tcase_add_test(tests, test_rounding_alone);
     tcase_add_test(tests, test_table);
     tcase_add_test(tests, test_faults_of_table);
     tcase_add_test(tests, test_table_of_windows);
