@@ -27,6 +27,12 @@ static double noise_at(const tarry_cell *cell, uint32_t signal, double time) {
     return gsl_cdf_ugaussian_Pinv(tarry_unit(tarry_mix64(z ^ bits)));
 }
 
+/* Two independent parts add in quadrature. */
+static double noise_sd(const tarry_signal *signal, double value) {
+    const double share = signal->share * value;
+    return sqrt(signal->noise * signal->noise + share * share);
+}
+
 static double signal_at(const tarry_cell *cell, uint32_t index, double ramp_sum, double time) {
     const tarry_network *network = cell->network;
     const tarry_signal *signal = &network->signals[index];
@@ -34,7 +40,9 @@ static double signal_at(const tarry_cell *cell, uint32_t index, double ramp_sum,
     for (uint32_t i = signal->weights.from; i < signal->weights.to; i++)
         value += network->weights[i].weight * cell->counts[network->weights[i].species];
     value += ramp_sum;
-    if (signal->noise > 0)
+    if (signal->share > 0)
+        value += noise_sd(signal, value) * noise_at(cell, index, time);
+    else if (signal->noise > 0)
         value += signal->noise * noise_at(cell, index, time);
     return value;
 }

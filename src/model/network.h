@@ -211,7 +211,8 @@ typedef struct tarry_signal {
     tarry_range weights; /* network->weights */
     tarry_range ramps;   /* network->signal_ramps: indices into network->ramps */
     double background;
-    double noise; /* sd of the read-out noise in one frame */
+    double noise; /* sd of the read-out noise in one frame: its fixed part, */
+    double share; /* and the part that goes with the noiseless signal, as a share of that */
     tarry_place place;
 } tarry_signal;
 

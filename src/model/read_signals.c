@@ -28,9 +28,10 @@ static int read_number(signal_reader *in, const tarry_node *map, const char *key
     return tarry_builder_constant_value(in->builder, node, TARRY_PURE, what, value, error);
 }
 
-static int read_noise(signal_reader *in, const tarry_node *map, double *noise, tarry_error *error) {
+/* `noise: sd`, or `noise: {fixed: sd, share: share of the signal}`. */
+static int read_noise(signal_reader *in, const tarry_node *map, tarry_signal *signal,
+                      tarry_error *error) {
     static const char *const keys[] = {"fixed", "share"};
-    static const char *const later[] = {"share"};
     const tarry_node *node = tarry_node_get(map, "noise");
     const char *key = "noise";
     int code = 0;
@@ -39,15 +40,20 @@ static int read_noise(signal_reader *in, const tarry_node *map, double *noise, t
     if (node->kind == TARRY_NODE_MAP) {
         code = tarry_expect_keys(node, "'noise'", keys, 2, error);
         if (code == 0)
-            code = tarry_expect_not_yet(node, "'noise'", later, 1, error);
+            code = read_number(in, node, "share", "the share of the noise of a signal",
+                               &signal->share, error);
         map = node;
         key = "fixed";
     }
     if (code == 0)
-        code = read_number(in, map, key, "the noise of a signal", noise, error);
-    if (code == 0 && *noise < 0)
+        code = read_number(in, map, key, "the noise of a signal", &signal->noise, error);
+    if (code == 0 && signal->noise < 0)
         code = tarry_fail_at(error, TARRY_INPUT, node->place,
                              "'noise' is the sd of the read-out noise and not below 0");
+    if (code == 0 && signal->share < 0)
+        code = tarry_fail_at(error, TARRY_INPUT, node->place,
+                             "'share' is the sd of the noise as a share of the signal and not "
+                             "below 0");
     return code;
 }
 
@@ -190,7 +196,7 @@ static int read_signal(signal_reader *in, const tarry_entry *entry, tarry_error 
         code = read_number(in, node, "background", "the background of a signal", &signal.background,
                            error);
     if (code == 0)
-        code = read_noise(in, node, &signal.noise, error);
+        code = read_noise(in, node, &signal, error);
     signal.weights.to = (uint32_t)builder->weights.n;
     if (code == 0 && TARRY_APPEND(&builder->signals, signal) != 0)
         code = tarry_fail_memory(error, "a signal");

@@ -194,6 +194,19 @@ double tarry_series_mean(double n, const double *sums) {
     return sums[D] / n;
 }
 
+double tarry_series_mean_square(const tarry_film_shape *shape, double n, double shift,
+                                const double *sums) {
+    const double mean = shift + tarry_series_mean(n, sums);
+    double squares = 0.0;
+    if (shape->stationary)
+        return mean * mean;
+    for (size_t t = 0; t < shape->n_frames; t++) {
+        const double at = shift + sums[SERIES_FRAMES + t] / n;
+        squares += at * at;
+    }
+    return squares / (double)shape->n_frames;
+}
+
 /* What one side of a covariance is made of: lags k = 0 .. n_lags - 1 by which `later` comes after
  * `earlier`. Arrays are stepped through forwards or backwards. */
 typedef struct lag_side {

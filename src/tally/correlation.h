@@ -59,6 +59,10 @@ void tarry_pair_move(const tarry_film_shape *shape, double n, const double *firs
 /* Mean less the shift, over n cells and all frames. */
 double tarry_series_mean(double n, const double *sums);
 
+/* Its square; where the series is not stationary the mean over frames of that of each frame. */
+double tarry_series_mean_square(const tarry_film_shape *shape, double n, double shift,
+                                const double *sums);
+
 /* Covariances from sums over n cells: covariance[0 .. n_lags) of one series; of a pair
  * covariance[0 .. 2 n_lags - 1), from the lag -(n_lags - 1) on, the second series that much later.
  * `work` holds 2 n_padded doubles. */

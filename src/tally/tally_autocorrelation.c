@@ -243,11 +243,16 @@ typedef struct series_level {
     double variance; /* read-out noise off; NaN where the series does not vary */
 } series_level;
 
-static double noise_variance(const tarry_network *network, const tarry_channel *channel) {
-    if (channel->signal == TARRY_NONE)
-        return 0.0;
-    const double noise = network->signals[channel->signal].noise;
-    return noise * noise;
+/* The variance without read-out noise: docs/statistics.md, "Autocorrelation". */
+static double without_noise(const tarry_signal *signal, const window_view *view, size_t series,
+                            double covariance_0) {
+    const double share = signal->share * signal->share;
+    const double fixed = covariance_0 - signal->noise * signal->noise;
+    if (!(share > 0.0))
+        return fixed;
+    const double square = tarry_series_mean_square(&view->shape, *view->n_cells,
+                                                   view->shifts[series], series_of(view, series));
+    return (fixed - share * square) / (1.0 + share);
 }
 
 static series_level level_of(const tarry_network *network, const tarry_channel *channel,
@@ -257,7 +262,10 @@ static series_level level_of(const tarry_network *network, const tarry_channel *
     const double background = channel->signal == TARRY_NONE
                                   ? 0.0
                                   : network->signals[channel->signal].background;
-    series_level level = {mean - background, covariance_0 - noise_variance(network, channel)};
+    series_level level = {mean - background, covariance_0};
+    if (channel->signal != TARRY_NONE)
+        level.variance = without_noise(&network->signals[channel->signal], view, series,
+                                       covariance_0);
     const double least = least_spread * fabs(mean);
     if (!(level.variance > least * least))
         level.variance = NAN;

@@ -87,8 +87,10 @@ static double signal_value(const plain *p, uint32_t number, double time) {
         }
     }
     value += ramps;
-    if (signal->noise > 0)
-        value += signal->noise * noise_of(p, number, time);
+    const double fixed = signal->noise, share = signal->share * value;
+    if (fixed > 0 || signal->share > 0)
+        value += (signal->share > 0 ? sqrt(fixed * fixed + share * share) : fixed) *
+                 noise_of(p, number, time);
     return value;
 }
 

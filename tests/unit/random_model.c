@@ -490,7 +490,7 @@ static void write_signals(maker *m) {
         if (chance(m, 50))
             WRITE("    background: 2\n");
         if (chance(m, 50))
-            WRITE("    noise: 0.3\n");
+            WRITE(chance(m, 60) ? "    noise: 0.3\n" : "    noise: {fixed: 0.3, share: 0.1}\n");
     }
 }
 

@@ -51,7 +51,7 @@ START_TEST(signals) {
         "  plain: {of: vela.protein, brightness: 0.05}\n"
         "  sum: {sum: {vela.nascent: {ramp: {from: 0.1, to: 0.1}, brightness: 2},\n"
         "              vela.nuclear: {ramp: {from: 0, to: 1}}, vela.protein: -1},\n"
-        "        noise: {fixed: 4}}\n",
+        "        noise: {fixed: 4, share: 0.2}}\n",
         NULL, 0);
     reading_pass(&in, readers, 3);
     const tarry_signal *rows = in.builder.signals.items;
@@ -64,6 +64,7 @@ START_TEST(signals) {
     ck_assert(rows[1].weights.from == 0 && rows[1].weights.to == 1);
     ck_assert(rows[1].background == 0 && rows[1].noise == 0);
     ck_assert(rows[2].weights.from == 1 && rows[2].weights.to == 2 && rows[2].noise == 4);
+    ck_assert(rows[0].share == 0 && rows[2].share == 0.2);
     check_ramp(&in.builder.ramps.items[0], 0, 4, 0.2, 0.4, 3);
     check_ramp(&in.builder.ramps.items[1], 2, 4, 0.1, 0.1, 2);
     check_ramp(&in.builder.ramps.items[2], 2, 6, 0, 1, 1);
@@ -112,7 +113,10 @@ START_TEST(what_is_refused) {
     refused(S "{sum: {vela.protein: 1}, brightness: 2}\n", 2, 34, "'brightness' goes with 'of'");
     refused(S "{sum: {vela.protein: 1}, ramp: {from: 0, to: 1}}\n", 2, 34, "'ramp' goes with 'of'");
     not_yet(S "{of: vela.nascent, allele: 1}\n", 2, 28, "'allele' cannot be used yet");
-    not_yet(S "{of: vela.nascent, noise: {fixed: 1, share: 0.1}}\n", 2, 46, "'share' cannot be");
+    refused(S "{of: vela.nascent, noise: {fixed: 1, share: -0.1}}\n", 2, 35,
+            "'share' is the sd of the noise as a share");
+    refused(S "{of: vela.nascent, noise: {share: 1 min}}\n", 2, 43,
+            "is a time where a pure number");
 }
 END_TEST
 

@@ -529,6 +529,42 @@ START_TEST(test_background_and_noise) {
 }
 END_TEST
 
+/* With a share q of the signal: (C(0) - f^2 - q^2 mean^2)/(1 + q^2), in a window that moves with
+ * the mean over frames of each one's squared mean. */
+START_TEST(test_noise_with_a_share) {
+    for (int settle = 0; settle <= 5; settle += 5) {
+        hand h;
+        film films[CELLS];
+        film_hand(&h, settle);
+        h.signals[0].background = 2;
+        h.signals[0].noise = 0.25;
+        h.signals[0].share = 0.1;
+        make_films(films, CELLS);
+        double squares = 0, mean = 0, c0 = 0;
+        for (size_t t = 0; t < FRAMES; t++) {
+            double x[CELLS], at = 0;
+            for (size_t i = 0; i < CELLS; i++) {
+                x[i] = films[i][0][t];
+                at += (x[i] + 5) / CELLS;
+            }
+            mean += at / FRAMES;
+            squares += at * at / FRAMES;
+            c0 += sample_covariance(x, x, CELLS) / FRAMES;
+        }
+        if (settle > 0) {
+            squares = mean * mean;
+            c0 = plain_stationary(films, CELLS, 0, 0, 0);
+        }
+        tarry_results *results = film_results(&h, films, CELLS, 5);
+        const tarry_table *table = tarry_results_table(results, TARRY_TABLE_signals);
+        ck_assert_double_eq_tol(
+            hand_number(table, hand_row(table, "red", "all", "amplitude"), "value"),
+            (c0 - 0.0625 - 0.01 * squares) / 1.01 / ((mean - 2) * (mean - 2)), 1e-12);
+        tarry_results_free(results);
+    }
+}
+END_TEST
+
 /* Products correlate with themselves only, and their decay times stand with the bursts. */
 START_TEST(test_products) {
     hand h;
@@ -602,6 +638,7 @@ int main(void) {
         {"interval", test_interval},
         {"stationary windows", test_stationary_windows},
         {"background and noise", test_background_and_noise},
+        {"noise with a share", test_noise_with_a_share},
         {"products", test_products},
         {"one cell", test_one_cell},
         {"window without frames", test_window_without_frames},
