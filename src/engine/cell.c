@@ -26,11 +26,25 @@ static void stop(tarry_cell *cell, tarry_stop why, uint32_t index) {
 
 /* ---- lags ------------------------------------------------------------------------------------ */
 
-static void wait_until(tarry_cell *cell, uint32_t lag, double due, bool is_fixed) {
-    if (tarry_pending_add(&cell->pending, lag, due, is_fixed))
+static void wait_until(tarry_cell *cell, uint32_t lag, double due, bool is_fixed, bool is_lost) {
+    if (tarry_pending_add(&cell->pending, is_lost ? cell->n_lags + lag : lag, due, is_fixed))
         stop(cell, TARRY_STOP_MEMORY, lag);
     else if (cell->pending.n > cell->most_pending)
         stop(cell, TARRY_STOP_PENDING, lag);
+}
+
+/* The lag of a molecule that may be lost: the loss competes with the end that has been drawn. */
+static void schedule_rare(tarry_cell *cell, uint32_t lag, double length, bool is_fixed) {
+    const tarry_lag *rare = &cell->network->lags[lag];
+    const double rate = cell->network->segments[cell->segment].rates[rare->loss_rate];
+    const double wait = -tarry_log(tarry_unit(tarry_stream_next(&cell->events)));
+    const double due = cell->now + length;
+    const double loss = rate > 0 ? cell->now + wait / rate : INFINITY;
+    const bool is_lost = loss < due;
+    const double leaves = is_lost ? loss : due;
+    wait_until(cell, lag, leaves, is_fixed && !is_lost, is_lost);
+    if (cell->record)
+        tarry_cell_note_lag(cell, lag, length, due, leaves, true);
 }
 
 static inline void schedule(tarry_cell *cell, uint32_t lag) {
@@ -38,18 +52,22 @@ static inline void schedule(tarry_cell *cell, uint32_t lag) {
     const double fixed = cell->fixed[delay];
     const bool is_fixed = fixed >= 0;
     const double length = is_fixed ? fixed : tarry_draw(cell->drawers[delay], &cell->events);
+    if (cell->engine->lags[lag].is_rare) {
+        schedule_rare(cell, lag, length, is_fixed);
+        return;
+    }
     const double due = cell->now + length;
-    wait_until(cell, lag, due, is_fixed);
+    wait_until(cell, lag, due, is_fixed, false);
     if (cell->record)
-        tarry_cell_note_lag(cell, lag, length, due, true);
+        tarry_cell_note_lag(cell, lag, length, due, due, true);
 }
 
 /* A dwell that was under way when the cell started. */
 static void schedule_remaining(tarry_cell *cell, uint32_t lag, double length) {
     const double due = cell->now + length;
-    wait_until(cell, lag, due, false);
+    wait_until(cell, lag, due, false, false);
     if (cell->record)
-        tarry_cell_note_lag(cell, lag, length, due, false);
+        tarry_cell_note_lag(cell, lag, length, due, due, false);
 }
 
 /* ---- effects --------------------------------------------------------------------------------- */
@@ -131,8 +149,17 @@ static int64_t choose_outcome(tarry_cell *cell, const tarry_packed_lag *lag) {
     return TARRY_NONE;
 }
 
+static void lose(tarry_cell *cell, uint32_t lag) {
+    carry_out(cell, cell->network->lags[lag].loss_effect);
+    tarry_cell_note_loss(cell, lag);
+}
+
 static inline void complete(tarry_cell *cell) {
     const uint32_t index = tarry_pending_take(&cell->pending);
+    if (index >= cell->n_lags) {
+        lose(cell, index - cell->n_lags);
+        return;
+    }
     const tarry_packed_lag *lag = &cell->engine->lags[index];
     cell->completions[index]++;
     const int64_t effect = lag->is_certain ? lag->effect : choose_outcome(cell, lag);
@@ -407,17 +434,26 @@ static int64_t whole_limit(double limit) {
     return limit < 0x1p38 ? (int64_t)limit : INT64_C(1) << 38;
 }
 
+/* Kinds of completions: one a lag, and where any molecule may be lost as many for losses. */
+static uint32_t n_kinds(const tarry_network *network) {
+    for (uint32_t i = 0; i < network->n_lags; i++)
+        if (network->lags[i].may_be_lost)
+            return 2 * network->n_lags;
+    return network->n_lags;
+}
+
 int tarry_cell_new(const tarry_engine *engine, tarry_cell **out, tarry_error *error) {
     tarry_cell *cell = tarry_calloc(1, sizeof *cell);
     if (!cell)
         return tarry_fail_memory(error, "a cell");
     cell->engine = engine;
     cell->network = engine->network;
+    cell->n_lags = engine->network->n_lags;
     cell->most_firings = whole_limit(engine->network->run.limit_firings);
     cell->most_pending = whole_limit(engine->network->run.limit_pending);
     int code;
     if ((code = allocate(cell, error)) ||
-        (code = tarry_pending_init(&cell->pending, engine->network->n_lags, error)) ||
+        (code = tarry_pending_init(&cell->pending, n_kinds(engine->network), error)) ||
         (code = engine->sampler->set_up(&engine->propensities, &cell->sampler_state, error))) {
         tarry_cell_free(cell);
         return code;

@@ -31,6 +31,7 @@ typedef struct tarry_packed_lag {
     uint32_t n_outcomes;
     bool is_certain; /* one outcome that always comes */
     uint32_t effect; /* of a certain one */
+    bool is_rare;    /* its molecule may be lost */
     uint32_t n_ramps;
     const uint32_t *ramps;
 } tarry_packed_lag;
@@ -68,7 +69,8 @@ struct tarry_cell {
     double now;
     double *counts;
     uint32_t segment;
-    tarry_pending pending;
+    uint32_t n_lags;
+    tarry_pending pending; /* of kind `lag`, or n_lags + lag for a molecule that is to be lost */
     tarry_sampler_state *sampler_state;
     tarry_stream events;
     tarry_track_status *status; /* [track] */
@@ -112,8 +114,13 @@ void tarry_cell_observe(tarry_cell *cell, double t);
 /* Ready for a new record; called at the start of a cell. */
 void tarry_cell_begin_record(tarry_cell *cell);
 
-/* A lag of `length` begins now; `is_drawn`: it counts among those drawn. */
-void tarry_cell_note_lag(tarry_cell *cell, uint32_t lag, double length, double due, bool is_drawn);
+/* A lag of `length` as drawn begins now and would be over at `due`; its molecule is there until
+ * `leaves`. `is_drawn`: it counts among those drawn. */
+void tarry_cell_note_lag(tarry_cell *cell, uint32_t lag, double length, double due, double leaves,
+                         bool is_drawn);
+
+/* A molecule is lost now. */
+void tarry_cell_note_loss(tarry_cell *cell, uint32_t lag);
 
 /* A lag that was due at `due` is cancelled now. */
 void tarry_cell_note_cancel(tarry_cell *cell, uint32_t lag, double due);

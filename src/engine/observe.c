@@ -187,24 +187,24 @@ static double ramp_at(const tarry_ramp *ramp, double time, double begin, double 
     return ramp->brightness * ((f - ramp->from) / (ramp->to - ramp->from));
 }
 
-/* What a molecule will add to the observations at times[next .. n) while it is under way: known
- * from the start, since its dwell is drawn by then. */
-static void add_ramp(const tarry_ramp *ramp, double begin, double due, const double *times,
-                     uint32_t next, uint32_t n, double *sums) {
-    for (uint32_t i = next; i < n && times[i] < due; i++)
+/* What a molecule will add to the observations at times[next .. n) until it leaves: known from the
+ * start, since its dwell is drawn by then. */
+static void add_ramp(const tarry_ramp *ramp, double begin, double due, double leaves,
+                     const double *times, uint32_t next, uint32_t n, double *sums) {
+    for (uint32_t i = next; i < n && times[i] < leaves; i++)
         if (times[i] >= begin)
             sums[i] += ramp_at(ramp, times[i], begin, due);
 }
 
-static void add_ramps(tarry_cell *cell, const tarry_packed_lag *lag, double due) {
+static void add_ramps(tarry_cell *cell, const tarry_packed_lag *lag, double due, double leaves) {
     const tarry_network *network = cell->network;
     const tarry_run_plan *run = &network->run;
     for (uint32_t i = 0; i < lag->n_ramps; i++) {
         const tarry_ramp *ramp = &network->ramps[lag->ramps[i]];
-        add_ramp(ramp, cell->now, due, cell->engine->frame_times, cell->next_frame, run->n_frames,
-                 cell->frame_ramps + (size_t)ramp->signal * run->n_frames);
-        add_ramp(ramp, cell->now, due, run->snapshots, cell->next_snapshot, run->n_snapshots,
-                 cell->snapshot_ramps + (size_t)ramp->signal * run->n_snapshots);
+        add_ramp(ramp, cell->now, due, leaves, cell->engine->frame_times, cell->next_frame,
+                 run->n_frames, cell->frame_ramps + (size_t)ramp->signal * run->n_frames);
+        add_ramp(ramp, cell->now, due, leaves, run->snapshots, cell->next_snapshot,
+                 run->n_snapshots, cell->snapshot_ramps + (size_t)ramp->signal * run->n_snapshots);
     }
 }
 
@@ -221,24 +221,31 @@ static void add_drawn(tarry_cell *cell, uint32_t lag, double length) {
         cell->record->lag_bins[(size_t)lag * TARRY_LAG_BINS + tarry_lag_bin(length)]++;
 }
 
-void tarry_cell_note_lag(tarry_cell *cell, uint32_t lag, double length, double due, bool is_drawn) {
-    if (due < 0 || cell->now >= cell->network->run.until)
+void tarry_cell_note_lag(tarry_cell *cell, uint32_t lag, double length, double due, double leaves,
+                         bool is_drawn) {
+    if (leaves < 0 || cell->now >= cell->network->run.until)
         return;
     if (is_drawn)
         add_drawn(cell, lag, length);
-    add_overlaps(cell, lag, cell->now, due, 1);
+    add_overlaps(cell, lag, cell->now, leaves, 1);
     const tarry_packed_lag *packed = &cell->engine->lags[lag];
     if (packed->n_ramps > 0)
-        add_ramps(cell, packed, due);
+        add_ramps(cell, packed, due, leaves);
+}
+
+void tarry_cell_note_loss(tarry_cell *cell, uint32_t lag) {
+    if (!cell->record)
+        return;
+    const int32_t span = span_of(cell, cell->now);
+    if (span != TARRY_NONE)
+        cell->record->lags[(size_t)lag * cell->network->run.n_spans + (uint32_t)span].lost += 1;
 }
 
 void tarry_cell_note_cancel(tarry_cell *cell, uint32_t lag, double due) {
     if (!cell->record)
         return;
     add_overlaps(cell, lag, cell->now, due, -1);
-    const int32_t span = span_of(cell, cell->now);
-    if (span != TARRY_NONE)
-        cell->record->lags[(size_t)lag * cell->network->run.n_spans + (uint32_t)span].lost += 1;
+    tarry_cell_note_loss(cell, lag);
 }
 
 /* A track that runs on has seen its first opening after `until`: it is done. */

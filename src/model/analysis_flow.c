@@ -77,6 +77,8 @@ static void index_owners(tarry_flow_index *index) {
         const tarry_range outcomes = network->lags[i].outcomes;
         for (uint32_t k = outcomes.from; k < outcomes.to; k++)
             index->lag_of[network->outcomes[k].effect] = (int32_t)i;
+        if (network->lags[i].may_be_lost)
+            index->lag_of[network->lags[i].loss_effect] = (int32_t)i;
     }
     for (uint32_t s = 0; s < network->n_species; s++)
         index->product_of[s] = TARRY_NONE;
@@ -423,7 +425,7 @@ static void enter_translated(reader *r, uint32_t species, const trail *way) {
 static const char *dwell_in(reader *r, size_t product, int32_t lag, tarry_flow_step *step,
                             double *mean) {
     const double decay = r->decay[product];
-    if (lag != TARRY_NONE && decay > 0)
+    if (lag != TARRY_NONE && (decay > 0 || r->network->lags[lag].may_be_lost))
         return "its molecules are lost while they are under way";
     if (lag == TARRY_NONE && !(decay > 0))
         return "nothing removes it";

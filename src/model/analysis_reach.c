@@ -97,6 +97,8 @@ static void end_lag(search *s, uint32_t index) {
     const tarry_range outcomes = s->network->lags[index].outcomes;
     for (uint32_t i = outcomes.from; i < outcomes.to; i++)
         happen(s, s->network->outcomes[i].effect);
+    if (s->network->lags[index].may_be_lost)
+        happen(s, s->network->lags[index].loss_effect);
 }
 
 /* A promoter may be in this state: at the start, or moved there by the protocol. */

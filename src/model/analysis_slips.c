@@ -237,6 +237,23 @@ static void tell_changed_delays(teller *t, const tarry_segment *before, const ta
                  number(after->start, at), t->network->time_unit, lag_of[d]->delay_name);
 }
 
+static void tell_changed_losses(teller *t, const tarry_segment *before,
+                                const tarry_segment *after) {
+    char at[TARRY_NUMBER_SIZE];
+    if (before->rates == after->rates)
+        return;
+    for (uint32_t i = 0; i < t->network->n_lags; i++) {
+        const tarry_lag *lag = &t->network->lags[i];
+        if (lag->may_be_lost && lag->allele == 0 &&
+            before->rates[lag->loss_rate] != after->rates[lag->loss_rate])
+            tell(t, lag->place,
+                 "the step at %s %s changes the rate of loss in '%s': what is there already keeps "
+                 "the "
+                 "time to loss it was drawn with",
+                 number(after->start, at), t->network->time_unit, lag->name);
+    }
+}
+
 static void tell_changed_lags(teller *t) {
     const tarry_network *network = t->network;
     const tarry_lag **lag_of = tarry_calloc(network->n_delays, sizeof *lag_of);
@@ -247,8 +264,10 @@ static void tell_changed_lags(teller *t) {
     for (uint32_t i = network->n_lags; i-- > 0;)
         lag_of[network->lags[i].delay] = &network->lags[i];
     for (uint32_t k = 1; k < network->n_segments && !t->code; k++)
-        if (network->segments[k].moment == TARRY_MOMENT_STEP)
+        if (network->segments[k].moment == TARRY_MOMENT_STEP) {
             tell_changed_delays(t, &network->segments[k - 1], &network->segments[k], lag_of);
+            tell_changed_losses(t, &network->segments[k - 1], &network->segments[k]);
+        }
     free(lag_of);
     close_kind(t, "steps that change a delay");
 }

@@ -104,6 +104,8 @@ static int add_lag(solver *s, uint32_t index) {
         may_do_nothing |= effect->skip_short && effect->demands.from < effect->demands.to;
         may_do_nothing |= i + 1 == lag->outcomes.to && network->outcomes[i].cumulative < 1;
     }
+    if (lag->may_be_lost)
+        short_of_memory |= add_effect(s, lag->loss_effect) | end_row(s);
     if (counted && may_do_nothing)
         short_of_memory |= add_entry(s, unknown, -1) | end_row(s);
     return short_of_memory;

@@ -116,6 +116,9 @@ typedef struct tarry_lag {
     int32_t stage;          /* the species that holds the molecules under way, or TARRY_NONE */
     int32_t promoter;       /* the promoter whose state lasts this long, or TARRY_NONE */
     int32_t gene;           /* or TARRY_NONE */
+    bool may_be_lost;       /* its molecule may leave before the end: */
+    uint32_t loss_rate;     /* index into a segment's `rates` */
+    uint32_t loss_effect;   /* what happens then */
     uint32_t allele;        /* whose lag it is, where each has one; else 0 */
     tarry_place place;
 } tarry_lag;

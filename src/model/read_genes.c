@@ -44,24 +44,48 @@ int tarry_gene_reaction(const tarry_gene_work *work, const char *name, const tar
 /* ---- lags ---------------------------------------------------------------------------------------
  */
 
-/* The delay of a stage: in place, or under `lasts`. */
-static int stage_delay(const tarry_entry *stage, const tarry_node **delay, tarry_error *error) {
+/* The delay of a stage: in place, or under `lasts`. `lost`: the node of that key, or NULL. */
+static int stage_delay(const tarry_entry *stage, const tarry_node **delay, const tarry_node **lost,
+                       tarry_error *error) {
     static const char *const keys[] = {"lasts", "lost"};
-    static const char *const later[] = {"lost"};
     *delay = stage->node;
+    *lost = NULL;
     if (stage->node->kind != TARRY_NODE_MAP || (tarry_node_get(stage->node, "lasts") == NULL &&
                                                 tarry_node_get(stage->node, "lost") == NULL))
         return 0;
     int code = tarry_expect_keys(stage->node, stage->key, keys, 2, error);
     if (code == 0)
-        code = tarry_expect_not_yet(stage->node, stage->key, later, 1, error);
-    if (code == 0)
         code = tarry_expect_value(stage->node, stage->key, "lasts", delay, error);
+    *lost = tarry_node_get(stage->node, "lost");
     return code;
 }
 
-static int make_lag(tarry_gene_work *work, const tarry_node *delay, uint32_t species,
-                    tarry_place place, tarry_error *error) {
+/* The loss that competes with a dwell. Its rate is needed when a molecule enters. */
+static int read_loss(tarry_gene_work *work, const tarry_node *lost, tarry_lag *lag,
+                     tarry_error *error) {
+    tarry_builder *builder = work->builder;
+    bool formula = false;
+    tarry_draft draft = {0};
+    const char *what = tarry_arena_format(builder->arena, "%s loss", lag->name);
+    if (what == NULL)
+        return tarry_fail_memory(error, "a gene");
+    lag->may_be_lost = true;
+    int code = tarry_builder_rate(builder, lost, false, what, &formula, &lag->loss_rate, error);
+    if (code == 0 && formula)
+        code = tarry_fail_at(error, TARRY_INPUT, lost->place,
+                             "the time to a loss is drawn when a molecule enters the stage, so its "
+                             "rate cannot read species; use parameters");
+    if (code == 0)
+        code = tarry_draft_change(&draft, (uint32_t)lag->stage, -1, error);
+    if (code == 0)
+        code = tarry_builder_effect(builder, &draft, &lag->loss_effect, error);
+    tarry_draft_release(&draft);
+    return code;
+}
+
+/* `lost`: may be NULL. */
+static int make_lag(tarry_gene_work *work, const tarry_node *delay, const tarry_node *lost,
+                    uint32_t species, tarry_place place, tarry_error *error) {
     tarry_builder *builder = work->builder;
     tarry_lag lag = {.name = builder->species.items[species].name,
                      .stage = (int32_t)species,
@@ -69,7 +93,9 @@ static int make_lag(tarry_gene_work *work, const tarry_node *delay, uint32_t spe
                      .gene = (int32_t)work->gene,
                      .place = place};
     uint32_t index = 0;
-    const int code = tarry_builder_delay_index(builder, delay, &lag.delay, error);
+    int code = tarry_builder_delay_index(builder, delay, &lag.delay, error);
+    if (code == 0 && lost != NULL)
+        code = read_loss(work, lost, &lag, error);
     return code == 0 ? tarry_builder_lag(builder, lag, &index, error) : code;
 }
 
@@ -77,10 +103,10 @@ static int make_stage_lags(tarry_gene_work *work, const product_plan *plan, tarr
     int code = 0;
     for (uint32_t i = 0; code == 0 && i < plan->n_stages; i++) {
         const tarry_entry *stage = &plan->stages->entries[i];
-        const tarry_node *delay = NULL;
-        code = stage_delay(stage, &delay, error);
+        const tarry_node *delay = NULL, *lost = NULL;
+        code = stage_delay(stage, &delay, &lost, error);
         if (code == 0)
-            code = make_lag(work, delay, plan->first + i, stage->place, error);
+            code = make_lag(work, delay, lost, plan->first + i, stage->place, error);
     }
     return code;
 }
@@ -112,7 +138,7 @@ static int read_decay(tarry_gene_work *work, const tarry_node *node, product_pla
     if (!plan->lives)
         return 0;
     plan->place = tarry_key_place(node, "lifetime");
-    return make_lag(work, lifetime, plan->species, plan->place, error);
+    return make_lag(work, lifetime, NULL, plan->species, plan->place, error);
 }
 
 static int read_product(tarry_gene_work *work, const tarry_node *node, const tarry_node *stages,

@@ -254,6 +254,21 @@ static void put_remarks(const writer *w, double probability, bool skips) {
     }
 }
 
+/* "or lost  vela.nuclear -> nothing  rate 0.01 /min" */
+static void put_loss(const writer *w, const tarry_lag *lag) {
+    tarry_text text = {0};
+    char number[TARRY_NUMBER_SIZE];
+    tarry_number_short(w->network->segments[0].rates[lag->loss_rate], 6, number);
+    tarry_text_printf(&text, "rate %s /%s", number, w->network->time_unit);
+    add_steps(w, lag->loss_rate, &text);
+    w->page->text->failed = w->page->text->failed || text.failed;
+    tarry_sheet_row(&w->page->sheet);
+    tarry_sheet_cell(&w->page->sheet, 1, "or lost");
+    put_equation(w, &w->network->effects[lag->loss_effect], NULL, 2);
+    tarry_sheet_cell(&w->page->sheet, 3, "%s", text.data ? text.data : "");
+    tarry_text_release(&text);
+}
+
 static void put_lag(const writer *w, const tarry_lag *lag) {
     const tarry_network *network = w->network;
     double before = 0;
@@ -271,6 +286,8 @@ static void put_lag(const writer *w, const tarry_lag *lag) {
         put_lags(w, effect, 4);
         before = outcome->cumulative;
     }
+    if (lag->may_be_lost)
+        put_loss(w, lag);
 }
 
 void tarry_page_completions(tarry_page *page) {

@@ -16,6 +16,7 @@ enum { MOST_IN_A_SUM = 64 }; /* above this many reactions the choice goes throug
 typedef struct completion {
     uint32_t lag;
     double begin, due;
+    double leaves; /* before it is due where the molecule is lost */
 } completion;
 
 typedef struct plain {
@@ -82,7 +83,7 @@ static double signal_value(const plain *p, uint32_t number, double time) {
         const completion *c = &p->pending[i];
         for (uint32_t j = signal->ramps.from; j < signal->ramps.to; j++) {
             const tarry_ramp *ramp = &network->ramps[network->signal_ramps[j]];
-            if (ramp->lag == c->lag && c->begin <= time && time < c->due)
+            if (ramp->lag == c->lag && c->begin <= time && time < c->leaves)
                 ramps += shine(ramp, c, time);
         }
     }
@@ -211,13 +212,13 @@ static tarry_lag_sums *span_sums(const plain *p, uint32_t lag) {
     return NULL;
 }
 
-static int put_pending(plain *p, uint32_t lag, double length, tarry_error *error) {
+static int put_pending(plain *p, uint32_t lag, double due, double leaves, tarry_error *error) {
     completion *more = realloc(p->pending, (p->n_pending + 1) * sizeof *more);
     if (!more)
         return tarry_fail_memory(error, "pending completions");
     p->pending = more;
-    p->pending[p->n_pending] = (completion){lag, p->now, p->now + length};
-    add_overlap(p, lag, p->now, p->now + length, 1);
+    p->pending[p->n_pending] = (completion){lag, p->now, due, leaves};
+    add_overlap(p, lag, p->now, leaves, 1);
     p->n_pending++;
     if ((double)p->n_pending > p->network->run.limit_pending)
         return tarry_fail(error, TARRY_LIMIT, "too many pending");
@@ -234,7 +235,15 @@ static int schedule(plain *p, uint32_t lag, tarry_error *error) {
         if (p->record->lag_bins)
             p->record->lag_bins[(size_t)lag * TARRY_LAG_BINS + tarry_lag_bin(length)]++;
     }
-    return put_pending(p, lag, length, error);
+    const tarry_lag *row = &p->network->lags[lag];
+    double due = p->now + length, leaves = due;
+    if (row->may_be_lost) {
+        const double u = tarry_unit(tarry_stream_next(&p->events));
+        const double rate = p->segment->rates[row->loss_rate];
+        if (rate > 0)
+            leaves = fmin(due, p->now + -tarry_log(u) / rate);
+    }
+    return put_pending(p, lag, due, leaves, error);
 }
 
 static void remove_pending(plain *p, size_t i) {
@@ -242,12 +251,19 @@ static void remove_pending(plain *p, size_t i) {
     p->n_pending--;
 }
 
-/* The next completion by (due, lag, order scheduled); n_pending if there is none. */
+/* The next completion or loss by (time, kind, order scheduled); n_pending if there is none. */
 static size_t next_pending(const plain *p) {
     size_t best = p->n_pending;
+    const uint32_t n_lags = p->network->n_lags;
     for (size_t i = 0; i < p->n_pending; i++) {
         const completion *c = &p->pending[i], *b = &p->pending[best];
-        if (best == p->n_pending || c->due < b->due || (c->due == b->due && c->lag < b->lag))
+        if (best == p->n_pending) {
+            best = i;
+            continue;
+        }
+        const uint32_t kind = c->lag + (c->leaves < c->due ? n_lags : 0);
+        const uint32_t best_kind = b->lag + (b->leaves < b->due ? n_lags : 0);
+        if (c->leaves < b->leaves || (c->leaves == b->leaves && kind < best_kind))
             best = i;
     }
     return best;
@@ -306,7 +322,14 @@ static int complete(plain *p, size_t i, tarry_error *error) {
     const uint32_t n = lag->outcomes.to - lag->outcomes.from;
     bool short_of = false;
     uint32_t chosen = 0;
+    const bool lost = p->pending[i].leaves < p->pending[i].due;
     remove_pending(p, i);
+    if (lost) {
+        tarry_lag_sums *sums = span_sums(p, number);
+        if (sums)
+            sums->lost += 1;
+        return carry_out(p, &p->network->effects[lag->loss_effect], &short_of, error);
+    }
     p->record->completions[number]++;
     if (n > 1 || (n == 1 && outcomes[0].cumulative < 1)) {
         const double u = tarry_unit(tarry_stream_next(&p->events));
@@ -480,7 +503,8 @@ static int start_cell(plain *p, int64_t cell, tarry_error *error) {
         const uint32_t lag = (uint32_t)state->lag;
         int code;
         if (promoter->steady) {
-            code = put_pending(p, lag, tarry_draw_remaining(drawer_of(p, lag), &start), error);
+            const double due = p->now + tarry_draw_remaining(drawer_of(p, lag), &start);
+            code = put_pending(p, lag, due, due, error);
         } else {
             code = schedule(p, lag, error);
         }
@@ -497,7 +521,7 @@ static int catch_up(plain *p, tarry_error *error) {
     for (;;) {
         const size_t i = next_pending(p);
         int code;
-        if (i < p->n_pending && p->pending[i].due <= p->now)
+        if (i < p->n_pending && p->pending[i].leaves <= p->now)
             code = complete(p, i, error);
         else if (next_segment_start(p) <= p->now)
             code = start_segment(p, error);
@@ -514,7 +538,7 @@ static int go_on(plain *p, double *n_firings, tarry_error *error) {
     const size_t i = next_pending(p);
     double limit = fmin(p->end, next_segment_start(p));
     if (i < p->n_pending)
-        limit = fmin(limit, p->pending[i].due);
+        limit = fmin(limit, p->pending[i].leaves);
     int code = sum_propensities(p, &total, error);
     if (code)
         return code;

@@ -326,9 +326,15 @@ static void write_gene(maker *m, unsigned g) {
     if (gene->n_stages > 0)
         WRITE("      stages:\n");
     for (unsigned i = 0; i < gene->n_stages; i++) {
-        WRITE("        t%u: ", i);
+        const bool lost = chance(m, 25);
+        WRITE(lost ? "        t%u:\n          lasts: " : "        t%u: ", i);
         write_lag(m);
         WRITE("\n");
+        if (lost) {
+            WRITE("          lost: ");
+            write_rate(m, 0, 1, false);
+            WRITE("\n");
+        }
     }
     write_fate(m);
     if (!gene->protein)

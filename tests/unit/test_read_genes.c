@@ -42,8 +42,6 @@ START_TEST(what_this_version_cannot_do) {
     not_yet(PROMOTER "    many: 3\n", 4, 5, "'many' cannot be used yet");
     not_yet(PROMOTER "    transcript: {no_overtaking: true}\n", 4, 18, "'no_overtaking' cannot");
     not_yet(PROMOTER "    transcript: {headway: 1}\n", 4, 18, "'headway' cannot be used yet");
-    not_yet(PROMOTER "    transcript: {stages: {nascent: {lasts: 3, lost: 1}}}\n", 4, 47,
-            "nascent: 'lost' cannot be used yet");
 }
 END_TEST
 
@@ -138,6 +136,14 @@ START_TEST(transcripts_and_proteins) {
     refused(PROMOTER "    transcript: {stages: {promoter: 3}}\n", 4, 27, "a meaning of its own");
     refused(PROMOTER "    transcript: {stages: {nascent: {lost: 3, lasts: 2, x: 1}}}\n", 4, 56,
             "nascent has no key 'x'");
+    refused(PROMOTER "    transcript: {stages: {nascent: {lost: 3}}}\n", 4, 36,
+            "nascent needs 'lasts'");
+    refused(PROMOTER "    transcript: {stages: {nascent: {lost: 3 min, lasts: 2}}}\n", 4, 43,
+            "a rate");
+    refused(PROMOTER "    transcript: {stages: {nascent: {lost: -3, lasts: 2}}}\n", 4, 43,
+            "the rate of 'vela.nascent loss' is -3");
+    refused(PROMOTER "    transcript: {stages: {nascent: {lasts: 2, lost: vela.open}}}\n", 4, 53,
+            "so its rate cannot read species");
     refused(PROMOTER "    transcript: {}\n    protein: {half_life: 2}\n", 5, 14,
             "'protein' needs 'translation'");
 }
