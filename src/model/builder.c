@@ -6,6 +6,7 @@
 #include "base/error.h"
 #include "base/memory.h"
 #include "base/text.h"
+#include "model/like_genes.h"
 
 #include <stdlib.h>
 #include <string.h>
@@ -14,7 +15,7 @@
 #define uthash_nonfatal_oom(element) ((void)(element))
 #include <uthash.h>
 
-enum { LONGEST_NAME = 100 };
+enum { LONGEST_NAME = 100, LONGEST_OWN = 3 * LONGEST_NAME };
 
 struct tarry_symbol {
     const char *name;
@@ -35,6 +36,7 @@ static const kind_words KINDS[TARRY_N_SYMBOL_KINDS] = {
     [TARRY_SYMBOL_SPECIES] = {"a species", "species", TARRY_SPACE_VALUES},
     [TARRY_SYMBOL_SIGNAL] = {"a signal", "signal", TARRY_SPACE_VALUES},
     [TARRY_SYMBOL_GENE] = {"a gene", "gene", TARRY_SPACE_VALUES},
+    [TARRY_SYMBOL_LIKE_GENES] = {"many like genes", "name of like genes", TARRY_SPACE_VALUES},
     [TARRY_SYMBOL_BURSTS] = {"a name of bursts", "name of bursts", TARRY_SPACE_BURSTS},
     [TARRY_SYMBOL_DELAY] = {"a delay", "delay", TARRY_SPACE_DELAYS},
     [TARRY_SYMBOL_REACTION] = {"a reaction", "reaction", TARRY_SPACE_REACTIONS},
@@ -64,6 +66,9 @@ static tarry_name_kind find_value(void *context, const char *name, size_t n, uin
                                   tarry_dimension *dimension) {
     const tarry_builder *builder = context;
     const tarry_symbol *symbol = find_symbol(builder, TARRY_SPACE_VALUES, name, n);
+    char own[LONGEST_OWN];
+    if (symbol == NULL && tarry_like_own(builder, name, n, own, sizeof own))
+        symbol = find_symbol(builder, TARRY_SPACE_VALUES, own, strlen(own));
     if (symbol == NULL)
         return TARRY_NAME_UNKNOWN;
     *index = symbol->index;
@@ -73,6 +78,12 @@ static tarry_name_kind find_value(void *context, const char *name, size_t n, uin
         return TARRY_NAME_UNKNOWN;
     *dimension = builder->parameters.items[symbol->index].dimension;
     return TARRY_NAME_PARAMETER;
+}
+
+/* Words for a name that find_value does not know: a common name out of its place. */
+static int fail_value(void *context, const char *name, tarry_place place, tarry_error *error) {
+    const tarry_like_genes *like = tarry_like_find(context, name, strlen(name));
+    return like != NULL ? tarry_like_fail(like, name, place, error) : 0;
 }
 
 int32_t tarry_builder_find(const tarry_builder *builder, tarry_symbol_kind kind, const char *name) {
@@ -101,6 +112,9 @@ int tarry_builder_need(const tarry_builder *builder, tarry_symbol_kind kind, con
         *index = (uint32_t)found;
         return 0;
     }
+    const tarry_like_genes *like = tarry_like_find(builder, name, strlen(name));
+    if (like != NULL)
+        return tarry_like_fail(like, name, place, error);
     const char *nearest = tarry_builder_nearest(builder, 1u << kind, name);
     if (nearest != NULL)
         return tarry_fail_at(error, TARRY_INPUT, place, "no %s is called '%s'; did you mean '%s'?",
@@ -175,7 +189,8 @@ static const tarry_symbol *taken_by(const tarry_builder *builder, tarry_symbol_k
     if (value == NULL)
         return NULL;
     const bool clashes = (kind == TARRY_SYMBOL_DELAY && value->kind == TARRY_SYMBOL_PARAMETER) ||
-                         (kind == TARRY_SYMBOL_BURSTS && value->kind == TARRY_SYMBOL_GENE);
+                         (kind == TARRY_SYMBOL_BURSTS && (value->kind == TARRY_SYMBOL_GENE ||
+                                                          value->kind == TARRY_SYMBOL_LIKE_GENES));
     return clashes ? value : NULL;
 }
 
@@ -216,6 +231,7 @@ void tarry_builder_init(tarry_builder *builder, tarry_model *model, const tarry_
     builder->units = units;
     builder->scope.context = builder;
     builder->scope.find = find_value;
+    builder->scope.fail = fail_value;
 }
 
 void tarry_builder_release(tarry_builder *builder) {
@@ -247,6 +263,9 @@ void tarry_builder_release(tarry_builder *builder) {
     free(builder->moves.items);
     free(builder->tracks.items);
     free(builder->genes.items);
+    free(builder->gene_entries.items);
+    free(builder->like_genes.items);
+    tarry_like_release(builder);
     free(builder->gene_species.items);
     free(builder->products.items);
     free(builder->signals.items);

@@ -54,13 +54,14 @@ void *tarry_list_room(void *items, size_t n, size_t *capacity, size_t size);
 /* ---- names ---------------------------------------------------------------------------------- */
 
 typedef enum tarry_symbol_kind {
-    TARRY_SYMBOL_PARAMETER, /* index into parameters */
-    TARRY_SYMBOL_SPECIES,   /* into species; hidden ones have no symbol */
-    TARRY_SYMBOL_SIGNAL,    /* into signals */
-    TARRY_SYMBOL_GENE,      /* into genes */
-    TARRY_SYMBOL_BURSTS,    /* into genes too: a named track */
-    TARRY_SYMBOL_DELAY,     /* into delays */
-    TARRY_SYMBOL_REACTION,  /* of `reactions:`, into reactions */
+    TARRY_SYMBOL_PARAMETER,  /* index into parameters */
+    TARRY_SYMBOL_SPECIES,    /* into species; hidden ones have no symbol */
+    TARRY_SYMBOL_SIGNAL,     /* into signals */
+    TARRY_SYMBOL_GENE,       /* into genes */
+    TARRY_SYMBOL_LIKE_GENES, /* into like_genes: the name that many genes have in common */
+    TARRY_SYMBOL_BURSTS,     /* into genes too: a named track */
+    TARRY_SYMBOL_DELAY,      /* into delays */
+    TARRY_SYMBOL_REACTION,   /* of `reactions:`, into reactions */
     TARRY_N_SYMBOL_KINDS,
 } tarry_symbol_kind;
 
@@ -149,6 +150,21 @@ typedef struct tarry_builder_move {
     tarry_place place;
 } tarry_builder_move;
 
+/* ---- genes as listed --------------------------------------------------------------------------
+ */
+
+typedef struct tarry_gene_entry {
+    tarry_entry entry;  /* its key is the gene's own name */
+    const char *common; /* the name of the entry that stands for many, or NULL */
+} tarry_gene_entry;
+
+typedef struct tarry_like_genes {
+    const char *name;
+    uint32_t first, n; /* genes */
+} tarry_like_genes;
+
+typedef struct tarry_shared tarry_shared;
+
 /* ---- the builder ---------------------------------------------------------------------------- */
 
 typedef struct tarry_builder {
@@ -193,6 +209,10 @@ typedef struct tarry_builder {
     TARRY_LIST(tarry_builder_move) moves; /* by gene */
     TARRY_LIST(tarry_track) tracks;
     TARRY_LIST(tarry_gene) genes;
+    TARRY_LIST(tarry_gene_entry) gene_entries; /* by gene */
+    TARRY_LIST(tarry_like_genes) like_genes;
+    const char *common, *own; /* names of the like gene that is read (like_genes.h), or NULL */
+    tarry_shared *shared;     /* what like genes have in common, by node */
     TARRY_LIST(uint32_t) gene_species; /* by gene: the first of its species */
     TARRY_LIST(uint32_t) products;
 

@@ -6,6 +6,7 @@
 #include "base/error.h"
 #include "base/memory.h"
 #include "model/expect.h"
+#include "model/like_genes.h"
 
 #include <math.h>
 
@@ -66,7 +67,11 @@ int tarry_builder_formula(tarry_builder *builder, const tarry_node *node, const 
 int tarry_builder_rate(tarry_builder *builder, const tarry_node *node, bool half_life,
                        const char *what, bool *formula, uint32_t *index, tarry_error *error) {
     tarry_source source = {.half_life = half_life, .what = what};
-    int code;
+    int code = 0;
+    if (tarry_like_shared(builder, node, index)) {
+        *formula = false;
+        return 0;
+    }
     if (half_life)
         code = tarry_builder_expression(builder, node, TARRY_TIME, what, &source.expression, error);
     else
@@ -77,7 +82,9 @@ int tarry_builder_rate(tarry_builder *builder, const tarry_node *node, bool half
     *index = (uint32_t)(*formula ? builder->formulas.n : builder->rates.n);
     const int full = *formula ? TARRY_APPEND(&builder->formulas, source.expression)
                               : TARRY_APPEND(&builder->rates, source);
-    return full == 0 ? 0 : tarry_fail_memory(error, "a rate");
+    if (full != 0)
+        return tarry_fail_memory(error, "a rate");
+    return *formula ? 0 : tarry_like_share(builder, node, *index, error);
 }
 
 int tarry_builder_mean(tarry_builder *builder, const tarry_node *node, double least,

@@ -7,6 +7,7 @@
 #include "base/memory.h"
 #include "model/expect.h"
 #include "model/gene_layout.h"
+#include "model/like_genes.h"
 
 #include <string.h>
 
@@ -171,12 +172,9 @@ static int declare_gene(tarry_builder *builder, const tarry_entry *entry, tarry_
 }
 
 int tarry_declare_genes(tarry_builder *builder, tarry_error *error) {
-    const tarry_node *map = tarry_node_get(builder->root, "genes");
-    if (map == NULL)
-        return 0;
-    int code = tarry_expect_map(map, "'genes'", error);
-    for (size_t i = 0; code == 0 && i < map->n; i++)
-        code = declare_gene(builder, &map->entries[i], error);
+    int code = tarry_list_genes(builder, error);
+    for (size_t i = 0; code == 0 && i < builder->gene_entries.n; i++)
+        code = declare_gene(builder, &builder->gene_entries.items[i].entry, error);
     return code;
 }
 

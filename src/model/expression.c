@@ -239,6 +239,16 @@ static int fail_lone_unit(compiler *in, tarry_token name, tarry_token before) {
                    word);
 }
 
+/* What the scope has to say of a name that it does not find; 0: nothing. */
+static int fail_by_scope(compiler *in, tarry_token name) {
+    char word[LONGEST_SHOWN + 1];
+    if (in->scope == NULL || in->scope->fail == NULL || name.n > LONGEST_SHOWN)
+        return 0;
+    memcpy(word, in->text + name.at, name.n);
+    word[name.n] = '\0';
+    return in->scope->fail(in->scope->context, word, place_at(in, name.at), in->error);
+}
+
 static int fail_name(compiler *in, tarry_token name, tarry_token before) {
     const char *word = in->text + name.at;
     const function *call = find_function(in, name);
@@ -249,6 +259,9 @@ static int fail_name(compiler *in, tarry_token name, tarry_token before) {
         return fail_at(in, name.at, "'%s' is a function: write %s", call->word, call->usage);
     if (tarry_unit_is_molar(word, name.n))
         return fail_unit(in, name);
+    const int known = fail_by_scope(in, name);
+    if (known != 0)
+        return known;
     const char *near = nearest(in, name);
     if (near != NULL)
         return fail_at(in, name.at, "there is no '%.*s' here; did you mean '%s'?", shown(name.n),

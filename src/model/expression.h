@@ -25,6 +25,9 @@ typedef struct tarry_scope {
                             tarry_dimension *dimension);
     const char *const *candidates;
     size_t n_candidates;
+    /* Say what is wrong with an unknown name better than "there is no 'x' here" (0: no better word
+     * is known); may be NULL. */
+    int (*fail)(void *context, const char *name, tarry_place place, tarry_error *error);
 } tarry_scope;
 
 typedef struct tarry_instruction {

@@ -14,7 +14,6 @@ enum { MOST_COPIES = 1000, MOST_STATES = 250 };
 
 static const char *const GENE_KEYS[] = {"copies",  "start",     "promoter",  "transcript",
                                         "protein", "bursts_in", "clearance", "many"};
-static const char *const GENE_LATER[] = {"many"};
 static const char *const TRANSCRIPT_KEYS[] = {"stages",   "half_life",     "decay",
                                               "lifetime", "no_overtaking", "headway"};
 static const char *const TRANSCRIPT_LATER[] = {"no_overtaking", "headway"};
@@ -62,8 +61,6 @@ static int read_promoter(const tarry_entry *gene, tarry_gene_layout *layout, tar
 int tarry_gene_layout_read(const tarry_entry *gene, tarry_gene_layout *layout, tarry_error *error) {
     *layout = (tarry_gene_layout){.name = gene->key, .node = gene->node, .n_copies = 1};
     int code = tarry_expect_keys(gene->node, gene->key, GENE_KEYS, 8, error);
-    if (code == 0)
-        code = tarry_expect_not_yet(gene->node, gene->key, GENE_LATER, 1, error);
     if (code != 0)
         return code;
     layout->clearance = tarry_node_get(gene->node, "clearance");

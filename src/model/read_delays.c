@@ -6,6 +6,7 @@
 #include "base/error.h"
 #include "base/memory.h"
 #include "model/expect.h"
+#include "model/like_genes.h"
 
 #include <string.h>
 
@@ -309,13 +310,17 @@ int tarry_builder_delay_index(tarry_builder *builder, const tarry_node *node, ui
             return 0;
         }
     }
+    if (tarry_like_shared(builder, node, index))
+        return 0;
     tarry_builder_delay delay = {.state = TARRY_DELAY_READ, .node = node};
     const int code = read_law(builder, node, 0, &delay.law, error);
     if (code != 0)
         return code;
     delay.name = law_word(node);
     *index = (uint32_t)builder->delays.n;
-    return TARRY_APPEND(&builder->delays, delay) == 0 ? 0 : tarry_fail_memory(error, "a delay");
+    if (TARRY_APPEND(&builder->delays, delay) != 0)
+        return tarry_fail_memory(error, "a delay");
+    return tarry_like_share(builder, node, *index, error);
 }
 
 int tarry_read_delays(tarry_builder *builder, tarry_error *error) {

@@ -9,6 +9,7 @@
 #include "base/notes.h"
 #include "base/text.h"
 #include "model/expect.h"
+#include "model/like_genes.h"
 
 #include <string.h>
 
@@ -348,11 +349,12 @@ static int note_untold(tarry_builder *builder, const tarry_gene *gene, const tar
 static int note_all_untold(tarry_builder *builder, const tarry_node *map, tarry_error *error) {
     size_t n_untold = 0;
     int code = 0;
-    for (size_t i = 0; code == 0 && i < map->n; i++) {
+    for (size_t i = 0; code == 0 && i < builder->gene_entries.n; i++) {
         if (builder->genes.items[i].tells)
             continue;
         if (n_untold++ < MOST_NOTES)
-            code = note_untold(builder, &builder->genes.items[i], map->entries[i].node, error);
+            code = note_untold(builder, &builder->genes.items[i],
+                               builder->gene_entries.items[i].entry.node, error);
     }
     if (code != 0 || n_untold <= MOST_NOTES)
         return code;
@@ -366,7 +368,11 @@ int tarry_read_genes(tarry_builder *builder, tarry_error *error) {
     if (map == NULL)
         return 0;
     int code = 0;
-    for (size_t i = 0; code == 0 && i < map->n; i++)
-        code = read_gene(builder, &map->entries[i], (uint32_t)i, error);
+    for (size_t i = 0; code == 0 && i < builder->gene_entries.n; i++) {
+        const tarry_gene_entry *gene = &builder->gene_entries.items[i];
+        tarry_like_enter(builder, gene);
+        code = read_gene(builder, &gene->entry, (uint32_t)i, error);
+    }
+    tarry_like_enter(builder, NULL);
     return code == 0 ? note_all_untold(builder, map, error) : code;
 }

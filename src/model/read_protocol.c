@@ -7,6 +7,7 @@
 #include "base/number.h"
 #include "base/text.h"
 #include "model/expect.h"
+#include "model/like_genes.h"
 #include "model/parameter_order.h"
 #include "model/protocol_steps.h"
 
@@ -146,6 +147,9 @@ static int32_t find_promoter(const tarry_builder *builder, const char *key) {
 }
 
 static int fail_key(const protocol_reader *in, const tarry_entry *entry, tarry_error *error) {
+    const tarry_like_genes *like = tarry_like_find(in->builder, entry->key, strlen(entry->key));
+    if (like != NULL)
+        return tarry_like_fail(like, entry->key, entry->place, error);
     const char *nearest = tarry_builder_nearest(
         in->builder, 1u << TARRY_SYMBOL_PARAMETER | 1u << TARRY_SYMBOL_SPECIES, entry->key);
     if (nearest != NULL)

@@ -4,8 +4,10 @@
 #include "base/error.h"
 #include "base/notes.h"
 #include "model/expect.h"
+#include "model/like_genes.h"
 
 #include <stdlib.h>
+#include <string.h>
 
 enum { MOST_BY_DEFAULT = 200 };
 
@@ -43,6 +45,9 @@ static void record(const tarry_builder *builder, tarry_channel *channel) {
  */
 
 static int fail_name(const tarry_builder *builder, const tarry_node *node, tarry_error *error) {
+    const tarry_like_genes *like = tarry_like_find(builder, node->text, strlen(node->text));
+    if (like != NULL)
+        return tarry_like_fail(like, node->text, node->place, error);
     const unsigned kinds = 1u << TARRY_SYMBOL_SPECIES | 1u << TARRY_SYMBOL_SIGNAL |
                            1u << TARRY_SYMBOL_GENE;
     const char *nearest = tarry_builder_nearest(builder, kinds, node->text);
@@ -61,6 +66,11 @@ typedef struct wanted {
     bool *species, *signals, *genes;
 } wanted;
 
+static void want_like(const tarry_like_genes *like, wanted *set) {
+    for (uint32_t i = 0; i < like->n; i++)
+        set->genes[like->first + i] = true;
+}
+
 static int want(const tarry_builder *builder, const tarry_node *node, wanted *set,
                 tarry_error *error) {
     const int code = tarry_expect_scalar(node, "a name under 'record'", error);
@@ -69,12 +79,15 @@ static int want(const tarry_builder *builder, const tarry_node *node, wanted *se
     const int32_t species = tarry_builder_find(builder, TARRY_SYMBOL_SPECIES, node->text);
     const int32_t signal = tarry_builder_find(builder, TARRY_SYMBOL_SIGNAL, node->text);
     const int32_t gene = tarry_builder_find(builder, TARRY_SYMBOL_GENE, node->text);
+    const int32_t like = tarry_builder_find(builder, TARRY_SYMBOL_LIKE_GENES, node->text);
     if (species != TARRY_NONE)
         set->species[species] = true;
     else if (signal != TARRY_NONE)
         set->signals[signal] = true;
     else if (gene != TARRY_NONE)
         set->genes[gene] = true;
+    else if (like != TARRY_NONE)
+        want_like(&builder->like_genes.items[like], set);
     else
         return fail_name(builder, node, error);
     return 0;

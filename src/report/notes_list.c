@@ -4,6 +4,10 @@
 
 #include <string.h>
 
+/* Notes on single genes and figures: up to MOST_ALL paragraphs all are listed, else the first few.
+ */
+enum { MOST_ALL = 12, SHOWN_OF_MORE = 3 };
+
 /* "vela.transcript, window all: the correlation ...": what is said, of what. */
 typedef struct note {
     const char *name;
@@ -31,12 +35,22 @@ static bool was_said(const tarry_results *results, size_t i) {
     return false;
 }
 
+static size_t count_named(const tarry_results *results) {
+    size_t n = 0;
+    for (size_t i = 0; i < tarry_results_n_warnings(results); i++)
+        n += note_of(tarry_results_warning(results, i)).name_size > 0 && !was_said(results, i);
+    return n;
+}
+
 void tarry_notes_list(const tarry_results *results, int width, tarry_text *text) {
     const size_t n = tarry_results_n_warnings(results);
+    const size_t n_named = count_named(results);
+    const size_t most = n_named > MOST_ALL ? SHOWN_OF_MORE : n_named;
+    size_t n_shown = 0;
     for (size_t i = 0; i < n; i++) {
         const note this = note_of(tarry_results_warning(results, i));
         tarry_text paragraph = {0};
-        if (was_said(results, i))
+        if (was_said(results, i) || (this.name_size > 0 && n_shown++ >= most))
             continue;
         tarry_text_add(&paragraph, this.name, this.name_size);
         for (size_t j = i + 1; j < n; j++) {
@@ -51,5 +65,15 @@ void tarry_notes_list(const tarry_results *results, int width, tarry_text *text)
         if (!paragraph.failed)
             tarry_lines_wrap(text, "- ", paragraph.data, width);
         tarry_text_release(&paragraph);
+    }
+    if (n_named > most) {
+        tarry_text more = {0};
+        tarry_text_printf(&more,
+                          "%zu more notes of these kinds are under `warnings` in summary.json",
+                          n_named - most);
+        text->failed = text->failed || more.failed;
+        if (!more.failed)
+            tarry_lines_wrap(text, "- ", more.data, width);
+        tarry_text_release(&more);
     }
 }

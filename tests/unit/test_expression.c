@@ -45,10 +45,10 @@ static tarry_name_kind find_name(void *context, const char *name, size_t n, uint
     return TARRY_NAME_UNKNOWN;
 }
 
-static const tarry_scope scope = {NULL, find_name, names, sizeof names / sizeof *names};
+static const tarry_scope scope = {NULL, find_name, names, sizeof names / sizeof *names, NULL};
 
 /* The same names, parameters without units. */
-static const tarry_scope unitless = {(void *)names, find_name, names, 0};
+static const tarry_scope unitless = {(void *)names, find_name, names, 0, NULL};
 
 static tarry_expression compile(const char *text, tarry_dimension due) {
     tarry_expression made = {0};

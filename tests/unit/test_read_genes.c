@@ -4,6 +4,7 @@
 #include "support.h"
 
 #include <stdio.h>
+#include <stdlib.h>
 #include <string.h>
 
 /* One gene, 'vela', whose keys begin in line 3, column 5. */
@@ -39,7 +40,6 @@ START_TEST(keys_of_a_gene) {
 END_TEST
 
 START_TEST(what_this_version_cannot_do) {
-    not_yet(PROMOTER "    many: 3\n", 4, 5, "'many' cannot be used yet");
     not_yet(PROMOTER "    transcript: {no_overtaking: true}\n", 4, 18, "'no_overtaking' cannot");
     not_yet(PROMOTER "    transcript: {headway: 1}\n", 4, 18, "'headway' cannot be used yet");
 }
@@ -230,6 +230,75 @@ START_TEST(delays_that_double) {
 }
 END_TEST
 
+/* Each of many like genes is what it would be when written out. */
+#define LIKE(name, many)                                                                           \
+    "  " name ": {" many "copies: 2, start: steady, promoter: {shut: {to: {open: 2}}, "            \
+    "open: {lasts: {fixed: 3}, then: shut, initiates: \"4 * repress(" name                         \
+    ".protein, 40, 2)\"}}, "                                                                       \
+    "transcript: {stages: {nascent: {fixed: 5}}, decay: 0.1 + 0 * 2}, "                            \
+    "protein: {translation: 0.5, half_life: 30}}\n"
+
+static char *copy_of(const char *text) {
+    char *copy = malloc(strlen(text) + 1);
+    ck_assert_ptr_nonnull(copy);
+    return strcpy(copy, text);
+}
+
+/* A formula is kept as written: "repress(vela_1.protein" becomes "repress(vela.protein". */
+static void take_numbers_off(char *text) {
+    for (char *at = text; (at = strstr(at, "repress(vela_")) != NULL; at++) {
+        char *number = at + strlen("repress(vela");
+        memmove(number, number + 2, strlen(number + 2) + 1);
+    }
+}
+
+START_TEST(many_like_genes) {
+    const tarry_network *network = network_of("genes:\n" LIKE("vela_1", "") LIKE("vela_2", ""));
+    char *species = copy_of(species_text(network)), *lags = copy_of(lags_text(network)),
+         *reactions = copy_of(reactions_text(network));
+    take_numbers_off(reactions);
+    network = network_of("genes:\n" LIKE("vela", "many: 2, "));
+    ck_assert_uint_eq(network->n_genes, 2);
+    ck_assert_str_eq(network->genes[1].name, "vela_2");
+    ck_assert_str_eq(species_text(network), species);
+    ck_assert_str_eq(reactions_text(network), reactions);
+    ck_assert_uint_eq(network->n_delays, 2); /* read once */
+    ck_assert_str_eq(lags_text(network), lags);
+    const tarry_expression *formulas = network->segments[0].formulas;
+    for (uint32_t i = 0; i < 2; i++) {
+        const tarry_species *read = &network->species[formulas[i].species[0]];
+        ck_assert_uint_eq(formulas[i].n_species, 1);
+        ck_assert_str_eq(read->name, i == 0 ? "vela_1.protein" : "vela_2.protein");
+    }
+    free(species);
+    free(lags);
+    free(reactions);
+    network_end();
+}
+END_TEST
+
+START_TEST(wrong_like_genes) {
+    network_refused("genes:\n  vela: {many: 0, promoter: {on: {initiates: 1}}}\n", 2, 16,
+                    "'many' must be a whole number from 1 to 1000000, not '0'");
+    network_refused("genes:\n  vela_2: {promoter: {on: {initiates: 1}}}\n"
+                    "  vela: {many: 3, promoter: {on: {initiates: 1}}}\n",
+                    3, 3, "'vela_2' would name a gene here, but it names a gene already (line 2)");
+    network_refused("genes:\n  vela: {many: 3, promoter: {on: {initiates: 1}}, "
+                    "transcript: {decay: 1}}\n"
+                    "  mira: {promoter: {on: {initiates: vela.transcript}}}\n",
+                    3, 37,
+                    "'vela' stands for 3 like genes, vela_1 to vela_3; name one of them, as "
+                    "vela_1.transcript ('vela.transcript' is understood in its own rates");
+    network_refused("genes:\n  vela: {many: 3, promoter: {on: {initiates: vela.transcripts}}, "
+                    "transcript: {decay: 1}}\n",
+                    2, 46, "'vela' stands for 3 like genes");
+    network_refused("genes:\n  vela: {many: 3, promoter: {on: {initiates: 1}}, "
+                    "transcript: {decay: 1}}\n"
+                    "reactions: {go: {uses: {vela.transcript: 1}, rate: 1}}\n",
+                    3, 25, "'vela' stands for 3 like genes");
+}
+END_TEST
+
 int main(void) {
     const test_entry tests[] = {
         {"keys of a gene", keys_of_a_gene},
@@ -242,6 +311,8 @@ int main(void) {
         {"transcripts and proteins", transcripts_and_proteins},
         {"notes where bursts cannot be told", notes_where_bursts_cannot_be_told},
         {"delays", delays},
+        {"many like genes", many_like_genes},
+        {"wrong like genes", wrong_like_genes},
         {"delays that double", delays_that_double},
     };
     return run_tests("read genes", tests, sizeof tests / sizeof *tests);
