@@ -7,7 +7,8 @@
 #include "report/groups.h"
 
 /* Rows of `bursts` or `signals` (groups by its first column) as one table of 80
- * columns: quantity, window, median over genes, tenth and nine tenths of the genes, extremes. */
+ * columns: quantity, window, median over genes, tenth and nine tenths of the genes, extremes; then
+ * whose the extremes are. */
 int tarry_spread_write(const tarry_table *table, const tarry_groups *groups, tarry_text *text,
                        tarry_error *error);
 

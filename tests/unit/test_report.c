@@ -616,17 +616,21 @@ END_TEST
 START_TEST(test_table_of_many_genes) {
     tarry_model model;
     tarry_results *results = NULL;
-    char *table = NULL, name[16];
+    char *table = NULL, name[16], line[128];
     fill_model(&model, 1);
     ck_assert_int_eq(tarry_results_new(&results, NULL), 0);
     for (int i = 25; i >= 1; i--) {
         snprintf(name, sizeof name, "vela_%d", i);
         add_burst(results, name, "all", "burst_size_mean", "", i, i - 0.5, i + 0.5, 200);
+        add_burst(results, name, "all", "silent_fraction", "", i == 9, NAN, NAN, 200);
     }
     ck_assert_int_eq(tarry_write_summary_table(&model, results, 80, &table, NULL), 0);
     check_width(table, 80);
     ck_assert_ptr_null(strstr(table, "vela_7"));
-    char line[128];
+    snprintf(line, sizeof line, "%-35s%22s%22s\n", "  burst_size_mean", "vela_1", "vela_25");
+    ck_assert_ptr_nonnull(strstr(table, line));
+    snprintf(line, sizeof line, "%-35s%22s%22s\n", "  silent_fraction", "24 alike", "vela_9");
+    ck_assert_ptr_nonnull(strstr(table, line));
     snprintf(line, sizeof line, "%9s%9s%9s%9s%9s\n", "13", "3.400", "22.60", "1", "25");
     ck_assert_ptr_nonnull(strstr(table, line));
     free(table);
@@ -664,6 +668,26 @@ START_TEST(test_notes) {
 END_TEST
 
 /* JSON texts that come back the same through jansson's parser. */
+/* Of more than twelve notes on single genes the first three stand for all. */
+START_TEST(test_many_notes) {
+    tarry_results *results = NULL;
+    tarry_text text = {0};
+    ck_assert_int_eq(tarry_results_new(&results, NULL), 0);
+    for (int i = 0; i < 13; i++)
+        ck_assert_int_eq(tarry_notes_add(&results->notes, (tarry_place){0}, NULL,
+                                         "vela_%d, window all: %d periods", i, i),
+                         0);
+    ck_assert_int_eq(tarry_notes_add(&results->notes, (tarry_place){0}, NULL, "of the run"), 0);
+    tarry_notes_list(results, 80, &text);
+    ck_assert_str_eq(text.data,
+                     "- vela_0, window all: 0 periods\n- vela_1, window all: 1 periods\n"
+                     "- vela_2, window all: 2 periods\n- of the run\n"
+                     "- 10 more notes of these kinds are under `warnings` in summary.json\n");
+    tarry_text_release(&text);
+    tarry_results_free(results);
+}
+END_TEST
+
 START_TEST(test_json) {
     const double numbers[] = {0.1, 1e300, 5e-324, -0.0, 123456789012345680.0, 1.0 / 3};
     bool failed = false;
@@ -714,6 +738,7 @@ int main(void) {
     tcase_add_test(tests, test_table_of_many_genes);
     tcase_add_test(tests, test_lines);
     tcase_add_test(tests, test_notes);
+    tcase_add_test(tests, test_many_notes);
     tcase_add_test(tests, test_json);
     suite_add_tcase(suite, tests);
     SRunner *runner = srunner_create(suite);
