@@ -190,6 +190,8 @@ START_TEST(no_memory) {
         "    promoter: {shut: {lasts: a, then: open}, open: {to: {shut: 2}, initiates: x}}\n"
         "    transcript: {stages: {nascent: b}, lifetime: 3}\n"
         "  mira: {start: steady, promoter: {on: {initiates: 1}}, transcript: {decay: 1}}\n"
+        "  lyra: {many: 2, promoter: {on: {initiates: lyra.transcript}},\n"
+        "         transcript: {stages: {young: {fixed: 1}}, decay: 2}}\n"
         "species: {x: 14, y: 0}\n"
         "reactions:\n"
         "  go: {uses: {x: 1}, makes: {y: {table: {values: [1, 2], weights: [1, 1]}}}, rate: 1,\n"
@@ -255,6 +257,29 @@ START_TEST(many_genes) {
 }
 END_TEST
 
+/* What like genes have in common stands once, however many there are. */
+START_TEST(like_genes_share) {
+    static const int numbers[] = {2, 500};
+    for (size_t i = 0; i < 2; i++) {
+        char text[512];
+        const uint32_t n = (uint32_t)numbers[i];
+        snprintf(text, sizeof text,
+                 "tarry: 1\ntime: min\ngenes:\n"
+                 "  vela: {many: %u, copies: 2, promoter: {shut: {to: {open: 0.04}}, open: {to: "
+                 "{shut: 0.35}, initiates: 2}}, transcript: {stages: {nascent: {fixed: 3}}, "
+                 "half_life: 35}}\nrun: {until: 10}\n",
+                 (unsigned)n);
+        tarry_model *model = read_text(text);
+        ck_assert_uint_eq(model->network.n_genes, n);
+        ck_assert_uint_eq(model->network.n_promoters, 2 * n);
+        ck_assert_uint_eq(model->network.n_lags, n);
+        ck_assert_uint_eq(model->network.n_rates, 4); /* two moves, initiation, decay */
+        ck_assert_uint_eq(model->network.n_delays, 1);
+        tarry_model_free(model);
+    }
+}
+END_TEST
+
 int main(void) {
     const test_entry tests[] = {
         {"head of the file", head_of_the_file},
@@ -264,6 +289,7 @@ int main(void) {
         {"settle by itself", settle_by_itself},
         {"no memory", no_memory},
         {"many genes", many_genes},
+        {"like genes share", like_genes_share},
     };
     tarry_start();
     return run_tests("model", tests, sizeof tests / sizeof *tests);
