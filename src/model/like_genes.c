@@ -102,9 +102,9 @@ int tarry_like_fail(const tarry_like_genes *like, const char *name, tarry_place 
     const char *rest = name + head_of(name, strlen(name));
     return tarry_fail_at(error, TARRY_INPUT, place,
                          "'%s' stands for %u like genes, %s_1 to %s_%u; name one of them, as "
-                         "%s_1%s ('%s%s' is understood in its own rates only)",
+                         "%s_1%s (the common name is understood in its own rates only)",
                          like->name, (unsigned)like->n, like->name, like->name, (unsigned)like->n,
-                         like->name, rest, like->name, *rest ? rest : ".protein");
+                         like->name, rest);
 }
 
 /* ---- what is read once ------------------------------------------------------------------------

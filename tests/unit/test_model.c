@@ -280,6 +280,34 @@ START_TEST(like_genes_share) {
 }
 END_TEST
 
+/* The common name outside the genes: under `record` it means all, elsewhere nothing. */
+START_TEST(common_name_of_like_genes) {
+    static const char head[] = "tarry: 1\ntime: min\ngenes:\n"
+                               "  vela: {many: 3, promoter: {on: {initiates: 2}}, transcript: "
+                               "{decay: 1}}\n"
+                               "  lyra: {promoter: {on: {initiates: 2}}, transcript: {decay: 1}}\n";
+    char text[512];
+    snprintf(text, sizeof text, "%srun: {until: 10, record: [vela]}\n", head);
+    tarry_model *model = read_text(text);
+    ck_assert_uint_eq(model->network.n_channels, 8); /* a state and a product of each gene */
+    for (uint32_t i = 0; i < 8; i++)
+        ck_assert_int_eq(model->network.channels[i].recorded, i < 6);
+    tarry_model_free(model);
+    snprintf(text, sizeof text, "%srun: {until: 10, record: [vela.transcript]}\n", head);
+    refused(text, 6, 27, "'vela' stands for 3 like genes, vela_1 to vela_3");
+    snprintf(text, sizeof text,
+             "%srun: {until: 10}\nprotocol: [{at: 1, set: {vela.promoter: on}}]\n", head);
+    refused(text, 7, 26, "name one of them, as vela_1.promoter");
+    snprintf(text, sizeof text, "%srun: {until: 10}\nspecies: {vela: 3}\n", head);
+    refused(text, 7, 11, "'vela' would name a species here, but it names many like genes already");
+    snprintf(text, sizeof text,
+             "%srun: {until: 10}\nreactions: {go: {rate: 1}}\nbursts: {vela: {opens: [go], "
+             "closes: [go]}}\n",
+             head);
+    refused(text, 8, 10, "it names many like genes already");
+}
+END_TEST
+
 int main(void) {
     const test_entry tests[] = {
         {"head of the file", head_of_the_file},
@@ -290,6 +318,7 @@ int main(void) {
         {"no memory", no_memory},
         {"many genes", many_genes},
         {"like genes share", like_genes_share},
+        {"common name of like genes", common_name_of_like_genes},
     };
     tarry_start();
     return run_tests("model", tests, sizeof tests / sizeof *tests);

@@ -288,7 +288,7 @@ START_TEST(wrong_like_genes) {
                     "  mira: {promoter: {on: {initiates: vela.transcript}}}\n",
                     3, 37,
                     "'vela' stands for 3 like genes, vela_1 to vela_3; name one of them, as "
-                    "vela_1.transcript ('vela.transcript' is understood in its own rates");
+                    "vela_1.transcript (the common name is understood in its own rates");
     network_refused("genes:\n  vela: {many: 3, promoter: {on: {initiates: vela.transcripts}}, "
                     "transcript: {decay: 1}}\n",
                     2, 46, "'vela' stands for 3 like genes");
