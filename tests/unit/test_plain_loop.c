@@ -4,6 +4,7 @@
 #include "model/model.h"
 #include "random_cells.h"
 #include "random_model.h"
+#include "results_text.h"
 #include "same_cells.h"
 #include "support.h"
 #include "tarry/tarry.h"
@@ -108,12 +109,78 @@ START_TEST(shrinking_keeps_what_shows_the_fault) {
 }
 END_TEST
 
+/* ---- threads ----------------------------------------------------------------------------------
+ */
+
+/* Runs the model with 1, 2 and 5 threads; false where it is refused or stops, alike for all. */
+static bool check_threads(tarry_model *model, const char *what) {
+    static const int threads[] = {1, 2, 5};
+    char *first = NULL;
+    for (size_t i = 0; i < 3; i++) {
+        const tarry_run_options options = {.threads = threads[i], .keep = 2};
+        tarry_results *results = NULL;
+        tarry_error error;
+        char *text = NULL;
+        if (tarry_run(model, &options, &results, &error))
+            text = strdup(error.message);
+        else
+            text = results_text(results);
+        ck_assert_ptr_nonnull(text);
+        ck_assert_msg(!first || strcmp(first, text) == 0, "%s: %d threads differ", what,
+                      threads[i]);
+        tarry_results_free(results);
+        if (first)
+            free(text);
+        else
+            first = text;
+    }
+    const bool ran = strstr(first, " firings, ") != NULL;
+    free(first);
+    return ran;
+}
+
+static const tarry_override few_cells[] = {{"--cells", 0, "cells", "6"}};
+
+START_TEST(example_models_on_threads) {
+    glob_t found;
+    ck_assert_int_eq(glob("models/*.yaml", 0, NULL, &found), 0);
+    for (size_t i = 0; i < found.gl_pathc; i++) {
+        tarry_model *model = NULL;
+        ck_assert_int_eq(tarry_model_read(found.gl_pathv[i], few_cells, 1, &model, NULL), 0);
+        ck_assert_msg(check_threads(model, found.gl_pathv[i]), "%s does not run",
+                      found.gl_pathv[i]);
+        tarry_model_free(model);
+    }
+    ck_assert_uint_ge(found.gl_pathc, 8);
+    globfree(&found);
+}
+END_TEST
+
+START_TEST(random_models_on_threads) {
+    const uint64_t n = test_small() ? 10 : 60;
+    uint64_t n_run = 0;
+    for (uint64_t i = 0; i < n; i++) {
+        tarry_model *model = NULL;
+        char *text = random_model(i);
+        ck_assert_ptr_nonnull(text);
+        if (tarry_model_read_text(text, strlen(text), "random.yaml", few_cells, 1, &model, NULL) ==
+            0)
+            n_run += check_threads(model, text);
+        tarry_model_free(model);
+        free(text);
+    }
+    ck_assert_uint_ge(n_run, n / 2);
+}
+END_TEST
+
 int main(void) {
     tarry_start();
     const test_entry tests[] = {
         {"example models", example_models},
         {"models that showed a fault", models_that_showed_a_fault},
         {"random models", random_models},
+        {"example models on threads", example_models_on_threads},
+        {"random models on threads", random_models_on_threads},
         {"many reactions", many_reactions},
         {"random models say everything", random_models_say_everything},
         {"shrinking", shrinking_keeps_what_shows_the_fault},

@@ -4,6 +4,7 @@
  * run puts together is compared with cells run one by one (tarry_cell_run), added up here. */
 
 #include "faults.h"
+#include "results_text.h"
 #include "support.h"
 
 #include "base/table.h"
@@ -64,22 +65,6 @@ static tarry_results *run_model(const tarry_model *model, tarry_run_options opti
     return results;
 }
 
-/* Everything that was found, as one text to be freed. */
-static char *dump(const tarry_results *results) {
-    tarry_text text = {0};
-    for (int i = 0; i < TARRY_N_RESULT_TABLES; i++)
-        tarry_table_write_csv(tarry_results_table(results, (tarry_result_table)i), &text);
-    if (tarry_results_cells(results))
-        tarry_table_write_csv(tarry_results_cells(results), &text);
-    for (size_t i = 0; i < tarry_results_n_warnings(results); i++)
-        tarry_text_printf(&text, "%s\n", tarry_results_warning(results, i));
-    tarry_text_printf(&text, "%lld cells, %.0f firings, %.0f completions\n",
-                      (long long)tarry_results_n_cells(results), tarry_results_firings(results),
-                      tarry_results_completions(results));
-    ck_assert(!text.failed);
-    return text.data;
-}
-
 /* ---- threads --------------------------------------------------------------------------------- */
 
 START_TEST(test_threads) {
@@ -89,7 +74,7 @@ START_TEST(test_threads) {
     for (size_t i = 0; i < 4; i++) {
         tarry_results *results = run_model(model,
                                            (tarry_run_options){.threads = threads[i], .keep = 3});
-        char *text = dump(results);
+        char *text = results_text(results);
         if (first)
             ck_assert_msg(strcmp(first, text) == 0, "%d threads differ", threads[i]);
         else
@@ -169,7 +154,7 @@ START_TEST(test_stop) {
         snprintf(cells, sizeof cells, "%lld", (long long)n);
         tarry_model *shorter = read_model(busy_model, cells);
         tarry_results *whole = run_model(shorter, (tarry_run_options){.threads = 1, .keep = 100});
-        char *one = dump(part), *other = dump(whole);
+        char *one = results_text(part), *other = results_text(whole);
         ck_assert(strstr(one, "interrupted: the figures rest on the first") != NULL);
         drop_interruption(one);
         ck_assert_msg(strcmp(one, other) == 0, "stopped after %s cells with %d threads", cells,
