@@ -7,6 +7,7 @@
 #include "model/analysis.h"
 #include "study/check_page.h"
 #include "study/run.h"
+#include "tally/kinds.h"
 
 #include <math.h>
 #include <stdlib.h>
@@ -315,12 +316,19 @@ static void write_files(tarry_page *page) {
     const channel_counts n = count_channels(network);
     const double pairs = n.signals * (n.signals - 1) / 2;
     const double lags = run->n_lags;
+    double burst_figures = 0;
+    for (uint32_t i = 0; i < network->n_genes; i++)
+        burst_figures += network->genes[i].tells ? TARRY_BURST_FIGURES : 1;
     tarry_page_head(page, "Files", -1);
     page->sheet.right = 1u << 1;
     put_rows(page, "means.csv",
              n.recorded * (run->n_frames + count_off_frames(run)) +
                  (n.all - n.recorded) * run->n_snapshots,
              NULL);
+    put_rows(page, "bursts.csv",
+             run->n_windows * (burst_figures + TARRY_PRODUCT_FIGURES * (n.correlating - n.signals)),
+             NULL);
+    put_rows(page, "signals.csv", run->n_windows * TARRY_SIGNAL_FIGURES * n.signals, NULL);
     put_rows(page, "autocorrelation.csv",
              run->n_windows * (n.correlating * lags + pairs * (2 * lags - 1)), "at most");
     put_rows(page, "transit.csv", (double)network->n_lags * run->n_windows, NULL);

@@ -17,6 +17,11 @@
     X(transit)                                                                                     \
     X(drift)
 
+/* Rows that a window has in bursts.csv and signals.csv: of a gene whose bursts can be told (of
+ * another, its initiation rate alone), of each of its recorded products, and of a recorded signal.
+ */
+enum { TARRY_BURST_FIGURES = 13, TARRY_PRODUCT_FIGURES = 4, TARRY_SIGNAL_FIGURES = 6 };
+
 #define TARRY_TALLY_DECLARE(name) extern const tarry_tally_kind tarry_tally_##name;
 TARRY_TALLY_KINDS(TARRY_TALLY_DECLARE)
 #undef TARRY_TALLY_DECLARE

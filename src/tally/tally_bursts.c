@@ -70,6 +70,7 @@ enum {
 #undef QUANTITY_ENUM
         N_QUANTITIES
 };
+_Static_assert((int)N_QUANTITIES == (int)TARRY_BURST_FIGURES, "rows of bursts.csv");
 
 static const struct {
     const char *name;

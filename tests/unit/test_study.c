@@ -547,9 +547,40 @@ START_TEST(test_check_many) {
 }
 END_TEST
 
+/* ---- rows of files -----------------------------------------------------------------------------
+ */
+
+/* What `tarry check` says of a file's rows is what a run writes. */
+static void check_rows(const char *report, const tarry_results *results, const char *file,
+                       tarry_result_table table) {
+    const char *line = strstr(report, file);
+    ck_assert_msg(line, "no %s", file);
+    const size_t said = (size_t)strtoull(line + strlen(file), NULL, 10);
+    const size_t rows = tarry_table_n_rows(tarry_results_table(results, table));
+    ck_assert_msg(said == rows, "%s: %zu rows, check says %zu", file, rows, said);
+    ck_assert_uint_gt(rows, 0);
+}
+
+START_TEST(test_rows) {
+    tarry_model *model = read_model(busy_model, "3");
+    tarry_results *results = run_model(model, (tarry_run_options){.threads = 1});
+    tarry_error error;
+    char *report = NULL;
+    ck_assert_int_eq(tarry_check(model, &report, &error), 0);
+    check_rows(report, results, "means.csv", TARRY_TABLE_means);
+    check_rows(report, results, "bursts.csv", TARRY_TABLE_bursts);
+    check_rows(report, results, "signals.csv", TARRY_TABLE_signals);
+    check_rows(report, results, "transit.csv", TARRY_TABLE_transit);
+    free(report);
+    tarry_results_free(results);
+    tarry_model_free(model);
+}
+END_TEST
+
 int main(void) {
     const test_entry tests[] = {
         {"threads", test_threads},
+        {"rows", test_rows},
         {"progress", test_progress},
         {"stop", test_stop},
         {"stop at once", test_stop_at_once},
