@@ -33,16 +33,28 @@ static void wait_until(tarry_cell *cell, uint32_t lag, double due, bool is_fixed
         stop(cell, TARRY_STOP_PENDING, lag);
 }
 
-/* The lag of a molecule that may be lost: the loss competes with the end that has been drawn. */
+/* When a molecule that enters now would be lost. */
+static double draw_loss(tarry_cell *cell, const tarry_lag *lag) {
+    const double rate = cell->network->segments[cell->segment].rates[lag->loss_rate];
+    const double wait = -tarry_log(tarry_unit(tarry_stream_next(&cell->events)));
+    return rate > 0 ? cell->now + wait / rate : INFINITY;
+}
+
+/* The lag of a molecule that keeps behind the one before it, or one that may be lost: the loss
+ * competes with the end that has been drawn. */
 static void schedule_rare(tarry_cell *cell, uint32_t lag, double length, bool is_fixed) {
     const tarry_lag *rare = &cell->network->lags[lag];
-    const double rate = cell->network->segments[cell->segment].rates[rare->loss_rate];
-    const double wait = -tarry_log(tarry_unit(tarry_stream_next(&cell->events)));
-    const double due = cell->now + length;
-    const double loss = rate > 0 ? cell->now + wait / rate : INFINITY;
+    double due = cell->now + length;
+    if (rare->in_order) {
+        const double earliest = cell->last_due[lag] + rare->headway;
+        if (due < earliest)
+            due = earliest;
+        cell->last_due[lag] = due;
+    }
+    const double loss = rare->may_be_lost ? draw_loss(cell, rare) : INFINITY;
     const bool is_lost = loss < due;
     const double leaves = is_lost ? loss : due;
-    wait_until(cell, lag, leaves, is_fixed && !is_lost, is_lost);
+    wait_until(cell, lag, leaves, is_fixed && !is_lost && !rare->in_order, is_lost);
     if (cell->record)
         tarry_cell_note_lag(cell, lag, length, due, leaves, true);
 }
@@ -225,6 +237,8 @@ static void start(tarry_cell *cell) {
         cell->status[i] = TARRY_TRACK_UNKNOWN;
         cell->counters[i] = 0;
     }
+    for (uint32_t i = 0; i < network->n_lags; i++)
+        cell->last_due[i] = -INFINITY;
     use_segment(cell, 0);
     for (uint32_t i = 0; i < network->n_promoters; i++)
         start_promoter(cell, i, &start);
@@ -422,10 +436,11 @@ static int allocate(tarry_cell *cell, tarry_error *error) {
                                      sizeof *cell->frame_ramps);
     cell->snapshot_ramps = tarry_calloc(n_signals * network->run.n_snapshots + 1,
                                         sizeof *cell->snapshot_ramps);
+    cell->last_due = tarry_calloc(network->n_lags, sizeof *cell->last_due);
     cell->own_counts = tarry_calloc((size_t)network->n_reactions + network->n_lags + 1,
                                     sizeof *cell->own_counts);
     if (!cell->counts || !cell->status || !cell->counters || !cell->runs_on || !cell->frame_ramps ||
-        !cell->snapshot_ramps || !cell->own_counts)
+        !cell->snapshot_ramps || !cell->last_due || !cell->own_counts)
         return tarry_fail_memory(error, "a cell");
     return TARRY_OK;
 }
@@ -471,6 +486,7 @@ void tarry_cell_free(tarry_cell *cell) {
     free(cell->status);
     free(cell->counters);
     free(cell->runs_on);
+    free(cell->last_due);
     free(cell->frame_ramps);
     free(cell->snapshot_ramps);
     free(cell->own_counts);

@@ -31,7 +31,7 @@ typedef struct tarry_packed_lag {
     uint32_t n_outcomes;
     bool is_certain; /* one outcome that always comes */
     uint32_t effect; /* of a certain one */
-    bool is_rare;    /* its molecule may be lost */
+    bool is_rare;    /* its molecule may be lost, or must keep behind the one before */
     uint32_t n_ramps;
     const uint32_t *ramps;
 } tarry_packed_lag;
@@ -75,6 +75,7 @@ struct tarry_cell {
     tarry_stream events;
     tarry_track_status *status; /* [track] */
     int64_t *counters;          /* [track] */
+    double *last_due;           /* [lag] of those in order: when the last one begun is due */
 
     /* The segment in force. */
     const tarry_drawer *const *drawers;

@@ -41,7 +41,7 @@ static void pack_lags(tarry_engine *engine) {
             .n_outcomes = n,
             .is_certain = n == 1 && outcomes[0].cumulative >= 1,
             .effect = n > 0 ? outcomes[0].effect : 0,
-            .is_rare = lag->may_be_lost,
+            .is_rare = lag->may_be_lost || lag->in_order,
             .n_ramps = lag->ramps.to - lag->ramps.from,
             .ramps = network->lag_ramps + lag->ramps.from,
         };

@@ -427,6 +427,8 @@ static const char *dwell_in(reader *r, size_t product, int32_t lag, tarry_flow_s
     const double decay = r->decay[product];
     if (lag != TARRY_NONE && (decay > 0 || r->network->lags[lag].may_be_lost))
         return "its molecules are lost while they are under way";
+    if (lag != TARRY_NONE && r->network->lags[lag].in_order)
+        return "its molecules wait for those before them";
     if (lag == TARRY_NONE && !(decay > 0))
         return "nothing removes it";
     if (lag == TARRY_NONE) {

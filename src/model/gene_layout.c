@@ -16,7 +16,6 @@ static const char *const GENE_KEYS[] = {"copies",  "start",     "promoter",  "tr
                                         "protein", "bursts_in", "clearance", "many"};
 static const char *const TRANSCRIPT_KEYS[] = {"stages",   "half_life",     "decay",
                                               "lifetime", "no_overtaking", "headway"};
-static const char *const TRANSCRIPT_LATER[] = {"no_overtaking", "headway"};
 static const char *const PROTEIN_KEYS[] = {"translation", "stages",   "half_life",
                                            "decay",       "lifetime", "from"};
 
@@ -72,7 +71,7 @@ int tarry_gene_layout_read(const tarry_entry *gene, tarry_gene_layout *layout, t
     if (code == 0)
         code = read_promoter(gene, layout, error);
     if (code == 0)
-        code = read_product(gene->node, "transcript", TRANSCRIPT_KEYS, 6, TRANSCRIPT_LATER, 2,
+        code = read_product(gene->node, "transcript", TRANSCRIPT_KEYS, 6, NULL, 0,
                             &layout->transcript, &layout->transcript_stages,
                             &layout->n_transcript_stages, error);
     if (code == 0)

@@ -119,6 +119,8 @@ typedef struct tarry_lag {
     bool may_be_lost;       /* its molecule may leave before the end: */
     uint32_t loss_rate;     /* index into a segment's `rates` */
     uint32_t loss_effect;   /* what happens then */
+    bool in_order;          /* none is over before the one that began before it, */
+    double headway;         /* but this much later at least */
     uint32_t allele;        /* whose lag it is, where each has one; else 0 */
     tarry_place place;
 } tarry_lag;

@@ -25,7 +25,8 @@ typedef struct product_plan {
     bool decays;
     bool formula;
     uint32_t rate;
-    bool lives; /* it has a lifetime: a lag of its own */
+    bool lives;                     /* it has a lifetime: a lag of its own */
+    const struct order_plan *order; /* where each allele has a lag of its own for the first stage */
     tarry_place place;
 } product_plan;
 
@@ -84,20 +85,78 @@ static int read_loss(tarry_gene_work *work, const tarry_node *lost, tarry_lag *l
     return code;
 }
 
-/* `lost`: may be NULL. */
+/* How the molecules of a stage keep in order. */
+typedef struct order_plan {
+    bool in_order;
+    double headway;
+} order_plan;
+
+/* `no_overtaking: true` and `headway: TIME` under `transcript`. */
+static int read_order(tarry_gene_work *work, order_plan *plan, tarry_error *error) {
+    const tarry_node *node = work->layout.transcript;
+    const tarry_node *answer = tarry_node_get(node, "no_overtaking");
+    const tarry_node *headway = tarry_node_get(node, "headway");
+    int code = 0;
+    if (answer != NULL)
+        code = tarry_expect_answer(answer, "'no_overtaking'", &plan->in_order, error);
+    if (code == 0 && headway != NULL && !plan->in_order)
+        return tarry_fail_at(error, TARRY_INPUT, tarry_key_place(node, "headway"),
+                             "'headway' goes with 'no_overtaking: true'");
+    if (code == 0 && plan->in_order && work->layout.n_transcript_stages == 0)
+        return tarry_fail_at(error, TARRY_INPUT, tarry_key_place(node, "no_overtaking"),
+                             "'no_overtaking' keeps the first stage in order, and this transcript "
+                             "has none; give it 'stages'");
+    if (code == 0 && headway != NULL)
+        code = tarry_builder_constant_value(work->builder, headway, TARRY_TIME, "'headway'",
+                                            &plan->headway, error);
+    if (code == 0 && !(plan->headway >= 0))
+        code = tarry_fail_number(error, headway->place, "'headway' must be 0 or more, not ",
+                                 plan->headway, "");
+    return code;
+}
+
+/* Does a signal look at one allele's molecules of this species? */
+static bool is_seen_by_allele(const tarry_builder *builder, const char *species) {
+    const tarry_node *signals = tarry_node_get(builder->root, "signals");
+    for (size_t i = 0; signals != NULL && signals->kind == TARRY_NODE_MAP && i < signals->n; i++) {
+        const tarry_node *signal = signals->entries[i].node;
+        if (signal->kind != TARRY_NODE_MAP || tarry_node_get(signal, "allele") == NULL)
+            continue;
+        const tarry_node *of = tarry_node_get(signal, "of"), *sum = tarry_node_get(signal, "sum");
+        if (of != NULL && of->kind == TARRY_NODE_SCALAR && strcmp(of->text, species) == 0)
+            return true;
+        if (sum != NULL && sum->kind == TARRY_NODE_MAP && tarry_node_get(sum, species) != NULL)
+            return true;
+    }
+    return false;
+}
+
+/* `lost`: may be NULL. `order`: NULL, or where each allele has a lag of its own. */
 static int make_lag(tarry_gene_work *work, const tarry_node *delay, const tarry_node *lost,
-                    uint32_t species, tarry_place place, tarry_error *error) {
+                    const order_plan *order, uint32_t species, tarry_place place,
+                    tarry_error *error) {
     tarry_builder *builder = work->builder;
     tarry_lag lag = {.name = builder->species.items[species].name,
                      .stage = (int32_t)species,
                      .promoter = TARRY_NONE,
                      .gene = (int32_t)work->gene,
                      .place = place};
-    uint32_t index = 0;
+    const uint32_t first = (uint32_t)builder->lags.n;
+    uint32_t index = first;
+    lag.in_order = order != NULL && order->in_order;
+    lag.headway = order != NULL ? order->headway : 0;
     int code = tarry_builder_delay_index(builder, delay, &lag.delay, error);
+    if (code == 0 && lost != NULL && lag.in_order)
+        return tarry_fail_at(error, TARRY_INPUT, lost->place,
+                             "'lost' does not go with 'no_overtaking' in the first stage: who is "
+                             "lost would still hold up those behind; leave one of them out");
     if (code == 0 && lost != NULL)
         code = read_loss(work, lost, &lag, error);
-    return code == 0 ? tarry_builder_lag(builder, lag, &index, error) : code;
+    for (; code == 0 && lag.allele < (order != NULL ? work->layout.n_copies : 1); lag.allele++)
+        code = tarry_builder_lag(builder, lag, &index, error);
+    if (code == 0)
+        builder->stage_lags.items[species] = (int32_t)first;
+    return code;
 }
 
 static int make_stage_lags(tarry_gene_work *work, const product_plan *plan, tarry_error *error) {
@@ -107,7 +166,8 @@ static int make_stage_lags(tarry_gene_work *work, const product_plan *plan, tarr
         const tarry_node *delay = NULL, *lost = NULL;
         code = stage_delay(stage, &delay, &lost, error);
         if (code == 0)
-            code = make_lag(work, delay, lost, plan->first + i, stage->place, error);
+            code = make_lag(work, delay, lost, i == 0 ? plan->order : NULL, plan->first + i,
+                            stage->place, error);
     }
     return code;
 }
@@ -139,16 +199,39 @@ static int read_decay(tarry_gene_work *work, const tarry_node *node, product_pla
     if (!plan->lives)
         return 0;
     plan->place = tarry_key_place(node, "lifetime");
-    return make_lag(work, lifetime, NULL, plan->species, plan->place, error);
+    return make_lag(work, lifetime, NULL, NULL, plan->species, plan->place, error);
 }
 
 static int read_product(tarry_gene_work *work, const tarry_node *node, const tarry_node *stages,
-                        uint32_t n_stages, uint32_t first, product_plan *plan, tarry_error *error) {
-    *plan = (product_plan){.stages = stages, .n_stages = n_stages, .first = first};
+                        uint32_t n_stages, uint32_t first, const order_plan *order,
+                        product_plan *plan, tarry_error *error) {
+    *plan = (product_plan){.stages = stages, .n_stages = n_stages, .first = first, .order = order};
     plan->species = first + n_stages;
     plan->name = work->builder->species.items[plan->species].name;
     const int code = make_stage_lags(work, plan, error);
     return code == 0 ? read_decay(work, node, plan, error) : code;
+}
+
+/* The alleles have lags of their own for the first stage where they keep in order or are seen one
+ * by one. */
+static int read_transcript(tarry_gene_work *work, product_plan *plan, tarry_error *error) {
+    const tarry_gene_layout *layout = &work->layout;
+    const tarry_builder *builder = work->builder;
+    const uint32_t first = tarry_layout_transcript(layout);
+    order_plan order = {0};
+    int code = read_order(work, &order, error);
+    if (code != 0)
+        return code;
+    work->own_lags = layout->n_transcript_stages > 0 &&
+                     (order.in_order ||
+                      is_seen_by_allele(builder, builder->species.items[first].name));
+    code = read_product(work, layout->transcript, layout->transcript_stages,
+                        layout->n_transcript_stages, first, work->own_lags ? &order : NULL, plan,
+                        error);
+    plan->order = NULL; /* it ends here */
+    if (work->own_lags)
+        work->first_lag = (uint32_t)builder->stage_lags.items[first];
+    return code;
 }
 
 /* ---- building -----------------------------------------------------------------------------------
@@ -168,9 +251,10 @@ static int build_completion(tarry_gene_work *work, uint32_t species, bool last,
         code = tarry_draft_make(&draft, builder, species + 1, 1, error);
     if (code == 0)
         code = tarry_builder_effect(builder, &draft, &effect, error);
-    if (code == 0)
-        code = tarry_builder_outcome(builder, (uint32_t)builder->stage_lags.items[species], 1,
-                                     effect, error);
+    const uint32_t first = (uint32_t)builder->stage_lags.items[species];
+    for (uint32_t i = first;
+         code == 0 && i < builder->lags.n && builder->lags.items[i].stage == (int32_t)species; i++)
+        code = tarry_builder_outcome(builder, i, 1, effect, error);
     tarry_draft_release(&draft);
     return code;
 }
@@ -300,12 +384,10 @@ static int read_gene(tarry_builder *builder, const tarry_entry *entry, uint32_t 
     if (code == 0)
         code = tarry_read_promoter(&work, error);
     if (code == 0 && layout->transcript != NULL)
-        code = read_product(&work, layout->transcript, layout->transcript_stages,
-                            layout->n_transcript_stages, tarry_layout_transcript(layout),
-                            &transcript, error);
+        code = read_transcript(&work, &transcript, error);
     if (code == 0 && layout->protein != NULL)
         code = read_product(&work, layout->protein, layout->protein_stages,
-                            layout->n_protein_stages, tarry_layout_protein(layout), &protein,
+                            layout->n_protein_stages, tarry_layout_protein(layout), NULL, &protein,
                             error);
     if (code == 0)
         code = tarry_build_promoter(&work, error);

@@ -22,6 +22,8 @@ typedef struct tarry_gene_work {
     tarry_gene_layout layout;
     tarry_state_plan *states; /* in the arena */
     uint32_t clearance;       /* the lag of the first allele; those of the others follow */
+    bool own_lags;            /* each allele has a lag of its own for the first stage: */
+    uint32_t first_lag;       /* that of the first allele; those of the others follow */
 } tarry_gene_work;
 
 /* Read the states, the start and what is active; makes the lags of states that last. */

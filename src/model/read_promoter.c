@@ -336,8 +336,13 @@ static int draft_initiation(const tarry_gene_work *work, uint32_t allele, tarry_
     const tarry_gene_layout *layout = &work->layout;
     const uint32_t track = builder->genes.items[work->gene].tracks.from + allele;
     int code = tarry_draft_mark(draft, track, TARRY_MARK_COUNT, error);
-    if (code == 0 && layout->transcript != NULL)
+    if (code == 0 && work->own_lags) {
+        code = tarry_draft_change(draft, tarry_layout_transcript(layout), 1, error);
+        if (code == 0)
+            code = tarry_draft_schedule(draft, work->first_lag + allele, error);
+    } else if (code == 0 && layout->transcript != NULL) {
         code = tarry_draft_make(draft, builder, tarry_layout_transcript(layout), 1, error);
+    }
     if (code != 0 || layout->clearance == NULL)
         return code;
     code = tarry_draft_change(draft, tarry_layout_ready(layout, allele), -1, error);

@@ -269,6 +269,17 @@ static void put_loss(const writer *w, const tarry_lag *lag) {
     tarry_text_release(&text);
 }
 
+/* "after gamma", "after gamma, none overtakes (headway 0.1 min)" */
+static void put_after(const writer *w, const tarry_lag *lag) {
+    char number[TARRY_NUMBER_SIZE];
+    tarry_number_short(lag->headway, 6, number);
+    if (lag->in_order)
+        tarry_sheet_cell(&w->page->sheet, 1, "after %s, none overtakes (headway %s %s)",
+                         lag->delay_name, number, w->network->time_unit);
+    else
+        tarry_sheet_cell(&w->page->sheet, 1, "after %s", lag->delay_name);
+}
+
 static void put_lag(const writer *w, const tarry_lag *lag) {
     const tarry_network *network = w->network;
     double before = 0;
@@ -278,7 +289,7 @@ static void put_lag(const writer *w, const tarry_lag *lag) {
         tarry_sheet_row(&w->page->sheet);
         if (i == lag->outcomes.from) {
             tarry_sheet_cell(&w->page->sheet, 0, "%s", lag->name);
-            tarry_sheet_cell(&w->page->sheet, 1, "after %s", lag->delay_name);
+            put_after(w, lag);
         }
         put_equation(w, effect, NULL, 2);
         put_remarks(w, outcome->cumulative - before,

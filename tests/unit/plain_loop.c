@@ -36,6 +36,7 @@ typedef struct plain {
 
     tarry_track_status *status;
     int64_t *counters;
+    double *last_due; /* [lag] */
     bool *runs_on;
     bool running_on;
     bool status_noted;
@@ -236,7 +237,11 @@ static int schedule(plain *p, uint32_t lag, tarry_error *error) {
             p->record->lag_bins[(size_t)lag * TARRY_LAG_BINS + tarry_lag_bin(length)]++;
     }
     const tarry_lag *row = &p->network->lags[lag];
-    double due = p->now + length, leaves = due;
+    double due = p->now + length;
+    if (row->in_order && p->last_due[lag] + row->headway > due)
+        due = p->last_due[lag] + row->headway;
+    p->last_due[lag] = due;
+    double leaves = due;
     if (row->may_be_lost) {
         const double u = tarry_unit(tarry_stream_next(&p->events));
         const double rate = p->segment->rates[row->loss_rate];
@@ -593,9 +598,13 @@ static int make(plain *p, tarry_error *error) {
     p->propensities = calloc(2 * p->n_leaves, sizeof *p->propensities);
     p->status = calloc(network->n_tracks + 1, sizeof *p->status);
     p->counters = calloc(network->n_tracks + 1, sizeof *p->counters);
+    p->last_due = calloc(network->n_lags + 1, sizeof *p->last_due);
+    for (uint32_t i = 0; p->last_due && i < network->n_lags; i++)
+        p->last_due[i] = -INFINITY;
     p->runs_on = calloc(network->n_tracks + 1, sizeof *p->runs_on);
     p->drawers = calloc((size_t)network->n_segments * network->n_delays + 1, sizeof *p->drawers);
-    if (!p->counts || !p->propensities || !p->status || !p->counters || !p->runs_on || !p->drawers)
+    if (!p->counts || !p->propensities || !p->status || !p->counters || !p->runs_on ||
+        !p->last_due || !p->drawers)
         return tarry_fail_memory(error, "the plain loop");
     int code = tarry_drawer_set_new(&p->set, error);
     for (uint32_t s = 0; s < network->n_segments && !code; s++)
@@ -623,6 +632,7 @@ int plain_cell_run(const tarry_network *network, int64_t cell, tarry_record *rec
     free(p.status);
     free(p.counters);
     free(p.runs_on);
+    free(p.last_due);
     free(p.drawers);
     return code;
 }

@@ -323,10 +323,12 @@ static void write_gene(maker *m, unsigned g) {
     if (!gene->transcript)
         return;
     WRITE("    transcript:\n");
+    bool first_lost = false;
     if (gene->n_stages > 0)
         WRITE("      stages:\n");
     for (unsigned i = 0; i < gene->n_stages; i++) {
         const bool lost = chance(m, 25);
+        first_lost = first_lost || (i == 0 && lost);
         WRITE(lost ? "        t%u:\n          lasts: " : "        t%u: ", i);
         write_lag(m);
         WRITE("\n");
@@ -337,6 +339,11 @@ static void write_gene(maker *m, unsigned g) {
         }
     }
     write_fate(m);
+    if (gene->n_stages > 0 && !first_lost && chance(m, 30)) {
+        WRITE("      no_overtaking: yes\n");
+        if (chance(m, 60))
+            WRITE("      headway: %s\n", chance(m, 50) ? "0.25" : "0.1");
+    }
     if (!gene->protein)
         return;
     WRITE("    protein:\n      translation: ");

@@ -20,10 +20,6 @@ static void refused(const char *keys, int line, int column, const char *words) {
     network_refused(gene(keys), line, column, words);
 }
 
-static void not_yet(const char *keys, int line, int column, const char *words) {
-    network_refused_as(gene(keys), TARRY_NOT_YET, line, column, words);
-}
-
 START_TEST(keys_of_a_gene) {
     refused("    copies: 2\n", 3, 5, "vela needs 'promoter'");
     refused(PROMOTER "    coopies: 2\n", 4, 5, "vela has no key 'coopies'; did you mean 'copies'?");
@@ -36,12 +32,6 @@ START_TEST(keys_of_a_gene) {
     network_refused("genes: {kb: {}}\n", 1, 9, "'kb' is a unit or a function");
     network_refused("parameters: {vela: 1}\ngenes: {vela: {}}\n", 2, 9,
                     "'vela' would name a gene here, but it names a parameter already (line 1)");
-}
-END_TEST
-
-START_TEST(what_this_version_cannot_do) {
-    not_yet(PROMOTER "    transcript: {no_overtaking: true}\n", 4, 18, "'no_overtaking' cannot");
-    not_yet(PROMOTER "    transcript: {headway: 1}\n", 4, 18, "'headway' cannot be used yet");
 }
 END_TEST
 
@@ -88,6 +78,34 @@ START_TEST(moves_that_initiate_and_clearance) {
     const tarry_network *network = network_of("genes:\n  vela:\n" PROMOTER
                                               "    transcript: {stages: {clearance: 1}}\n");
     ck_assert_uint_eq(network->n_lags, 1);
+    network_end();
+}
+END_TEST
+
+START_TEST(order_on_an_allele) {
+    refused(PROMOTER "    transcript: {no_overtaking: true}\n", 4, 18, "this transcript has none");
+    refused(PROMOTER "    transcript: {stages: {nascent: 1}, no_overtaking: 1}\n", 4, 55,
+            "'no_overtaking' is yes or no, not '1'");
+    refused(PROMOTER "    transcript: {stages: {nascent: 1}, headway: 1}\n", 4, 40,
+            "'headway' goes with 'no_overtaking: true'");
+    refused(PROMOTER "    transcript: {stages: {nascent: 1}, no_overtaking: no, headway: 1}\n", 4,
+            59, "'headway' goes with");
+    refused(PROMOTER "    transcript: {stages: {nascent: 1}, no_overtaking: yes, headway: -1}\n", 4,
+            69, "'headway' must be 0 or more, not -1");
+    refused(PROMOTER "    transcript: {stages: {nascent: 1}, no_overtaking: yes, headway: 2 kb}\n",
+            4, 69, "a time");
+    refused(PROMOTER
+            "    transcript: {stages: {nascent: {lasts: 1, lost: 1}}, no_overtaking: yes}\n",
+            4, 53, "'lost' does not go with 'no_overtaking'");
+    const tarry_network *network = network_of(
+        "genes:\n  vela:\n    copies: 3\n" PROMOTER
+        "    transcript: {stages: {nascent: 1, nuclear: 2}, no_overtaking: yes, headway: 0.5}\n");
+    ck_assert_uint_eq(network->n_lags, 4);
+    for (uint32_t i = 0; i < 4; i++) {
+        ck_assert(network->lags[i].in_order == (i < 3));
+        ck_assert_uint_eq(network->lags[i].allele, i % 3);
+        ck_assert(network->lags[i].headway == (i < 3 ? 0.5 : 0));
+    }
     network_end();
 }
 END_TEST
@@ -302,10 +320,10 @@ END_TEST
 int main(void) {
     const test_entry tests[] = {
         {"keys of a gene", keys_of_a_gene},
-        {"what this version cannot do", what_this_version_cannot_do},
         {"states", states},
         {"moves that initiate and clearance", moves_that_initiate_and_clearance},
         {"active states", active_states},
+        {"order on an allele", order_on_an_allele},
         {"what is translated", what_is_translated},
         {"where bursts are and how a gene starts", where_bursts_are_and_how_a_gene_starts},
         {"transcripts and proteins", transcripts_and_proteins},
