@@ -9,11 +9,11 @@
 
 static const char *const SIGNAL_KEYS[] = {"of",         "sum",   "ramp",  "brightness",
                                           "background", "noise", "allele"};
-static const char *const SIGNAL_LATER[] = {"allele"};
 
 typedef struct signal_reader {
     tarry_builder *builder;
     uint32_t index;
+    uint32_t allele; /* the one that is seen, from 1 on; 0: all */
 } signal_reader;
 
 /* ---- numbers ----------------------------------------------------------------------------------
@@ -93,24 +93,67 @@ static int read_fractions(signal_reader *in, const tarry_node *map, tarry_ramp *
     return code;
 }
 
-/* One species with a ramp, or with a plain weight where there is none. */
+/* The lags of a stage stand side by side: one, or one an allele. */
+static bool is_lag_of(const tarry_builder *builder, size_t lag, uint32_t species) {
+    return lag < builder->lags.n && builder->lags.items[lag].stage == (int32_t)species;
+}
+
+static int add_ramp(signal_reader *in, uint32_t species, tarry_ramp ramp, tarry_error *error) {
+    tarry_builder *builder = in->builder;
+    ramp.lag = (uint32_t)builder->stage_lags.items[species];
+    do {
+        const bool is_seen = in->allele == 0 ||
+                             builder->lags.items[ramp.lag].allele + 1 == in->allele;
+        if (is_seen && TARRY_APPEND(&builder->ramps, ramp) != 0)
+            return tarry_fail_memory(error, "a signal");
+        ramp.lag++;
+    } while (is_lag_of(builder, ramp.lag, species));
+    return 0;
+}
+
+/* Can one allele's molecules of this species be told from the others'? */
+static int check_allele(const signal_reader *in, uint32_t species, tarry_place place,
+                        tarry_error *error) {
+    const tarry_builder *builder = in->builder;
+    const tarry_species *row = &builder->species.items[species];
+    const int32_t lag = builder->stage_lags.items[species];
+    uint32_t n_lags = 0;
+    while (lag != TARRY_NONE && is_lag_of(builder, (size_t)lag + n_lags, species))
+        n_lags++;
+    const uint32_t n_copies = row->gene == TARRY_NONE ? 0
+                                                      : builder->genes.items[row->gene].n_copies;
+    if (row->role != TARRY_SPECIES_STAGE || n_lags != n_copies)
+        return tarry_fail_at(error, TARRY_INPUT, place,
+                             "one allele's molecules can be seen in the first stage of a "
+                             "transcript only; '%s' is none, so leave 'allele' out",
+                             row->name);
+    if (in->allele > n_copies)
+        return tarry_fail_at(error, TARRY_INPUT, place,
+                             "there is no allele %u of '%s': its gene has copies: %u", in->allele,
+                             row->name, n_copies);
+    return 0;
+}
+
+/* One species with a ramp, or with a plain weight where there is none. A molecule of one allele
+ * shines through its own lag, as a ramp that is full from the start where none is given. */
 static int add_part(signal_reader *in, const tarry_node *map, uint32_t species, tarry_place place,
                     double brightness, tarry_error *error) {
     tarry_builder *builder = in->builder;
-    const tarry_node *fractions = tarry_node_get(map, "ramp");
-    if (fractions == NULL)
+    const tarry_node *fractions = map->kind == TARRY_NODE_MAP ? tarry_node_get(map, "ramp") : NULL;
+    int code = in->allele != 0 ? check_allele(in, species, place, error) : 0;
+    if (code != 0)
+        return code;
+    if (fractions == NULL && in->allele == 0)
         return add_weight(in, species, brightness, error);
-    const int32_t lag = builder->stage_lags.items[species];
-    if (lag == TARRY_NONE)
+    if (builder->stage_lags.items[species] == TARRY_NONE)
         return tarry_fail_at(error, TARRY_INPUT, place,
                              "'%s' is no stage, so its molecules have no dwell that a ramp could "
                              "follow; leave the ramp out",
                              builder->species.items[species].name);
-    tarry_ramp ramp = {.signal = in->index, .lag = (uint32_t)lag, .brightness = brightness};
-    const int code = read_fractions(in, fractions, &ramp, error);
-    if (code != 0)
-        return code;
-    return TARRY_APPEND(&builder->ramps, ramp) == 0 ? 0 : tarry_fail_memory(error, "a signal");
+    tarry_ramp ramp = {.signal = in->index, .brightness = brightness};
+    if (fractions != NULL)
+        code = read_fractions(in, fractions, &ramp, error);
+    return code != 0 ? code : add_ramp(in, species, ramp, error);
 }
 
 static int read_of(signal_reader *in, const tarry_node *signal, const tarry_node *of,
@@ -139,7 +182,7 @@ static int read_term(signal_reader *in, const tarry_entry *entry, tarry_error *e
     if (entry->node->kind == TARRY_NODE_SCALAR) {
         code = tarry_builder_constant_value(in->builder, entry->node, TARRY_PURE,
                                             "the weight of a species in a signal", &weight, error);
-        return code != 0 ? code : add_weight(in, species, weight, error);
+        return code != 0 ? code : add_part(in, entry->node, species, entry->place, weight, error);
     }
     code = tarry_expect_keys(entry->node, entry->key, keys, 2, error);
     if (code == 0)
@@ -170,6 +213,15 @@ static int read_sum(signal_reader *in, const tarry_node *signal, const tarry_nod
 /* ---- a signal ---------------------------------------------------------------------------------
  */
 
+static int read_allele(signal_reader *in, const tarry_node *signal, tarry_error *error) {
+    const tarry_node *node = tarry_node_get(signal, "allele");
+    double allele = 0;
+    const int code = node == NULL ? 0
+                                  : tarry_expect_count(node, "'allele'", 1, 1000, &allele, error);
+    in->allele = (uint32_t)allele;
+    return code;
+}
+
 static int read_signal(signal_reader *in, const tarry_entry *entry, tarry_error *error) {
     tarry_builder *builder = in->builder;
     const tarry_node *node = entry->node;
@@ -182,7 +234,7 @@ static int read_signal(signal_reader *in, const tarry_entry *entry, tarry_error 
     if (code == 0)
         code = tarry_expect_keys(node, entry->key, SIGNAL_KEYS, 7, error);
     if (code == 0)
-        code = tarry_expect_not_yet(node, entry->key, SIGNAL_LATER, 1, error);
+        code = read_allele(in, node, error);
     if (code != 0)
         return code;
     const tarry_node *of = tarry_node_get(node, "of"), *sum = tarry_node_get(node, "sum");

@@ -1,123 +1,152 @@
-/* Transcripts that do not overtake each other on their allele, and keep a headway.
- *
- * With a fixed dwell D and Poisson initiation at rate k, completion i = max(start + D, completion
- * i-1 + h) is Lindley's recursion for the start of service in a queue M/D/1 with service time h,
- * shifted by D: the mean dwell is D + k h^2/(2 (1 - k h)) (Pollaczek and Khinchine's formula;
- * common practice), and the mean number under way k times that (Little 1961, Oper. Res. 9:383). For
- * drawn dwells the recursion is run here on GSL's draws. */
+/* Molecules that do not overtake each other, against the laws of two queues. */
 
+#include "master.h"
 #include "sample.h"
 #include "support.h"
 
+#include <gsl/gsl_integration.h>
 #include <gsl/gsl_randist.h>
-#include <gsl/gsl_rng.h>
 #include <math.h>
 #include <stdio.h>
-#include <string.h>
 
-enum { CELLS = 20000 };
+enum { CELLS = 40000, MOST = 80 };
 
-static void write_model(char text[1024], const char *dwell, const char *headway, const char *run) {
-    snprintf(text, 1024,
-             "tarry: 1\ntime: min\ngenes:\n  vela:\n    promoter: {on: {initiates: 0.5}}\n"
-             "    transcript:\n      stages: {nascent: %s, nuclear: {fixed: 1000}}\n"
-             "      no_overtaking: true\n      headway: %s\n      half_life: 1 h\nrun: %s\n",
-             dwell, headway, run);
+/* ---- drawn dwells without headway ---- */
+
+static const double rate = 2, mean_dwell = 1.5;
+
+/* The stage holds the oldest molecule whose own dwell is not over, and all that began after it,
+ * finished or not. Molecules begin as a Poisson process, so with survival S the oldest has age a
+ * with density k S(a) exp(-k integral of S from a on), and those after it are Poisson(k a), as
+ * follows from independent thinning (Kingman 1993, Poisson Processes). */
+static double oldest_and_others(double a, void *n) {
+    const double survival = exp(-a / mean_dwell);
+    return rate * survival * exp(-rate * mean_dwell * survival) *
+           gsl_ran_poisson_pdf(*(unsigned *)n - 1, rate * a);
 }
 
-START_TEST(test_fixed_dwell) {
-    char text[1024];
-    write_model(text, "{fixed: 4}", "1 min", "{settle: 60, until: 1, every: 1}");
-    sample_cells *cells = sample_new(text, CELLS);
-    const double k = 0.5, h = 1;
-    check_mean("under way", sample_mean(cells, "vela.nascent", 0),
-               k * (4 + k * h * h / (2 * (1 - k * h))), sample_sd(cells, "vela.nascent", 0),
-               cells->n_cells);
-    sample_free(cells);
-}
-END_TEST
-
-/* The mean time from start to end by the recursion, and its standard error from 100 batches. */
-static double run_recursion(double mean, double sd, double headway, double *se) {
-    enum { BATCHES = 100, IN_BATCH = 20000 };
-    gsl_rng *rng = gsl_rng_alloc(gsl_rng_mt19937);
-    ck_assert_ptr_nonnull(rng);
-    gsl_rng_set(rng, 1);
-    const double shape = mean * mean / (sd * sd), scale = sd * sd / mean;
-    double start = 0, last = -INFINITY, sum = 0, squares = 0;
-    for (int batch = 0; batch < BATCHES; batch++) {
-        double total = 0;
-        for (int i = 0; i < IN_BATCH; i++) {
-            start += gsl_ran_exponential(rng, 2);
-            last = fmax(start + gsl_ran_gamma(rng, shape, scale), last + headway);
-            total += last - start;
-        }
-        sum += total / IN_BATCH;
-        squares += total / IN_BATCH * (total / IN_BATCH);
+static void stage_law(double *law) {
+    gsl_integration_workspace *workspace = gsl_integration_workspace_alloc(500);
+    ck_assert_ptr_nonnull(workspace);
+    law[0] = exp(-rate * mean_dwell);
+    for (unsigned n = 1; n < MOST; n++) {
+        double error;
+        gsl_function f = {oldest_and_others, &n};
+        ck_assert_int_eq(
+            gsl_integration_qags(&f, 0, 60, 1e-12, 1e-9, 500, workspace, &law[n], &error), 0);
     }
-    gsl_rng_free(rng);
-    const double average = sum / BATCHES;
-    *se = sqrt((squares / BATCHES - average * average) / (BATCHES - 1));
-    return average;
+    gsl_integration_workspace_free(workspace);
 }
 
-static void check_drawn(const char *headway_text, double headway) {
-    char text[1024];
-    double se;
-    const double dwell = run_recursion(8, 4, headway, &se);
-    write_model(text, "{gamma: {mean: 8, sd: 4}}", headway_text,
-                "{settle: 100, until: 1, every: 1}");
+START_TEST(test_order) {
+    static const char text[] =
+        "tarry: 1\ntime: min\ngenes:\n  vela:\n    promoter: {on: {initiates: 2}}\n"
+        "    transcript:\n      stages: {nascent: {exponential: {mean: 1.5}}}\n"
+        "      no_overtaking: true\n      decay: 0.5\n"
+        "run: {settle: 40, until: 1, every: 1}\n";
+    double law[MOST], counts[MOST];
+    stage_law(law);
+    for (unsigned n = 0; n < MOST; n++)
+        counts[n] = n;
+    const master_moments exact = master_moments_of(MOST, law, counts);
+    ck_assert_double_gt(exact.mean, 1.2 * rate * mean_dwell); /* the test tells the two apart */
     sample_cells *cells = sample_new(text, CELLS);
-    const double own = sample_sd(cells, "vela.nascent", 0) / sqrt((double)cells->n_cells);
-    check_z("drawn dwells",
-            (sample_mean(cells, "vela.nascent", 0) - 0.5 * dwell) / hypot(own, 0.5 * se));
-    /* Without the rule 4 would be under way: the test tells the two apart. */
-    ck_assert_double_gt(0.5 * dwell, 4 + 20 * own);
+    check_counts("in order", sample_values(cells, "vela.nascent", 0), cells->n_cells, law, MOST);
+    check_mean_and_sd("in order", cells, "vela.nascent", 0, exact.mean, exact.sd, exact.kurtosis);
     sample_free(cells);
-}
-
-START_TEST(test_drawn_dwells) {
-    check_drawn("0", 0);
-    check_drawn("0.8", 0.8);
 }
 END_TEST
 
-/* Arrivals in the next stage, counted at frames: never two within a headway. */
-START_TEST(test_headway_is_kept) {
-    char text[1024];
-    write_model(text, "{gamma: {mean: 8, sd: 4}}", "1 min",
-                "{cells: 20, settle: 30, until: 60, every: 0.1}");
-    tarry_start();
+/* ---- headway ---- */
+
+/* With a fixed dwell, what a molecule waits beyond it is the wait in the queue M/D/1 whose service
+ * takes the headway h: w = max(0, w before + h - time since the one before), k h^2/(2 (1 - k h)) on
+ * average (Pollaczek and Khinchine's formula; Khinchine 1932, Mat. Sb. 39:73). By Little's law the
+ * stage holds k times the dwell and the wait. Each allele queues by itself. */
+static void check_headway(const char *what, const char *copies, double alleles) {
+    char text[1000];
+    snprintf(text, sizeof text,
+             "tarry: 1\ntime: min\ngenes:\n  vela:\n    copies: %s\n"
+             "    promoter: {on: {initiates: 1.5}}\n"
+             "    transcript: {stages: {nascent: 3}, no_overtaking: true, headway: 0.5, decay: 1}\n"
+             "run: {cells: 2000, settle: 60, until: 60, every: 0.5}\n",
+             copies);
     tarry_model *model = NULL;
-    tarry_results *results = NULL;
-    tarry_error error;
-    ck_assert_int_eq(
-        tarry_model_read_text(text, strlen(text), "order.yaml", NULL, 0, &model, &error), 0);
-    const tarry_run_options options = {.keep = 20};
-    ck_assert_int_eq(tarry_run(model, &options, &results, &error), 0);
-    const tarry_table *table = tarry_results_cells(results);
-    const int cell = tarry_table_column(table, "cell");
-    const int nuclear = tarry_table_column(table, "vela.nuclear");
-    double most = 0;
-    for (size_t row = 9; row < tarry_table_n_rows(table); row++) {
-        if (tarry_table_number(table, row, cell) != tarry_table_number(table, row - 9, cell))
-            continue;
-        const double arrived = tarry_table_number(table, row, nuclear) -
-                               tarry_table_number(table, row - 9, nuclear);
-        ASSERT_FAST(arrived <= 1, "%g arrived within 0.9 min", arrived);
-        most = fmax(most, arrived);
-    }
-    ck_assert_double_eq(most, 1);
+    tarry_results *results = run_results(text, &model);
+    const double k = 1.5, h = 0.5, wait = k * h * h / (2 * (1 - k * h));
+    check_figure(what, burst_figure(results, "vela", "all", "nascent_mean"),
+                 alleles * k * (3 + wait));
+    const tarry_table *transit = tarry_results_table(results, TARRY_TABLE_transit);
+    ck_assert_uint_eq(tarry_table_n_rows(transit), 1);
+    const int mean = tarry_table_column(transit, "mean_drawn");
+    ck_assert_double_eq_tol(tarry_table_number(transit, 0, mean), 3, 1e-12);
     tarry_results_free(results);
     tarry_model_free(model);
+}
+
+START_TEST(test_headway) {
+    check_headway("one allele", "1", 1);
+    check_headway("three alleles", "3", 3);
+}
+END_TEST
+
+/* Nothing is removed, so the count of transcripts tells completions: within less than a headway it
+ * rises by one at most on each allele, however the dwells were drawn. */
+START_TEST(test_spacing) {
+    static const char text[] =
+        "tarry: 1\ntime: min\ngenes:\n  vela:\n    copies: 2\n    promoter: {on: {initiates: "
+        "1.9}}\n"
+        "    transcript: {stages: {nascent: {gamma: {mean: 3, sd: 2}}}, no_overtaking: true,\n"
+        "      headway: 0.5}\n"
+        "run: {until: 30, every: 30, snapshots: [29, 29.499, 30]}\n";
+    sample_cells *cells = sample_new(text, CELLS / 4);
+    const double *from = sample_values(cells, "vela.transcript", 0);
+    const double *to = sample_values(cells, "vela.transcript", 1);
+    double n[4] = {0};
+    for (size_t i = 0; i < cells->n_cells; i++) {
+        ASSERT_FAST(to[i] - from[i] <= 2,
+                    "cell %zu: %g completions within a headway of two alleles", i, to[i] - from[i]);
+        n[(int)(to[i] - from[i])]++;
+    }
+    ck_assert(n[2] > 0.5 * (double)cells->n_cells); /* it binds */
+    sample_free(cells);
+}
+END_TEST
+
+/* ---- the light of a stretched dwell ---- */
+
+/* A step at half the dwell: for each molecule half the time in the stage is bright, the stretched
+ * one. So the light is half the count on average. */
+static void check_light(const char *copies, double alleles) {
+    char text[1000];
+    snprintf(text, sizeof text,
+             "tarry: 1\ntime: min\ngenes:\n  vela:\n    copies: %s\n"
+             "    promoter: {on: {initiates: 1.5}}\n"
+             "    transcript: {stages: {nascent: 3}, no_overtaking: true, headway: 0.5, decay: 1}\n"
+             "signals: {light: {of: vela.nascent, ramp: {from: 0.5, to: 0.5}}}\n"
+             "run: {cells: 2000, settle: 60, until: 60, every: 0.5}\n",
+             copies);
+    tarry_model *model = NULL;
+    tarry_results *results = run_results(text, &model);
+    const double wait = 1.5 * 0.5 * 0.5 / (2 * (1 - 0.75));
+    check_figure("light", signal_figure(results, "light", "all", "signal_mean"),
+                 alleles * 1.5 * (3 + wait) / 2);
+    tarry_results_free(results);
+    tarry_model_free(model);
+}
+
+START_TEST(test_ramp) {
+    check_light("1", 1);
+    check_light("3", 3);
 }
 END_TEST
 
 int main(void) {
     const test_entry tests[] = {
-        {"fixed dwell", test_fixed_dwell},
-        {"drawn dwells", test_drawn_dwells},
-        {"headway is kept", test_headway_is_kept},
+        {"order", test_order},
+        {"headway", test_headway},
+        {"spacing", test_spacing},
+        {"ramp", test_ramp},
     };
     return run_tests("order", tests, sizeof tests / sizeof *tests);
 }

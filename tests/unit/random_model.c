@@ -485,9 +485,12 @@ static void write_signals(maker *m) {
         headed = true;
         WRITE("  light%u:\n", i);
         if (gene->n_stages > 0 && chance(m, 60)) {
-            WRITE("    of: g%u.t%u\n    ramp: ", g, pick(m, gene->n_stages));
+            const bool one_allele = chance(m, 30);
+            WRITE("    of: g%u.t%u\n    ramp: ", g, one_allele ? 0 : pick(m, gene->n_stages));
             write_ramp(m);
             WRITE("\n");
+            if (one_allele)
+                WRITE("    allele: 1\n");
             if (chance(m, 50))
                 WRITE("    brightness: %u\n", 1 + pick(m, 5));
         } else {

@@ -13,6 +13,13 @@ static int make_names(tarry_builder *builder, tarry_error *error) {
                 {"vela.nuclear", TARRY_SPECIES_STAGE, 6},
                 {"vela.protein", TARRY_SPECIES_PRODUCT, TARRY_NONE}};
     int code = 0;
+    ck_assert_int_eq(TARRY_APPEND(&builder->genes, ((tarry_gene){.n_copies = 2})), 0);
+    /* Each allele has its own for the first stage, 4 and 5; all share 6 for the second. */
+    for (int32_t i = 0; i < 7; i++) {
+        const int32_t stage = i == 6 ? 1 : i >= 4 ? 0 : TARRY_NONE;
+        const tarry_lag lag = {.stage = stage, .allele = i == 5};
+        ck_assert_int_eq(TARRY_APPEND(&builder->lags, lag), 0);
+    }
     for (uint32_t i = 0; code == 0 && i < sizeof rows / sizeof *rows; i++) {
         const tarry_species row = {.name = rows[i].name, .role = rows[i].role};
         ck_assert_int_eq(TARRY_APPEND(&builder->species, row), 0);
@@ -27,10 +34,6 @@ static reader *const readers[] = {tarry_read_parameters, make_names, tarry_read_
 
 static void refused(const char *text, int line, int column, const char *words) {
     reading_refused(text, NULL, 0, readers, 3, TARRY_INPUT, line, column, words);
-}
-
-static void not_yet(const char *text, int line, int column, const char *words) {
-    reading_refused(text, NULL, 0, readers, 3, TARRY_NOT_YET, line, column, words);
 }
 
 static void check_ramp(const tarry_ramp *ramp, uint32_t signal, uint32_t lag, double from,
@@ -51,12 +54,13 @@ START_TEST(signals) {
         "  plain: {of: vela.protein, brightness: 0.05}\n"
         "  sum: {sum: {vela.nascent: {ramp: {from: 0.1, to: 0.1}, brightness: 2},\n"
         "              vela.nuclear: {ramp: {from: 0, to: 1}}, vela.protein: -1},\n"
-        "        noise: {fixed: 4, share: 0.2}}\n",
+        "        noise: {fixed: 4, share: 0.2}}\n"
+        "  one: {of: vela.nascent, allele: 2, brightness: 7}\n",
         NULL, 0);
     reading_pass(&in, readers, 3);
     const tarry_signal *rows = in.builder.signals.items;
-    ck_assert_uint_eq(in.builder.signals.n, 3);
-    ck_assert_uint_eq(in.builder.ramps.n, 3);
+    ck_assert_uint_eq(in.builder.signals.n, 4);
+    ck_assert_uint_eq(in.builder.ramps.n, 6);
     ck_assert_uint_eq(in.builder.weights.n, 2);
     ck_assert_str_eq(rows[0].name, "spot");
     ck_assert(rows[0].background == 2 && rows[0].noise == 0.3);
@@ -66,8 +70,11 @@ START_TEST(signals) {
     ck_assert(rows[2].weights.from == 1 && rows[2].weights.to == 2 && rows[2].noise == 4);
     ck_assert(rows[0].share == 0 && rows[2].share == 0.2);
     check_ramp(&in.builder.ramps.items[0], 0, 4, 0.2, 0.4, 3);
-    check_ramp(&in.builder.ramps.items[1], 2, 4, 0.1, 0.1, 2);
-    check_ramp(&in.builder.ramps.items[2], 2, 6, 0, 1, 1);
+    check_ramp(&in.builder.ramps.items[1], 0, 5, 0.2, 0.4, 3);
+    check_ramp(&in.builder.ramps.items[2], 2, 4, 0.1, 0.1, 2);
+    check_ramp(&in.builder.ramps.items[3], 2, 5, 0.1, 0.1, 2);
+    check_ramp(&in.builder.ramps.items[4], 2, 6, 0, 1, 1);
+    check_ramp(&in.builder.ramps.items[5], 3, 5, 0, 0, 7);
     ck_assert(in.builder.weights.items[0].species == 2 &&
               in.builder.weights.items[0].weight == 0.05);
     ck_assert(in.builder.weights.items[1].weight == -1);
@@ -112,7 +119,9 @@ START_TEST(what_is_refused) {
     refused(S "{sum: {vela.protein: {ramp: {from: 0, to: 1}}}}\n", 2, 16, "is no stage");
     refused(S "{sum: {vela.protein: 1}, brightness: 2}\n", 2, 34, "'brightness' goes with 'of'");
     refused(S "{sum: {vela.protein: 1}, ramp: {from: 0, to: 1}}\n", 2, 34, "'ramp' goes with 'of'");
-    not_yet(S "{of: vela.nascent, allele: 1}\n", 2, 28, "'allele' cannot be used yet");
+    refused(S "{of: vela.nascent, allele: 0}\n", 2, 36, "from 1 to 1000");
+    refused(S "{of: vela.nascent, allele: 3}\n", 2, 14, "there is no allele 3 of");
+    refused(S "{of: vela.nuclear, allele: 1}\n", 2, 14, "in the first stage of a transcript only");
     refused(S "{of: vela.nascent, noise: {fixed: 1, share: -0.1}}\n", 2, 35,
             "'share' is the sd of the noise as a share");
     refused(S "{of: vela.nascent, noise: {share: 1 min}}\n", 2, 43,
