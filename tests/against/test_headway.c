@@ -72,7 +72,7 @@ static void check_drawn(const char *headway_text, double headway) {
     check_z("drawn dwells",
             (sample_mean(cells, "vela.nascent", 0) - 0.5 * dwell) / hypot(own, 0.5 * se));
     /* Without the rule 4 would be under way: the test tells the two apart. */
-    ck_assert_double_gt(0.5 * dwell, 4 + 20 * own);
+    ck_assert_double_gt(0.5 * dwell, 4 + 10 * own);
     sample_free(cells);
 }
 
