@@ -28,7 +28,8 @@ typedef struct tarry_results tarry_results;
                        "covariance:number correlation:number low:number high:number "              \
                        "per_mean_squared:number pms_low:number pms_high:number")                   \
     X(transit, "name:text delay:text window:text mean_pending:number drawn:number "                \
-               "mean_drawn:number sd_drawn:number lost:number")
+               "mean_drawn:number sd_drawn:number lost:number")                                    \
+    X(first, "name:text step:number time:number survival:number low:number high:number")
 
 typedef enum tarry_result_table {
 #define TARRY_RESULT_ENUM(name, columns) TARRY_TABLE_##name,

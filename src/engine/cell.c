@@ -100,6 +100,8 @@ static void mark(tarry_cell *cell, const tarry_packed_effect *effect) {
         const tarry_mark_rule rule = effect->marks[i];
         if (rule.kind == TARRY_MARK_COUNT)
             cell->counters[rule.track]++;
+        else if (rule.kind == TARRY_MARK_FIRST)
+            tarry_cell_note_first(cell, rule.track);
         else
             set_track(cell, rule.track, rule.kind == TARRY_MARK_OPEN);
     }
@@ -299,6 +301,8 @@ static void enter_segment(tarry_cell *cell) {
         else
             move_promoter(cell, setting);
     }
+    if (segment->moment == TARRY_MOMENT_STEP)
+        tarry_cell_begin_response(cell);
     cell->engine->sampler->reset(cell->sampler_state, cell->counts, cell->segment);
 }
 
@@ -364,6 +368,7 @@ static void begin_run_on(tarry_cell *cell) {
     const tarry_network *network = cell->network;
     for (uint32_t i = 0; i < network->n_tracks; i++)
         cell->runs_on[i] = false;
+    cell->firsts = NULL;
     for (size_t i = 0; i < cell->record->n_marks; i++) {
         const uint32_t track = cell->record->marks[i].track;
         if (network->tracks[track].tells && !cell->runs_on[track]) {

@@ -3,6 +3,7 @@
 
 /* The insides of an engine and of a cell's workspace, shared by the files of the engine only. */
 
+#include <math.h>
 #include <stdbool.h>
 #include <stdint.h>
 #include "engine/cell.h"
@@ -102,6 +103,8 @@ struct tarry_cell {
     bool has_begun;         /* the status at time 0 has been taken */
     double *frame_ramps;    /* [signal][frame], ramp sums */
     double *snapshot_ramps; /* [signal][snapshot] */
+    double *firsts;         /* [first] of the response under way, in the record; or NULL */
+    double response_start;  /* the time of its step */
     bool *runs_on;          /* [track] waits for its first opening after `until` */
     uint32_t n_running_on;
     int64_t *firings;     /* [reaction]; the record's, or the cell's own in a bare run */
@@ -125,6 +128,15 @@ void tarry_cell_note_loss(tarry_cell *cell, uint32_t lag);
 
 /* A lag that was due at `due` is cancelled now. */
 void tarry_cell_note_cancel(tarry_cell *cell, uint32_t lag, double due);
+
+/* A step has been carried out: first responses are told from now on. */
+void tarry_cell_begin_response(tarry_cell *cell);
+
+/* What a FIRST mark waits for happens now. */
+static inline void tarry_cell_note_first(tarry_cell *cell, uint32_t first) {
+    if (cell->firsts && isnan(cell->firsts[first]))
+        cell->firsts[first] = cell->now - cell->response_start;
+}
 
 /* A track opens or closes now. */
 void tarry_cell_note_mark(tarry_cell *cell, uint32_t track, bool opens);

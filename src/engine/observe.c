@@ -143,6 +143,7 @@ void tarry_cell_begin_record(tarry_cell *cell) {
     cell->next_frame = cell->next_snapshot = cell->next_bound = 0;
     cell->has_begun = false;
     cell->n_running_on = 0;
+    cell->firsts = NULL;
     if (!cell->record) {
         cell->watch = INFINITY;
         return;
@@ -231,6 +232,27 @@ void tarry_cell_note_lag(tarry_cell *cell, uint32_t lag, double length, double d
     const tarry_packed_lag *packed = &cell->engine->lags[lag];
     if (packed->n_ramps > 0)
         add_ramps(cell, packed, due, leaves);
+}
+
+/* Molecules that may still become what is waited for. */
+static double under_way(const tarry_cell *cell, const tarry_first *first) {
+    double n = 0;
+    for (uint32_t i = first->before.from; i < first->before.to; i++)
+        n += cell->counts[cell->network->products[i]];
+    return n;
+}
+
+void tarry_cell_begin_response(tarry_cell *cell) {
+    const tarry_network *network = cell->network;
+    const int32_t response = network->segments[cell->segment].response;
+    cell->firsts = NULL;
+    if (!cell->record || response == TARRY_NONE)
+        return;
+    const size_t at = (size_t)response * network->n_firsts;
+    cell->firsts = cell->record->firsts + at;
+    cell->response_start = network->responses[response].from;
+    for (uint32_t i = 0; i < network->n_firsts; i++)
+        cell->record->under_way[at + i] = under_way(cell, &network->firsts[i]);
 }
 
 void tarry_cell_note_loss(tarry_cell *cell, uint32_t lag) {

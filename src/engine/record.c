@@ -37,7 +37,7 @@ static uint32_t count_recorded(const tarry_network *network) {
 }
 
 typedef struct record_shape {
-    size_t frames, snapshots, counts, lags, bins;
+    size_t frames, snapshots, counts, lags, bins, firsts;
 } record_shape;
 
 static record_shape shape_of(const tarry_network *network) {
@@ -49,6 +49,7 @@ static record_shape shape_of(const tarry_network *network) {
         .counts = (size_t)(run->n_spans + 1) * network->n_tracks,
         .lags = n_lags * run->n_spans,
         .bins = n_lags <= MOST_LAGS_WITH_BINS ? n_lags * TARRY_LAG_BINS : 0,
+        .firsts = (size_t)network->n_responses * network->n_firsts,
     };
 }
 
@@ -63,10 +64,12 @@ int tarry_record_init(tarry_record *record, const tarry_network *network, tarry_
     record->completions = tarry_calloc(network->n_lags, sizeof *record->completions);
     record->skipped = tarry_calloc(network->n_lags, sizeof *record->skipped);
     record->lags = tarry_calloc(shape.lags, sizeof *record->lags);
+    record->firsts = tarry_calloc(shape.firsts, sizeof *record->firsts);
+    record->under_way = tarry_calloc(shape.firsts, sizeof *record->under_way);
     record->lag_bins = shape.bins ? tarry_calloc(shape.bins, sizeof *record->lag_bins) : NULL;
     if (record->frames && record->snapshots && record->status && record->counts &&
         record->firings && record->completions && record->skipped && record->lags &&
-        (record->lag_bins || !shape.bins))
+        record->firsts && record->under_way && (record->lag_bins || !shape.bins))
         return TARRY_OK;
     tarry_record_release(record);
     return tarry_fail_memory(error, "the record of a cell");
@@ -83,6 +86,8 @@ void tarry_record_release(tarry_record *record) {
     free(record->skipped);
     free(record->lags);
     free(record->lag_bins);
+    free(record->firsts);
+    free(record->under_way);
     *record = (tarry_record){.cell = -1};
 }
 
@@ -107,6 +112,9 @@ void tarry_record_reset(tarry_record *record, const tarry_network *network) {
     zero(record->skipped, network->n_lags, sizeof *record->skipped);
     zero(record->lags, shape.lags, sizeof *record->lags);
     zero(record->lag_bins, shape.bins, sizeof *record->lag_bins);
+    zero(record->under_way, shape.firsts, sizeof *record->under_way);
+    for (size_t i = 0; i < shape.firsts; i++)
+        record->firsts[i] = NAN;
 }
 
 size_t tarry_record_bytes(const tarry_network *network) {
@@ -114,5 +122,6 @@ size_t tarry_record_bytes(const tarry_network *network) {
     return shape.frames * sizeof(double) + shape.snapshots * sizeof(double) +
            network->n_tracks * sizeof(tarry_track_status) + shape.counts * sizeof(int64_t) +
            network->n_reactions * sizeof(int64_t) + 2 * sizeof(int64_t) * network->n_lags +
-           shape.lags * sizeof(tarry_lag_sums) + shape.bins * sizeof(int64_t);
+           shape.lags * sizeof(tarry_lag_sums) + shape.bins * sizeof(int64_t) +
+           2 * shape.firsts * sizeof(double);
 }

@@ -59,6 +59,10 @@ typedef struct tarry_record {
     tarry_lag_sums *lags; /* [lag][span] */
     int64_t *lag_bins;    /* [lag][TARRY_LAG_BINS], drawn in any span; NULL where not wanted */
 
+    double *firsts;    /* [response][first]: time from the step on, NaN where it did not come */
+    double *under_way; /* [response][first]: molecules at the step, right after it, that may still
+                          give rise to it */
+
     uint32_t n_recorded;
 } tarry_record;
 

@@ -255,6 +255,8 @@ void tarry_builder_release(tarry_builder *builder) {
     free(builder->demands.items);
     free(builder->amounts.items);
     free(builder->marks.items);
+    free(builder->responses.items);
+    free(builder->firsts.items);
     free(builder->schedules.items);
     free(builder->outcomes.items);
     free(builder->factors.items);

@@ -222,6 +222,8 @@ typedef struct tarry_builder {
 
     TARRY_LIST(tarry_segment) segments; /* start, parameters, settings, text; at least one */
     TARRY_LIST(tarry_setting) settings;
+    TARRY_LIST(tarry_response) responses;
+    TARRY_LIST(tarry_first) firsts;
     TARRY_LIST(tarry_channel) channels;
 } tarry_builder;
 
@@ -329,6 +331,9 @@ int tarry_read_bursts(tarry_builder *builder, tarry_error *error);
 int tarry_read_signals(tarry_builder *builder, tarry_error *error);
 int tarry_read_protocol(tarry_builder *builder, tarry_error *error);
 int tarry_read_run(tarry_builder *builder, tarry_error *error);
+/* Steps that begin a response, and marks on the effects that may be the first after one; by
+ * tarry_finish. */
+int tarry_mark_firsts(tarry_builder *builder, tarry_error *error);
 int tarry_finish(tarry_builder *builder, tarry_error *error);
 int tarry_settle(tarry_builder *builder, tarry_error *error);
 

@@ -338,6 +338,8 @@ static int keep_lists(tarry_builder *builder, tarry_error *error) {
     network->ramps = KEEP(builder->ramps);
     network->segments = KEEP(builder->segments);
     network->settings = KEEP(builder->settings);
+    network->responses = KEEP(builder->responses);
+    network->firsts = KEEP(builder->firsts);
     network->channels = KEEP(builder->channels);
     return failed ? tarry_fail_memory(error, "the network") : 0;
 }
@@ -360,6 +362,8 @@ static void count_lists(tarry_builder *builder) {
     network->n_delays = (uint32_t)builder->delays.n;
     network->n_segments = (uint32_t)builder->segments.n;
     network->n_channels = (uint32_t)builder->channels.n;
+    network->n_responses = (uint32_t)builder->responses.n;
+    network->n_firsts = (uint32_t)builder->firsts.n;
 }
 
 int tarry_finish(tarry_builder *builder, tarry_error *error) {
@@ -372,6 +376,8 @@ int tarry_finish(tarry_builder *builder, tarry_error *error) {
         code = find_affected(builder, error);
     if (code == 0)
         code = place_ramps(builder, error);
+    if (code == 0)
+        code = tarry_mark_firsts(builder, error);
     if (code == 0)
         code = keep_names(builder, error);
     if (code == 0)

@@ -73,17 +73,19 @@ typedef struct tarry_amount {
 typedef enum tarry_mark_kind {
     TARRY_MARK_OPEN,
     TARRY_MARK_CLOSE,
-    TARRY_MARK_COUNT
+    TARRY_MARK_COUNT,
+    TARRY_MARK_FIRST
 } tarry_mark_kind;
 
 typedef struct tarry_mark_rule {
-    uint32_t track;
-    tarry_mark_kind kind; /* COUNT adds 1 to the track's hidden counter */
+    uint32_t track;       /* for FIRST an index into network->firsts */
+    tarry_mark_kind kind; /* COUNT adds 1 to the track's hidden counter; FIRST notes the time if it
+                             is the first since the step */
 } tarry_mark_rule;
 
 /* Everything that happens at one moment: at an initiation or at a completion. Order: demands are
  * looked at, changes made, random amounts drawn (in order), marks made (COUNT before OPEN and
- * CLOSE), lags scheduled (in order, each drawing its length). */
+ * CLOSE, FIRST last), lags scheduled (in order, each drawing its length). */
 typedef struct tarry_effect {
     tarry_range demands;   /* network->demands; already contained in `changes` as losses */
     tarry_range changes;   /* network->changes: net, each species once, ascending */
@@ -218,6 +220,7 @@ typedef struct tarry_signal {
     double background;
     double noise; /* sd of the read-out noise in one frame: its fixed part, */
     double share; /* and the part that goes with the noiseless signal, as a share of that */
+    double responds_above; /* the level whose first crossing after a step is told, or NaN */
     tarry_place place;
 } tarry_signal;
 
@@ -243,6 +246,7 @@ typedef enum tarry_moment {
 typedef struct tarry_segment {
     double start;
     tarry_moment moment;
+    int32_t response;                 /* that it begins, or TARRY_NONE */
     const double *parameters;         /* n_parameters */
     const double *rates;              /* n_rates, per unit of time */
     const double *means;              /* n_means, of random amounts */
@@ -251,6 +255,22 @@ typedef struct tarry_segment {
     tarry_range settings;             /* network->settings, carried out in order at `start` */
     const char *text;                 /* "k_open = 0.4, load = 2", for captions and `check` */
 } tarry_segment;
+
+/* ---- first responses: how long after a step something first happens
+ * ----------------------- */
+
+/* The stretch after a step, to the next one or to `until`. Parts and ends of ramps are no steps. */
+typedef struct tarry_response {
+    double from, to; /* from < to */
+} tarry_response;
+
+/* What is waited for: an initiation, or a finished transcript or protein. */
+typedef struct tarry_first {
+    const char *name; /* "vela initiation", "vela.transcript" */
+    uint32_t gene;
+    int32_t species;    /* or TARRY_NONE: initiations */
+    tarry_range before; /* network->products: molecules that may still give rise to it */
+} tarry_first;
 
 /* ---- what is recorded
  * ---------------------------------------------------------------------------- */
@@ -339,6 +359,11 @@ typedef struct tarry_network {
     uint32_t n_segments;
     const tarry_segment *segments;
     const tarry_setting *settings;
+
+    uint32_t n_responses; /* both are 0 without a protocol */
+    const tarry_response *responses;
+    uint32_t n_firsts;
+    const tarry_first *firsts;
 
     uint32_t n_channels; /* species in order (without hidden ones), then signals */
     const tarry_channel *channels;

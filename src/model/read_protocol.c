@@ -273,8 +273,11 @@ static int add_segment(protocol_reader *in, double start, tarry_error *error) {
     const size_t n = builder->parameters.n;
     const double *last = in->now != NULL ? in->now : builder->values;
     const uint32_t settings = (uint32_t)builder->settings.n;
-    tarry_segment segment = {
-        .start = start, .moment = TARRY_MOMENT_STEP, .settings = {settings, settings}, .text = ""};
+    tarry_segment segment = {.start = start,
+                             .moment = TARRY_MOMENT_STEP,
+                             .response = TARRY_NONE,
+                             .settings = {settings, settings},
+                             .text = ""};
     in->now = tarry_arena_calloc(builder->arena, n, sizeof *in->now);
     if (in->now == NULL)
         return tarry_fail_memory(error, "the protocol");

@@ -7,8 +7,10 @@
 #include "base/number.h"
 #include "model/expect.h"
 
-static const char *const SIGNAL_KEYS[] = {"of",         "sum",   "ramp",  "brightness",
-                                          "background", "noise", "allele"};
+#include <math.h>
+
+static const char *const SIGNAL_KEYS[] = {"of",         "sum",   "ramp",   "brightness",
+                                          "background", "noise", "allele", "responds_above"};
 
 typedef struct signal_reader {
     tarry_builder *builder;
@@ -225,14 +227,14 @@ static int read_allele(signal_reader *in, const tarry_node *signal, tarry_error 
 static int read_signal(signal_reader *in, const tarry_entry *entry, tarry_error *error) {
     tarry_builder *builder = in->builder;
     const tarry_node *node = entry->node;
-    tarry_signal signal = {.name = entry->key, .place = entry->place};
+    tarry_signal signal = {.name = entry->key, .responds_above = NAN, .place = entry->place};
     signal.weights.from = (uint32_t)builder->weights.n;
     int code = tarry_builder_check_name(entry->key, entry->place, "a signal", error);
     if (code == 0)
         code = tarry_builder_enter(builder, TARRY_SYMBOL_SIGNAL, entry->key, in->index,
                                    entry->place, error);
     if (code == 0)
-        code = tarry_expect_keys(node, entry->key, SIGNAL_KEYS, 7, error);
+        code = tarry_expect_keys(node, entry->key, SIGNAL_KEYS, 8, error);
     if (code == 0)
         code = read_allele(in, node, error);
     if (code != 0)
@@ -249,6 +251,9 @@ static int read_signal(signal_reader *in, const tarry_entry *entry, tarry_error 
                            error);
     if (code == 0)
         code = read_noise(in, node, &signal, error);
+    if (code == 0)
+        code = read_number(in, node, "responds_above", "the level that a signal responds above",
+                           &signal.responds_above, error);
     signal.weights.to = (uint32_t)builder->weights.n;
     if (code == 0 && TARRY_APPEND(&builder->signals, signal) != 0)
         code = tarry_fail_memory(error, "a signal");

@@ -6,6 +6,7 @@
 #include "model/model.h"
 #include "report/groups.h"
 #include "report/json.h"
+#include "report/responses.h"
 #include "report/snapshots.h"
 #include "tarry/tarry.h"
 
@@ -231,6 +232,56 @@ static int write_species(json_writer *writer, const tarry_model *model,
     return status;
 }
 
+static json_t *describe_figure(const tarry_response_figure *figure) {
+    bool failed = false;
+    json_t *object = json_object();
+    tarry_json_put(object, "value", tarry_json_number(figure->value), &failed);
+    tarry_json_put(object, "low", tarry_json_number(figure->low), &failed);
+    tarry_json_put(object, "high", tarry_json_number(figure->high), &failed);
+    if (failed) {
+        json_decref(object);
+        return NULL;
+    }
+    return object;
+}
+
+static json_t *describe_responses(const tarry_response_item *items, size_t n) {
+    bool failed = false;
+    json_t *list = json_array();
+    for (size_t i = 0; i < n; i++) {
+        json_t *object = json_object();
+        tarry_json_put(object, "step", tarry_json_number(items[i].step), &failed);
+        tarry_json_put(object, "length", tarry_json_number(items[i].length), &failed);
+        tarry_json_put(object, "responders", describe_figure(&items[i].responders), &failed);
+        tarry_json_put(object, "median", describe_figure(&items[i].median), &failed);
+        tarry_json_append(list, object, &failed);
+    }
+    if (failed) {
+        json_decref(list);
+        return NULL;
+    }
+    return list;
+}
+
+/* {"vela.transcript": [{"step": 60, "responders": ..., "median": ...}, ...], ...} */
+static int write_responses(json_writer *writer, const tarry_results *results, tarry_error *error) {
+    tarry_responses responses = {0};
+    const int status = tarry_responses_init(&responses,
+                                            tarry_results_table(results, TARRY_TABLE_first), error);
+    if (!status && responses.n > 0) {
+        key(writer, "first");
+        json_writer inner = begin(writer->text, writer->depth + 1);
+        for (size_t i = 0, j; i < responses.n; i = j) {
+            for (j = i; j < responses.n && responses.items[j].name == responses.items[i].name; j++)
+                ;
+            member(&inner, responses.items[i].name, describe_responses(responses.items + i, j - i));
+        }
+        end(&inner);
+    }
+    tarry_responses_release(&responses);
+    return status;
+}
+
 static json_t *describe_files(const tarry_listed_file *files, size_t n_files) {
     bool failed = false;
     json_t *list = json_array();
@@ -281,6 +332,8 @@ int tarry_summary_write(const tarry_model *model, const tarry_results *results,
                                tarry_results_table(results, TARRY_TABLE_signals), error);
     if (!status)
         status = write_species(&writer, model, results, error);
+    if (!status)
+        status = write_responses(&writer, results, error);
     if (status)
         return status;
     member(&writer, "files", describe_files(files, n_files));

@@ -8,10 +8,12 @@
 #include "report/figures_table.h"
 #include "report/lines.h"
 #include "report/notes_list.h"
+#include "report/responses.h"
 #include "report/rounding.h"
 #include "report/snapshots.h"
 #include "report/spread.h"
 
+#include <math.h>
 #include <stdio.h>
 #include <string.h>
 
@@ -176,6 +178,62 @@ static int add_counts(table_page *page, tarry_error *error) {
     return status;
 }
 
+/* ---- first responses ------------------------------------------------------------------------- */
+
+/* A figure and its interval; a side without a bound has a dash. */
+static void add_response(tarry_text *text, const tarry_response_figure *figure) {
+    enum { VALUE = 8, INTERVAL = 17 };
+    char interval[2 * TARRY_ROUNDED + 8] = "";
+    tarry_rounded rounded;
+    const bool open = isnan(figure->high) && !isnan(figure->low);
+    tarry_round(figure->value, figure->low, open ? NAN : figure->high, 4, &rounded);
+    if (open)
+        tarry_round_plain(figure->low, rounded.low);
+    if (rounded.low[0])
+        snprintf(interval, sizeof interval, " %s to %s", rounded.low, open ? "-" : rounded.high);
+    tarry_lines_right(text, rounded.value, VALUE);
+    tarry_lines_left(text, interval, INTERVAL);
+}
+
+static void add_response_line(table_page *page, const tarry_response_item *item) {
+    enum { NAME_WIDTH = 24 };
+    char step[TARRY_ROUNDED];
+    tarry_text line = {0};
+    tarry_round_plain(item->step, step);
+    tarry_text_add(page->text, "  ", 2);
+    add_name(page->text, item->name, NAME_WIDTH - 2);
+    tarry_lines_right(page->text, step, 6);
+    add_response(&line, &item->responders);
+    add_response(&line, &item->median);
+    while (line.size && line.data[line.size - 1] == ' ')
+        line.data[--line.size] = '\0';
+    page->text->failed = page->text->failed || line.failed;
+    if (!line.failed)
+        tarry_text_add(page->text, line.data, line.size);
+    tarry_text_add(page->text, "\n", 1);
+    tarry_text_release(&line);
+}
+
+static int add_responses(table_page *page, tarry_error *error) {
+    char words[64];
+    tarry_responses responses = {0};
+    const int status = tarry_responses_init(
+        &responses, tarry_results_table(page->results, TARRY_TABLE_first), error);
+    snprintf(words, sizeof words, "First after a step [%s]", page->network->time_unit);
+    if (!status && responses.n > 0) {
+        tarry_text_add(page->text, "\n", 1);
+        tarry_lines_left(page->text, words, 24);
+        tarry_text_printf(page->text, "%6s%8s%-17s%8s%s\n", "step", "share", " 95 % interval",
+                          "median", " 95 % interval");
+    }
+    for (size_t i = 0; !status && i < responses.n && i < LINES_SHOWN; i++)
+        add_response_line(page, &responses.items[i]);
+    if (!status && responses.n > LINES_SHOWN)
+        tarry_text_add_string(page->text, "  ... and more in first.csv\n");
+    tarry_responses_release(&responses);
+    return status;
+}
+
 /* ---- lags in transit ------------------------------------------------------------------------ */
 
 static void add_transit(table_page *page) {
@@ -223,6 +281,8 @@ int tarry_write_summary_table(const tarry_model *model, const tarry_results *res
         status = add_figures(&page, TARRY_TABLE_signals, error);
     if (!status)
         status = add_counts(&page, error);
+    if (!status)
+        status = add_responses(&page, error);
     if (!status) {
         add_transit(&page);
         add_notes(&page);

@@ -238,6 +238,41 @@ static void write_protocol(tarry_page *page) {
     tarry_page_list(page, shown, all, "steps");
 }
 
+/* The level of a signal that is seen to respond, or NaN. */
+static double level_of(const tarry_network *network, const tarry_channel *channel) {
+    return channel->recorded && channel->signal != TARRY_NONE
+               ? network->signals[channel->signal].responds_above
+               : NAN;
+}
+
+static void write_firsts(tarry_page *page) {
+    const tarry_network *network = page->network;
+    size_t all = network->n_firsts, shown = 0;
+    for (uint32_t i = 0; i < network->n_channels; i++)
+        all += isnan(level_of(network, &network->channels[i])) ? 0 : 1;
+    if (network->n_responses == 0 || all == 0)
+        return;
+    tarry_page_head(page, "First after a step", (long long)all);
+    for (uint32_t i = 0; i < network->n_firsts && shown < TARRY_CHECK_MOST; i++, shown++) {
+        tarry_sheet_row(&page->sheet);
+        tarry_sheet_cell(&page->sheet, 0, "%s", network->firsts[i].name);
+        tarry_sheet_cell(&page->sheet, 1, "%s",
+                         network->firsts[i].species == TARRY_NONE ? "since the step"
+                                                                  : "finished, whenever begun");
+    }
+    for (uint32_t i = 0; i < network->n_channels && shown < TARRY_CHECK_MOST; i++) {
+        const double level = level_of(network, &network->channels[i]);
+        char text[TARRY_NUMBER_SIZE];
+        if (isnan(level))
+            continue;
+        shown++;
+        tarry_sheet_row(&page->sheet);
+        tarry_sheet_cell(&page->sheet, 0, "%s", network->channels[i].name);
+        tarry_sheet_cell(&page->sheet, 1, "a frame above %s", short_number(level, text));
+    }
+    tarry_page_list(page, shown, all, "names");
+}
+
 static void write_windows(tarry_page *page) {
     const tarry_run_plan *run = &page->network->run;
     size_t shown = 0;
@@ -334,9 +369,9 @@ static void write_files(tarry_page *page) {
     put_rows(page, "transit.csv", (double)network->n_lags * run->n_windows, NULL);
     put_rows(page, "cells.csv", run->n_frames, "for each cell kept (--keep)");
     tarry_page_list(page, 4, 4, "files");
-    tarry_text_add_string(page->text,
-                          "  distribution.csv, burst_sizes.csv and dwells.csv hold a row "
-                          "for each bin or step that is found.\n");
+    tarry_text_add_string(
+        page->text, "  distribution.csv, burst_sizes.csv, dwells.csv and first.csv hold a row "
+                    "for\n  each bin or step that is found.\n");
 }
 
 static int write_memory(tarry_page *page, tarry_notes *notes, tarry_error *error) {
@@ -387,6 +422,7 @@ static int write_page(tarry_page *page, tarry_notes *notes, tarry_error *error) 
     if (code)
         return code;
     write_protocol(page);
+    write_firsts(page);
     write_run(page);
     write_files(page);
     code = write_memory(page, notes, error);

@@ -15,6 +15,7 @@
     X(pooled)                                                                                      \
     X(autocorrelation)                                                                             \
     X(transit)                                                                                     \
+    X(first)                                                                                       \
     X(drift)
 
 /* Rows that a window has in bursts.csv and signals.csv: of a gene whose bursts can be told (of

@@ -1,6 +1,7 @@
 #!/bin/sh
 # shellcheck disable=SC2317 # cases are functions, called by name
-# Repeats of the protocol give the files of their steps written out, and a ramp those of its steps.
+# Repeats of the protocol give the files of their steps written out, and a ramp those of its steps but
+# for first responses: a ramp is one step to respond to.
 # shellcheck source=tests/cli/helpers.sh
 . "${0%/*}/helpers.sh"
 
@@ -24,10 +25,11 @@ HEAD
     cat protocol >>"$1.yaml"
 }
 
-# same ONE OTHER: both runs write the same tables
+# same ONE OTHER [FILE]: both runs write the same tables, but for one of this name
 same() {
     run 0 run "$1.yaml" --keep 5 --out "$1.out" && run 0 run "$2.yaml" --keep 5 --out "$2.out" || return 1
     for file in "$1.out"/*.csv; do
+        [ "${file##*/}" = "${3:-}" ] && continue
         cmp "$file" "$2.out/${file##*/}" >out 2>&1 || return 1
     done
 }
@@ -54,5 +56,15 @@ model steps <<'STEPS'
 - {at: 30, set: {k_open: 0.04 + 0.75 * (0.2 - 0.04)}}
 - {at: 40, set: {k_open: 0.2}}
 STEPS
-ok "a ramp, and the same steps written out" same ramp steps
+ok "a ramp, and the same steps written out" same ramp steps first.csv
+
+# steps_of RUN: the steps that first.csv tells of, in one line
+steps_of() {
+    tail -n +2 "$1.out/first.csv" | cut -d , -f 2 | sort -un | tr '\n' ' '
+}
+responses() {
+    [ "$(steps_of ramp)" = "20 " ] && [ "$(steps_of steps)" = "20 30 40 " ] &&
+        [ "$(steps_of repeated)" = "10 15 30 35 50 55 " ]
+}
+ok "a ramp is one step to respond to, a repeat is as many as it has" responses
 finish

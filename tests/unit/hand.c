@@ -3,6 +3,7 @@
 #include "base/memory.h"
 
 #include <check.h>
+#include <math.h>
 #include <stdlib.h>
 #include <string.h>
 
@@ -24,6 +25,8 @@ void hand_init(hand *h, double settle, double until, uint32_t n_frames) {
     network->signals = h->signals;
     network->channels = h->channels;
     network->segments = h->segments;
+    network->responses = h->responses;
+    network->firsts = h->firsts;
     h->segments[0].start = -settle;
     network->n_segments = 1;
     tarry_run_plan *run = &network->run;
@@ -60,6 +63,14 @@ void hand_windows(hand *h, const double *bounds, uint32_t n) {
 
 void hand_step(hand *h, double at) {
     h->segments[h->network.n_segments++].start = at;
+}
+
+void hand_response(hand *h, double from, double to) {
+    h->responses[h->network.n_responses++] = (tarry_response){from, to};
+}
+
+void hand_first(hand *h, const char *name) {
+    h->firsts[h->network.n_firsts++] = (tarry_first){.name = name, .species = TARRY_NONE};
 }
 
 static uint32_t add_gene(hand *h, const char *name, uint32_t copies, bool tells, bool promoters) {
@@ -101,7 +112,8 @@ void hand_species(hand *h, const char *name, int32_t gene) {
 void hand_signal(hand *h, const char *name, double background, double noise) {
     tarry_network *network = &h->network;
     const int32_t signal = (int32_t)network->n_signals++;
-    h->signals[signal] = (tarry_signal){.name = name, .background = background, .noise = noise};
+    h->signals[signal] = (tarry_signal){
+        .name = name, .background = background, .noise = noise, .responds_above = NAN};
     h->channels[network->n_channels++] = (tarry_channel){name, TARRY_NONE, signal, true, true};
 }
 

@@ -22,6 +22,8 @@ typedef struct hand {
     tarry_window windows[HAND_MOST];
     double bounds[HAND_MOST];
     tarry_segment segments[HAND_MOST];
+    tarry_response responses[HAND_MOST];
+    tarry_first firsts[HAND_MOST];
     double snapshots[1];
 } hand;
 
@@ -35,6 +37,10 @@ void hand_windows(hand *h, const double *bounds, uint32_t n);
 
 /* A protocol step. */
 void hand_step(hand *h, double at);
+
+/* The stretch after a step, and what is waited for (of gene 0). */
+void hand_response(hand *h, double from, double to);
+void hand_first(hand *h, const char *name);
 
 /* Genes first, then named bursts; both return their index. */
 uint32_t hand_gene(hand *h, const char *name, uint32_t copies, bool tells);

@@ -192,6 +192,39 @@ static void find_who_runs_on(plain *p) {
     }
 }
 
+/* ---- first responses ---- */
+
+/* The response whose stretch is on, by its step; none in the run-on. */
+static int32_t response_of(const plain *p) {
+    int32_t response = TARRY_NONE;
+    for (uint32_t i = 1; i < p->n_segments_past; i++)
+        if (p->network->segments[i].moment == TARRY_MOMENT_STEP)
+            response = p->network->segments[i].response;
+    return p->running_on ? TARRY_NONE : response;
+}
+
+static void note_first(plain *p, uint32_t first) {
+    const int32_t response = response_of(p);
+    if (response < 0)
+        return;
+    double *time = &p->record->firsts[(uint32_t)response * p->network->n_firsts + first];
+    if (isnan(*time))
+        *time = p->now - p->network->responses[response].from;
+}
+
+static void note_under_way(plain *p) {
+    const tarry_network *network = p->network;
+    const int32_t response = response_of(p);
+    if (p->segment->moment != TARRY_MOMENT_STEP || response < 0)
+        return;
+    for (uint32_t i = 0; i < network->n_firsts; i++) {
+        const tarry_range before = network->firsts[i].before;
+        double *n = &p->record->under_way[(uint32_t)response * network->n_firsts + i];
+        for (uint32_t j = before.from; j < before.to; j++)
+            *n += p->counts[network->products[j]];
+    }
+}
+
 /* ---- lags ---- */
 
 /* Add the overlap of [from, to) with every span, `sign` times. */
@@ -309,6 +342,8 @@ static int carry_out(plain *p, const tarry_effect *effect, bool *short_of, tarry
         const tarry_mark_rule *rule = &network->marks[i];
         if (rule->kind == TARRY_MARK_COUNT)
             p->counters[rule->track]++;
+        else if (rule->kind == TARRY_MARK_FIRST)
+            note_first(p, rule->track);
         else if (mark(p, rule->track, rule->kind == TARRY_MARK_OPEN))
             return tarry_fail_memory(error, "marks");
     }
@@ -390,6 +425,7 @@ static int start_segment(plain *p, tarry_error *error) {
         if (code)
             return code;
     }
+    note_under_way(p);
     return 0;
 }
 

@@ -53,6 +53,8 @@ static int records_differ(comparison *c) {
            DIFFERS(counts, (size_t)(run->n_spans + 1) * network->n_tracks) ||
            DIFFERS(lags, (size_t)network->n_lags * run->n_spans) || DIFFERS(lag_bins, n_bins) ||
            differs(c, "ignored", &a->ignored, &b->ignored, 1, sizeof a->ignored) ||
+           DIFFERS(firsts, (size_t)network->n_responses * network->n_firsts) ||
+           DIFFERS(under_way, (size_t)network->n_responses * network->n_firsts) ||
            DIFFERS(snapshots, (size_t)network->n_channels * run->n_snapshots) ||
            DIFFERS(frames, (size_t)a->n_recorded * run->n_frames);
 #undef DIFFERS

@@ -2,6 +2,7 @@
 #include "reading.h"
 #include "support.h"
 
+#include <math.h>
 #include <string.h>
 
 static int make_names(tarry_builder *builder, tarry_error *error) {
@@ -51,7 +52,7 @@ START_TEST(signals) {
         "signals:\n"
         "  spot: {of: vela.nascent, ramp: {from: label / length, to: 0.4}, brightness: 3,\n"
         "         background: 2, noise: 0.3}\n"
-        "  plain: {of: vela.protein, brightness: 0.05}\n"
+        "  plain: {of: vela.protein, brightness: 0.05, responds_above: 2 * 3}\n"
         "  sum: {sum: {vela.nascent: {ramp: {from: 0.1, to: 0.1}, brightness: 2},\n"
         "              vela.nuclear: {ramp: {from: 0, to: 1}}, vela.protein: -1},\n"
         "        noise: {fixed: 4, share: 0.2}}\n"
@@ -61,6 +62,7 @@ START_TEST(signals) {
     const tarry_signal *rows = in.builder.signals.items;
     ck_assert_uint_eq(in.builder.signals.n, 4);
     ck_assert_uint_eq(in.builder.ramps.n, 6);
+    ck_assert(isnan(rows[0].responds_above) && rows[1].responds_above == 6);
     ck_assert_uint_eq(in.builder.weights.n, 2);
     ck_assert_str_eq(rows[0].name, "spot");
     ck_assert(rows[0].background == 2 && rows[0].noise == 0.3);
@@ -111,6 +113,9 @@ START_TEST(what_is_refused) {
     refused(S "{of: vela.nascent, noise: -1}\n", 2, 35, "the sd of the read-out noise");
     refused(S "{of: vela.nascent, noise: {fix: 1}}\n", 2, 36, "'noise' has no key 'fix'");
     refused(S "{of: vela.nascent, background: 1/0}\n", 2, 40, "no finite number");
+    refused(S "{of: vela.nascent, responds_above: 2 min}\n", 2, 44,
+            "is a time where a pure number");
+    refused(S "{of: vela.nascent, responds_above: 1/0}\n", 2, 44, "no finite number");
     refused(S "{sum: {}}\n", 2, 15, "'sum' is empty");
     refused(S "{sum: 3}\n", 2, 15, "'sum' must be a map");
     refused(S "{sum: {vela.nasent: 1}}\n", 2, 16, "did you mean 'vela.nascent'?");

@@ -79,6 +79,24 @@ static void add_mean(tarry_results *results, const char *name, double time, doub
                      0);
 }
 
+static void add_first(tarry_results *results, double step, double time, double survival, double low,
+                      double high) {
+    ck_assert_int_eq(tarry_table_add(results->tables[TARRY_TABLE_first], NULL, "vela initiation",
+                                     step, time, survival, low, high),
+                     0);
+}
+
+/* Two steps with 16 after each. After the first three quarters respond, half of them all but at 4,
+ * in the bin from 3.9375; after the second none. */
+static void add_firsts(tarry_results *results) {
+    add_first(results, 60, 0, 1, 1, 1);
+    add_first(results, 60, 2, 0.75, 0.6, 0.85);
+    add_first(results, 60, 4, 0.25, 0.1, 0.4);
+    add_first(results, 60, 16, 0.25, 0.1, 0.4);
+    add_first(results, 76, 0, 1, 1, 1);
+    add_first(results, 76, 16, 1, 0.98, 1);
+}
+
 static tarry_results *make_results(void) {
     tarry_results *results = NULL;
     ck_assert_int_eq(tarry_results_new(&results, NULL), 0);
@@ -91,6 +109,7 @@ static tarry_results *make_results(void) {
     add_mean(results, "clasp", 0, 14);
     add_mean(results, "clasp", 300, 11);
     add_mean(results, "clasp", 600, 9.75);
+    add_firsts(results);
     return results;
 }
 
@@ -166,6 +185,13 @@ static double figure(const json_t *summary, const char *quantity, const char *fi
     return json_is_null(value) ? NAN : json_number_value(value);
 }
 
+static double response(const json_t *list, size_t i, const char *figure_name, const char *end) {
+    const json_t *of = json_object_get(json_array_get(list, i), figure_name);
+    const json_t *number = json_object_get(of, end);
+    ck_assert_ptr_nonnull(number);
+    return json_is_null(number) ? NAN : json_number_value(number);
+}
+
 START_TEST(test_summary) {
     const char *folder = test_path("out");
     tarry_results *results = make_results();
@@ -208,6 +234,16 @@ START_TEST(test_summary) {
     const json_t *clasp = json_object_get(json_object_get(summary, "species"), "clasp");
     ck_assert_uint_eq(json_array_size(clasp), 2); /* at 0 and 600, not at the frame of 300 */
     ck_assert(json_number_value(json_object_get(json_array_get(clasp, 1), "mean")) == 9.75);
+    const json_t *first = json_object_get(json_object_get(summary, "first"), "vela initiation");
+    ck_assert_uint_eq(json_array_size(first), 2);
+    ck_assert(response(first, 0, "responders", "value") == 0.75);
+    ck_assert(response(first, 0, "responders", "low") == 0.6);
+    ck_assert(response(first, 0, "responders", "high") == 0.9);
+    ck_assert_double_eq_tol(response(first, 0, "median", "value"), 3.96875, 1e-12);
+    ck_assert_double_eq_tol(response(first, 0, "median", "low"), 3.95, 1e-12);
+    ck_assert_double_eq_tol(response(first, 0, "median", "high"), 3.9375 + 0.0625 * 7 / 9, 1e-12);
+    ck_assert(response(first, 1, "responders", "value") == 0);
+    ck_assert(isnan(response(first, 1, "median", "value")));
     json_decref(summary);
 
     size_t size;
@@ -236,7 +272,7 @@ START_TEST(test_digests) {
     json_t *summary = read_json(folder, "summary.json");
     const json_t *files = json_object_get(summary, "files");
     char digest[65];
-    ck_assert_uint_eq(json_array_size(files), 3); /* means, bursts, run.json */
+    ck_assert_uint_eq(json_array_size(files), 4); /* means, bursts, first, run.json */
     for (size_t i = 0; i < json_array_size(files); i++) {
         const json_t *file = json_array_get(files, i);
         const char *name = json_string_value(json_object_get(file, "name"));
@@ -561,6 +597,9 @@ START_TEST(test_table) {
     ck_assert_ptr_nonnull(strstr(table, "\n- A note that"));
     ck_assert_ptr_nonnull(strstr(table, "  clasp "));
     ck_assert_ptr_null(strstr(table, "vela.open"));
+    ck_assert_ptr_nonnull(strstr(table, "vela initiation           60    0.75 0.60 to 0.90"));
+    ck_assert_ptr_nonnull(strstr(table, "   3.969 3.950 to 3.986\n"));
+    ck_assert_ptr_nonnull(strstr(table, "vela initiation           76"));
     free(table);
     tarry_results_free(results);
 }
