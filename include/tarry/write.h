@@ -8,6 +8,33 @@
 #include "tarry/model.h"
 #include "tarry/results.h"
 
+/* X(NAME, word) */
+#define TARRY_FIGURE_FORMATS(X)                                                                    \
+    X(SVG, "svg")                                                                                  \
+    X(PDF, "pdf")                                                                                  \
+    X(PNG, "png")                                                                                  \
+    X(NONE, "none")
+
+typedef enum tarry_figure_format {
+#define TARRY_FIGURE_ENUM(name, word) TARRY_FIGURE_##name,
+    TARRY_FIGURE_FORMATS(TARRY_FIGURE_ENUM)
+#undef TARRY_FIGURE_ENUM
+} tarry_figure_format;
+
+/* Which figures are drawn, and how. Where gnuplot cannot be had or fails, `warn` is told once and
+ * the rest of the run's files are written all the same. */
+typedef struct tarry_figure_options {
+    tarry_figure_format format;
+    const char *const *genes; /* genes and named bursts to be shown; none: the first few */
+    size_t n_genes;
+    const char *gnuplot; /* the program; NULL or "": `gnuplot`, by PATH */
+    double seconds;      /* most that drawing may take; 0: 60 */
+    /* Drawing is given up once it is not 0 (NULL: never; not looked at where it is set before). */
+    const volatile int *stop;
+    void (*warn)(void *context, const char *sentence); /* may be NULL */
+    void *warn_context;
+} tarry_figure_options;
+
 /* What summary.json and run.json say about how the results came about. */
 typedef struct tarry_provenance {
     const char *sampler;
@@ -16,7 +43,8 @@ typedef struct tarry_provenance {
     long long keep;
     double seconds;
     int threads;
-    bool partial; /* interrupted */
+    bool partial;                        /* interrupted */
+    const tarry_figure_options *figures; /* NULL: none are drawn */
 } tarry_provenance;
 
 /* Refuse a folder that exists and is not empty (TARRY_INPUT), unless `overwrite`; to be asked
