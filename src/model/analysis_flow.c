@@ -147,7 +147,7 @@ bool tarry_flow_linear(const tarry_network *network, const tarry_reaction *react
     return true;
 }
 
-static int32_t change_of(const tarry_network *network, uint32_t effect, uint32_t species) {
+int32_t tarry_flow_change(const tarry_network *network, uint32_t effect, uint32_t species) {
     const tarry_range changes = network->effects[effect].changes;
     for (uint32_t i = changes.from; i < changes.to; i++)
         if (network->changes[i].species == species)
@@ -159,8 +159,7 @@ static bool draws_amounts(const tarry_network *network, uint32_t effect) {
     return network->effects[effect].amounts.from < network->effects[effect].amounts.to;
 }
 
-/* An initiation on one of the gene's alleles. */
-static bool initiates(const tarry_network *network, uint32_t effect, uint32_t gene) {
+bool tarry_flow_initiates(const tarry_network *network, uint32_t effect, uint32_t gene) {
     const tarry_range marks = network->effects[effect].marks;
     const tarry_range tracks = network->genes[gene].tracks;
     for (uint32_t i = marks.from; i < marks.to; i++) {
@@ -171,15 +170,14 @@ static bool initiates(const tarry_network *network, uint32_t effect, uint32_t ge
     return false;
 }
 
-/* The effect does nothing but take one molecule of the species away. */
-static bool only_removes(const tarry_network *network, uint32_t effect, uint32_t species) {
+bool tarry_flow_only_removes(const tarry_network *network, uint32_t effect, uint32_t species) {
     const tarry_effect *e = &network->effects[effect];
-    return e->changes.to - e->changes.from == 1 && change_of(network, effect, species) == -1 &&
-           !draws_amounts(network, effect) && e->schedules.from == e->schedules.to;
+    return e->changes.to - e->changes.from == 1 &&
+           tarry_flow_change(network, effect, species) == -1 && !draws_amounts(network, effect) &&
+           e->schedules.from == e->schedules.to;
 }
 
-/* The lag scheduled by the effect whose molecules the species holds, or TARRY_NONE. */
-static int32_t stage_lag(const tarry_network *network, uint32_t effect, uint32_t species) {
+int32_t tarry_flow_stage_lag(const tarry_network *network, uint32_t effect, uint32_t species) {
     const tarry_range schedules = network->effects[effect].schedules;
     for (uint32_t i = schedules.from; i < schedules.to; i++)
         if (network->lags[network->schedules[i]].stage == (int32_t)species)
@@ -265,7 +263,7 @@ static void read_move(reader *r, const tarry_reaction *reaction) {
     const int32_t to = state_entered(r, reaction->effect);
     if (to != TARRY_NONE)
         r->moves[(size_t)from * r->flow->n_states + (size_t)to] += rate;
-    if (initiates(r->network, reaction->effect, r->gene))
+    if (tarry_flow_initiates(r->network, reaction->effect, r->gene))
         r->initiation[from] += rate;
 }
 
@@ -276,7 +274,7 @@ static void read_dwell(reader *r, const tarry_promoter_state *state, double prob
     double before = 0;
     for (uint32_t i = lag->outcomes.from; i < lag->outcomes.to; i++) {
         const tarry_outcome *outcome = &r->network->outcomes[i];
-        if (mean > 0 && initiates(r->network, outcome->effect, r->gene))
+        if (mean > 0 && tarry_flow_initiates(r->network, outcome->effect, r->gene))
             r->flow->dwell_initiation += probability * (outcome->cumulative - before) / mean;
         before = outcome->cumulative;
     }
@@ -332,13 +330,15 @@ static const char *check_reaction(reader *r, size_t product, uint32_t effect) {
     uint32_t reactant = 0;
     double rate = 0;
     bool reads = false;
-    if (initiates(r->network, effect, r->gene) && change_of(r->network, effect, species) > 0)
+    if (tarry_flow_initiates(r->network, effect, r->gene) &&
+        tarry_flow_change(r->network, effect, species) > 0)
         return NULL;
     const bool linear = tarry_flow_linear(r->network, reaction, &reactant, &rate, &reads);
-    const bool decay = linear && reactant == species && only_removes(r->network, effect, species);
+    const bool decay = linear && reactant == species &&
+                       tarry_flow_only_removes(r->network, effect, species);
     const bool translation = linear && reactant != species && is_product(r, reactant) &&
-                             change_of(r->network, effect, reactant) == 0 &&
-                             change_of(r->network, effect, species) > 0;
+                             tarry_flow_change(r->network, effect, reactant) == 0 &&
+                             tarry_flow_change(r->network, effect, species) > 0;
     if (!decay && !translation)
         return say(r, "'%s' changes it", reaction->name);
     if (reads)
@@ -352,13 +352,14 @@ static const char *check_reaction(reader *r, size_t product, uint32_t effect) {
 static const char *check_completion(reader *r, size_t product, uint32_t effect) {
     const uint32_t species = r->flow->products[product].species;
     const tarry_lag *lag = &r->network->lags[r->index->lag_of[effect]];
-    if (initiates(r->network, effect, r->gene) && change_of(r->network, effect, species) > 0)
+    if (tarry_flow_initiates(r->network, effect, r->gene) &&
+        tarry_flow_change(r->network, effect, species) > 0)
         return NULL;
     const bool ends = lag->stage == (int32_t)species &&
-                      change_of(r->network, effect, species) == -1;
+                      tarry_flow_change(r->network, effect, species) == -1;
     const bool enters = lag->stage != TARRY_NONE && lag->stage != (int32_t)species &&
                         is_product(r, (uint32_t)lag->stage) &&
-                        change_of(r->network, effect, species) > 0;
+                        tarry_flow_change(r->network, effect, species) > 0;
     return ends || enters ? NULL : say(r, "'%s' changes it", lag->name);
 }
 
@@ -413,7 +414,7 @@ static void enter_translated(reader *r, uint32_t species, const trail *way) {
         double rate = 0;
         bool reads = false;
         if (!tarry_flow_linear(r->network, reaction, &reactant, &rate, &reads) ||
-            reactant != species || change_of(r->network, reaction->effect, species) != 0)
+            reactant != species || tarry_flow_change(r->network, reaction->effect, species) != 0)
             continue;
         trail next = *way;
         next.weight *= rate;
@@ -461,7 +462,7 @@ static void enter(reader *r, size_t product, uint32_t effect, trail way) {
     tarry_flow_product *p = &r->flow->products[product];
     tarry_flow_step step = {TARRY_FLOW_DECAY, NULL, 0};
     double mean = 0;
-    const int32_t lag = stage_lag(r->network, effect, p->species);
+    const int32_t lag = tarry_flow_stage_lag(r->network, effect, p->species);
     if (!p->why && way.tainted)
         p->why = say(r, "it is made from '%s', whose mean cannot be worked out", way.tainted);
     if (!p->why && way.depth + 2 > TARRY_FLOW_STEPS)
@@ -489,7 +490,7 @@ static uint32_t first_initiation(const reader *r) {
     const uint32_t *starts = r->index->reaction_starts;
     for (uint32_t i = starts[r->gene]; i < starts[r->gene + 1]; i++) {
         const uint32_t effect = network->reactions[r->index->reactions[i]].effect;
-        if (initiates(network, effect, r->gene))
+        if (tarry_flow_initiates(network, effect, r->gene))
             return effect;
     }
     const tarry_range states = first_promoter(r)->states;
@@ -498,7 +499,7 @@ static uint32_t first_initiation(const reader *r) {
             continue;
         const tarry_range outcomes = network->lags[network->states[s].lag].outcomes;
         for (uint32_t k = outcomes.from; k < outcomes.to; k++)
-            if (initiates(network, network->outcomes[k].effect, r->gene))
+            if (tarry_flow_initiates(network, network->outcomes[k].effect, r->gene))
                 return network->outcomes[k].effect;
     }
     return network->n_effects;

@@ -84,6 +84,18 @@ int tarry_flow_add_path(tarry_flow_product *product, const tarry_flow_step *step
 int tarry_flow_deficit(const tarry_flow *flow, const tarry_flow_path *path, double rate, double t,
                        double *deficit, bool *too_long, tarry_error *error);
 
+/* What an effect does to the count of a species. */
+int32_t tarry_flow_change(const tarry_network *network, uint32_t effect, uint32_t species);
+
+/* The effect is an initiation on one of the gene's alleles. */
+bool tarry_flow_initiates(const tarry_network *network, uint32_t effect, uint32_t gene);
+
+/* It does nothing but take one molecule of the species away. */
+bool tarry_flow_only_removes(const tarry_network *network, uint32_t effect, uint32_t species);
+
+/* The lag that it schedules and whose molecules the species holds, or TARRY_NONE. */
+int32_t tarry_flow_stage_lag(const tarry_network *network, uint32_t effect, uint32_t species);
+
 /* The reactant and rate constant of a reaction with rate * count; false where it is not of that
  * form. *reads: its rate reads species. */
 bool tarry_flow_linear(const tarry_network *network, const tarry_reaction *reaction,

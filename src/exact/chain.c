@@ -1,0 +1,79 @@
+#include "exact/chain.h"
+
+#include "base/error.h"
+#include "base/memory.h"
+
+#include <gsl/gsl_linalg.h>
+#include <math.h>
+#include <stdlib.h>
+#include <string.h>
+
+typedef struct workspace {
+    gsl_matrix *generator, *exponential;
+    double *next;
+} workspace;
+
+static void release(workspace *w) {
+    gsl_matrix_free(w->generator);
+    gsl_matrix_free(w->exponential);
+    free(w->next);
+}
+
+/* p exp(generator length), made to add up to 1 again. */
+static int move_on(const tarry_exact_gene *gene, size_t regime, double length, double *p,
+                   workspace *w, tarry_error *error) {
+    const size_t n = gene->n_states;
+    tarry_exact_generator(gene, regime, w->generator->data);
+    gsl_matrix_scale(w->generator, length);
+    if (gsl_linalg_exponential_ss(w->generator, w->exponential, GSL_PREC_DOUBLE) != 0)
+        return tarry_fail(error, TARRY_NUMERIC, "the exponential of a generator failed");
+    double sum = 0;
+    for (size_t j = 0; j < n; j++) {
+        w->next[j] = 0;
+        for (size_t i = 0; i < n; i++)
+            w->next[j] += p[i] * gsl_matrix_get(w->exponential, i, j);
+        sum += w->next[j];
+    }
+    if (!(fabs(sum - 1) < 1e-6))
+        return tarry_fail(error, TARRY_NUMERIC, "the exponential of a generator is not exact");
+    for (size_t j = 0; j < n; j++)
+        p[j] = w->next[j] / sum;
+    return 0;
+}
+
+int tarry_exact_states(const tarry_exact_gene *gene, double time, double *p, tarry_error *error) {
+    const size_t n = gene->n_states;
+    workspace w = {gsl_matrix_calloc(n, n), gsl_matrix_calloc(n, n), tarry_calloc(n, sizeof *p)};
+    int code = 0;
+    if (w.generator == NULL || w.exponential == NULL || w.next == NULL)
+        code = tarry_fail_memory(error, "the states of a promoter");
+    memcpy(p, gene->start, n * sizeof *p);
+    for (size_t i = 0; code == 0 && i < gene->n_regimes && gene->regimes[i].from < time; i++) {
+        double to = time;
+        if (i + 1 < gene->n_regimes)
+            to = fmin(to, gene->regimes[i + 1].from);
+        if (to > gene->regimes[i].from)
+            code = move_on(gene, i, to - gene->regimes[i].from, p, &w, error);
+    }
+    release(&w);
+    return code;
+}
+
+size_t tarry_exact_regime_before(const tarry_exact_gene *gene, double time) {
+    size_t i = gene->n_regimes - 1;
+    while (i > 0 && !(gene->regimes[i].from < time))
+        i--;
+    return i;
+}
+
+double tarry_exact_highest_rate(const tarry_exact_gene *gene) {
+    double most = 0;
+    for (size_t k = 0; k < gene->n_regimes; k++)
+        for (size_t i = 0; i < gene->n_states; i++) {
+            double sum = 0;
+            for (size_t j = 0; j < gene->n_states; j++)
+                sum += gene->regimes[k].jump[i * gene->n_states + j];
+            most = fmax(most, sum);
+        }
+    return most * gene->n_copies;
+}

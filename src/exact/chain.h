@@ -1,0 +1,18 @@
+#ifndef TARRY_EXACT_CHAIN_H
+#define TARRY_EXACT_CHAIN_H
+
+/* The promoter's chain by itself: where it is at a time. */
+
+#include "exact/gene.h"
+
+/* p[n_states]: probabilities at `time`, not before the first regime begins. Errors: TARRY_MEMORY,
+ * TARRY_NUMERIC. */
+int tarry_exact_states(const tarry_exact_gene *gene, double time, double *p, tarry_error *error);
+
+/* The newest regime that has been in force for some time at `time`, or 0. */
+size_t tarry_exact_regime_before(const tarry_exact_gene *gene, double time);
+
+/* Most initiations per unit of time on all copies, in any state under any regime. */
+double tarry_exact_highest_rate(const tarry_exact_gene *gene);
+
+#endif
