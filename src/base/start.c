@@ -22,12 +22,6 @@
 #define TARRY_FLAGS "not known"
 #endif
 
-#ifdef _OPENMP
-#define OPENMP "OpenMP " TEXT_OF(_OPENMP)
-#else
-#define OPENMP "no OpenMP: one thread"
-#endif
-
 void tarry_start(void) {
     gsl_set_error_handler_off();
 }
@@ -39,7 +33,7 @@ const char *tarry_version(void) {
 const char *tarry_build(void) {
     return "compiler: " COMPILER "\n"
            "flags: " TARRY_FLAGS "\n"
-           "threads: " OPENMP "\n"
+           "threads: POSIX\n"
            "libraries: GSL " GSL_VERSION ", jansson " JANSSON_VERSION
            ", nettle " TEXT_OF(NETTLE_VERSION_MAJOR) "." TEXT_OF(
                NETTLE_VERSION_MINOR) ", uthash " TEXT_OF(UTHASH_VERSION) ", libyaml\n";

@@ -14,7 +14,7 @@ static const char answer[] =
 
 /* Only what is safe in a signal handler. */
 static void on_signal(int number) {
-    if (asked_to_stop) {
+    if (__atomic_load_n(&asked_to_stop, __ATOMIC_RELAXED)) {
         struct sigaction usual;
         memset(&usual, 0, sizeof usual);
         usual.sa_handler = SIG_DFL;
@@ -22,7 +22,7 @@ static void on_signal(int number) {
         raise(number);
         return;
     }
-    asked_to_stop = 1;
+    __atomic_store_n(&asked_to_stop, 1, __ATOMIC_RELAXED);
     if (answers) {
         const int kept = errno;
         const ssize_t ignored = write(STDERR_FILENO, answer, sizeof answer - 1);

@@ -16,6 +16,7 @@
 #include "base/memory.h"
 #include "base/table.h"
 #include "base/text.h"
+#include "base/threads.h"
 #include "engine/cell.h"
 #include "model/model.h"
 #include "study/sheet.h"
@@ -23,7 +24,6 @@
 #include "tally/tally.h"
 #include "tarry/run.h"
 
-#include <omp.h>
 #include <pthread.h>
 #include <stdlib.h>
 #include <string.h>
@@ -119,7 +119,7 @@ static void worker_release(worker *w) {
 /* The next cell, or -1 when there is none to start. */
 static int64_t take_cell(job *j) {
     pthread_mutex_lock(&j->lock);
-    const bool stopped = j->options->stop && *j->options->stop;
+    const bool stopped = j->options->stop && __atomic_load_n(j->options->stop, __ATOMIC_RELAXED);
     const bool more = !stopped && j->failed < 0 && j->next < j->network->run.cells;
     const int64_t cell = more ? j->next++ : -1;
     pthread_mutex_unlock(&j->lock);
@@ -166,7 +166,16 @@ static void keep_frames(job *j, const tarry_record *record) {
     memcpy(j->kept + (size_t)record->cell * n, record->frames, n * sizeof *j->kept);
 }
 
-static void work(job *j, worker *w) {
+/* The job and everybody who has a hand in it. */
+typedef struct team {
+    job *job;
+    worker *workers;
+} team;
+
+static void work(void *context, int index) {
+    const team *t = context;
+    job *j = t->job;
+    worker *w = &t->workers[index];
     int64_t cell;
     while ((cell = take_cell(j)) >= 0) {
         tarry_error error = {0};
@@ -347,8 +356,7 @@ static int run_cells(job *j, worker *workers, int n, tarry_error *error) {
         if (code)
             return code;
     }
-#pragma omp parallel num_threads(n)
-    work(j, &workers[omp_get_thread_num()]);
+    tarry_threads_run(n, work, &(team){j, workers});
 
     if (j->failed >= 0) {
         if (error)
@@ -386,7 +394,7 @@ static int check_options(const tarry_run_options *options, tarry_error *error) {
 }
 
 int tarry_run_threads(const tarry_network *network, int asked) {
-    const int n = asked > 0 ? asked : omp_get_num_procs();
+    const int n = asked > 0 ? asked : tarry_threads_available();
     return network->run.cells < n ? (int)network->run.cells : n;
 }
 

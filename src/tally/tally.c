@@ -8,11 +8,12 @@
 
 #include "base/error.h"
 #include "base/memory.h"
+#include "base/threads.h"
 #include "tally/results.h"
 
 #include <assert.h>
 #include <math.h>
-#include <omp.h>
+#include <pthread.h>
 #include <stdlib.h>
 #include <string.h>
 
@@ -242,46 +243,68 @@ static size_t figures_init(tarry_tally_set *set, bool *failed) {
     return most;
 }
 
-/* The first fault by number of task, whichever thread met it. */
-typedef struct tally_fault {
-    size_t task;
-    int code;
-    tarry_error error;
-} tally_fault;
+/* Tasks that threads take one after another: row r of kind k is task k * n_rows + r. */
+typedef struct tally_tasks {
+    const tarry_tally_set *set;
+    size_t n_rows, n;
+    size_t n_sums; /* the most of a kind with figures */
+    pthread_mutex_t lock;
+    size_t next;        /* under the lock, as all below */
+    size_t failed;      /* the first task that failed, whichever thread met it */
+    int code;           /* its error, or 0 */
+    tarry_error *error; /* may be NULL */
+} tally_tasks;
 
-static void fault_note(tally_fault *fault, size_t task, int code, const tarry_error *error) {
-#pragma omp critical(tarry_tally_fault)
-    if (!fault->code || task < fault->task)
-        *fault = (tally_fault){task, code, *error};
+/* The number of the next task; n where there is none. */
+static size_t task_take(tally_tasks *tasks) {
+    pthread_mutex_lock(&tasks->lock);
+    const size_t task = tasks->next < tasks->n ? tasks->next++ : tasks->n;
+    pthread_mutex_unlock(&tasks->lock);
+    return task;
+}
+
+static void task_fail(tally_tasks *tasks, size_t task, int code, const tarry_error *error) {
+    pthread_mutex_lock(&tasks->lock);
+    if (!tasks->code || task < tasks->failed) {
+        tasks->failed = task;
+        tasks->code = code;
+        if (tasks->error)
+            *tasks->error = *error;
+    }
+    pthread_mutex_unlock(&tasks->lock);
+}
+
+static void tasks_do(void *context, int index) {
+    tally_tasks *tasks = context;
+    double *rest = tarry_calloc(tasks->n_sums + 1, sizeof *rest);
+    size_t task;
+    (void)index;
+    while ((task = task_take(tasks)) < tasks->n) {
+        const tally_part *part = &tasks->set->parts[task / tasks->n_rows];
+        tarry_error error = {0};
+        int code = TARRY_OK;
+        if (!rest)
+            code = tarry_fail_memory(&error, "the figures' replicates");
+        else if (part->n_figures)
+            code = work_out(tasks->set, part, task % tasks->n_rows, rest, &error);
+        if (code)
+            task_fail(tasks, task, code, &error);
+    }
+    free(rest);
 }
 
 static int figures_work_out(tarry_tally_set *set, int n_threads, tarry_error *error) {
     bool failed = false;
     const size_t most = figures_init(set, &failed);
-    if (failed)
+    const size_t n_rows = set->n_filled + 1;
+    tally_tasks tasks = {.set = set, .n_rows = n_rows, .n = n_rows * set->n_kinds};
+    if (failed || pthread_mutex_init(&tasks.lock, NULL))
         return tarry_fail_memory(error, "the figures' replicates");
-    const size_t n_rows = set->n_filled + 1, n_tasks = n_rows * set->n_kinds;
-    tally_fault fault = {0};
-#pragma omp parallel num_threads(n_threads)
-    {
-        double *rest = tarry_calloc(most + 1, sizeof *rest);
-#pragma omp for schedule(dynamic)
-        for (size_t task = 0; task < n_tasks; task++) {
-            const tally_part *part = &set->parts[task / n_rows];
-            tarry_error own = {0};
-            int code = TARRY_OK;
-            if (!rest)
-                code = tarry_fail_memory(&own, "the figures' replicates");
-            else if (part->n_figures)
-                code = work_out(set, part, task % n_rows, rest, &own);
-            if (code)
-                fault_note(&fault, task, code, &own);
-        }
-        free(rest);
-    }
-    if (fault.code && error)
-        *error = fault.error;
-    return fault.code;
+    tasks.n_sums = most;
+    tasks.error = error;
+    tarry_threads_run(n_threads, tasks_do, &tasks);
+    pthread_mutex_destroy(&tasks.lock);
+    return tasks.code;
 }
 
 int tarry_tally_set_finish(tarry_tally_set *set, int n_threads, tarry_error *error) {
