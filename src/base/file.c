@@ -15,14 +15,15 @@
 #include <sys/stat.h>
 #include <unistd.h>
 
-enum { CHUNK = 1 << 16, MOST_NAMES = 100 };
+enum { CHUNK = 1 << 16, MOST_NAMES = 100, PART_ROOM = 16 };
 
 static int fail_errno(tarry_error *error, const char *path, const char *what, int number) {
     char reason[256];
     if (strerror_r(number, reason, sizeof reason) != 0)
         snprintf(reason, sizeof reason, "error %d", number);
-    return tarry_fail_at(error, TARRY_FILE, (tarry_place){path, 0, 0}, "cannot %s: %s", what,
-                         reason);
+    /* opendir allocates */
+    return tarry_fail_at(error, number == ENOMEM ? TARRY_MEMORY : TARRY_FILE,
+                         (tarry_place){path, 0, 0}, "cannot %s: %s", what, reason);
 }
 
 static int read_all(int file, const char *path, size_t limit, tarry_text *text,
@@ -73,16 +74,21 @@ int tarry_file_read(const char *path, size_t limit, tarry_text *text, tarry_erro
     return status;
 }
 
+/* The name of the i-th unfinished version of `path`, into room for PART_ROOM bytes more than it
+ * has. */
+static void name_part(char *name, const char *path, int i) {
+    snprintf(name, strlen(path) + PART_ROOM, "%s.part%d", path, i);
+}
+
 /* Create a file beside `path`, whose name goes into `name`, to be freed. Returns it open, or -1. */
 static int create_beside(const char *path, char **name, tarry_error *error) {
-    const size_t size = strlen(path) + 16;
-    *name = tarry_calloc(size, 1);
+    *name = tarry_calloc(strlen(path) + PART_ROOM, 1);
     if (*name == NULL) {
         tarry_fail_memory(error, path);
         return -1;
     }
     for (int i = 0; i < MOST_NAMES; i++) {
-        snprintf(*name, size, "%s.part%d", path, i);
+        name_part(*name, path, i);
         const int file = open(*name, O_WRONLY | O_CREAT | O_EXCL | O_CLOEXEC, 0666);
         if (file >= 0)
             return file;
@@ -130,6 +136,16 @@ int tarry_file_write(const char *path, const char *bytes, size_t n, tarry_error 
         unlink(name); /* as well as can be: the first fault is what is told */
     free(name);
     return status;
+}
+
+void tarry_file_remove_parts(const char *path) {
+    char *name = tarry_calloc(strlen(path) + PART_ROOM, 1);
+    for (int i = 0; name != NULL && i < MOST_NAMES; i++) {
+        name_part(name, path, i);
+        if (unlink(name) != 0)
+            break;
+    }
+    free(name);
 }
 
 int tarry_folder_make(const char *path, tarry_error *error) {

@@ -32,6 +32,10 @@ int tarry_file_exists(const char *path, bool *exists, tarry_error *error);
  * missing and its parent can be. TARRY_FILE where not. */
 int tarry_folder_writable(const char *path, tarry_error *error);
 
+/* Remove what tarry_file_write left beside `path` where its process was killed: PATH.part0 and on.
+ */
+void tarry_file_remove_parts(const char *path);
+
 /* Remove a file; fine when there is none. */
 int tarry_file_remove(const char *path, tarry_error *error);
 

@@ -7,13 +7,16 @@
 #include "base/memory.h"
 #include "base/table.h"
 #include "report/summary.h"
+#include "tarry/tarry.h"
 
+#include <assert.h>
 #include <jansson.h>
 #include <stdlib.h>
 #include <string.h>
 
 static const char summary_name[] = "summary.json";
 static const char run_name[] = "run.json";
+static const char unfinished_name[] = "unfinished.json"; /* there while files are being written */
 
 /* Every file that a run may write, but for summary.json. */
 static const char *const run_files[] = {
@@ -31,6 +34,7 @@ enum {
 
 typedef struct run_folder {
     const char *path;
+    char *room; /* for the path of one file: taking back must not depend on memory */
     bool has_summary;
     bool named[N_RUN_FILES];   /* by the earlier summary.json */
     bool written[N_RUN_FILES]; /* by this run */
@@ -38,69 +42,72 @@ typedef struct run_folder {
     size_t n_files;
 } run_folder;
 
-/* "folder/name", to be freed; NULL when memory is short. */
-static char *path_in(const run_folder *folder, const char *name) {
+enum { LONGEST_NAME = 255 };
+
+static int folder_init(run_folder *folder, const char *path, tarry_error *error) {
+    folder->path = path;
+    folder->room = tarry_calloc(strlen(path) + LONGEST_NAME + 2, 1);
+    return folder->room ? 0 : tarry_fail_memory(error, "the names of files");
+}
+
+static void folder_release(run_folder *folder) {
+    free(folder->room);
+}
+
+/* "folder/name", until the next call. */
+static const char *path_in(const run_folder *folder, const char *name) {
     const size_t n = strlen(folder->path);
-    char *path = tarry_calloc(n + strlen(name) + 2, 1);
-    if (path) {
-        memcpy(path, folder->path, n);
-        path[n] = '/';
-        strcpy(path + n + (n && folder->path[n - 1] == '/' ? 0 : 1), name);
-    }
-    return path;
+    assert(strlen(name) <= LONGEST_NAME);
+    memcpy(folder->room, folder->path, n);
+    folder->room[n] = '/';
+    strcpy(folder->room + n + (n && folder->path[n - 1] == '/' ? 0 : 1), name);
+    return folder->room;
 }
 
 static int file_exists(const run_folder *folder, const char *name, bool *exists,
                        tarry_error *error) {
-    char *path = path_in(folder, name);
-    const int status = path ? tarry_file_exists(path, exists, error)
-                            : tarry_fail_memory(error, "the name of a file");
-    free(path);
-    return status;
+    return tarry_file_exists(path_in(folder, name), exists, error);
 }
 
 static int remove_file(const run_folder *folder, const char *name, tarry_error *error) {
-    char *path = path_in(folder, name);
-    const int status = path ? tarry_file_remove(path, error)
-                            : tarry_fail_memory(error, "the name of a file");
-    free(path);
-    return status;
+    return tarry_file_remove(path_in(folder, name), error);
 }
 
-/* Mark the files that an earlier summary.json names. */
-static int read_names(run_folder *folder, const char *text, size_t size, tarry_error *error) {
-    json_t *summary = json_loadb(text, size, 0, NULL);
-    json_t *files = json_object_get(summary, "files");
+/* Mark the files that summary.json or unfinished.json, `list`, names. */
+static int read_names(run_folder *folder, const char *list, const tarry_text *text,
+                      tarry_error *error) {
+    json_error_t fault = {0};
+    json_t *root = json_loadb(text->data, text->size, 0, &fault);
+    if (!root && !fault.text[0]) /* of wrong JSON something is said */
+        return tarry_fail_memory(error, list);
+    json_t *files = json_object_get(root, "files");
     json_t *file;
     size_t i;
     int status = 0;
-    if (!json_is_array(files) || !json_is_string(json_object_get(summary, "tarry")))
+    if (!json_is_array(files) || !json_is_string(json_object_get(root, "tarry")))
         status = tarry_fail(error, TARRY_INPUT,
-                            "%s: the summary.json in this folder is not that of a run, so nothing "
+                            "%s: the %s in this folder cannot be read as that of a run, so nothing "
                             "is overwritten; name another folder",
-                            folder->path);
+                            folder->path, list);
     json_array_foreach(files, i, file) {
         const char *name = json_string_value(json_object_get(file, "name"));
         for (size_t j = 0; name && j < N_RUN_FILES; j++)
             if (!strcmp(name, run_files[j]))
                 folder->named[j] = true;
     }
-    json_decref(summary);
+    json_decref(root);
     return status;
 }
 
-static int read_earlier_summary(run_folder *folder, tarry_error *error) {
-    int status = file_exists(folder, summary_name, &folder->has_summary, error);
-    if (status || !folder->has_summary)
+static int read_list(run_folder *folder, const char *list, bool *exists, tarry_error *error) {
+    int status = file_exists(folder, list, exists, error);
+    if (status || !*exists)
         return status;
     tarry_text text = {0};
-    char *path = path_in(folder, summary_name);
-    status = path ? tarry_file_read(path, SUMMARY_LIMIT, &text, error)
-                  : tarry_fail_memory(error, "the name of a file");
+    status = tarry_file_read(path_in(folder, list), SUMMARY_LIMIT, &text, error);
     if (!status)
-        status = read_names(folder, text.data, text.size, error);
+        status = read_names(folder, list, &text, error);
     tarry_text_release(&text);
-    free(path);
     return status;
 }
 
@@ -122,7 +129,7 @@ static int refuse_strangers(const run_folder *folder, tarry_error *error) {
 }
 
 static int look_at_folder(run_folder *folder, bool overwrite, tarry_error *error) {
-    bool empty = true;
+    bool empty = true, was_cut_short = false;
     int status = tarry_folder_is_empty(folder->path, &empty, error);
     if (!status)
         status = tarry_folder_writable(folder->path, error);
@@ -134,13 +141,18 @@ static int look_at_folder(run_folder *folder, bool overwrite, tarry_error *error
             "%s: this folder exists and is not empty; give --overwrite to replace the "
             "results of an earlier run in it, or name another with --out",
             folder->path);
-    status = read_earlier_summary(folder, error);
+    status = read_list(folder, summary_name, &folder->has_summary, error);
+    if (!status)
+        status = read_list(folder, unfinished_name, &was_cut_short, error);
     return status ? status : refuse_strangers(folder, error);
 }
 
 int tarry_write_check(const char *path, bool overwrite, tarry_error *error) {
-    run_folder folder = {.path = path};
-    const int status = look_at_folder(&folder, overwrite, error);
+    run_folder folder = {0};
+    int status = folder_init(&folder, path, error);
+    if (!status)
+        status = look_at_folder(&folder, overwrite, error);
+    folder_release(&folder);
     /* A folder that cannot serve is a wrong setting here, where nothing is lost yet. */
     if (status == TARRY_FILE && error)
         error->code = TARRY_INPUT;
@@ -151,11 +163,28 @@ static int write_bytes(const run_folder *folder, const char *name, const tarry_t
                        tarry_error *error) {
     if (text->failed)
         return tarry_fail_memory(error, name);
-    char *path = path_in(folder, name);
-    const int status = path ? tarry_file_write(path, text->data, text->size, error)
-                            : tarry_fail_memory(error, "the name of a file");
-    free(path);
+    return tarry_file_write(path_in(folder, name), text->data, text->size, error);
+}
+
+/* Before anything is changed: which files are this run's, so that the next run may replace them if
+ * this one is cut short. */
+static int write_unfinished(const run_folder *folder, tarry_error *error) {
+    tarry_text text = {0};
+    tarry_text_printf(&text, "{\n  \"tarry\": \"%s\",\n  \"files\": [", tarry_version());
+    for (size_t i = 0; i < N_RUN_FILES; i++)
+        tarry_text_printf(&text, "%s\n    {\"name\": \"%s\"}", i ? "," : "", run_files[i]);
+    tarry_text_add_string(&text, "\n  ]\n}\n");
+    const int status = write_bytes(folder, unfinished_name, &text, error);
+    tarry_text_release(&text);
     return status;
+}
+
+/* What a run that was killed left half-written beside its files. */
+static void remove_parts(const run_folder *folder) {
+    tarry_file_remove_parts(path_in(folder, summary_name));
+    tarry_file_remove_parts(path_in(folder, unfinished_name));
+    for (size_t i = 0; i < N_RUN_FILES; i++)
+        tarry_file_remove_parts(path_in(folder, run_files[i]));
 }
 
 static int write_listed(run_folder *folder, size_t which, const tarry_text *text, bool same_bytes,
@@ -232,27 +261,42 @@ static void take_back(const run_folder *folder) {
     for (size_t i = 0; i < N_RUN_FILES; i++)
         if (folder->written[i] || folder->named[i])
             remove_file(folder, run_files[i], NULL);
+    remove_file(folder, unfinished_name, NULL);
+}
+
+/* Everything but unfinished.json, which is there meanwhile. */
+static int write_all(run_folder *folder, const tarry_model *model, const tarry_results *results,
+                     const tarry_provenance *provenance, tarry_error *error) {
+    int status = folder->has_summary ? remove_file(folder, summary_name, error) : 0;
+    if (!status)
+        status = write_tables(folder, results, error);
+    if (!status)
+        status = write_run_json(folder, provenance, error);
+    if (!status)
+        status = remove_leftovers(folder, error);
+    if (!status)
+        status = write_summary(folder, model, results, provenance, error);
+    return status;
 }
 
 int tarry_write_run(const char *path, bool overwrite, const tarry_model *model,
                     const tarry_results *results, const tarry_provenance *provenance,
                     tarry_error *error) {
-    run_folder folder = {.path = path};
-    int status = look_at_folder(&folder, overwrite, error);
+    run_folder folder = {0};
+    int status = folder_init(&folder, path, error);
+    if (!status)
+        status = look_at_folder(&folder, overwrite, error);
     if (!status)
         status = tarry_folder_make(path, error);
-    if (!status && folder.has_summary)
-        status = remove_file(&folder, summary_name, error);
-    if (status)
-        return status;
-    status = write_tables(&folder, results, error);
-    if (!status)
-        status = write_run_json(&folder, provenance, error);
-    if (!status)
-        status = remove_leftovers(&folder, error);
-    if (!status)
-        status = write_summary(&folder, model, results, provenance, error);
-    if (status)
-        take_back(&folder);
+    if (!status && overwrite)
+        remove_parts(&folder);
+    if (!status && !(status = write_unfinished(&folder, error))) {
+        status = write_all(&folder, model, results, provenance, error);
+        if (status)
+            take_back(&folder);
+        else
+            status = remove_file(&folder, unfinished_name, error);
+    }
+    folder_release(&folder);
     return status;
 }
