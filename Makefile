@@ -84,9 +84,12 @@ $(BUILD)/flags: FORCE
 $(BUILD)/members: FORCE
 	$(call keep_text,$(LIB_OBJECTS) $(SUPPORT_OBJECTS))
 
+# This program calls the command line as the shell does.
+$(BUILD)/tests/unit/test_lost_memory: $(filter-out %/main.o,$(CLI_OBJECTS))
+
 # Libraries that need each other stand in a group. One program a test file: make build/tests/unit/test_pending
 $(TESTS) $(SLOW_TESTS): $(BUILD)/%: $(BUILD)/%.o $(BUILD)/libsupport.a $(BUILD)/libtarry.a
-	$(CC) $(ALL_CFLAGS) $(LDFLAGS) $(TEST_LDFLAGS) -o $@ $< \
+	$(CC) $(ALL_CFLAGS) $(LDFLAGS) $(TEST_LDFLAGS) -o $@ $(filter %.o,$^) \
 	  -Wl,--start-group $(BUILD)/libsupport.a $(BUILD)/libtarry.a -lcheck -lsubunit -Wl,--end-group \
 	  -lrt -lpthread $(LIBS)
 

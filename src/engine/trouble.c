@@ -115,12 +115,17 @@ static tarry_place place_of(const tarry_cell *cell) {
 }
 
 int tarry_cell_trouble(const tarry_cell *cell, tarry_error *error) {
+    char now[TARRY_NUMBER_SIZE];
+    tarry_number_write(cell->now, now);
+    if (cell->stop == TARRY_STOP_MEMORY) /* the state as text would need some */
+        return tarry_fail(error, TARRY_MEMORY,
+                          "cell %" PRId64
+                          ", time %s %s: there is not enough memory for what is under way",
+                          cell->number, now, cell->network->time_unit);
     tarry_text what = {0};
     tarry_text state = {0};
     const tarry_code code = tell_what(&what, cell);
     name_state(&state, cell);
-    char now[TARRY_NUMBER_SIZE];
-    tarry_number_write(cell->now, now);
     tarry_fail_at(error, code, place_of(cell), "cell %" PRId64 ", time %s %s: %s (state: %s)",
                   cell->number, now, cell->network->time_unit,
                   what.failed || !what.data ? "it cannot go on" : what.data,

@@ -18,7 +18,7 @@
 #include "base/error.h"
 
 #include <gsl/gsl_blas.h>
-#include <gsl/gsl_linalg.h>
+#include <gsl/gsl_errno.h>
 #include <math.h>
 #include <stdlib.h>
 #include <string.h>
@@ -98,31 +98,44 @@ static void sort_path(const tarry_flow_path *path, sorted *s) {
 
 /* ---- promoter and stages as one linear system ----------------------------------------------- */
 
-/* v' = a v; w(s) = row . v(s). */
+/* v' = a v; w(s) = row . v(s). The memory is ours: GSL does not look whether it gets what it asks
+ * for. */
 typedef struct chain {
     size_t n;
-    gsl_matrix *a, *scaled, *exponential;
-    gsl_vector *v, *next, *row;
+    double *memory;
+    gsl_matrix a, exponential, power, next_power;
+    gsl_vector v, next, row;
 } chain;
 
 static void chain_release(chain *c) {
-    gsl_matrix_free(c->a);
-    gsl_matrix_free(c->scaled);
-    gsl_matrix_free(c->exponential);
-    gsl_vector_free(c->v);
-    gsl_vector_free(c->next);
-    gsl_vector_free(c->row);
+    free(c->memory);
+}
+
+/* Room for the matrices and vectors, all 0. */
+static int chain_allocate(chain *c) {
+    const size_t n = c->n, square = n * n;
+    double *at = c->memory = tarry_calloc(4 * square + 3 * n, sizeof *at);
+    if (!at)
+        return 1;
+    c->a = gsl_matrix_view_array(at, n, n).matrix;
+    c->exponential = gsl_matrix_view_array(at + square, n, n).matrix;
+    c->power = gsl_matrix_view_array(at + 2 * square, n, n).matrix;
+    c->next_power = gsl_matrix_view_array(at + 3 * square, n, n).matrix;
+    c->v = gsl_vector_view_array(at + 4 * square, n).vector;
+    c->next = gsl_vector_view_array(at + 4 * square + n, n).vector;
+    c->row = gsl_vector_view_array(at + 4 * square + 2 * n, n).vector;
+    return 0;
 }
 
 /* The promoter, where it is not steady: v begins with the chances of its states. */
 static void chain_add_promoter(chain *c, const tarry_flow *flow, double rate) {
     for (size_t i = 0; i < flow->n_states; i++) {
         for (size_t k = 0; k < flow->n_states; k++) {
-            *gsl_matrix_ptr(c->a, k, i) += flow->moves[i * flow->n_states + k];
-            *gsl_matrix_ptr(c->a, i, i) -= flow->moves[i * flow->n_states + k];
+            *gsl_matrix_ptr(&c->a, k, i) += flow->moves[i * flow->n_states + k];
+            *gsl_matrix_ptr(&c->a, i, i) -= flow->moves[i * flow->n_states + k];
         }
-        gsl_vector_set(c->v, i, flow->start[i]);
-        gsl_vector_set(c->row, i, 1 - flow->initiation[i] / rate);
+        gsl_vector_set(&c->v, i, flow->start[i]);
+        gsl_vector_set(&c->row, i, 1 - flow->initiation[i] / rate);
     }
 }
 
@@ -131,51 +144,74 @@ static int chain_init(chain *c, const tarry_flow *flow, const sorted *s, double 
     c->n = n_states + s->n_stages;
     if (c->n == 0)
         return 0;
-    c->a = gsl_matrix_calloc(c->n, c->n);
-    c->scaled = gsl_matrix_calloc(c->n, c->n);
-    c->exponential = gsl_matrix_calloc(c->n, c->n);
-    c->v = gsl_vector_calloc(c->n);
-    c->next = gsl_vector_calloc(c->n);
-    c->row = gsl_vector_calloc(c->n);
-    if (!c->a || !c->scaled || !c->exponential || !c->v || !c->next || !c->row)
+    if (chain_allocate(c))
         return 1;
     if (n_states > 0)
         chain_add_promoter(c, flow, rate);
     for (size_t i = 0; i < s->n_stages; i++) {
         const size_t at = n_states + i;
         for (size_t k = 0; k < at; k++)
-            gsl_matrix_set(c->a, at, k, s->stage_rates[i] * gsl_vector_get(c->row, k));
-        gsl_matrix_set(c->a, at, at, -s->stage_rates[i]);
-        gsl_vector_set(c->v, at, 1);
-        gsl_vector_set_zero(c->row);
+            gsl_matrix_set(&c->a, at, k, s->stage_rates[i] * gsl_vector_get(&c->row, k));
+        gsl_matrix_set(&c->a, at, at, -s->stage_rates[i]);
+        gsl_vector_set(&c->v, at, 1);
+        gsl_vector_set_zero(&c->row);
         const size_t span = s->stage_averages[i] ? s->stage_spans[i] : 1;
         for (size_t k = 0; k < span; k++)
-            gsl_vector_set(c->row, at - k, 1 / (double)span);
+            gsl_vector_set(&c->row, at - k, 1 / (double)span);
     }
     return 0;
 }
 
-/* exp(a time) into `exponential`. */
+static void chain_swap(gsl_matrix *one, gsl_matrix *other) {
+    const gsl_matrix kept = *one;
+    *one = *other;
+    *other = kept;
+}
+
+/* exp(a time) into `exponential`: the series for a time / 2^k, whose norm is at most 1/2 so that 17
+ * terms give all digits, squared k times (Moler & Van Loan 1978, SIAM Rev. 20:801, method 3). */
 static int chain_exponential(chain *c, double time) {
+    enum { TERMS = 17 };
+    double norm = 0;
+    int k = 0, status = 0;
     if (c->n == 0)
         return 0;
-    gsl_matrix_memcpy(c->scaled, c->a);
-    gsl_matrix_scale(c->scaled, time);
-    return gsl_linalg_exponential_ss(c->scaled, c->exponential, GSL_MODE_DEFAULT);
+    for (size_t i = 0; i < c->n; i++) {
+        const gsl_vector_view row = gsl_matrix_row(&c->a, i);
+        norm = fmax(norm, gsl_blas_dasum(&row.vector) * time);
+    }
+    if (!isfinite(norm))
+        return GSL_EOVRFLW;
+    frexp(2 * norm, &k);
+    k = k > 0 ? k : 0;
+    gsl_matrix_set_identity(&c->power);
+    gsl_matrix_set_identity(&c->exponential);
+    for (int term = 1; term <= TERMS && !status; term++) {
+        status = gsl_blas_dgemm(CblasNoTrans, CblasNoTrans, ldexp(time, -k) / term, &c->power,
+                                &c->a, 0, &c->next_power);
+        chain_swap(&c->power, &c->next_power);
+        gsl_matrix_add(&c->exponential, &c->power);
+    }
+    for (; k > 0 && !status; k--) {
+        status = gsl_blas_dgemm(CblasNoTrans, CblasNoTrans, 1, &c->exponential, &c->exponential, 0,
+                                &c->power);
+        chain_swap(&c->exponential, &c->power);
+    }
+    return status;
 }
 
 static int chain_step(chain *c) {
     if (c->n == 0)
         return 0;
-    const int status = gsl_blas_dgemv(CblasNoTrans, 1, c->exponential, c->v, 0, c->next);
-    gsl_vector_memcpy(c->v, c->next);
+    const int status = gsl_blas_dgemv(CblasNoTrans, 1, &c->exponential, &c->v, 0, &c->next);
+    gsl_vector_memcpy(&c->v, &c->next);
     return status;
 }
 
 static double chain_value(const chain *c) {
     double value = 0;
     for (size_t i = 0; i < c->n; i++)
-        value += gsl_vector_get(c->row, i) * gsl_vector_get(c->v, i);
+        value += gsl_vector_get(&c->row, i) * gsl_vector_get(&c->v, i);
     return value;
 }
 

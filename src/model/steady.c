@@ -11,8 +11,6 @@
 #include "base/memory.h"
 #include "model/law.h"
 
-#include <gsl/gsl_errno.h>
-#include <gsl/gsl_linalg.h>
 #include <math.h>
 #include <stdlib.h>
 #include <string.h>
@@ -112,43 +110,48 @@ static int find_class(const promoter_graph *graph, uint32_t *members, uint32_t *
 /* ---- the stationary law -------------------------------------------------------------------------
  */
 
-/* Solve v (P - 1) = 0 with sum v = 1 by LU; the last of the equations, which follows from the
- * others, gives way to the sum. */
-static int solve(const promoter_graph *graph, const uint32_t *members, uint32_t n_members,
-                 gsl_matrix *matrix, gsl_permutation *permutation, gsl_vector *v) {
-    for (uint32_t i = 0; i < n_members; i++)
-        for (uint32_t j = 0; j < n_members; j++) {
-            const double p = graph->chance[members[j] * graph->n + members[i]];
-            gsl_matrix_set(matrix, i, j, i + 1 == n_members ? 1 : p - (i == j));
+/* The stationary law v of the chances p between n states, each of which reaches every other; p is
+ * overwritten. States go out one by one, the last first, their moves handed on to those that are
+ * left (Grassmann, Taksar & Heyman 1985, Oper. Res. 33:1107): nothing is ever subtracted, so that
+ * small shares keep all their digits. */
+static void eliminate(double *p, uint32_t n, double *v) {
+    for (uint32_t k = n - 1; k > 0; k--) {
+        double out = 0;
+        for (uint32_t j = 0; j < k; j++)
+            out += p[k * n + j];
+        for (uint32_t i = 0; i < k; i++) {
+            p[i * n + k] /= out;
+            for (uint32_t j = 0; j < k; j++)
+                p[i * n + j] += p[i * n + k] * p[k * n + j];
         }
-    gsl_vector_set_zero(v);
-    gsl_vector_set(v, n_members - 1, 1);
-    int sign = 0;
-    int status = gsl_linalg_LU_decomp(matrix, permutation, &sign);
-    if (status == GSL_SUCCESS)
-        status = gsl_linalg_LU_svx(matrix, permutation, v);
-    return status;
+    }
+    double sum = v[0] = 1;
+    for (uint32_t k = 1; k < n; k++) {
+        v[k] = 0;
+        for (uint32_t i = 0; i < k; i++)
+            v[k] += v[i] * p[i * n + k];
+        sum += v[k];
+    }
+    for (uint32_t k = 0; k < n; k++)
+        v[k] /= sum;
 }
 
-static int embedded_law(const promoter_graph *graph, const uint32_t *members, uint32_t n_members,
+static int embedded_law(promoter_graph *graph, const uint32_t *members, uint32_t n_members,
                         double *out, tarry_error *error) {
-    gsl_matrix *matrix = gsl_matrix_alloc(n_members, n_members);
-    gsl_permutation *permutation = gsl_permutation_alloc(n_members);
-    gsl_vector *v = gsl_vector_alloc(n_members);
-    int code = 0;
-    if (matrix == NULL || permutation == NULL || v == NULL)
-        code = tarry_fail_memory(error, "the steady state of a promoter");
-    else if (solve(graph, members, n_members, matrix, permutation, v) != GSL_SUCCESS)
-        code = tarry_fail_at(error, TARRY_NUMERIC, graph->gene->place,
-                             "the steady state of the promoter of '%s' could not be worked out; "
-                             "name a state under 'start'",
-                             graph->gene->name);
-    for (uint32_t i = 0; code == 0 && i < n_members; i++)
-        out[i] = fmax(gsl_vector_get(v, i), 0);
-    gsl_vector_free(v);
-    gsl_permutation_free(permutation);
-    gsl_matrix_free(matrix);
-    return code;
+    double *p = tarry_arena_calloc(&graph->arena, (size_t)n_members * n_members, sizeof *p);
+    if (p == NULL)
+        return tarry_fail_memory(error, "the steady state of a promoter");
+    for (uint32_t i = 0; i < n_members; i++)
+        for (uint32_t j = 0; j < n_members; j++)
+            p[i * n_members + j] = graph->chance[members[i] * graph->n + members[j]];
+    eliminate(p, n_members, out);
+    for (uint32_t i = 0; i < n_members; i++)
+        if (!isfinite(out[i]))
+            return tarry_fail_at(error, TARRY_NUMERIC, graph->gene->place,
+                                 "the steady state of the promoter of '%s' could not be worked "
+                                 "out; name a state under 'start'",
+                                 graph->gene->name);
+    return 0;
 }
 
 /* Shares of time into `weights`, which are all 0 before. */
