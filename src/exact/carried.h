@@ -6,6 +6,7 @@
 
 #include "exact/curve.h"
 #include "exact/generating.h"
+#include "exact/view.h"
 
 typedef struct tarry_exact_carried tarry_exact_carried;
 
@@ -20,6 +21,8 @@ struct tarry_exact_carried {
     size_t n;
     const double *re, *im; /* z - 1, the caller's */
     tarry_curve mean;      /* mean load at an age */
+    bool is_plain;         /* E[exp(s load)] near s = 0 stands for E[z^load], s for z - 1 */
+    void *own;             /* of the kind, freed by release */
 };
 
 /* Zero-initialise ({0}); release accepts a zeroed or half-built one. `horizon`: the greatest age
@@ -28,6 +31,10 @@ struct tarry_exact_carried {
  * One molecule while it is in stage `stage` of the chain. */
 int tarry_exact_carry_stage(const tarry_exact_chain *chain, size_t stage, double horizon,
                             tarry_exact_carried *carried, tarry_error *error);
+
+/* What a view sees of it; for moments only. */
+int tarry_exact_carry_view(const tarry_exact_gene *gene, const tarry_exact_view *view,
+                           double horizon, tarry_exact_carried *carried, tarry_error *error);
 
 void tarry_exact_carried_release(tarry_exact_carried *carried);
 

@@ -44,7 +44,9 @@ static int find(const tarry_exact_gene *gene, tarry_exact_carried *carried, doub
         }
         first /= POINTS * radius;
         second *= 2 / (POINTS * radius * radius);
-        moments[t] = (tarry_exact_moments){first, fmax(second + first - first * first, 0)};
+        if (!carried->is_plain)
+            second += first; /* the second factorial moment is E[N (N - 1)] */
+        moments[t] = (tarry_exact_moments){first, fmax(second - first * first, 0)};
     }
     free(re);
     free(im);

@@ -159,38 +159,44 @@ static int build(stage_work *w, const double *fractions, size_t n_fractions, dou
     return code;
 }
 
-/* The mean at x since the molecule came in. */
+/* What is seen at x since the molecule came in: by one, or by one times the other. */
 static double shine_now(void *context, double dwell) {
     const stage_work *w = context;
-    return shine(w->one, w->at / dwell);
+    const double f = w->at / dwell;
+    return shine(w->one, f) * (w->other != NULL ? shine(w->other, f) : 1);
 }
 
 static double mean_at(void *context, double x) {
     stage_work *w = context;
-    const double bends[] = {x / w->one->from, x / w->one->to};
+    const tarry_exact_glimpse *other = w->other != NULL ? w->other : w->one;
+    const double bends[] = {x / w->one->from, x / w->one->to, x / other->from, x / other->to};
     w->at = x;
-    return exp(-w->stage->rate * x) * tarry_measure_mean(&w->measure, x, bends, 2, shine_now, w);
+    return exp(-w->stage->rate * x) * tarry_measure_mean(&w->measure, x, bends, 4, shine_now, w);
 }
 
-/* *out (zeroed): the mean contribution x after it came in. */
+/* *out (zeroed): the mean contribution x after it came in; with `other`, of both multiplied. */
 static int stage_mean(const tarry_exact_stage *stage, const tarry_exact_glimpse *glimpse,
-                      double horizon, tarry_curve *out, tarry_error *error) {
-    if (is_flat(glimpse)) {
+                      const tarry_exact_glimpse *other, double horizon, tarry_curve *out,
+                      tarry_error *error) {
+    const double weight = glimpse->weight * (other != NULL ? other->weight : 1);
+    if (is_flat(glimpse) && (other == NULL || is_flat(other))) {
         tarry_curve there = {0};
-        const tarry_curve_term term = {&there, 0, glimpse->weight};
+        const tarry_curve_term term = {&there, 0, weight};
         int code = tarry_delayed_dwell(stage->law, stage->rate, horizon, &there, error);
         if (code == 0)
-            code = tarry_curve_sum(&term, 1, horizon,
-                                   TARRY_DELAYED_TOLERANCE * fabs(glimpse->weight), out, error);
+            code = tarry_curve_sum(&term, 1, horizon, TARRY_DELAYED_TOLERANCE * fabs(weight), out,
+                                   error);
         tarry_curve_release(&there);
         return code;
     }
     stage_work w;
-    const double fractions[] = {1, glimpse->from, glimpse->to};
+    const double fractions[] = {1, glimpse->from, glimpse->to, other != NULL ? other->from : 1,
+                                other != NULL ? other->to : 1};
     int code = start_stage(&w, stage, error);
     w.one = glimpse;
+    w.other = other;
     if (code == 0)
-        code = build(&w, fractions, 3, fabs(glimpse->weight), mean_at, horizon, out, error);
+        code = build(&w, fractions, 5, fabs(weight), mean_at, horizon, out, error);
     tarry_measure_release(&w.measure);
     return code;
 }
@@ -379,7 +385,7 @@ static int later_overlap(const tarry_exact_gene *gene, const tarry_exact_glimpse
     double *breaks = NULL;
     int code = stage_before_end(&stages[one->stage], one, horizon, &before, error);
     if (code == 0)
-        code = stage_mean(&stages[other->stage], other, horizon, &after, error);
+        code = stage_mean(&stages[other->stage], other, NULL, horizon, &after, error);
     if (code == 0)
         code = fold_before(gene, one->stage + 1, other->stage, horizon, &after, error);
     if (code == 0 &&
@@ -427,11 +433,13 @@ static int glimpse_overlap(const tarry_exact_gene *gene, const tarry_exact_glimp
 
 /* ---- sums over glimpses ---------------------------------------------------------------------- */
 
-static int add_up(tarry_curve *curves, size_t n, double horizon, tarry_curve *out,
-                  tarry_error *error) {
+/* `code`: of what made the curves, which are released either way. */
+static int finish_sum(tarry_curve *curves, size_t n, int code, double horizon, tarry_curve *out,
+                      tarry_error *error) {
     tarry_curve_term *terms = tarry_calloc(n, sizeof *terms);
     double scale = 0;
-    int code = terms == NULL ? tarry_fail_memory(error, "what a signal sees") : 0;
+    if (code == 0 && terms == NULL)
+        code = tarry_fail_memory(error, "what a signal sees");
     for (size_t i = 0; code == 0 && i < n; i++) {
         terms[i] = (tarry_curve_term){&curves[i], 0, 1};
         for (size_t k = 0; k < curves[i].n; k++)
@@ -440,7 +448,7 @@ static int add_up(tarry_curve *curves, size_t n, double horizon, tarry_curve *ou
     if (code == 0)
         code = tarry_curve_sum(terms, n, horizon, TARRY_DELAYED_TOLERANCE * scale, out, error);
     free(terms);
-    for (size_t i = 0; i < n; i++)
+    for (size_t i = 0; curves != NULL && i < n; i++)
         tarry_curve_release(&curves[i]);
     free(curves);
     return code;
@@ -452,16 +460,11 @@ int tarry_exact_view_mean(const tarry_exact_gene *gene, const tarry_exact_view *
     int code = parts == NULL ? tarry_fail_memory(error, "what a signal sees") : 0;
     for (size_t i = 0; code == 0 && i < view->n; i++) {
         const tarry_exact_glimpse *g = &view->glimpses[i];
-        code = stage_mean(&gene->transcript.stages[g->stage], g, horizon, &parts[i], error);
+        code = stage_mean(&gene->transcript.stages[g->stage], g, NULL, horizon, &parts[i], error);
         if (code == 0)
             code = fold_before(gene, 0, g->stage, horizon, &parts[i], error);
     }
-    if (code == 0)
-        return add_up(parts, view->n, horizon, mean, error);
-    for (size_t i = 0; parts != NULL && i < view->n; i++)
-        tarry_curve_release(&parts[i]);
-    free(parts);
-    return code;
+    return finish_sum(parts, view->n, code, horizon, mean, error);
 }
 
 int tarry_exact_view_overlap(const tarry_exact_gene *gene, const tarry_exact_view *one,
@@ -473,10 +476,24 @@ int tarry_exact_view_overlap(const tarry_exact_gene *gene, const tarry_exact_vie
     for (size_t i = 0; code == 0 && i < n; i++)
         code = glimpse_overlap(gene, &one->glimpses[i / other->n], &other->glimpses[i % other->n],
                                horizon, &parts[i], error);
-    if (code == 0)
-        return add_up(parts, n, horizon, overlap, error);
-    for (size_t i = 0; parts != NULL && i < n; i++)
-        tarry_curve_release(&parts[i]);
-    free(parts);
-    return code;
+    return finish_sum(parts, n, code, horizon, overlap, error);
+}
+
+/* A transcript is in one stage at a time: only glimpses of one stage go together. */
+int tarry_exact_view_square(const tarry_exact_gene *gene, const tarry_exact_view *view,
+                            double horizon, tarry_curve *square, tarry_error *error) {
+    const size_t n = view->n * view->n;
+    tarry_curve *parts = tarry_calloc(n, sizeof *parts);
+    int code = parts == NULL ? tarry_fail_memory(error, "what a signal sees") : 0;
+    for (size_t i = 0; code == 0 && i < n; i++) {
+        const tarry_exact_glimpse *one = &view->glimpses[i / view->n];
+        const tarry_exact_glimpse *other = &view->glimpses[i % view->n];
+        if (one->stage != other->stage)
+            continue;
+        code = stage_mean(&gene->transcript.stages[one->stage], one, other, horizon, &parts[i],
+                          error);
+        if (code == 0)
+            code = fold_before(gene, 0, one->stage, horizon, &parts[i], error);
+    }
+    return finish_sum(parts, n, code, horizon, square, error);
 }

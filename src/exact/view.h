@@ -32,6 +32,10 @@ int tarry_exact_view_read(const tarry_network *network, const tarry_exact_gene *
 int tarry_exact_view_mean(const tarry_exact_gene *gene, const tarry_exact_view *view,
                           double horizon, tarry_curve *mean, tarry_error *error);
 
+/* *square (zeroed): the mean of the squared contribution at an age. */
+int tarry_exact_view_square(const tarry_exact_gene *gene, const tarry_exact_view *view,
+                            double horizon, tarry_curve *square, tarry_error *error);
+
 /* *overlap (zeroed), at tau: the integral over all ages a of E[r1(a) r2(a + tau)], r1 and r2 being
  * what one transcript contributes to the two views. Errors: TARRY_MEMORY, TARRY_NUMERIC. */
 int tarry_exact_view_overlap(const tarry_exact_gene *gene, const tarry_exact_view *one,

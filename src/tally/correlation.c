@@ -336,3 +336,28 @@ void tarry_pair_covariance(const tarry_film_shape *shape, double n, const double
     side.step = -1;
     covariance_of_side(shape, n, &side, covariance + n_lags - 1);
 }
+
+/* ---- what is read off a curve ---- */
+
+/* The lags from this share of them on make the plateau; fewer than 4 lags make none. */
+static const double plateau_from = 0.75;
+enum { LEAST_LAGS = 4 };
+
+double tarry_correlation_plateau(const double *correlation, size_t n_lags) {
+    if (n_lags < LEAST_LAGS)
+        return NAN;
+    const size_t from = (size_t)ceil(plateau_from * (double)n_lags);
+    double sum = 0.0;
+    for (size_t k = from; k < n_lags; k++)
+        sum += correlation[k];
+    return sum / (double)(n_lags - from);
+}
+
+double tarry_correlation_decay(const double *correlation, size_t n_lags, double plateau) {
+    const double level = plateau + (1.0 - plateau) * exp(-1.0);
+    for (size_t k = 1; plateau < 1.0 && k < n_lags; k++)
+        if (correlation[k] <= level)
+            return (double)(k - 1) +
+                   (correlation[k - 1] - level) / (correlation[k - 1] - correlation[k]);
+    return NAN;
+}

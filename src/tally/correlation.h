@@ -72,4 +72,11 @@ void tarry_pair_covariance(const tarry_film_shape *shape, double n, const double
                            const double *second, const double *sums, double *work,
                            double *covariance);
 
+/* Mean of a correlation over the last quarter of its n_lags lags; NaN where there are fewer than 4.
+ */
+double tarry_correlation_plateau(const double *correlation, size_t n_lags);
+
+/* Where the curve first falls to plateau + (1 - plateau)/e, in frames; NaN where it does not. */
+double tarry_correlation_decay(const double *correlation, size_t n_lags, double plateau);
+
 #endif

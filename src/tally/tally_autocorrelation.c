@@ -20,10 +20,6 @@
 /* A spread below this share of the mean is rounding. */
 static const double least_spread = 1e-13;
 
-/* The lags from this share of them on make the plateau; fewer than 4 lags make none. */
-static const double plateau_from = 0.75;
-enum { LEAST_LAGS = 4 };
-
 /* A decay time above this share of the longest lag is short: see the note. */
 static const double long_decay = 0.2;
 
@@ -272,27 +268,6 @@ static series_level level_of(const tarry_network *network, const tarry_channel *
     return level;
 }
 
-/* Mean of the correlation over the longest lags. */
-static double plateau_of(const double *correlation, size_t n_lags) {
-    if (n_lags < LEAST_LAGS)
-        return NAN;
-    const size_t from = (size_t)ceil(plateau_from * (double)n_lags);
-    double sum = 0.0;
-    for (size_t k = from; k < n_lags; k++)
-        sum += correlation[k];
-    return sum / (double)(n_lags - from);
-}
-
-/* Where the curve first falls to plateau + (1 - plateau)/e, in frames; NaN where it does not. */
-static double decay_of(const double *correlation, size_t n_lags, double plateau) {
-    const double level = plateau + (1.0 - plateau) * exp(-1.0);
-    for (size_t k = 1; plateau < 1.0 && k < n_lags; k++)
-        if (correlation[k] <= level)
-            return (double)(k - 1) +
-                   (correlation[k - 1] - level) / (correlation[k - 1] - correlation[k]);
-    return NAN;
-}
-
 static void series_figures(const tarry_network *network, const tarry_channel *channel,
                            const window_view *view, size_t series, double *work,
                            series_level *level, double *figures) {
@@ -309,8 +284,9 @@ static void series_figures(const tarry_network *network, const tarry_channel *ch
     }
     if (isfinite(correlation[0]))
         correlation[0] = 1.0; /* of the signal without its noise */
-    scalars[PLATEAU] = plateau_of(correlation, n);
-    scalars[DECAY_TIME] = decay_of(correlation, n, scalars[PLATEAU]) * network->run.every;
+    scalars[PLATEAU] = tarry_correlation_plateau(correlation, n);
+    scalars[DECAY_TIME] = tarry_correlation_decay(correlation, n, scalars[PLATEAU]) *
+                          network->run.every;
     scalars[AMPLITUDE] = squared > 0.0 ? level->variance / squared : NAN;
 }
 

@@ -11,6 +11,7 @@
 #include "base/table.h"
 #include "tally/kinds.h"
 #include "tally/periods.h"
+#include "tally/quantities.h"
 #include "tally/results.h"
 
 #include <math.h>
@@ -46,40 +47,7 @@ enum {
     N_SUMS
 };
 
-typedef enum burst_unit { PER_TIME, TIME, SHARE, INITIATION } burst_unit;
-
-/* X(quantity, unit) in the order of the rows */
-#define QUANTITIES(X)                                                                              \
-    X(burst_frequency, PER_TIME)                                                                   \
-    X(burst_size_mean, INITIATION)                                                                 \
-    X(burst_size_sd, INITIATION)                                                                   \
-    X(silent_fraction, SHARE)                                                                      \
-    X(loud_frequency, PER_TIME)                                                                    \
-    X(loud_size_mean, INITIATION)                                                                  \
-    X(active_time_mean, TIME)                                                                      \
-    X(inactive_time_mean, TIME)                                                                    \
-    X(interval_mean, TIME)                                                                         \
-    X(interval_sd, TIME)                                                                           \
-    X(active_fraction, SHARE)                                                                      \
-    X(initiation_rate, PER_TIME)                                                                   \
-    X(outside_fraction, SHARE)
-
-enum {
-#define QUANTITY_ENUM(name, unit) name,
-    QUANTITIES(QUANTITY_ENUM)
-#undef QUANTITY_ENUM
-        N_QUANTITIES
-};
-_Static_assert((int)N_QUANTITIES == (int)TARRY_BURST_FIGURES, "rows of bursts.csv");
-
-static const struct {
-    const char *name;
-    burst_unit unit;
-} quantities[N_QUANTITIES] = {
-#define QUANTITY_ROW(name, unit) {#name, unit},
-    QUANTITIES(QUANTITY_ROW)
-#undef QUANTITY_ROW
-};
+_Static_assert((int)TARRY_N_BURST_QUANTITIES == (int)TARRY_BURST_FIGURES, "rows of bursts.csv");
 
 enum {
     FEW_PERIODS = 20,  /* below this an interval is rough */
@@ -236,11 +204,11 @@ static double variance_spread(double n, const double *powers) {
 /* The fraction of a share's figure: what is counted, of what. */
 static void share_of(int quantity, const double *sums, double *count, double *total) {
     switch (quantity) {
-    case silent_fraction:
+    case TARRY_silent_fraction:
         *count = sums[SILENT];
         *total = sums[CLOSED] + sums[CUT_LOUD];
         break;
-    case active_fraction:
+    case TARRY_active_fraction:
         *count = sums[TIME_ACTIVE];
         *total = sums[TIME_KNOWN];
         break;
@@ -251,38 +219,42 @@ static void share_of(int quantity, const double *sums, double *count, double *to
 }
 
 /* `exposure`: alleles times length of the window. Shares are not worked out here. */
-static void figures_of(const double *sums, double exposure, double figures[N_QUANTITIES]) {
+static void figures_of(const double *sums, double exposure,
+                       double figures[TARRY_N_BURST_QUANTITIES]) {
     const double closed = sums[CLOSED], loud = closed - sums[SILENT];
     /* Initiations so far of a burst cut off are not known: those closed give them per active time.
      */
     const double whole = sums[CUT_OFF] > 0.0 ? sums[ACTIVE_TIME] / sums[CLOSED_TIME] : 1.0;
-    figures[burst_frequency] = (closed + sums[CUT_OFF]) / exposure;
-    figures[burst_size_mean] = sums[SIZE] * whole / closed;
-    figures[burst_size_sd] = sd_of(closed, sums + SIZE);
-    figures[loud_frequency] = (loud + sums[CUT_LOUD]) / exposure;
-    figures[loud_size_mean] = sums[SIZE] * whole / loud;
-    figures[active_time_mean] = sums[ACTIVE_TIME] / closed;
-    figures[inactive_time_mean] = sums[INACTIVE_TIME] / sums[INACTIVE_CLOSED];
-    figures[interval_mean] = sums[ACTIVE_TIME] / closed + sums[INTERVAL_REST] / sums[INTERVALS];
-    figures[interval_sd] = sd_of(sums[INTERVALS], sums + INTERVAL);
-    figures[initiation_rate] = sums[INITIATIONS] / exposure;
-    for (int i = 0; i < N_QUANTITIES; i++)
+    figures[TARRY_burst_frequency] = (closed + sums[CUT_OFF]) / exposure;
+    figures[TARRY_burst_size_mean] = sums[SIZE] * whole / closed;
+    figures[TARRY_burst_size_sd] = sd_of(closed, sums + SIZE);
+    figures[TARRY_loud_frequency] = (loud + sums[CUT_LOUD]) / exposure;
+    figures[TARRY_loud_size_mean] = sums[SIZE] * whole / loud;
+    figures[TARRY_active_time_mean] = sums[ACTIVE_TIME] / closed;
+    figures[TARRY_inactive_time_mean] = sums[INACTIVE_TIME] / sums[INACTIVE_CLOSED];
+    figures[TARRY_interval_mean] = sums[ACTIVE_TIME] / closed +
+                                   sums[INTERVAL_REST] / sums[INTERVALS];
+    figures[TARRY_interval_sd] = sd_of(sums[INTERVALS], sums + INTERVAL);
+    figures[TARRY_initiation_rate] = sums[INITIATIONS] / exposure;
+    for (int i = 0; i < TARRY_N_BURST_QUANTITIES; i++)
         if (!isfinite(figures[i]))
             figures[i] = NAN;
 }
 
-static void samples_of(const double *sums, double alleles, double samples[N_QUANTITIES]) {
+static void samples_of(const double *sums, double alleles,
+                       double samples[TARRY_N_BURST_QUANTITIES]) {
     const double closed = sums[CLOSED], loud = closed - sums[SILENT];
-    samples[burst_frequency] = closed + sums[CUT_OFF];
-    samples[burst_size_mean] = samples[burst_size_sd] = samples[active_time_mean] = closed;
-    samples[silent_fraction] = closed + sums[CUT_LOUD];
-    samples[loud_frequency] = loud + sums[CUT_LOUD];
-    samples[loud_size_mean] = loud;
-    samples[inactive_time_mean] = sums[INACTIVE_CLOSED];
-    samples[interval_mean] = samples[interval_sd] = sums[INTERVALS];
-    samples[active_fraction] = alleles;
-    samples[initiation_rate] = sums[INITIATIONS];
-    samples[outside_fraction] = sums[INITIATIONS_KNOWN];
+    samples[TARRY_burst_frequency] = closed + sums[CUT_OFF];
+    samples[TARRY_burst_size_mean] = samples[TARRY_burst_size_sd] =
+        samples[TARRY_active_time_mean] = closed;
+    samples[TARRY_silent_fraction] = closed + sums[CUT_LOUD];
+    samples[TARRY_loud_frequency] = loud + sums[CUT_LOUD];
+    samples[TARRY_loud_size_mean] = loud;
+    samples[TARRY_inactive_time_mean] = sums[INACTIVE_CLOSED];
+    samples[TARRY_interval_mean] = samples[TARRY_interval_sd] = sums[INTERVALS];
+    samples[TARRY_active_fraction] = alleles;
+    samples[TARRY_initiation_rate] = sums[INITIATIONS];
+    samples[TARRY_outside_fraction] = sums[INITIATIONS_KNOWN];
 }
 
 /* ---- the table ---- */
@@ -292,8 +264,8 @@ typedef struct burst_row {
     const tarry_gene *gene;
     const tarry_window *window;
     double sums[N_SUMS];
-    tarry_estimate estimates[N_QUANTITIES];
-    double samples[N_QUANTITIES];
+    tarry_estimate estimates[TARRY_N_BURST_QUANTITIES];
+    double samples[TARRY_N_BURST_QUANTITIES];
 } burst_row;
 
 static void estimate_ratios(const tarry_network *network, const tarry_tally_set *set,
@@ -303,26 +275,27 @@ static void estimate_ratios(const tarry_network *network, const tarry_tally_set 
     const double tracks = row->gene->tracks.to - row->gene->tracks.from;
     const double exposure = tracks * (row->window->to - row->window->from);
     const double cells = tarry_tally_cells(set);
-    double figures[N_QUANTITIES] = {0}, left[N_SUMS];
-    double replicates[N_QUANTITIES][TARRY_GROUPS];
+    double figures[TARRY_N_BURST_QUANTITIES] = {0}, left[N_SUMS];
+    double replicates[TARRY_N_BURST_QUANTITIES][TARRY_GROUPS];
     figures_of(row->sums, exposure * cells, figures);
     for (size_t g = 0; g < n_groups; g++) {
         const double *group = tarry_tally_group_sums(set, kind, g) + at;
-        double of_group[N_QUANTITIES] = {0};
+        double of_group[TARRY_N_BURST_QUANTITIES] = {0};
         for (int i = 0; i < N_SUMS; i++)
             left[i] = row->sums[i] - group[i];
         figures_of(left, exposure * (cells - tarry_tally_group_cells(set, g)), of_group);
-        for (int i = 0; i < N_QUANTITIES; i++)
+        for (int i = 0; i < TARRY_N_BURST_QUANTITIES; i++)
             replicates[i][g] = of_group[i];
     }
-    for (int i = 0; i < N_QUANTITIES; i++)
+    for (int i = 0; i < TARRY_N_BURST_QUANTITIES; i++)
         row->estimates[i] = tarry_jackknife_estimate(tarry_tally_jackknife(set), figures[i],
                                                      replicates[i], TARRY_SCALE_LOG);
 }
 
 static void estimate_shares(const tarry_tally_set *set, const tarry_tally_kind *kind, size_t at,
                             burst_row *row) {
-    static const int shares[] = {silent_fraction, active_fraction, outside_fraction};
+    static const int shares[] = {TARRY_silent_fraction, TARRY_active_fraction,
+                                 TARRY_outside_fraction};
     const size_t n_groups = tarry_tally_n_groups(set);
     for (size_t i = 0; i < sizeof shares / sizeof shares[0]; i++) {
         double counts[TARRY_GROUPS], totals[TARRY_GROUPS];
@@ -333,34 +306,18 @@ static void estimate_shares(const tarry_tally_set *set, const tarry_tally_kind *
     }
 }
 
-static const char *unit_text(const tarry_network *network, const burst_row *row, burst_unit unit,
-                             char out[64]) {
-    switch (unit) {
-    case PER_TIME:
-        snprintf(out, 64, "/%.30s per %s", network->time_unit,
-                 row->gene->promoters.from < row->gene->promoters.to ? "allele" : "cell");
-        return out;
-    case TIME:
-        return network->time_unit;
-    case SHARE:
-        return "1";
-    case INITIATION:
-        break;
-    }
-    return "initiations";
-}
-
 static int add_rows(const tarry_network *network, const burst_row *row, tarry_table *table,
                     tarry_error *error) {
     int code = TARRY_OK;
-    for (int i = 0; !code && i < N_QUANTITIES; i++) {
-        if (!row->gene->tells && i != initiation_rate)
+    for (int i = 0; !code && i < TARRY_N_BURST_QUANTITIES; i++) {
+        if (!row->gene->tells && i != TARRY_initiation_rate)
             continue;
         const tarry_estimate *estimate = &row->estimates[i];
-        char unit[64];
-        code = tarry_table_add(table, error, row->gene->name, row->window->name, quantities[i].name,
-                               unit_text(network, row, quantities[i].unit, unit), estimate->value,
-                               estimate->low, estimate->high, row->samples[i]);
+        char room[64];
+        code = tarry_table_add(table, error, row->gene->name, row->window->name,
+                               tarry_burst_quantity_name(i),
+                               tarry_burst_quantity_unit(network, row->gene, i, room),
+                               estimate->value, estimate->low, estimate->high, row->samples[i]);
     }
     return code;
 }
@@ -369,15 +326,15 @@ static int add_rows(const tarry_network *network, const burst_row *row, tarry_ta
 
 /* Figures that rest on periods, and so on few of them. */
 static bool rests_on_periods(int quantity) {
-    return quantity != active_fraction && quantity != initiation_rate &&
-           quantity != outside_fraction;
+    return quantity != TARRY_active_fraction && quantity != TARRY_initiation_rate &&
+           quantity != TARRY_outside_fraction;
 }
 
 static void list_few(const burst_row *row, tarry_text *text) {
-    for (int i = 0; i < N_QUANTITIES; i++)
+    for (int i = 0; i < TARRY_N_BURST_QUANTITIES; i++)
         if (rests_on_periods(i) && row->samples[i] < FEW_PERIODS)
-            tarry_text_printf(text, "%s%s (%.0f)", text->size > 0 ? ", " : "", quantities[i].name,
-                              row->samples[i]);
+            tarry_text_printf(text, "%s%s (%.0f)", text->size > 0 ? ", " : "",
+                              tarry_burst_quantity_name(i), row->samples[i]);
 }
 
 static int note_few(const burst_row *row, tarry_notes *notes, tarry_error *error, size_t *n) {

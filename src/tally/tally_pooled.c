@@ -9,6 +9,7 @@
 #include "tally/channels.h"
 #include "tally/kinds.h"
 #include "tally/moments.h"
+#include "tally/quantities.h"
 #include "tally/results.h"
 
 #include <math.h>
@@ -153,21 +154,10 @@ typedef struct reporting {
     size_t n_caveats;
 } reporting;
 
-typedef struct row {
-    int moment;
-    const char *ending, *unit;
-} row;
-
-/* "transcript" of "vela.transcript". */
-static const char *product_name(const char *species, const char *gene) {
-    const size_t n = strlen(gene);
-    return strncmp(species, gene, n) == 0 && species[n] == '.' ? species + n + 1 : species;
-}
-
 /* Rows of one name: quantities are `what` and an ending. */
 static int add_rows(const reporting *r, tarry_result_table table, const char *name,
-                    const char *window, const char *what, const row *rows, size_t n_rows,
-                    const tarry_estimate *estimates, tarry_error *error) {
+                    const char *window, const char *what, const tarry_moment_row *rows,
+                    size_t n_rows, const tarry_estimate *estimates, tarry_error *error) {
     int code = TARRY_OK;
     for (size_t i = 0; !code && i < n_rows; i++) {
         const tarry_estimate *e = &estimates[rows[i].moment];
@@ -181,21 +171,16 @@ static int add_rows(const reporting *r, tarry_result_table table, const char *na
 
 static int add_product(const reporting *r, const tarry_channel *channel, const char *window,
                        const tarry_estimate *estimates, tarry_error *error) {
-    static const row rows[] = {{TARRY_MEAN, "mean", "molecules per cell"},
-                               {TARRY_FANO, "fano", "1"},
-                               {TARRY_CV2, "cv2", "1"}};
     const tarry_network *network = r->network;
     const char *gene = network->genes[network->species[channel->species].gene].name;
-    return add_rows(r, TARRY_TABLE_bursts, gene, window, product_name(channel->name, gene), rows,
-                    sizeof rows / sizeof rows[0], estimates, error);
+    return add_rows(r, TARRY_TABLE_bursts, gene, window, tarry_product_name(channel->name, gene),
+                    tarry_product_rows, TARRY_MOMENT_ROWS, estimates, error);
 }
 
 static int add_signal(const reporting *r, const tarry_channel *channel, const char *window,
                       const tarry_estimate *estimates, tarry_error *error) {
-    static const row rows[] = {
-        {TARRY_MEAN, "mean", "signal"}, {TARRY_SD, "sd", "signal"}, {TARRY_CV2, "cv2", "1"}};
-    return add_rows(r, TARRY_TABLE_signals, channel->name, window, "signal", rows,
-                    sizeof rows / sizeof rows[0], estimates, error);
+    return add_rows(r, TARRY_TABLE_signals, channel->name, window, "signal", tarry_signal_rows,
+                    TARRY_MOMENT_ROWS, estimates, error);
 }
 
 /* How many bursts the cells have told of: counts with this mean and variance, were they negative
