@@ -7,13 +7,12 @@
 #include "base/error.h"
 #include "base/file.h"
 #include "base/text.h"
-#include "cli/commands.h"
 #include "cli/talk.h"
 #include "own_memory.h"
 #include "support.h"
 #include "tarry/tarry.h"
+#include "whole_program.h"
 
-#include <fcntl.h>
 #include <signal.h>
 #include <stdio.h>
 #include <stdlib.h>
@@ -338,30 +337,9 @@ END_TEST
 
 /* ---- the program ----------------------------------------------------------------------------- */
 
-/* What the program says goes into a file of its own. */
-static int said_file;
-
-static void hear_from(const char *path) {
-    fflush(stdout);
-    said_file = open(path, O_RDWR | O_CREAT | O_APPEND, 0600);
-    const int nowhere = open("/dev/null", O_WRONLY);
-    crash_file = dup(STDERR_FILENO);
-    ck_assert(said_file >= 0 && nowhere >= 0 && crash_file >= 0);
-    ck_assert_int_ge(dup2(said_file, STDERR_FILENO), 0);
-    ck_assert_int_ge(dup2(nowhere, STDOUT_FILENO), 0);
-}
-
 /* `tarry` with these words: its exit status, and its last words as the error. */
 static int call_it(void *context, tarry_error *error) {
-    char *const *words = context;
-    int n_words = 0;
-    while (words[n_words])
-        n_words++;
-    if (ftruncate(said_file, 0))
-        return -1;
-    const int status = tarry_command_line(n_words, words);
-    const ssize_t n = pread(said_file, error->message, sizeof error->message - 1, 0);
-    error->message[n > 0 ? n : 0] = '\0';
+    const int status = program_call(context, error->message, sizeof error->message);
     error->code = status == TARRY_EXIT_FAILED ? TARRY_MEMORY : TARRY_INPUT;
     return status ? (int)error->code : 0;
 }
@@ -380,7 +358,7 @@ START_TEST(program) {
     char *model = (char *)put_model(3), *folder = (char *)test_path("out");
     char *run_words[] = {run, model, overwrite, out, folder, keep, threads, set, pace, NULL};
     char *check_words[] = {check, model, set, pace, NULL};
-    hear_from(test_path("said"));
+    crash_file = program_listen();
     ck_assert_int_gt(fail_each("check", 1, call_it, NULL, check_words, false, 1),
                      OWN_MEMORY ? 400 : 0);
     ck_assert_int_gt(fail_each("run", 5, call_it, complete, run_words, false, 6),
