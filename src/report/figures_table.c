@@ -1,15 +1,11 @@
 #include "report/figures_table.h"
 
 #include "report/lines.h"
+#include "report/quantities.h"
 #include "report/rounding.h"
 
 #include <stdio.h>
 #include <string.h>
-
-enum { FEW = 20 }; /* periods or events, below which an interval is marked */
-
-/* Columns of the tables. */
-enum { NAME, WINDOW, QUANTITY, UNIT, FIGURE, LOW, HIGH, SAMPLES };
 
 /* Columns on the page. One window has room to spare; several are set close. */
 typedef struct page_layout {
@@ -27,94 +23,9 @@ typedef struct figure_page {
     const tarry_network *network;
     const tarry_table *table;
     const page_layout *layout;
-    uint32_t a_block; /* windows side by side */
+    uint32_t from, to; /* windows side by side */
     bool *marked;
 } figure_page;
-
-/* The rows of one gene or signal, in windows from .. to - 1. */
-typedef struct figure_rows {
-    const size_t *rows;
-    size_t n;
-    uint32_t from, to;
-} figure_rows;
-
-typedef struct label {
-    const char *quantity;
-    const char *words;
-} label;
-
-static const label burst_labels[] = {
-    {"burst_frequency", "bursts"},
-    {"burst_size_mean", "size, mean"},
-    {"burst_size_sd", "size, sd"},
-    {"silent_fraction", "share without initiation"},
-    {"loud_frequency", "loud bursts"},
-    {"loud_size_mean", "loud size, mean"},
-    {"outside_fraction", "share outside bursts"},
-    {"initiation_rate", "initiations"},
-};
-
-static const label time_labels[] = {
-    {"active_time_mean", "active, mean"}, {"inactive_time_mean", "inactive, mean"},
-    {"interval_mean", "interval, mean"},  {"interval_sd", "interval, sd"},
-    {"active_fraction", "share active"},
-};
-
-/* What may be said of a product or a signal, as endings of a quantity's name. */
-static const label moment_labels[] = {
-    {"mean", "mean"},        {"sd", "sd"},
-    {"fano", "Fano factor"}, {"cv2", "CV squared"},
-    {"noise", "noise"},      {"decay_time", "decay time"},
-    {"plateau", "plateau"},  {"amplitude", "amplitude"},
-};
-
-#define COUNT(array) (sizeof(array) / sizeof *(array))
-
-static const label *find_label(const label *labels, size_t n, const char *quantity) {
-    for (size_t i = 0; i < n; i++)
-        if (!strcmp(labels[i].quantity, quantity))
-            return &labels[i];
-    return NULL;
-}
-
-static bool is_of_bursts(const char *quantity) {
-    return find_label(burst_labels, COUNT(burst_labels), quantity) ||
-           find_label(time_labels, COUNT(time_labels), quantity);
-}
-
-/* The length of "transcript" in "transcript_decay_time", and the words for the rest: 0 and those
- * for the whole where nothing stands before it. */
-static size_t split_product(const char *quantity, const char **words) {
-    const size_t n = strlen(quantity);
-    size_t best = 0;
-    *words = quantity;
-    for (size_t i = 0; i < COUNT(moment_labels); i++) {
-        const size_t ending = strlen(moment_labels[i].quantity);
-        if (n < ending || ending <= best ||
-            strcmp(quantity + n - ending, moment_labels[i].quantity))
-            continue;
-        if (n > ending && (n == ending + 1 || quantity[n - ending - 1] != '_'))
-            continue;
-        best = ending;
-        *words = moment_labels[i].words;
-    }
-    return best && n > best ? n - best - 1 : 0;
-}
-
-static const char *text_of(const figure_page *page, size_t row, int column) {
-    return tarry_table_text(page->table, row, column);
-}
-
-/* The row of a quantity in a window, or the table's size. */
-static size_t find_row(const figure_page *page, const figure_rows *rows, const char *quantity,
-                       uint32_t window) {
-    const char *name = page->network->run.windows[window].name;
-    for (size_t i = 0; i < rows->n; i++)
-        if (!strcmp(text_of(page, rows->rows[i], QUANTITY), quantity) &&
-            !strcmp(text_of(page, rows->rows[i], WINDOW), name))
-            return rows->rows[i];
-    return tarry_table_n_rows(page->table);
-}
 
 static void end_line(tarry_text *text) {
     while (text->size && text->data[text->size - 1] == ' ')
@@ -127,11 +38,12 @@ static void end_line(tarry_text *text) {
 /* Value and interval as texts, with as many digits as the columns hold. */
 static void round_to_fit(const figure_page *page, size_t row, bool few, char *value, char *interval,
                          size_t size) {
-    const double low = tarry_table_number(page->table, row, LOW);
-    const double high = tarry_table_number(page->table, row, HIGH);
+    const double low = tarry_table_number(page->table, row, TARRY_QUANTITY_LOW);
+    const double high = tarry_table_number(page->table, row, TARRY_QUANTITY_HIGH);
     for (int digits = TARRY_ROUND_MOST; digits > 0; digits--) {
         tarry_rounded rounded;
-        tarry_round(tarry_table_number(page->table, row, FIGURE), low, high, digits, &rounded);
+        tarry_round(tarry_table_number(page->table, row, TARRY_QUANTITY_VALUE), low, high, digits,
+                    &rounded);
         const bool bounded = rounded.low[0] != '\0';
         snprintf(value, size, "%s%s", rounded.value, few && bounded ? "*" : "");
         snprintf(interval, size, "%s%s%s", rounded.low, bounded ? " to " : "", rounded.high);
@@ -145,7 +57,7 @@ static void add_estimate(figure_page *page, size_t row) {
     char value[80] = "", interval[80] = "";
     const page_layout *layout = page->layout;
     if (row < tarry_table_n_rows(page->table)) {
-        const bool few = tarry_table_number(page->table, row, SAMPLES) < FEW;
+        const bool few = tarry_table_number(page->table, row, TARRY_QUANTITY_SAMPLES) < TARRY_FEW;
         round_to_fit(page, row, few, value, interval, sizeof value);
         *page->marked = *page->marked || strchr(value, '*');
     }
@@ -154,135 +66,88 @@ static void add_estimate(figure_page *page, size_t row) {
     tarry_lines_left(page->text, interval, layout->interval);
 }
 
-/* What a unit adds to the words: " [/min]" of "/min per allele", nothing where it goes without
- * saying (pure numbers, counts, the signal's own). */
-static const char *unit_words(const char *unit, char out[48]) {
-    static const char *const dumb[] = {"", "1", "share", "initiations", "molecules", "signal"};
-    const char *per = strstr(unit, " per ");
-    const int n = per ? (int)(per - unit) : (int)strlen(unit);
-    snprintf(out, 48, "%.*s", n < 40 ? n : 40, unit);
-    for (size_t i = 0; i < COUNT(dumb); i++)
-        if (!strcmp(out, dumb[i]))
-            return "";
-    snprintf(out, 48, " [%.*s]", n < 40 ? n : 40, unit);
-    return out;
-}
-
-/* Whether a quantity is a decay time, whose unit stands in the title of its group. */
-static bool is_decay_time(const char *quantity) {
-    static const char ending[] = "_decay_time";
-    const size_t n = strlen(quantity);
-    return n >= sizeof ending && !strcmp(quantity + n - (sizeof ending - 1), ending);
+/* What a unit adds to the words: " [/min]", nothing where it goes without saying (counts, the
+ * signal's own) or, as that of decay times, stands in the title of the section. */
+static void unit_words(const tarry_quantity *quantity, char out[64]) {
+    static const char *const dumb[] = {"", "initiations", "molecules", "signal"};
+    char unit[48];
+    out[0] = '\0';
+    if (quantity->product_size && !strcmp(quantity->words, "decay time"))
+        return;
+    tarry_quantity_unit(quantity->unit, unit);
+    for (size_t i = 0; i < sizeof dumb / sizeof *dumb; i++)
+        if (!strcmp(unit, dumb[i]))
+            return;
+    snprintf(out, 64, " [%s]", unit);
 }
 
 /* A line for a quantity, if any of the windows has it. Returns whether it has. */
-static bool add_figure(figure_page *page, const figure_rows *rows, const char *words,
-                       const char *quantity) {
+static bool add_figure(figure_page *page, const tarry_quantity *quantity, const char *words) {
     const size_t none = tarry_table_n_rows(page->table);
-    const char *unit = NULL;
-    char text[160], added[48];
-    for (uint32_t w = rows->from; w < rows->to && !unit; w++) {
-        const size_t row = find_row(page, rows, quantity, w);
-        unit = row < none ? text_of(page, row, UNIT) : NULL;
-    }
-    if (!unit)
+    bool any = false;
+    char text[192], unit[64];
+    for (uint32_t w = page->from; w < page->to; w++)
+        any = any || quantity->rows[w] < none;
+    if (!any)
         return false;
-    snprintf(text, sizeof text, "    %s%s", words,
-             is_decay_time(quantity) ? "" : unit_words(unit, added));
+    unit_words(quantity, unit);
+    snprintf(text, sizeof text, "    %s%s", words, unit);
     tarry_lines_left(page->text, text, page->layout->label);
-    for (uint32_t w = rows->from; w < rows->to; w++)
-        add_estimate(page, find_row(page, rows, quantity, w));
+    for (uint32_t w = page->from; w < page->to; w++)
+        add_estimate(page, quantity->rows[w]);
     end_line(page->text);
     return true;
 }
 
-/* ---- groups of figures ---------------------------------------------------------------------- */
+/* ---- sections ------------------------------------------------------------------------------- */
 
-static void add_group(figure_page *page, const figure_rows *rows, const char *title,
-                      const label *labels, size_t n) {
-    bool any = false;
-    for (size_t i = 0; i < rows->n && !any; i++)
-        any = find_label(labels, n, text_of(page, rows->rows[i], QUANTITY)) != NULL;
-    if (!any)
+static void add_title(figure_page *page, tarry_quantity_section section, bool alleles) {
+    if (section == TARRY_SECTION_SIGNAL)
         return;
-    tarry_text_printf(page->text, "  %s\n", title);
-    for (size_t i = 0; i < n; i++)
-        add_figure(page, rows, labels[i].words, labels[i].quantity);
+    tarry_text_printf(page->text, "  %s", tarry_section_title(section, alleles));
+    if (section == TARRY_SECTION_PRODUCTS)
+        tarry_text_printf(page->text, " (decay times in %s)", page->network->time_unit);
+    tarry_text_add(page->text, "\n", 1);
 }
 
-/* Whether row i is the first of its quantity. */
-static bool is_first(const figure_page *page, const figure_rows *rows, size_t i) {
-    const char *quantity = text_of(page, rows->rows[i], QUANTITY);
-    for (size_t j = 0; j < i; j++)
-        if (!strcmp(text_of(page, rows->rows[j], QUANTITY), quantity))
-            return false;
-    return true;
-}
-
-/* Whether an earlier row speaks of the product whose name is the first n bytes. */
-static bool was_product(const figure_page *page, const figure_rows *rows, size_t i,
-                        const char *name, size_t n) {
-    const char *words;
-    for (size_t j = 0; j < i; j++) {
-        const char *quantity = text_of(page, rows->rows[j], QUANTITY);
-        if (!is_of_bursts(quantity) && split_product(quantity, &words) == n &&
-            !memcmp(quantity, name, n))
-            return true;
-    }
-    return false;
-}
-
-/* All that is said of one product, its name before the first line. */
-static void add_product(figure_page *page, const figure_rows *rows, size_t first) {
+/* A line of a product; its name stands before the first one. */
+static void add_of_product(figure_page *page, const tarry_quantity *quantity, bool *named) {
     enum { NAME_WIDTH = 11 };
-    const char *name = text_of(page, rows->rows[first], QUANTITY);
-    const char *words;
-    const size_t n = split_product(name, &words);
-    bool named = n == 0;
+    const int n = (int)quantity->product_size;
     char line[128];
-    if (n >= NAME_WIDTH) {
-        tarry_text_printf(page->text, "    %.*s\n", (int)n, name);
-        named = true;
+    if (n >= NAME_WIDTH && !*named) {
+        tarry_text_printf(page->text, "    %.*s\n", n, quantity->name);
+        *named = true;
     }
-    for (size_t i = first; i < rows->n; i++) {
-        const char *quantity = text_of(page, rows->rows[i], QUANTITY);
-        if (is_of_bursts(quantity) || !is_first(page, rows, i) ||
-            split_product(quantity, &words) != n || memcmp(quantity, name, n))
-            continue;
-        snprintf(line, sizeof line, "%-*.*s%s", n ? NAME_WIDTH : 0, named ? 0 : (int)n, name,
-                 words);
-        named = add_figure(page, rows, line, quantity) || named;
-    }
+    snprintf(line, sizeof line, "%-*.*s%s", n ? NAME_WIDTH : 0, *named ? 0 : n, quantity->name,
+             quantity->words);
+    *named = add_figure(page, quantity, line) || *named;
 }
 
-static void add_products(figure_page *page, const figure_rows *rows) {
-    bool any = false;
-    for (size_t i = 0; i < rows->n; i++) {
-        const char *words;
-        const char *quantity = text_of(page, rows->rows[i], QUANTITY);
-        const size_t n = split_product(quantity, &words);
-        if (is_of_bursts(quantity) || was_product(page, rows, i, quantity, n))
-            continue;
-        if (!any)
-            tarry_text_printf(page->text, "  Molecules in a cell (decay times in %s)\n",
-                              page->network->time_unit);
-        any = true;
-        add_product(page, rows, i);
+static bool same_product(const tarry_quantity *one, const tarry_quantity *other) {
+    return one->product_size == other->product_size &&
+           !memcmp(one->name, other->name, one->product_size);
+}
+
+static void add_quantities(figure_page *page, const tarry_quantities *quantities, bool alleles) {
+    bool named = false;
+    for (size_t i = 0; i < quantities->n; i++) {
+        const tarry_quantity *quantity = &quantities->items[i];
+        const tarry_quantity *before = i ? quantity - 1 : NULL;
+        if (!before || before->section != quantity->section)
+            add_title(page, quantity->section, alleles);
+        if (!before || !same_product(before, quantity))
+            named = false;
+        if (quantity->section == TARRY_SECTION_PRODUCTS)
+            add_of_product(page, quantity, &named);
+        else
+            add_figure(page, quantity, quantity->words);
     }
 }
 
 /* ---- blocks --------------------------------------------------------------------------------- */
 
-/* The gene of this name, or NULL for a signal. */
-static const tarry_gene *find_gene(const tarry_network *network, const char *name) {
-    for (uint32_t g = 0; g < network->n_genes; g++)
-        if (!strcmp(network->genes[g].name, name))
-            return &network->genes[g];
-    return NULL;
-}
-
-static void add_head(figure_page *page, const char *name, const tarry_gene *gene,
-                     const figure_rows *rows) {
+static void add_head(figure_page *page, const char *name, const tarry_gene *gene) {
     const tarry_run_plan *plan = &page->network->run;
     const page_layout *layout = page->layout;
     char words[160];
@@ -292,7 +157,7 @@ static void add_head(figure_page *page, const char *name, const tarry_gene *gene
         snprintf(words, sizeof words, "%s", name);
     tarry_text_add(page->text, "\n", 1);
     tarry_lines_left(page->text, words, layout->label);
-    for (uint32_t w = rows->from; w < rows->to; w++) {
+    for (uint32_t w = page->from; w < page->to; w++) {
         tarry_lines_right(page->text, plan->n_windows > 1 ? plan->windows[w].name : "value",
                           layout->value);
         tarry_lines_left(page->text, "", layout->gap);
@@ -301,51 +166,36 @@ static void add_head(figure_page *page, const char *name, const tarry_gene *gene
     end_line(page->text);
 }
 
-static void add_gene(figure_page *page, const char *name, const figure_rows *rows) {
-    const tarry_gene *gene = find_gene(page->network, name);
-    const bool alleles = gene && gene->promoters.from < gene->promoters.to;
-    add_head(page, name, gene, rows);
-    add_group(page, rows, alleles ? "Bursts of one allele" : "Bursts", burst_labels,
-              COUNT(burst_labels));
-    add_group(page, rows, alleles ? "Times of one allele" : "Times", time_labels,
-              COUNT(time_labels));
-    add_products(page, rows);
+/* Blocks of one gene or signal, each with as many windows as stand side by side. */
+static int add_blocks(figure_page *page, const tarry_groups *groups, size_t g, uint32_t a_block,
+                      tarry_error *error) {
+    const uint32_t n_windows = page->network->run.n_windows;
+    const bool is_signal = !strcmp(tarry_table_column_name(page->table, TARRY_QUANTITY_OF),
+                                   "signal");
+    const tarry_gene *gene = is_signal ? NULL : tarry_network_gene(page->network, groups->names[g]);
+    tarry_quantities quantities = {0};
+    const int status = tarry_quantities_init(&quantities, page->network, page->table,
+                                             groups->rows + groups->starts[g],
+                                             groups->starts[g + 1] - groups->starts[g], error);
+    for (uint32_t w = 0; !status && w < n_windows; w += a_block) {
+        page->from = w;
+        page->to = n_windows - w < a_block ? n_windows : w + a_block;
+        add_head(page, groups->names[g], gene);
+        add_quantities(page, &quantities, tarry_gene_has_alleles(gene));
+    }
+    tarry_quantities_release(&quantities);
+    return status;
 }
 
-static void add_signal(figure_page *page, const char *name, const figure_rows *rows) {
-    add_head(page, name, NULL, rows);
-    for (size_t i = 0; i < rows->n; i++) {
-        const char *words;
-        const char *quantity = text_of(page, rows->rows[i], QUANTITY);
-        if (!is_first(page, rows, i))
-            continue;
-        split_product(quantity, &words);
-        add_figure(page, rows, words, quantity);
-    }
-}
-
-void tarry_figures_write(const tarry_network *network, const tarry_table *table,
-                         const tarry_groups *groups, int width, bool *marked, tarry_text *text) {
-    const uint32_t n_windows = network->run.n_windows;
-    const page_layout *layout = n_windows > 1 ? &close : &wide;
-    const int column = layout->value + layout->gap + layout->interval;
-    const int fit = (width - layout->label) / column;
-    figure_page page = {.text = text,
-                        .network = network,
-                        .table = table,
-                        .layout = layout,
-                        .a_block = fit < 1 ? 1 : (uint32_t)fit,
-                        .marked = marked};
-    const bool is_signal = !strcmp(tarry_table_column_name(table, NAME), "signal");
-    for (size_t g = 0; g < groups->n; g++) {
-        for (uint32_t w = 0; w < n_windows; w += page.a_block) {
-            const uint32_t to = n_windows - w < page.a_block ? n_windows : w + page.a_block;
-            const figure_rows rows = {groups->rows + groups->starts[g],
-                                      groups->starts[g + 1] - groups->starts[g], w, to};
-            if (is_signal)
-                add_signal(&page, groups->names[g], &rows);
-            else
-                add_gene(&page, groups->names[g], &rows);
-        }
-    }
+int tarry_figures_write(const tarry_network *network, const tarry_table *table,
+                        const tarry_groups *groups, int width, bool *marked, tarry_text *text,
+                        tarry_error *error) {
+    const page_layout *layout = network->run.n_windows > 1 ? &close : &wide;
+    const int fit = (width - layout->label) / (layout->value + layout->gap + layout->interval);
+    figure_page page = {
+        .text = text, .network = network, .table = table, .layout = layout, .marked = marked};
+    int status = 0;
+    for (size_t g = 0; !status && g < groups->n; g++)
+        status = add_blocks(&page, groups, g, fit < 1 ? 1 : (uint32_t)fit, error);
+    return status;
 }

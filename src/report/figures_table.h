@@ -10,7 +10,8 @@
 /* Append a block for each group of `table` (`bursts` or `signals`, grouped by its first column).
  * Windows stand side by side, at least one, as many as `width` columns allow. *marked becomes true
  * where a figure rests on few periods and carries a star. */
-void tarry_figures_write(const tarry_network *network, const tarry_table *table,
-                         const tarry_groups *groups, int width, bool *marked, tarry_text *text);
+int tarry_figures_write(const tarry_network *network, const tarry_table *table,
+                        const tarry_groups *groups, int width, bool *marked, tarry_text *text,
+                        tarry_error *error);
 
 #endif

@@ -42,38 +42,60 @@ static size_t count_named(const tarry_results *results) {
     return n;
 }
 
-void tarry_notes_list(const tarry_results *results, int width, tarry_text *text) {
+/* Note i, with the names of those after it that say the same. */
+static void join_names(const tarry_results *results, size_t i, tarry_text *paragraph) {
+    const note this = note_of(tarry_results_warning(results, i));
+    tarry_text_add(paragraph, this.name, this.name_size);
+    for (size_t j = i + 1; j < tarry_results_n_warnings(results); j++) {
+        const note other = note_of(tarry_results_warning(results, j));
+        if (!say_the_same(this, other))
+            continue;
+        tarry_text_add_string(paragraph, ", ");
+        tarry_text_add(paragraph, other.name, other.name_size);
+    }
+    tarry_text_add_string(paragraph, this.rest);
+}
+
+bool tarry_notes_each(const tarry_results *results,
+                      void (*add)(void *context, const char *paragraph), void *context) {
     const size_t n = tarry_results_n_warnings(results);
     const size_t n_named = count_named(results);
     const size_t most = n_named > MOST_ALL ? SHOWN_OF_MORE : n_named;
     size_t n_shown = 0;
-    for (size_t i = 0; i < n; i++) {
-        const note this = note_of(tarry_results_warning(results, i));
+    bool whole = true;
+    for (size_t i = 0; i <= n; i++) {
         tarry_text paragraph = {0};
-        if (was_said(results, i) || (this.name_size > 0 && n_shown++ >= most))
+        if (i == n && n_named > most)
+            tarry_text_printf(&paragraph,
+                              "%zu more notes of these kinds are under `warnings` in summary.json",
+                              n_named - most);
+        else if (i == n || was_said(results, i) ||
+                 (note_of(tarry_results_warning(results, i)).name_size > 0 && n_shown++ >= most))
             continue;
-        tarry_text_add(&paragraph, this.name, this.name_size);
-        for (size_t j = i + 1; j < n; j++) {
-            const note other = note_of(tarry_results_warning(results, j));
-            if (!say_the_same(this, other))
-                continue;
-            tarry_text_add_string(&paragraph, ", ");
-            tarry_text_add(&paragraph, other.name, other.name_size);
-        }
-        tarry_text_add_string(&paragraph, this.rest);
-        text->failed = text->failed || paragraph.failed;
+        else
+            join_names(results, i, &paragraph);
+        whole = whole && !paragraph.failed;
         if (!paragraph.failed)
-            tarry_lines_wrap(text, "- ", paragraph.data, width);
+            add(context, paragraph.data);
         tarry_text_release(&paragraph);
     }
-    if (n_named > most) {
-        tarry_text more = {0};
-        tarry_text_printf(&more,
-                          "%zu more notes of these kinds are under `warnings` in summary.json",
-                          n_named - most);
-        text->failed = text->failed || more.failed;
-        if (!more.failed)
-            tarry_lines_wrap(text, "- ", more.data, width);
-        tarry_text_release(&more);
-    }
+    return whole;
+}
+
+/* ---- on the terminal ------------------------------------------------------------------------ */
+
+typedef struct note_lines {
+    tarry_text *text;
+    int width;
+} note_lines;
+
+static void add_lines(void *context, const char *paragraph) {
+    const note_lines *lines = context;
+    tarry_lines_wrap(lines->text, "- ", paragraph, lines->width);
+}
+
+void tarry_notes_list(const tarry_results *results, int width, tarry_text *text) {
+    note_lines lines = {text, width};
+    if (!tarry_notes_each(results, add_lines, &lines))
+        text->failed = true;
 }

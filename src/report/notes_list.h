@@ -6,7 +6,12 @@
 #include "base/text.h"
 #include "tarry/results.h"
 
-/* Append the warnings of the results, a paragraph each, in lines of at most `width` columns. */
+/* Hand the notes of the results to `add` one after another, a paragraph each. Returns false when
+ * memory was short. */
+bool tarry_notes_each(const tarry_results *results,
+                      void (*add)(void *context, const char *paragraph), void *context);
+
+/* Append them for a terminal, in lines of at most `width` columns. */
 void tarry_notes_list(const tarry_results *results, int width, tarry_text *text);
 
 #endif

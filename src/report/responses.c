@@ -8,6 +8,7 @@
 #include "tally/dwells.h"
 
 #include <math.h>
+#include <stdbool.h>
 #include <stdlib.h>
 #include <string.h>
 
@@ -81,4 +82,14 @@ int tarry_responses_init(tarry_responses *responses, const tarry_table *first, t
 void tarry_responses_release(tarry_responses *responses) {
     free(responses->items);
     memset(responses, 0, sizeof *responses);
+}
+
+void tarry_response_round(const tarry_response_figure *figure, tarry_rounded *out) {
+    enum { DIGITS = 4 };
+    const bool open = isnan(figure->high) && !isnan(figure->low);
+    tarry_round(figure->value, figure->low, open ? NAN : figure->high, DIGITS, out);
+    if (open) {
+        tarry_round_plain(figure->low, out->low);
+        strcpy(out->high, "-");
+    }
 }

@@ -5,6 +5,7 @@
  * median time, both with their intervals. */
 
 #include <stddef.h>
+#include "report/rounding.h"
 #include "tarry/error.h"
 #include "tarry/table.h"
 
@@ -30,5 +31,8 @@ typedef struct tarry_responses {
  * half-built one. */
 int tarry_responses_init(tarry_responses *responses, const tarry_table *first, tarry_error *error);
 void tarry_responses_release(tarry_responses *responses);
+
+/* Value and bounds for reading; `high` is "-" where only that is missing. */
+void tarry_response_round(const tarry_response_figure *figure, tarry_rounded *out);
 
 #endif

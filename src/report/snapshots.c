@@ -46,3 +46,25 @@ void tarry_snapshots_release(tarry_snapshots *snapshots) {
     free(snapshots->items);
     memset(snapshots, 0, sizeof *snapshots);
 }
+
+/* Names come in the order of species: the search goes on from the last one found. */
+static const tarry_species *find_species(const tarry_network *network, const char *name,
+                                         uint32_t *at) {
+    for (uint32_t i = 0; i < network->n_species; i++) {
+        const uint32_t here = (*at + i) % network->n_species;
+        if (!strcmp(network->species[here].name, name)) {
+            *at = here;
+            return &network->species[here];
+        }
+    }
+    return NULL;
+}
+
+bool tarry_snapshots_tell(const tarry_network *network, const char *name, uint32_t *at) {
+    const bool changes = network->n_segments > 1 || !(network->run.settle > 0);
+    const tarry_species *species = find_species(network, name, at);
+    if (!species)
+        return false;
+    return species->role == TARRY_SPECIES_PLAIN ||
+           (changes && network->run.n_snapshots > 1 && species->role != TARRY_SPECIES_STATE);
+}

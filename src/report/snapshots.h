@@ -24,4 +24,9 @@ int tarry_snapshots_init(tarry_snapshots *snapshots, const tarry_run_plan *plan,
                          const tarry_table *means, tarry_error *error);
 void tarry_snapshots_release(tarry_snapshots *snapshots);
 
+/* Whether counts of this name are worth lines of their own for a reader: nothing else tells of them
+ * (plain species), or they change with time. Promoter states are told of among the times. *at is
+ * where the last name was found, 0 before the first. */
+bool tarry_snapshots_tell(const tarry_network *network, const char *name, uint32_t *at);
+
 #endif

@@ -3,13 +3,13 @@
 #include "tarry/write.h"
 
 #include "base/error.h"
-#include "base/number.h"
 #include "model/model.h"
 #include "report/figures_table.h"
 #include "report/lines.h"
 #include "report/notes_list.h"
 #include "report/responses.h"
 #include "report/rounding.h"
+#include "report/run_words.h"
 #include "report/snapshots.h"
 #include "report/spread.h"
 
@@ -36,42 +36,12 @@ typedef struct table_page {
 
 /* ---- head ----------------------------------------------------------------------------------- */
 
-static void describe_run(const table_page *page, tarry_text *line) {
-    const tarry_run_plan *plan = &page->network->run;
-    const int64_t n = tarry_results_n_cells(page->results);
-    const int64_t asked = tarry_results_n_cells_asked(page->results);
-    const char *unit = page->network->time_unit;
-    char until[TARRY_ROUNDED], every[TARRY_ROUNDED], settle[TARRY_ROUNDED];
-    tarry_number_write(plan->until, until);
-    tarry_number_write(plan->every, every);
-    tarry_number_write(plan->settle, settle);
-    tarry_text_printf(line, "%lld cell%s", (long long)n, n == 1 ? "" : "s");
-    if (n < asked)
-        tarry_text_printf(line, " of %lld (interrupted)", (long long)asked);
-    tarry_text_printf(line, ", %s %s recorded every %s %s", until, unit, every, unit);
-    if (plan->settle > 0)
-        tarry_text_printf(line, " after %s %s to settle", settle, unit);
-    tarry_text_printf(line, ", seed %llu", (unsigned long long)plan->seed);
-}
-
-static void describe_windows(const table_page *page, tarry_text *line) {
-    const tarry_run_plan *plan = &page->network->run;
-    char from[TARRY_ROUNDED], to[TARRY_ROUNDED];
-    for (uint32_t w = 0; plan->n_windows > 1 && w < plan->n_windows; w++) {
-        tarry_number_write(plan->windows[w].from, from);
-        tarry_number_write(plan->windows[w].to, to);
-        tarry_text_printf(line, "%s%s from %s to %s %s",
-                          w ? ", " : "Windows: ", plan->windows[w].name, from, to,
-                          page->network->time_unit);
-    }
-}
-
 static void add_top(table_page *page) {
     tarry_text run = {0}, windows = {0};
     if (page->network->title[0])
         tarry_lines_wrap(page->text, "", page->network->title, page->width);
-    describe_run(page, &run);
-    describe_windows(page, &windows);
+    tarry_run_words(page->network, page->results, &run);
+    tarry_window_words(page->network, &windows);
     page->text->failed = page->text->failed || run.failed || windows.failed;
     if (!page->text->failed)
         tarry_lines_wrap(page->text, "", run.data, page->width);
@@ -90,37 +60,13 @@ static int add_figures(table_page *page, tarry_result_table which, tarry_error *
     if (!status && groups.n > GENES_SHOWN)
         status = tarry_spread_write(table, &groups, page->text, error);
     else if (!status)
-        tarry_figures_write(page->network, table, &groups, page->width, &page->marked_few,
-                            page->text);
+        status = tarry_figures_write(page->network, table, &groups, page->width, &page->marked_few,
+                                     page->text, error);
     tarry_groups_release(&groups);
     return status;
 }
 
 /* ---- counts at the snapshots ---------------------------------------------------------------- */
-
-/* The species of a name, or NULL. Names come in the order of species: the search goes on from the
- * last one found. */
-static const tarry_species *find_species(const tarry_network *network, const char *name,
-                                         uint32_t *at) {
-    for (uint32_t i = 0; i < network->n_species; i++) {
-        const uint32_t here = (*at + i) % network->n_species;
-        if (!strcmp(network->species[here].name, name)) {
-            *at = here;
-            return &network->species[here];
-        }
-    }
-    return NULL;
-}
-
-/* Counts have lines here if nothing above tells of them (plain species), or if they change with
- * time. Promoter states have theirs among the times. */
-static bool is_shown(const tarry_network *network, const tarry_species *species) {
-    const bool changes = network->n_segments > 1 || !(network->run.settle > 0);
-    if (!species)
-        return false;
-    return species->role == TARRY_SPECIES_PLAIN ||
-           (changes && network->run.n_snapshots > 1 && species->role != TARRY_SPECIES_STATE);
-}
 
 /* A name before its numbers; one that is too long has a line of its own. */
 static void add_name(tarry_text *text, const char *name, int width) {
@@ -162,7 +108,7 @@ static int add_counts(table_page *page, tarry_error *error) {
     const int status = tarry_snapshots_init(&snapshots, &page->network->run, means, error);
     for (size_t i = 0; !status && i < snapshots.n && n <= LINES_SHOWN; i++) {
         const tarry_snapshot *item = &snapshots.items[i];
-        if (!is_shown(page->network, find_species(page->network, item->name, &at)))
+        if (!tarry_snapshots_tell(page->network, item->name, &at))
             continue;
         if (!n)
             add_counts_head(page);
@@ -185,12 +131,9 @@ static void add_response(tarry_text *text, const tarry_response_figure *figure) 
     enum { VALUE = 8, INTERVAL = 17 };
     char interval[2 * TARRY_ROUNDED + 8] = "";
     tarry_rounded rounded;
-    const bool open = isnan(figure->high) && !isnan(figure->low);
-    tarry_round(figure->value, figure->low, open ? NAN : figure->high, 4, &rounded);
-    if (open)
-        tarry_round_plain(figure->low, rounded.low);
+    tarry_response_round(figure, &rounded);
     if (rounded.low[0])
-        snprintf(interval, sizeof interval, " %s to %s", rounded.low, open ? "-" : rounded.high);
+        snprintf(interval, sizeof interval, " %s to %s", rounded.low, rounded.high);
     tarry_lines_right(text, rounded.value, VALUE);
     tarry_lines_left(text, interval, INTERVAL);
 }

@@ -1,0 +1,33 @@
+#include "report/run_words.h"
+
+#include "base/number.h"
+
+void tarry_run_words(const tarry_network *network, const tarry_results *results, tarry_text *text) {
+    const tarry_run_plan *plan = &network->run;
+    const int64_t n = tarry_results_n_cells(results);
+    const int64_t asked = tarry_results_n_cells_asked(results);
+    const char *unit = network->time_unit;
+    char until[TARRY_NUMBER_SIZE], every[TARRY_NUMBER_SIZE], settle[TARRY_NUMBER_SIZE];
+    tarry_number_write(plan->until, until);
+    tarry_number_write(plan->every, every);
+    tarry_number_write(plan->settle, settle);
+    tarry_text_printf(text, "%lld cell%s", (long long)n, n == 1 ? "" : "s");
+    if (n < asked)
+        tarry_text_printf(text, " of %lld (interrupted)", (long long)asked);
+    tarry_text_printf(text, ", %s %s recorded every %s %s", until, unit, every, unit);
+    if (plan->settle > 0)
+        tarry_text_printf(text, " after %s %s to settle", settle, unit);
+    tarry_text_printf(text, ", seed %llu", (unsigned long long)plan->seed);
+}
+
+void tarry_window_words(const tarry_network *network, tarry_text *text) {
+    const tarry_run_plan *plan = &network->run;
+    char from[TARRY_NUMBER_SIZE], to[TARRY_NUMBER_SIZE];
+    for (uint32_t w = 0; plan->n_windows > 1 && w < plan->n_windows; w++) {
+        tarry_number_write(plan->windows[w].from, from);
+        tarry_number_write(plan->windows[w].to, to);
+        tarry_text_printf(text, "%s%s from %s to %s %s",
+                          w ? ", " : "Windows: ", plan->windows[w].name, from, to,
+                          network->time_unit);
+    }
+}
