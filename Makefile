@@ -85,7 +85,7 @@ $(BUILD)/members: FORCE
 	$(call keep_text,$(LIB_OBJECTS) $(SUPPORT_OBJECTS))
 
 # These call the command line as the shell does (tests/unit/whole_program.h).
-WHOLE_PROGRAM_TESTS = $(BUILD)/tests/unit/test_lost_memory $(BUILD)/tests/unit/test_lost_files
+WHOLE_PROGRAM_TESTS = $(addprefix $(BUILD)/tests/unit/test_,lost_memory lost_files killed)
 $(WHOLE_PROGRAM_TESTS): $(filter-out %/main.o,$(CLI_OBJECTS))
 
 # Libraries that need each other stand in a group. One program a test file: make build/tests/unit/test_pending
