@@ -1,0 +1,99 @@
+#include "study/predict.h"
+
+#include "base/error.h"
+#include "base/memory.h"
+#include "model/model.h"
+
+#include <string.h>
+
+int tarry_predict_leave_out(tarry_prediction *p, const char *name, const char *what,
+                            const char *why, tarry_error *error) {
+    return tarry_notes_add(&p->results->notes, (tarry_place){0}, error,
+                           "%s%s%s: left out, since %s", name, what[0] != '\0' ? ", " : "", what,
+                           why);
+}
+
+/* Is there a weight or a ramp of the signal on a species of no gene? */
+static const char *foreign(const tarry_network *network, const tarry_channel *channel) {
+    if (channel->species != TARRY_NONE)
+        return network->species[channel->species].gene == TARRY_NONE ? "it is of no gene" : NULL;
+    const tarry_signal *signal = &network->signals[channel->signal];
+    for (uint32_t i = signal->weights.from; i < signal->weights.to; i++)
+        if (network->species[network->weights[i].species].gene == TARRY_NONE)
+            return "it looks at a species of no gene";
+    return NULL;
+}
+
+int tarry_predict_views(tarry_prediction *p, const tarry_channel *channel, tarry_exact_view **views,
+                        const char **why, tarry_error *error) {
+    const uint32_t n = p->network->n_genes;
+    int code = 0;
+    *why = foreign(p->network, channel);
+    *views = tarry_arena_calloc(&p->arena, n, sizeof **views);
+    if (*views == NULL)
+        return tarry_fail_memory(error, "a prediction");
+    for (uint32_t g = 0; code == 0 && g < n; g++) {
+        if (p->network->genes[g].promoters.from == p->network->genes[g].promoters.to)
+            continue;
+        tarry_exact_view *view = &(*views)[g];
+        code = tarry_exact_view_read(p->network, &p->genes[g], channel, &p->arena, view, error);
+        if (code == 0 && view->why != NULL && *why == NULL &&
+            (view->n > 0 || channel->species != TARRY_NONE || p->genes[g].why == NULL))
+            *why = view->why;
+    }
+    return code;
+}
+
+static int read_genes(tarry_prediction *p, tarry_error *error) {
+    int code = 0;
+    p->genes = tarry_arena_calloc(&p->arena, p->network->n_genes, sizeof *p->genes);
+    if (p->genes == NULL)
+        return tarry_fail_memory(error, "a prediction");
+    for (uint32_t g = 0; code == 0 && g < p->network->n_genes; g++) {
+        const tarry_gene *gene = &p->network->genes[g];
+        if (gene->promoters.from == gene->promoters.to) {
+            p->genes[g] = (tarry_exact_gene){.gene = g, .why = "plain reactions have no exact law"};
+            continue;
+        }
+        code = tarry_exact_gene_read(&p->index, p->network->segments, g, &p->arena, &p->genes[g],
+                                     error);
+        if (code != 0)
+            tarry_error_context(error, "%s", gene->name);
+    }
+    return code;
+}
+
+/* Genes that are left out as a whole are told once. */
+static int note_genes(tarry_prediction *p, tarry_error *error) {
+    int code = 0;
+    for (uint32_t g = 0; code == 0 && g < p->network->n_genes; g++)
+        if (p->genes[g].why != NULL)
+            code = tarry_predict_leave_out(p, p->network->genes[g].name, "", p->genes[g].why,
+                                           error);
+    return code;
+}
+
+int tarry_predict_network(const tarry_network *network, tarry_results **results,
+                          tarry_error *error) {
+    static int (*const parts[])(tarry_prediction *, tarry_error *) = {
+        read_genes,           note_genes,          tarry_predict_counts,
+        tarry_predict_bursts, tarry_predict_films, tarry_predict_first};
+    tarry_prediction p = {.network = network, .horizon = network->run.settle + network->run.until};
+    *results = NULL;
+    int code = tarry_results_new(&p.results, error);
+    if (code == 0)
+        code = tarry_flow_index_init(&p.index, network, error);
+    for (size_t i = 0; code == 0 && i < sizeof parts / sizeof *parts; i++)
+        code = parts[i](&p, error);
+    tarry_flow_index_release(&p.index);
+    tarry_arena_release(&p.arena);
+    if (code != 0)
+        tarry_results_free(p.results);
+    else
+        *results = p.results;
+    return code;
+}
+
+int tarry_predict(const tarry_model *model, tarry_results **results, tarry_error *error) {
+    return tarry_predict_network(&model->network, results, error);
+}

@@ -1,0 +1,45 @@
+#ifndef TARRY_STUDY_PREDICT_H
+#define TARRY_STUDY_PREDICT_H
+
+/* The parts of a prediction, one for each group of tables; all take and give the same. */
+
+#include "exact/gene.h"
+#include "exact/view.h"
+#include "tally/results.h"
+#include "tarry/predict.h"
+
+typedef struct tarry_prediction {
+    const tarry_network *network;
+    tarry_flow_index index;
+    tarry_arena arena;
+    tarry_exact_gene *genes; /* [n_genes]; of named bursts only `why` is there */
+    double horizon;          /* the greatest age of a molecule: settling and record */
+    tarry_results *results;
+} tarry_prediction;
+
+/* As tarry_predict. */
+int tarry_predict_network(const tarry_network *network, tarry_results **results,
+                          tarry_error *error);
+
+/* means.csv, distribution.csv, and the moments in bursts.csv and signals.csv. */
+int tarry_predict_counts(tarry_prediction *prediction, tarry_error *error);
+
+/* Burst figures in bursts.csv; burst_sizes.csv, dwells.csv. */
+int tarry_predict_bursts(tarry_prediction *prediction, tarry_error *error);
+
+/* autocorrelation.csv, and decay times in bursts.csv and signals.csv. */
+int tarry_predict_films(tarry_prediction *prediction, tarry_error *error);
+
+/* first.csv. */
+int tarry_predict_first(tarry_prediction *prediction, tarry_error *error);
+
+/* A note "NAME WHAT: left out, since WHY". `what` may be "". */
+int tarry_predict_leave_out(tarry_prediction *prediction, const char *name, const char *what,
+                            const char *why, tarry_error *error);
+
+/* What a channel sees of each gene: views[n_genes] in the arena, and why it cannot be worked out
+ * (*why NULL: it can). A channel that looks at a species of no gene is refused. */
+int tarry_predict_views(tarry_prediction *prediction, const tarry_channel *channel,
+                        tarry_exact_view **views, const char **why, tarry_error *error);
+
+#endif
