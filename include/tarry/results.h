@@ -52,6 +52,9 @@ int64_t tarry_results_n_cells_asked(const tarry_results *results); /* equal unle
 double tarry_results_firings(const tarry_results *results);        /* settling included */
 double tarry_results_completions(const tarry_results *results);
 
+/* True of what tarry_predict worked out: there are no cells then, no seed and no sampler. */
+int tarry_results_is_predicted(const tarry_results *results);
+
 void tarry_results_free(tarry_results *results); /* NULL is fine */
 
 #endif

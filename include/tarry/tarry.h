@@ -7,6 +7,7 @@
 #include "tarry/check.h"
 #include "tarry/error.h"
 #include "tarry/model.h"
+#include "tarry/predict.h"
 #include "tarry/results.h"
 #include "tarry/run.h"
 #include "tarry/table.h"

@@ -31,21 +31,6 @@ static int check_figures(const char *kind) {
                           "--figures %s: one of svg, pdf, png and none is due here", kind);
 }
 
-/* "models/vela.yaml" -> "vela.out". */
-static char *default_folder(const char *path) {
-    const char *slash = strrchr(path, '/');
-    const char *name = slash ? slash + 1 : path;
-    const char *dot = strrchr(name, '.');
-    const bool known = dot && dot != name && (!strcmp(dot, ".yaml") || !strcmp(dot, ".yml"));
-    const size_t n = known ? (size_t)(dot - name) : strlen(name);
-    char *folder = malloc(n + sizeof ".out");
-    if (folder) {
-        memcpy(folder, name, n);
-        strcpy(folder + n, ".out");
-    }
-    return folder;
-}
-
 static int read_model(const tarry_settings *settings, tarry_model **model) {
     tarry_error error = {0};
     if (settings->operand)
@@ -147,7 +132,8 @@ int tarry_command_run(const tarry_settings *settings) {
     if (status)
         return status;
     char *made = settings->out ? NULL
-                               : default_folder(settings->operand ? settings->operand : demo_name);
+                               : tarry_command_folder(
+                                     settings->operand ? settings->operand : demo_name, ".out");
     const char *folder = settings->out ? settings->out : made;
     if (folder)
         status = run_model(settings, folder, model);

@@ -4,6 +4,7 @@
 #include "tarry/tarry.h"
 
 #include <errno.h>
+#include <stdlib.h>
 #include <string.h>
 #include <unistd.h>
 
@@ -18,12 +19,18 @@ static const char about_check[] =
     "mean and standard deviation, how far from steady the record begins, the size of\n"
     "the run, and everything that looks wrong. Nothing is simulated.\n";
 
+static const char about_predict[] =
+    "Works out what a run of MODEL would find with endlessly many cells, without\n"
+    "simulating any, and writes the same files. What the mathematics does not cover\n"
+    "is left out, and said why.\n";
+
 const tarry_command tarry_commands[] = {
     {"check", "MODEL", TARRY_FOR_CHECK, "read and check a model, print what it comes down to",
      about_check, tarry_command_check},
     {"run", "[MODEL]", TARRY_FOR_RUN, "simulate a model, print its table, write results", about_run,
      tarry_command_run},
-    {"predict", "MODEL", TARRY_FOR_ALL, "the same without simulation, where known", NULL, NULL},
+    {"predict", "MODEL", TARRY_FOR_PREDICT, "the same without simulation, where known",
+     about_predict, tarry_command_predict},
     {"measure", "DATA.csv", TARRY_FOR_ALL, "the same figures from laboratory data", NULL, NULL},
     {"fit", "MODEL", TARRY_FOR_ALL, "rates and delays from data, with intervals", NULL, NULL},
     {"compare", "MODEL", TARRY_FOR_ALL, "which of several models the data favour", NULL, NULL},
@@ -102,4 +109,18 @@ int tarry_command_read_model(const tarry_settings *settings, tarry_model **model
     if (tarry_model_read(path, settings->overrides, settings->n_overrides, model, &error))
         return tarry_complain_error(&error);
     return TARRY_EXIT_DONE;
+}
+
+char *tarry_command_folder(const char *path, const char *ending) {
+    const char *slash = strrchr(path, '/');
+    const char *name = slash ? slash + 1 : path;
+    const char *dot = strrchr(name, '.');
+    const bool known = dot && dot != name && (!strcmp(dot, ".yaml") || !strcmp(dot, ".yml"));
+    const size_t n = known ? (size_t)(dot - name) : strlen(name);
+    char *folder = malloc(n + strlen(ending) + 1);
+    if (folder) {
+        memcpy(folder, name, n);
+        strcpy(folder + n, ending);
+    }
+    return folder;
 }

@@ -33,10 +33,15 @@ int tarry_command_help_on(const tarry_command *command);
 
 int tarry_command_run(const tarry_settings *settings);
 int tarry_command_check(const tarry_settings *settings);
+int tarry_command_predict(const tarry_settings *settings);
 int tarry_command_help(const tarry_settings *settings);
 int tarry_command_version(const tarry_settings *settings);
 
 /* Read a model file, and complain where that fails. Returns the exit status. */
 int tarry_command_read_model(const tarry_settings *settings, tarry_model **model);
+
+/* The folder for results where none is named: "models/vela.yaml" and ".out" give "vela.out". To be
+ * freed; NULL when memory is short. */
+char *tarry_command_folder(const char *path, const char *ending);
 
 #endif

@@ -31,14 +31,15 @@ typedef struct option_row {
 } option_row;
 
 #define FIELD(name) offsetof(tarry_settings, name)
-#define MODEL_COMMANDS (TARRY_FOR_RUN | TARRY_FOR_CHECK)
+#define MODEL_COMMANDS (TARRY_FOR_RUN | TARRY_FOR_CHECK | TARRY_FOR_PREDICT)
+#define WRITING_COMMANDS (TARRY_FOR_RUN | TARRY_FOR_PREDICT)
 #define MOST_CELLS 1000000000000
 #define MOST_SEED 9223372036854775807
 
 static const option_row options[] = {
-    {"out", "DIR", VALUE_TEXT, TARRY_FOR_RUN, FIELD(out), 0, 0,
-     "folder for results; default: the model's name with .out"},
-    {"overwrite", NULL, VALUE_NONE, TARRY_FOR_RUN, FIELD(overwrite), 0, 0,
+    {"out", "DIR", VALUE_TEXT, WRITING_COMMANDS, FIELD(out), 0, 0,
+     "folder for results; default: the model's name with .out or .exact"},
+    {"overwrite", NULL, VALUE_NONE, WRITING_COMMANDS, FIELD(overwrite), 0, 0,
      "replace the results of an earlier run in that folder"},
     {"cells", "N", VALUE_NUMBER, MODEL_COMMANDS, 0, 1, MOST_CELLS, "cells to simulate"},
     {"settle", "T", VALUE_KEY, MODEL_COMMANDS, 0, 0, 0,
@@ -59,7 +60,7 @@ static const option_row options[] = {
      "write traces of the first N cells"},
     {"figures", "KIND", VALUE_TEXT, TARRY_FOR_RUN, FIELD(figures), 0, 0,
      "svg, pdf, png (not yet) or none"},
-    {"quiet", NULL, VALUE_NONE, TARRY_FOR_RUN, FIELD(quiet), 0, 0,
+    {"quiet", NULL, VALUE_NONE, WRITING_COMMANDS, FIELD(quiet), 0, 0,
      "no progress and no remarks on standard error"},
     {"build", NULL, VALUE_NONE, TARRY_FOR_VERSION, FIELD(build), 0, 0,
      "also how the program was built"},

@@ -13,6 +13,7 @@ typedef enum tarry_command_bit {
     TARRY_FOR_RUN = 1,
     TARRY_FOR_CHECK = 2,
     TARRY_FOR_VERSION = 4,
+    TARRY_FOR_PREDICT = 8,
     TARRY_FOR_ALL = ~0,
 } tarry_command_bit;
 

@@ -10,9 +10,24 @@
 #include <math.h>
 #include <stdlib.h>
 
-static const double steady = 1e-9; /* most difference of a state's probability */
+static const double steady = 1e-9;    /* most difference of a state's probability, */
+static const double forgotten = 1e-7; /* and of a contribution left out, as a share of all */
 
 /* ---- the promoter ---------------------------------------------------------------------------- */
+
+/* The age beyond which next to nothing of a contribution lies. */
+double tarry_exact_memory(const tarry_curve *contribution) {
+    const double all = tarry_curve_integral(contribution, INFINITY);
+    double low = 0, high = tarry_curve_end(contribution);
+    for (int i = 0; i < 40; i++) {
+        const double middle = 0.5 * (low + high);
+        if (fabs(all - tarry_curve_integral(contribution, middle)) > forgotten * fabs(all))
+            low = middle;
+        else
+            high = middle;
+    }
+    return high;
+}
 
 /* One regime all along, and the same probabilities at both ends: the chain's law then stays. */
 static int check_steady(const tarry_exact_gene *gene, double from, double to, double *p,
@@ -194,8 +209,8 @@ int tarry_exact_covariance_init(const tarry_exact_gene *gene, const tarry_exact_
     if (p == NULL)
         return tarry_fail_memory(error, "the covariance of signals");
     int code = find_contributions(gene, one, other, horizon, c, error);
-    const double memory = fmax(tarry_curve_end(&c->contribution[0]),
-                               tarry_curve_end(&c->contribution[1]));
+    const double memory = fmax(tarry_exact_memory(&c->contribution[0]),
+                               tarry_exact_memory(&c->contribution[1]));
     if (code == 0)
         code = check_steady(gene, from - memory, to, p, why, error);
     if (code == 0 && *why == NULL)

@@ -34,4 +34,7 @@ void tarry_exact_covariance_release(tarry_exact_covariance *covariance);
  * Vere-Jones 2003, An Introduction to the Theory of Point Processes, chapter 6; from memory). */
 double tarry_exact_covariance_at(const tarry_exact_covariance *covariance, double lag);
 
+/* The age beyond which no more than 1e-7 of a contribution lies. */
+double tarry_exact_memory(const tarry_curve *contribution);
+
 #endif

@@ -36,7 +36,10 @@ static void take(const tarry_network *network, const tarry_exact_gene *gene, uin
         return;
     const int64_t stage = stage_of(gene, species);
     if (stage == TARRY_NONE) {
-        view->why = "it looks at a promoter or at proteins";
+        view->why = network->species[species].role == TARRY_SPECIES_STATE ||
+                            network->species[species].role == TARRY_SPECIES_ALLELE
+                        ? "signals that see promoter states are not covered"
+                        : "proteins are not covered";
         return;
     }
     if (view->why == NULL)

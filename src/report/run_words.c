@@ -11,13 +11,17 @@ void tarry_run_words(const tarry_network *network, const tarry_results *results,
     tarry_number_write(plan->until, until);
     tarry_number_write(plan->every, every);
     tarry_number_write(plan->settle, settle);
-    tarry_text_printf(text, "%lld cell%s", (long long)n, n == 1 ? "" : "s");
-    if (n < asked)
+    if (tarry_results_is_predicted(results))
+        tarry_text_printf(text, "worked out without simulation");
+    else
+        tarry_text_printf(text, "%lld cell%s", (long long)n, n == 1 ? "" : "s");
+    if (!tarry_results_is_predicted(results) && n < asked)
         tarry_text_printf(text, " of %lld (interrupted)", (long long)asked);
     tarry_text_printf(text, ", %s %s recorded every %s %s", until, unit, every, unit);
     if (plan->settle > 0)
         tarry_text_printf(text, " after %s %s to settle", settle, unit);
-    tarry_text_printf(text, ", seed %llu", (unsigned long long)plan->seed);
+    if (!tarry_results_is_predicted(results))
+        tarry_text_printf(text, ", seed %llu", (unsigned long long)plan->seed);
 }
 
 void tarry_window_words(const tarry_network *network, tarry_text *text) {

@@ -301,22 +301,30 @@ static json_t *describe_files(const tarry_listed_file *files, size_t n_files) {
     return list;
 }
 
-static void write_head(json_writer *writer, const tarry_model *model, const tarry_results *results,
-                       const tarry_provenance *provenance) {
-    const tarry_network *network = &model->network;
-    member(writer, "tarry", json_string(tarry_version()));
-    member(writer, "status", json_string(provenance->partial ? "partial" : "complete"));
-    member(writer, "title", tarry_json_text(network->title));
-    member(writer, "time_unit", tarry_json_text(network->time_unit));
+static void write_simulation(json_writer *writer, const tarry_network *network,
+                             const tarry_results *results, const tarry_provenance *provenance) {
     member(writer, "cells", json_integer(tarry_results_n_cells(results)));
     member(writer, "cells_asked", json_integer(tarry_results_n_cells_asked(results)));
     member(writer, "seed", json_integer((json_int_t)network->run.seed));
     member(writer, "sampler", tarry_json_text(provenance->sampler));
     member(writer, "keep", json_integer(provenance->keep));
-    member(writer, "options", describe_overrides(provenance));
-    member(writer, "run", describe_plan(&network->run));
     member(writer, "firings", tarry_json_number(tarry_results_firings(results)));
     member(writer, "completions", tarry_json_number(tarry_results_completions(results)));
+}
+
+static void write_head(json_writer *writer, const tarry_model *model, const tarry_results *results,
+                       const tarry_provenance *provenance) {
+    const tarry_network *network = &model->network;
+    const bool predicted = tarry_results_is_predicted(results);
+    member(writer, "tarry", json_string(tarry_version()));
+    member(writer, "status", json_string(provenance->partial ? "partial" : "complete"));
+    member(writer, "title", tarry_json_text(network->title));
+    member(writer, "time_unit", tarry_json_text(network->time_unit));
+    member(writer, "method", json_string(predicted ? "exact" : "simulation"));
+    if (!predicted)
+        write_simulation(writer, network, results, provenance);
+    member(writer, "options", describe_overrides(provenance));
+    member(writer, "run", describe_plan(&network->run));
     member(writer, "warnings", describe_warnings(model, results));
 }
 

@@ -3,6 +3,7 @@
 #include "base/error.h"
 #include "base/memory.h"
 #include "model/model.h"
+#include "tally/dwells.h"
 
 #include <string.h>
 
@@ -76,13 +77,15 @@ static int note_genes(tarry_prediction *p, tarry_error *error) {
 int tarry_predict_network(const tarry_network *network, tarry_results **results,
                           tarry_error *error) {
     static int (*const parts[])(tarry_prediction *, tarry_error *) = {
-        read_genes,           note_genes,          tarry_predict_counts,
-        tarry_predict_bursts, tarry_predict_films, tarry_predict_first};
+        read_genes,           note_genes,          tarry_predict_bursts,
+        tarry_predict_counts, tarry_predict_films, tarry_predict_first};
     tarry_prediction p = {.network = network, .horizon = network->run.settle + network->run.until};
     *results = NULL;
     int code = tarry_results_new(&p.results, error);
-    if (code == 0)
+    if (code == 0) {
+        p.results->is_predicted = true;
         code = tarry_flow_index_init(&p.index, network, error);
+    }
     for (size_t i = 0; code == 0 && i < sizeof parts / sizeof *parts; i++)
         code = parts[i](&p, error);
     tarry_flow_index_release(&p.index);
@@ -96,4 +99,11 @@ int tarry_predict_network(const tarry_network *network, tarry_results **results,
 
 int tarry_predict(const tarry_model *model, tarry_results **results, tarry_error *error) {
     return tarry_predict_network(&model->network, results, error);
+}
+
+void tarry_predict_grid(double longest, double times[TARRY_PREDICT_POINTS]) {
+    enum { FIRST = TARRY_DWELL_BINS - (TARRY_PREDICT_POINTS - 1) * TARRY_PREDICT_BINS };
+    times[0] = 0;
+    for (uint32_t i = 1; i < TARRY_PREDICT_POINTS; i++)
+        times[i] = tarry_dwell_bin_end(FIRST + i * TARRY_PREDICT_BINS - 1, longest);
 }

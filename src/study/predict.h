@@ -42,4 +42,9 @@ int tarry_predict_leave_out(tarry_prediction *prediction, const char *name, cons
 int tarry_predict_views(tarry_prediction *prediction, const tarry_channel *channel,
                         tarry_exact_view **views, const char **why, tarry_error *error);
 
+/* Times at which survival curves are told: 0, and ends of bins of a run's curves (tally/dwells.h)
+ * up to `longest`, the last. */
+enum { TARRY_PREDICT_BINS = 4, TARRY_PREDICT_POINTS = 121 };
+void tarry_predict_grid(double longest, double times[TARRY_PREDICT_POINTS]);
+
 #endif

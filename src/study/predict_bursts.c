@@ -8,10 +8,8 @@
 
 #include <math.h>
 
-enum { CURVE_POINTS = 100 };
-
-/* Sizes below this probability, and the last part of a curve, are not told. */
-static const double least_told = 1e-12, last_told = 1e-3;
+/* Sizes and survivals below these are not told. */
+static const double least_size = 1e-12, least_survival = 1e-6;
 
 static void figures_of(const tarry_exact_bursts *b, double out[TARRY_N_BURST_QUANTITIES]) {
     const double loud = 1 - b->silent_fraction;
@@ -54,28 +52,23 @@ static int tell_sizes(tarry_prediction *p, const char *gene, const char *window,
         double sum = 0;
         for (; n < b->n_sizes && (double)n < start + width; n++)
             sum += b->sizes[n];
-        if (sum >= least_told)
+        if (sum >= least_size)
             code = tarry_table_add(table, error, gene, window, start, width, NAN, sum, NAN, NAN);
     }
     return code;
 }
 
-/* Until next to nothing is left, or the record would end. */
 static int tell_dwell(tarry_prediction *p, const char *gene, const char *window, const char *period,
                       const tarry_exact_dwell *dwell, tarry_error *error) {
     tarry_table *table = p->results->tables[TARRY_TABLE_dwells];
-    const double longest = p->network->run.until;
-    double end = dwell->mean, survival = 1;
+    double times[TARRY_PREDICT_POINTS], survival = 1;
     int code = 0;
-    while (code == 0 && survival > last_told && end < longest) {
-        end = fmin(1.25 * end, longest);
-        code = tarry_exact_dwell_survival(dwell, end, &survival, error);
-    }
-    for (int i = 0; code == 0 && i <= CURVE_POINTS; i++) {
-        const double time = end * i / CURVE_POINTS;
-        code = tarry_exact_dwell_survival(dwell, time, &survival, error);
+    tarry_predict_grid(2 * p->network->run.until, times);
+    for (int i = 0; code == 0 && i < TARRY_PREDICT_POINTS && survival > least_survival; i++) {
+        code = tarry_exact_dwell_survival(dwell, times[i], &survival, error);
         if (code == 0)
-            code = tarry_table_add(table, error, gene, window, period, time, survival, NAN, NAN);
+            code = tarry_table_add(table, error, gene, window, period, times[i], survival, NAN,
+                                   NAN);
     }
     return code;
 }

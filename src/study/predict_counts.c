@@ -10,6 +10,7 @@
 #include "base/table.h"
 #include "exact/chain.h"
 #include "exact/counts.h"
+#include "exact/covariance.h"
 #include "exact/moments.h"
 #include "tally/bins.h"
 #include "tally/channels.h"
@@ -203,7 +204,7 @@ static int tell_law(tarry_prediction *p, const char *name, const char *window, d
 /* The chain is in one law, and as long ago as a molecule is remembered it was too. */
 static int is_steady(const tarry_exact_gene *gene, const tarry_exact_carried *carried, double from,
                      double to, bool *steady, tarry_error *error) {
-    const double begin = from - carried->load.horizon;
+    const double begin = from - tarry_exact_memory(&carried->mean);
     double *p = tarry_calloc(2 * gene->n_states, sizeof *p);
     *steady = begin >= gene->regimes[0].from &&
               tarry_exact_regime_before(gene, to) == tarry_exact_regime_before(gene, begin);

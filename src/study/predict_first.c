@@ -7,8 +7,6 @@
 #include <math.h>
 #include <string.h>
 
-enum { POINTS = 100 };
-
 /* The stage that is waited for: 0 an initiation, n what comes after the n-th; or TARRY_NONE. */
 static int64_t stage_of(const tarry_exact_gene *gene, const tarry_first *first, const char **why) {
     const tarry_exact_chain *chain = &gene->transcript;
@@ -24,13 +22,12 @@ static int64_t stage_of(const tarry_exact_gene *gene, const tarry_first *first, 
 
 static int predict_curve(tarry_prediction *p, const tarry_first *first, int64_t stage,
                          const tarry_response *response, tarry_error *error) {
-    double times[POINTS + 1], share[POINTS + 1];
+    double times[TARRY_PREDICT_POINTS], share[TARRY_PREDICT_POINTS];
     int code = 0;
-    for (int i = 0; i <= POINTS; i++)
-        times[i] = (response->to - response->from) * i / POINTS;
+    tarry_predict_grid(response->to - response->from, times);
     code = tarry_exact_none_yet(&p->genes[first->gene], (size_t)stage, response->from, times,
-                                POINTS + 1, p->horizon, share, error);
-    for (int i = 0; code == 0 && i <= POINTS; i++)
+                                TARRY_PREDICT_POINTS, p->horizon, share, error);
+    for (int i = 0; code == 0 && i < TARRY_PREDICT_POINTS; i++)
         code = tarry_table_add(p->results->tables[TARRY_TABLE_first], error, first->name,
                                response->from, times[i], share[i], NAN, NAN);
     return code;

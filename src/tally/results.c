@@ -69,3 +69,7 @@ double tarry_results_firings(const tarry_results *results) {
 double tarry_results_completions(const tarry_results *results) {
     return results->completions;
 }
+
+int tarry_results_is_predicted(const tarry_results *results) {
+    return results->is_predicted;
+}

@@ -1,6 +1,7 @@
 #ifndef TARRY_TALLY_RESULTS_H
 #define TARRY_TALLY_RESULTS_H
 
+#include <stdbool.h>
 #include "base/notes.h"
 #include "base/table.h"
 #include "tarry/results.h"
@@ -13,6 +14,7 @@ struct tarry_results {
     int64_t n_cells_asked;
     double firings;
     double completions;
+    bool is_predicted;
 };
 
 /* Empty tables. */

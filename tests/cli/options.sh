@@ -64,7 +64,7 @@ ok "unknown sampler" wrong "directt" run small.yaml --sampler directt
 
 ok "figures, not yet" wrong "not yet" run small.yaml --figures svg
 ok "figures of no known kind" wrong "svg, pdf, png and none" run small.yaml --figures gif
-for command in predict measure fit compare plan sweep; do
+for command in measure fit compare plan sweep; do
     ok "$command, not yet" wrong "not yet" "$command" small.yaml
 done
 
