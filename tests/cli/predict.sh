@@ -27,10 +27,10 @@ ok "tables are those of a run" as_a_run
 
 # Twice the rate of initiation, twice the size of a burst.
 set_rate() {
-    run 0 predict "$models/burst_sizes.yaml" --out one --set k_init=4 &&
-        run 0 predict "$models/burst_sizes.yaml" --out two --set k_init=8 || return 1
-    awk -F, '$3 == "burst_size_mean" { print $1, $5 * (FILENAME ~ /one/ ? 2 : 1) }' one/bursts.csv >doubled
-    awk -F, '$3 == "burst_size_mean" { print $1, $5 }' two/bursts.csv | cmp -s - doubled
+    run 0 predict "$models/burst_sizes.yaml" --out slow --set k_init=4 &&
+        run 0 predict "$models/burst_sizes.yaml" --out fast --set k_init=8 || return 1
+    awk -F, '$3 == "burst_size_mean" { print $1, $5 * (FILENAME ~ /slow/ ? 2 : 1) }' slow/bursts.csv >doubled
+    awk -F, '$3 == "burst_size_mean" { print $1, $5 }' fast/bursts.csv | cmp -s - doubled
 }
 ok "--set changes what is predicted" set_rate
 
