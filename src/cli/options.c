@@ -38,7 +38,7 @@ typedef struct option_row {
 
 static const option_row options[] = {
     {"out", "DIR", VALUE_TEXT, WRITING_COMMANDS, FIELD(out), 0, 0,
-     "folder for results; default: model's name and .out, .exact"},
+     "folder for results; default: NAME.out or NAME.exact"},
     {"overwrite", NULL, VALUE_NONE, WRITING_COMMANDS, FIELD(overwrite), 0, 0,
      "replace the results of an earlier run in that folder"},
     {"cells", "N", VALUE_NUMBER, MODEL_COMMANDS, 0, 1, MOST_CELLS, "cells to simulate"},

@@ -210,10 +210,37 @@ static void apply(const double *x, const double *matrix, size_t n, double *out) 
     }
 }
 
+/* E[N] = entry (-Q_AA)^-1 jump 1 and E[N (N - 1)] = 2 entry (-Q_AA)^-1 jump_AA (-Q_AA)^-1 jump 1.
+ */
+static int find_size_moments(const finder *f, const size_steps *s) {
+    const tarry_exact_dwell *active = &f->out->active;
+    const size_t n = s->n;
+    double *x = tarry_arena_calloc(f->arena, n, sizeof *x);
+    double *y = tarry_arena_calloc(f->arena, n, sizeof *y);
+    double mean = 0, pairs = 0;
+    if (x == NULL || y == NULL)
+        return no_memory(f);
+    memcpy(x, active->entry, n * sizeof *x);
+    int code = solve(n, active->moves, false, x, f->error);
+    apply(x, s->jump, n, y);
+    if (code == 0)
+        code = solve(n, active->moves, false, y, f->error);
+    for (size_t i = 0; code == 0 && i < n; i++) {
+        double all = s->out[1][i];
+        for (size_t j = 0; j < n; j++)
+            all += s->jump[i * n + j];
+        mean += x[i] * all;
+        pairs += 2 * y[i] * all;
+    }
+    f->out->size_mean = mean;
+    f->out->size_sd = sqrt(fmax(pairs + mean - mean * mean, 0));
+    return code;
+}
+
 static int find_sizes(const finder *f, const size_t *on, size_t n_on) {
     tarry_exact_bursts *b = f->out;
     size_steps s = {0};
-    double *inverse = NULL, left = 1, kept = 0, first = 0, second = 0;
+    double *inverse = NULL, left = 1, kept = 0;
     double *next = tarry_arena_calloc(f->arena, n_on, sizeof *next);
     size_t capacity = 0;
     int code = make_steps(f, on, n_on, &s);
@@ -225,20 +252,15 @@ static int find_sizes(const finder *f, const size_t *on, size_t n_on) {
         if (tarry_arena_grow(f->arena, (void **)&b->sizes, &capacity, b->n_sizes + 1,
                              sizeof *b->sizes) != 0)
             return no_memory(f);
-        const double size = (double)b->n_sizes;
         const double p = kept + product(s.visits, s.out[0], n_on);
         kept = product(s.visits, s.out[1], n_on);
         b->sizes[b->n_sizes] = p;
         left -= p;
-        first += size * p;
-        second += size * size * p;
         apply(s.visits, s.jump, n_on, next);
         apply(next, inverse, n_on, s.visits);
     }
-    b->size_mean = first;
-    b->size_sd = sqrt(fmax(second - first * first, 0));
     b->silent_fraction = code == 0 ? b->sizes[0] : 0;
-    return code;
+    return code == 0 ? find_size_moments(f, &s) : code;
 }
 
 /* ---- the whole ------------------------------------------------------------------------------- */
