@@ -142,6 +142,15 @@ bench: deps
 	@$(MAKE) --no-print-directory -s -j$(JOBS) $(BUILD)/bench
 	@$(BUILD)/bench
 
+tsan: deps-dev
+	@MAKE='$(MAKE)' BUILD='$(BUILD)' JOBS='$(JOBS)' sh tests/tsan.sh
+
+memcheck: deps-dev
+	@MAKE='$(MAKE)' BUILD='$(BUILD)' JOBS='$(JOBS)' sh tests/memcheck.sh
+
+instructions: deps-dev
+	@MAKE='$(MAKE)' BUILD='$(BUILD)' JOBS='$(JOBS)' sh tests/instructions.sh
+
 format: deps-dev
 	clang-format -i $$(git ls-files '*.c' '*.h')
 
@@ -155,11 +164,11 @@ install: all
 	$(INSTALL) -m 644 $(wildcard models/*.*) $(DESTDIR)$(PREFIX)/share/tarry/models
 
 clean:
-	rm -rf $(BUILD) $(BUILD)-asan $(BUILD)-lint-gcc $(BUILD)-lint-clang
+	rm -rf $(BUILD) $(BUILD)-asan $(BUILD)-lint-gcc $(BUILD)-lint-clang $(BUILD)-tsan
 
 FORCE:
 .PHONY: all tests tests-slow everything list-tests list-tests-slow deps deps-test deps-dev demo test \
-  test-slow coverage lint bench format install clean FORCE
+  test-slow coverage lint tsan memcheck instructions bench format install clean FORCE
 .SECONDARY:
 .DELETE_ON_ERROR:
 -include $(LIB_OBJECTS:.o=.d) $(CLI_OBJECTS:.o=.d) $(SUPPORT_OBJECTS:.o=.d) $(BENCH_OBJECTS:.o=.d) \

@@ -110,12 +110,17 @@ need_dev() {
     need_program shellcheck shellcheck
     need_program valgrind valgrind
     if command -v clang >/dev/null 2>&1; then
+        version=$(clang -dumpversion | cut -d. -f1)
+        CC=clang need_library "libclang-rt-$version-dev" "the sanitizers of clang" "-fsanitize=thread" <<'END'
+int main(void) { return 0; }
+END
         CC=clang need_library libomp-dev "OpenMP for clang" "-fopenmp" <<'END'
 #include <omp.h>
 int main(void) { return omp_get_max_threads() < 1; }
 END
     else
         lack libomp-dev "OpenMP for clang"
+        lack libclang-rt-dev "the sanitizers of clang"
     fi
 }
 

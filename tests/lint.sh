@@ -1,7 +1,9 @@
 #!/bin/sh
-# Look for what compilers, analysers and a few rules of the project can find without running anything.
+# Look for what compilers, analysers and a few rules of the project can find; and, running the program, what
+# ThreadSanitizer and Valgrind see and how many instructions it takes.
 #
 #   sh tests/lint.sh [STEP...]    steps: text includes rules format shell cppcheck gcc clang library tidy
+#                                  threads memory instructions
 #
 # All steps run, whatever earlier ones found; the exit status is 0 only where none found anything.
 # Settings from the environment: BUILD, JOBS, MAKE.
@@ -128,7 +130,20 @@ step_tidy() {
         none "clang-tidy"
 }
 
-[ $# -gt 0 ] || set -- text includes rules format shell cppcheck gcc clang library tidy
+step_threads() {
+    sh tests/tsan.sh
+}
+
+step_memory() {
+    sh tests/memcheck.sh
+}
+
+step_instructions() {
+    sh tests/instructions.sh
+}
+
+[ $# -gt 0 ] || set -- text includes rules format shell cppcheck gcc clang library tidy threads memory \
+    instructions
 failed=
 for step in "$@"; do
     start=$(date +%s)

@@ -1,6 +1,11 @@
 /* How long a firing or a completion takes: the engine bare and with the default tallies, beside
  * loops written by hand for the same model, all in one run and one thread, turn about, so that a
- * machine whose speed drifts treats all alike. Medians of the rounds are printed. */
+ * machine whose speed drifts treats all alike. Medians of the rounds are printed.
+ *
+ *     bench count CASE WHAT
+ *
+ * does one cell of a case once, for those who count instructions (tests/instructions.sh): CASE is
+ * a, b, c or d, WHAT is bare, tallied or hand. It prints the number of events. */
 
 #define _POSIX_C_SOURCE 200809L
 
@@ -75,7 +80,7 @@ static double now(void) {
 }
 
 /* 1,000 genes written out; the text is the caller's. */
-static char *make_many(void) {
+static char *make_many(const char *until_when) {
     tarry_text text = {0};
     tarry_text_add_string(&text, HEAD "genes:\n");
     for (int i = 0; i < 1000; i++) {
@@ -83,7 +88,7 @@ static char *make_many(void) {
         snprintf(name, sizeof name, "vela%d", i);
         tarry_text_printf(&text, GENE("%s", "{fixed: 2.3}", "{fixed: 25}"), name);
     }
-    tarry_text_add_string(&text, "run: {until: 100}\n");
+    tarry_text_printf(&text, "run: {until: %s}\n", until_when);
     if (text.failed)
         exit(1);
     return text.data;
@@ -120,8 +125,11 @@ static void tear_down(bench *b) {
     tarry_model_free(b->model);
 }
 
+/* What instructions are counted of must keep its name. */
+#define COUNTED static __attribute__((noinline))
+
 /* Nanoseconds an event. */
-static double time_bare(bench *b, int cells, double *n_events) {
+COUNTED double time_bare(bench *b, int cells, double *n_events) {
     tarry_error error;
     int64_t events = 0;
     const double start = now();
@@ -144,7 +152,7 @@ static int64_t count_events(const bench *b) {
     return events;
 }
 
-static double time_tallied(bench *b, int cells, int round) {
+COUNTED double time_tallied(bench *b, int cells, int round, double *n_events) {
     tarry_error error;
     int64_t events = 0;
     const double start = now();
@@ -155,10 +163,11 @@ static double time_tallied(bench *b, int cells, int round) {
             die(&error);
         events += count_events(b);
     }
+    *n_events = (double)events;
     return 1e9 * (now() - start) / (double)events;
 }
 
-static double time_hand(hand_loop loop, int cells) {
+COUNTED double time_hand(hand_loop loop, int cells, double *n_events) {
     int64_t events = 0;
     const double start = now();
     for (int i = 0; i < cells; i++) {
@@ -167,6 +176,7 @@ static double time_hand(hand_loop loop, int cells) {
             exit(1);
         events += result.firings + result.completions;
     }
+    *n_events = (double)events;
     return 1e9 * (now() - start) / (double)events;
 }
 
@@ -181,19 +191,19 @@ static double median(double values[ROUNDS]) {
 }
 
 static void run_case(const bench_case *c) {
-    char *many = c->text ? NULL : make_many();
+    char *many = c->text ? NULL : make_many("100");
     bench b = {0};
-    double bare[ROUNDS], tallied[ROUNDS], hand[ROUNDS] = {0}, other[ROUNDS] = {0}, events;
+    double bare[ROUNDS], tallied[ROUNDS], hand[ROUNDS] = {0}, other[ROUNDS] = {0}, events, ignored;
     double to_hand[ROUNDS] = {0}, to_bare[ROUNDS], to_other[ROUNDS] = {0};
     set_up(&b, many ? many : c->text);
     for (int i = 0; i < ROUNDS; i++) {
         bare[i] = time_bare(&b, c->cells, &events);
-        tallied[i] = time_tallied(&b, c->cells, i);
+        tallied[i] = time_tallied(&b, c->cells, i, &events);
         to_bare[i] = tallied[i] / bare[i];
         if (c->hand)
-            to_hand[i] = bare[i] / (hand[i] = time_hand(c->hand, c->cells));
+            to_hand[i] = bare[i] / (hand[i] = time_hand(c->hand, c->cells, &ignored));
         if (c->other_hand)
-            to_other[i] = bare[i] / (other[i] = time_hand(c->other_hand, c->cells));
+            to_other[i] = bare[i] / (other[i] = time_hand(c->other_hand, c->cells, &ignored));
     }
     printf("%-34s %9.0f %7.1f %9.1f %7.2f", c->title, events, median(bare), median(tallied),
            median(to_bare));
@@ -218,9 +228,32 @@ static void print_hash(const char *path) {
     tarry_text_release(&text);
 }
 
-int main(void) {
+/* One cell, once. Returns the exit status. */
+static int count(const char *letter, const char *what) {
+    const size_t n_cases = sizeof cases / sizeof *cases;
+    const size_t i = (size_t)(letter[0] - 'a');
+    const bench_case *c = &cases[i < n_cases ? i : 0];
+    char *many = c->text ? NULL : make_many("20");
+    bench b = {0};
+    double events = 0;
+    set_up(&b, many ? many : c->text);
+    if (!strcmp(what, "bare"))
+        time_bare(&b, 1, &events);
+    else if (!strcmp(what, "tallied"))
+        time_tallied(&b, 1, 0, &events);
+    else if (!strcmp(what, "hand") && c->hand)
+        time_hand(c->hand, 1, &events);
+    printf("%.0f\n", events);
+    tear_down(&b);
+    free(many);
+    return events > 0 ? 0 : 2;
+}
+
+int main(int n_words, char **words) {
     tarry_start();
     hand_loop_set_up();
+    if (n_words == 4 && !strcmp(words[1], "count"))
+        return count(words[2], words[3]);
     print_hash("tests/bench/hand_loop.c");
     printf("%-34s %9s %7s %9s %7s %7s %7s\n", "ns a firing or completion, one thread", "events",
            "bare", "tallied", "/ bare", "by hand", "bare /");

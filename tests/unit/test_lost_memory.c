@@ -361,10 +361,10 @@ START_TEST(program) {
     crash_file = program_listen();
     ck_assert_int_gt(fail_each("check", 1, call_it, NULL, check_words, false, 1),
                      OWN_MEMORY ? 400 : 0);
-    ck_assert_int_gt(fail_each("run", 5, call_it, complete, run_words, false, 6),
+    ck_assert_int_gt(fail_each("run", 9, call_it, complete, run_words, false, 6),
                      OWN_MEMORY ? 1000 : 0);
     if (OWN_MEMORY)
-        ck_assert_int_gt(fail_each("run", 5, call_it, complete, run_words, true, 0), 1000);
+        ck_assert_int_gt(fail_each("run", 9, call_it, complete, run_words, true, 0), 1000);
 }
 END_TEST
 

@@ -1,0 +1,47 @@
+#!/bin/sh
+# Look for memory that is read before it is written, used after it was freed, or lost: the program under
+# Valgrind's memcheck on the example models, and one test in which each allocation fails in turn.
+#
+#   sh tests/memcheck.sh
+#
+# Settings from the environment: BUILD, JOBS, MAKE. Nothing is left out of what memcheck finds, in
+# libraries neither.
+set -u
+
+BUILD=${BUILD:-build}
+JOBS=${JOBS:-2}
+MAKE=${MAKE:-make}
+leaks=definite,indirect,possible
+
+if [ "${1:-}" = one ]; then
+    # one WORK NAME COMMAND... : run it; what goes wrong is left in WORK/NAME.found
+    work=$2
+    name=$3
+    shift 3
+    valgrind --quiet --error-exitcode=99 --leak-check=full --show-leak-kinds="$leaks" \
+        --errors-for-leak-kinds="$leaks" --log-file="$work/$name.log" "$@" \
+        >"$work/$name.out" 2>&1 </dev/null
+    status=$?
+    [ "$status" = 0 ] && [ ! -s "$work/$name.log" ] && exit 0
+    {
+        echo "memcheck: $name, exit status $status:"
+        sed -n '1,40p' "$work/$name.log"
+        tail -n 5 "$work/$name.out"
+    } >"$work/$name.found"
+    exit 0
+fi
+
+"$MAKE" --no-print-directory -s -j"$JOBS" BUILD="$BUILD" all "$BUILD/tests/unit/test_study" || exit 1
+work=$(mktemp -d "${TMPDIR:-/tmp}/tarry-memcheck-XXXXXX") || exit 1
+trap 'rm -rf "$work"' EXIT
+export CK_FORK=no CK_RUN_CASE="memory faults"
+{
+    echo "failing-allocations $BUILD/tests/unit/test_study"
+    for model in models/*.yaml; do
+        name=$(basename "$model" .yaml)
+        echo "$name $BUILD/tarry run $model --cells 2 --keep 1 --threads 2 --quiet --out $work/$name"
+    done
+    echo "check $BUILD/tarry check models/two_state.yaml"
+} | xargs -P "$JOBS" -L 1 sh "$0" one "$work"
+cat "$work"/*.found 2>/dev/null && exit 1
+echo "memcheck: nothing found in $(find "$work" -name '*.log' | wc -l) programs"
