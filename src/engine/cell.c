@@ -7,6 +7,7 @@
 #include "engine/amount.h"
 #include "engine/cell_state.h"
 #include "engine/trouble.h"
+#include "engine/vary.h"
 
 #include "base/error.h"
 #include "base/memory.h"
@@ -381,6 +382,9 @@ static void begin_run_on(tarry_cell *cell) {
 }
 
 static int run_cell(tarry_cell *cell, tarry_error *error) {
+    const int code = cell->vary ? tarry_vary_set(cell->vary, cell->number, error) : TARRY_OK;
+    if (code)
+        return code;
     start(cell);
     if (cell->record && cell->now >= 0) /* no settling: what happens at 0 is an event at 0 */
         tarry_cell_observe(cell, cell->now);
@@ -466,13 +470,15 @@ int tarry_cell_new(const tarry_engine *engine, tarry_cell **out, tarry_error *er
     tarry_cell *cell = tarry_calloc(1, sizeof *cell);
     if (!cell)
         return tarry_fail_memory(error, "a cell");
+    int code = engine->network->variation ? tarry_vary_new(engine, &cell->vary, error) : TARRY_OK;
+    if (cell->vary)
+        engine = &cell->vary->engine;
     cell->engine = engine;
     cell->network = engine->network;
     cell->n_lags = engine->network->n_lags;
     cell->most_firings = whole_limit(engine->network->run.limit_firings);
     cell->most_pending = whole_limit(engine->network->run.limit_pending);
-    int code;
-    if ((code = allocate(cell, error)) ||
+    if (code || (code = allocate(cell, error)) ||
         (code = tarry_pending_init(&cell->pending, n_kinds(engine->network), error)) ||
         (code = engine->sampler->set_up(&engine->propensities, &cell->sampler_state, error))) {
         tarry_cell_free(cell);
@@ -495,5 +501,6 @@ void tarry_cell_free(tarry_cell *cell) {
     free(cell->frame_ramps);
     free(cell->snapshot_ramps);
     free(cell->own_counts);
+    tarry_vary_free(cell->vary);
     free(cell);
 }

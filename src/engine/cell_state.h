@@ -47,6 +47,7 @@ struct tarry_engine {
     tarry_drawer_set *drawer_set;
     const tarry_drawer **drawers; /* [segment][delay] */
     double *fixed;                /* [segment][delay]: the length, or -1 where it varies */
+    const tarry_drawer **factors; /* of parameters that differ from cell to cell, or NULL */
     double *frame_times;          /* [frame] */
     uint32_t *recorded;           /* [recorded]: channel */
 };
@@ -62,9 +63,12 @@ typedef enum tarry_stop {
     TARRY_STOP_PROPENSITY,
 } tarry_stop;
 
+typedef struct tarry_vary tarry_vary;
+
 struct tarry_cell {
     const tarry_engine *engine;
     const tarry_network *network;
+    tarry_vary *vary; /* whose engine and network these are, where cells differ; or NULL */
 
     /* The state of the cell. */
     double now;

@@ -21,6 +21,7 @@ typedef enum formula {
     UNIFORM,     /* a + u * b */
     WEIBULL,     /* (-log u)^b * a */
     QUANTILES,   /* table at u * a */
+    SOLVED,      /* quantile of `standard` at u * a */
     BINS,        /* within a row, found through the guide */
     VALUES,      /* a row */
     MIX,
@@ -45,8 +46,9 @@ struct tarry_drawer {
     double n_guide;            /* a power of two */
     uint32_t n_parts;          /* MIX, TOTAL */
     const struct tarry_drawer *parts;
-    const double *met;    /* MIX, TOTAL: cumulative chances that a part is the one met */
-    const tarry_law *law; /* for what is left of a lag */
+    const double *met;         /* MIX, TOTAL: cumulative chances that a part is the one met */
+    const tarry_law *law;      /* for what is left of a lag */
+    const tarry_law *standard; /* SOLVED */
 };
 
 typedef struct shared_table {
@@ -57,16 +59,32 @@ typedef struct shared_table {
 
 struct tarry_drawer_set {
     tarry_arena arena;
+    const tarry_drawer_set *lender; /* of tables, or NULL */
     shared_table *tables;
     size_t n_tables;
     size_t tables_capacity;
 };
+
+/* Shapes closer than this, as a share, give lags closer than a table is exact. */
+static const double same_shape = 1e-12;
 
 /* ---- making ---- */
 
 int tarry_drawer_set_new(tarry_drawer_set **set, tarry_error *error) {
     *set = tarry_calloc(1, sizeof **set);
     return *set ? TARRY_OK : tarry_fail_memory(error, "the drawing of lags");
+}
+
+int tarry_drawer_set_new_from(const tarry_drawer_set *lender, tarry_drawer_set **set,
+                              tarry_error *error) {
+    const int code = tarry_drawer_set_new(set, error);
+    if (code == TARRY_OK)
+        (*set)->lender = lender;
+    return code;
+}
+
+void tarry_drawer_set_clear(tarry_drawer_set *set) {
+    tarry_arena_release(&set->arena);
 }
 
 void tarry_drawer_set_free(tarry_drawer_set *set) {
@@ -86,10 +104,37 @@ size_t tarry_drawer_set_bytes(const tarry_drawer_set *set) {
     return bytes;
 }
 
+static void use_table(const shared_table *shared, tarry_drawer *drawer) {
+    drawer->formula = QUANTILES;
+    drawer->cubics = shared->table.cubics;
+    drawer->log2_intervals = shared->table.log2_intervals;
+}
+
+/* A table of another set where the shape is there up to rounding, else the law itself. */
+static int borrow_table(tarry_drawer_set *set, tarry_law_kind kind, double shape,
+                        const tarry_law *law, tarry_drawer *drawer, tarry_error *error) {
+    const tarry_drawer_set *lender = set->lender;
+    for (size_t i = 0; i < lender->n_tables; i++)
+        if (lender->tables[i].kind == kind &&
+            fabs(lender->tables[i].shape - shape) <= same_shape * shape) {
+            use_table(&lender->tables[i], drawer);
+            return TARRY_OK;
+        }
+    tarry_law *standard = tarry_arena_calloc(&set->arena, 1, sizeof *standard);
+    if (!standard)
+        return tarry_fail_memory(error, "the drawing of a lag");
+    *standard = *law;
+    drawer->formula = SOLVED;
+    drawer->standard = standard;
+    return TARRY_OK;
+}
+
 /* The table of `law`, which is the one of its shape in standard units; made where it is new. */
 static int share_table(tarry_drawer_set *set, tarry_law_kind kind, double shape,
                        const tarry_law *law, tarry_drawer *drawer, tarry_error *error) {
     size_t i = 0;
+    if (set->lender)
+        return borrow_table(set, kind, shape, law, drawer, error);
     while (i < set->n_tables && !(set->tables[i].kind == kind && set->tables[i].shape == shape))
         i++;
     if (i == set->n_tables) {
@@ -101,9 +146,7 @@ static int share_table(tarry_drawer_set *set, tarry_law_kind kind, double shape,
             return code;
         set->n_tables++;
     }
-    drawer->formula = QUANTILES;
-    drawer->cubics = set->tables[i].table.cubics;
-    drawer->log2_intervals = set->tables[i].table.log2_intervals;
+    use_table(&set->tables[i], drawer);
     return TARRY_OK;
 }
 
@@ -286,6 +329,8 @@ double tarry_draw_at(const tarry_drawer *drawer, uint64_t bits) {
         return pow(-tarry_log(u), drawer->b) * drawer->a;
     case QUANTILES:
         return tarry_quantile_table_at(drawer->cubics, drawer->log2_intervals, bits) * drawer->a;
+    case SOLVED:
+        return tarry_law_quantile(drawer->standard, u, 1 - u) * drawer->a;
     case BINS: {
         const row *in = find_row(drawer, u);
         return in->from + (u - in->below) * in->slope;

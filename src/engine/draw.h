@@ -18,6 +18,14 @@ typedef struct tarry_drawer_set tarry_drawer_set;
 int tarry_drawer_set_new(tarry_drawer_set **set, tarry_error *error);
 void tarry_drawer_set_free(tarry_drawer_set *set);
 
+/* A set that makes no tables and takes those of `lender`, which must outlive it: a law of another
+ * shape (beyond 1e-12 of it) is drawn by solving for its quantile, which is slow. */
+int tarry_drawer_set_new_from(const tarry_drawer_set *lender, tarry_drawer_set **set,
+                              tarry_error *error);
+
+/* Forget all drawers; those of a set with tables of its own must stay. */
+void tarry_drawer_set_clear(tarry_drawer_set *set);
+
 /* A drawer for `law` (checked before; must outlive the set). Errors: TARRY_MEMORY, TARRY_NUMERIC
  * where a table cannot be brought under 1e-9 of the lag. The set owns the drawer. */
 int tarry_drawer_set_add(tarry_drawer_set *set, const tarry_law *law, const tarry_drawer **drawer,

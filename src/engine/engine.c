@@ -1,6 +1,7 @@
 /* Setting an engine up: the network packed for the hot loop, and a drawer for every delay. */
 
 #include "engine/cell_state.h"
+#include "engine/vary.h"
 
 #include "base/error.h"
 #include "base/memory.h"
@@ -103,7 +104,7 @@ int tarry_engine_new(const tarry_network *network, const char *sampler, tarry_en
     if ((code = allocate(engine, error)) ||
         (code = tarry_propensities_init(&engine->propensities, network, error)) ||
         (code = tarry_drawer_set_new(&engine->drawer_set, error)) ||
-        (code = make_drawers(engine, error))) {
+        (code = make_drawers(engine, error)) || (code = tarry_vary_prepare(engine, error))) {
         tarry_engine_free(engine);
         return code;
     }
@@ -124,6 +125,7 @@ void tarry_engine_free(tarry_engine *engine) {
     free(engine->lags);
     free(engine->drawers);
     free(engine->fixed);
+    free(engine->factors);
     free(engine->frame_times);
     free(engine->recorded);
     free(engine);

@@ -10,7 +10,8 @@ static bool has_formula(uint32_t kind) {
     return kind == TARRY_RATE_EXPRESSION || kind == TARRY_RATE_PROPENSITY;
 }
 
-static void pack(tarry_propensities *propensities, const tarry_network *network) {
+void tarry_propensities_fill(tarry_propensities *propensities, const tarry_network *network) {
+    propensities->network = network;
     const uint32_t n = network->n_reactions;
     for (uint32_t r = 0; r < n; r++) {
         const tarry_reaction *reaction = &network->reactions[r];
@@ -32,7 +33,6 @@ int tarry_propensities_init(tarry_propensities *propensities, const tarry_networ
                             tarry_error *error) {
     const size_t n = network->n_reactions;
     *propensities = (tarry_propensities){
-        .network = network,
         .n_reactions = network->n_reactions,
         .reactions = tarry_calloc(n, sizeof(tarry_packed_reaction)),
         .rates = tarry_calloc(n * network->n_segments, sizeof(double)),
@@ -41,7 +41,7 @@ int tarry_propensities_init(tarry_propensities *propensities, const tarry_networ
         tarry_propensities_release(propensities);
         return tarry_fail_memory(error, "the propensities");
     }
-    pack(propensities, network);
+    tarry_propensities_fill(propensities, network);
     return TARRY_OK;
 }
 

@@ -23,6 +23,9 @@ typedef struct tarry_propensities {
 
 int tarry_propensities_init(tarry_propensities *propensities, const tarry_network *network,
                             tarry_error *error);
+/* Pack anew, for a network of the same shape with other values. */
+void tarry_propensities_fill(tarry_propensities *propensities, const tarry_network *network);
+
 void tarry_propensities_release(tarry_propensities *propensities);
 
 /* The kinds beyond LINEAR and CONSTANT, out of line. */

@@ -34,6 +34,9 @@ static void take(const tarry_network *network, const tarry_exact_gene *gene, uin
                  tarry_exact_glimpse glimpse, tarry_exact_view *view) {
     if (!has_species(network, gene, species))
         return;
+    view->looks = true;
+    if (view->why != NULL)
+        return;
     const int64_t stage = stage_of(gene, species);
     if (stage == TARRY_NONE) {
         view->why = network->species[species].role == TARRY_SPECIES_STATE ||
@@ -42,8 +45,7 @@ static void take(const tarry_network *network, const tarry_exact_gene *gene, uin
                         : "proteins are not covered";
         return;
     }
-    if (view->why == NULL)
-        view->why = gene->transcript.stages[stage].why;
+    view->why = gene->transcript.stages[stage].why;
     glimpse.stage = (size_t)stage;
     view->glimpses[view->n++] = glimpse;
 }

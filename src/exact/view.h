@@ -18,6 +18,7 @@ typedef struct tarry_exact_view {
     double n_copies; /* alleles that are seen */
     tarry_exact_glimpse *glimpses;
     size_t n;
+    bool looks;      /* at some species of the gene */
     const char *why; /* NULL, or why it cannot be worked out (rest of a sentence) */
 } tarry_exact_view;
 

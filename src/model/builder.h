@@ -82,6 +82,8 @@ typedef struct tarry_builder_parameter {
     const char *name;
     tarry_expression expression; /* of other parameters, or the override in its place */
     tarry_dimension dimension;
+    const tarry_node *varies; /* the law of the factor by which cells differ, or NULL */
+    const char *root;         /* a parameter that varies and that it depends on, or NULL */
     tarry_place place;
 } tarry_builder_parameter;
 

@@ -7,6 +7,7 @@
 #include "base/memory.h"
 #include "model/expect.h"
 #include "model/like_genes.h"
+#include "model/variation.h"
 
 #include <math.h>
 
@@ -41,6 +42,8 @@ int tarry_builder_constant_value(tarry_builder *builder, const tarry_node *node,
                                               error);
     if (code != 0)
         return code;
+    if (tarry_refuse_varied(builder, &constant.expression, what, error) != 0)
+        return TARRY_INPUT;
     *value = tarry_expression_value(&constant.expression, builder->values, NULL);
     if (!isfinite(*value))
         return tarry_fail_at(error, TARRY_INPUT, node->place,

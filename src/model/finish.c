@@ -5,9 +5,9 @@
 
 #include "base/error.h"
 #include "base/memory.h"
-#include "base/number.h"
-#include "model/law_template.h"
+#include "model/segment_values.h"
 #include "model/steady.h"
+#include "model/variation.h"
 
 #include <math.h>
 #include <stdlib.h>
@@ -21,77 +21,6 @@ static int in_segment(const tarry_builder *builder, size_t segment, int code, ta
     if (code == 0 || segment == 0)
         return code;
     return tarry_error_context(error, "after the step '%s'", builder->segments.items[segment].text);
-}
-
-static int source_value(const tarry_source *source, const double *parameters, const char *kind,
-                        double *out, tarry_error *error) {
-    const double value = tarry_expression_value(&source->expression, parameters, NULL);
-    const bool fits = source->half_life ? value > 0 : value >= source->least;
-    *out = source->half_life ? log(2) / value : value;
-    if (fits && isfinite(value) && isfinite(*out))
-        return 0;
-    char text[TARRY_NUMBER_SIZE], least[TARRY_NUMBER_SIZE];
-    tarry_number_write(value, text);
-    tarry_number_write(source->least, least);
-    if (source->half_life)
-        return tarry_fail_at(error, TARRY_INPUT, source->expression.place,
-                             "the half-life behind '%s' is %s; it must be finite and above 0",
-                             source->what, text);
-    return tarry_fail_at(error, TARRY_INPUT, source->expression.place,
-                         "the %s of '%s' is %s; it must be finite and not below %s", kind,
-                         source->what, text, least);
-}
-
-static int source_values(tarry_builder *builder, const tarry_source *sources, size_t n,
-                         const double *parameters, const char *kind, const double **out,
-                         tarry_error *error) {
-    double *values = tarry_arena_calloc(builder->arena, n, sizeof *values);
-    if (values == NULL)
-        return tarry_fail_memory(error, "the rates");
-    int code = 0;
-    for (size_t i = 0; code == 0 && i < n; i++)
-        code = source_value(&sources[i], parameters, kind, &values[i], error);
-    *out = values;
-    return code;
-}
-
-static int fold_formulas(tarry_builder *builder, tarry_segment *segment, tarry_error *error) {
-    const size_t n = builder->formulas.n;
-    tarry_expression *formulas = tarry_arena_calloc(builder->arena, n, sizeof *formulas);
-    if (formulas == NULL)
-        return tarry_fail_memory(error, "the rates");
-    int code = 0;
-    for (size_t i = 0; code == 0 && i < n; i++)
-        code = tarry_expression_fold(&builder->formulas.items[i], segment->parameters,
-                                     builder->arena, &formulas[i], error);
-    segment->formulas = formulas;
-    return code;
-}
-
-static int make_laws(tarry_builder *builder, tarry_segment *segment, tarry_error *error) {
-    const size_t n = builder->delays.n;
-    tarry_law *laws = tarry_arena_calloc(builder->arena, n, sizeof *laws);
-    if (laws == NULL)
-        return tarry_fail_memory(error, "the delays");
-    int code = 0;
-    for (size_t i = 0; code == 0 && i < n; i++)
-        code = tarry_law_template_value(&builder->delays.items[i].law, segment->parameters,
-                                        builder->arena, &laws[i], error);
-    segment->laws = laws;
-    return code;
-}
-
-static int fill_segment(tarry_builder *builder, tarry_segment *segment, tarry_error *error) {
-    int code = source_values(builder, builder->rates.items, builder->rates.n, segment->parameters,
-                             "rate", &segment->rates, error);
-    if (code == 0)
-        code = source_values(builder, builder->means.items, builder->means.n, segment->parameters,
-                             "mean number", &segment->means, error);
-    if (code == 0)
-        code = fold_formulas(builder, segment, error);
-    if (code == 0)
-        code = make_laws(builder, segment, error);
-    return code;
 }
 
 /* Numbers that are built into the network must not change at a step. */
@@ -110,10 +39,24 @@ static int check_constants(const tarry_builder *builder, const tarry_segment *se
     return 0;
 }
 
-static int fill_segments(tarry_builder *builder, tarry_error *error) {
+static tarry_value_sources sources_of(const tarry_builder *builder,
+                                      const tarry_law_template *laws) {
+    return (tarry_value_sources){.rates = builder->rates.items,
+                                 .n_rates = builder->rates.n,
+                                 .means = builder->means.items,
+                                 .n_means = builder->means.n,
+                                 .formulas = builder->formulas.items,
+                                 .n_formulas = builder->formulas.n,
+                                 .laws = laws,
+                                 .n_laws = builder->delays.n};
+}
+
+static int fill_segments(tarry_builder *builder, const tarry_law_template *laws,
+                         tarry_error *error) {
+    const tarry_value_sources sources = sources_of(builder, laws);
     for (size_t i = 0; i < builder->segments.n; i++) {
         tarry_segment *segment = &builder->segments.items[i];
-        int code = fill_segment(builder, segment, error);
+        int code = tarry_segment_fill(&sources, builder->arena, segment, error);
         if (code == 0 && i > 0)
             code = check_constants(builder, segment, error);
         if (code != 0)
@@ -366,10 +309,83 @@ static void count_lists(tarry_builder *builder) {
     network->n_firsts = (uint32_t)builder->firsts.n;
 }
 
+/* ---- parameters that differ from cell to cell ---------------------------------------------------
+ */
+
+/* The templates of all delays, in a row. */
+static int keep_laws(tarry_builder *builder, const tarry_law_template **out, tarry_error *error) {
+    tarry_law_template *laws = tarry_arena_calloc(builder->arena, builder->delays.n, sizeof *laws);
+    for (size_t i = 0; laws != NULL && i < builder->delays.n; i++)
+        laws[i] = builder->delays.items[i].law;
+    *out = laws;
+    return laws != NULL ? 0 : tarry_fail_memory(error, "the delays");
+}
+
+static int read_factors(tarry_builder *builder, tarry_varied *varied, tarry_error *error) {
+    int code = 0;
+    for (uint32_t i = 0, n = 0; code == 0 && i < builder->parameters.n; i++) {
+        const tarry_builder_parameter *parameter = &builder->parameters.items[i];
+        if (parameter->varies == NULL)
+            continue;
+        varied[n] = (tarry_varied){.parameter = i, .place = parameter->varies->place};
+        code = tarry_read_factor(builder, parameter, &varied[n++].law, error);
+    }
+    return code;
+}
+
+/* What a cell's values are worked out from, where some parameter varies. */
+static int keep_variation(tarry_builder *builder, const tarry_law_template *laws,
+                          tarry_error *error) {
+    const size_t n = builder->parameters.n;
+    size_t n_varied = 0;
+    int failed = 0;
+    for (size_t i = 0; i < n; i++)
+        n_varied += builder->parameters.items[i].varies != NULL;
+    if (n_varied == 0)
+        return 0;
+    tarry_variation *variation = tarry_arena_calloc(builder->arena, 1, sizeof *variation);
+    tarry_varied *varied = tarry_arena_calloc(builder->arena, n_varied, sizeof *varied);
+    tarry_expression *parameters = tarry_arena_calloc(builder->arena, n, sizeof *parameters);
+    if (variation == NULL || varied == NULL || parameters == NULL)
+        return tarry_fail_memory(error, "the parameters");
+    for (size_t i = 0; i < n; i++)
+        parameters[i] = builder->parameters.items[i].expression;
+    *variation = (tarry_variation){.n = (uint32_t)n_varied,
+                                   .varied = varied,
+                                   .parameters = parameters,
+                                   .order = builder->order,
+                                   .sources = sources_of(builder, laws),
+                                   .n_moves = builder->moves.n};
+    variation->sources.rates = KEEP(builder->rates);
+    variation->sources.means = KEEP(builder->means);
+    variation->sources.formulas = KEEP(builder->formulas);
+    variation->moves = KEEP(builder->moves);
+    builder->network->variation = variation;
+    return failed ? tarry_fail_memory(error, "the parameters")
+                  : read_factors(builder, varied, error);
+}
+
+static int find_starts(tarry_builder *builder, tarry_error *error) {
+    const tarry_steady_source source = {.genes = builder->genes.items,
+                                        .n_genes = builder->genes.n,
+                                        .promoters = builder->promoters.items,
+                                        .states = builder->states.items,
+                                        .lags = builder->lags.items,
+                                        .moves = builder->moves.items,
+                                        .n_moves = builder->moves.n,
+                                        .segments = builder->segments.items,
+                                        .n_segments = builder->segments.n,
+                                        .arena = builder->arena};
+    return tarry_steady_starts(&source, error);
+}
+
 int tarry_finish(tarry_builder *builder, tarry_error *error) {
-    int code = fill_segments(builder, error);
+    const tarry_law_template *laws = NULL;
+    int code = keep_laws(builder, &laws, error);
     if (code == 0)
-        code = tarry_steady_starts(builder, error);
+        code = fill_segments(builder, laws, error);
+    if (code == 0)
+        code = find_starts(builder, error);
     if (code == 0)
         code = find_dependents(builder, error);
     if (code == 0)
@@ -382,6 +398,8 @@ int tarry_finish(tarry_builder *builder, tarry_error *error) {
         code = keep_names(builder, error);
     if (code == 0)
         code = keep_lists(builder, error);
+    if (code == 0)
+        code = keep_variation(builder, laws, error);
     if (code == 0)
         count_lists(builder);
     return code;

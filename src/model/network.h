@@ -247,7 +247,9 @@ typedef struct tarry_segment {
     double start;
     tarry_moment moment;
     int32_t response;                 /* that it begins, or TARRY_NONE */
-    const double *parameters;         /* n_parameters */
+    const double *parameters;         /* n_parameters; where some vary, of a cell in the middle */
+    const bool *is_set;               /* n_parameters: given by this step or an earlier one; NULL:
+                                         none */
     const double *rates;              /* n_rates, per unit of time */
     const double *means;              /* n_means, of random amounts */
     const tarry_expression *formulas; /* n_formulas, parameters folded in: read species only */
@@ -355,6 +357,7 @@ typedef struct tarry_network {
 
     uint32_t n_parameters;
     const char *const *parameter_names;
+    const struct tarry_variation *variation; /* parameters that differ from cell to cell, or NULL */
     uint32_t n_rates, n_means, n_formulas, n_delays;
     uint32_t n_segments;
     const tarry_segment *segments;

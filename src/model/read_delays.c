@@ -296,6 +296,11 @@ static int read_law(tarry_builder *builder, const tarry_node *node, int depth,
     return read_expression(builder, node, TARRY_TIME, "a fixed delay", &law->a, error);
 }
 
+int tarry_read_law(tarry_builder *builder, const tarry_node *node, tarry_law_template *law,
+                   tarry_error *error) {
+    return read_law(builder, node, 0, law, error);
+}
+
 /* The word that stands for a delay without a name. */
 static const char *law_word(const tarry_node *node) {
     return node->kind == TARRY_NODE_MAP ? node->entries[0].key : "fixed";

@@ -8,4 +8,8 @@
 int tarry_read_lag_file(tarry_builder *builder, const tarry_node *file, tarry_law_template *law,
                         tarry_error *error);
 
+/* A delay by name or in place. */
+int tarry_read_law(tarry_builder *builder, const tarry_node *node, tarry_law_template *law,
+                   tarry_error *error);
+
 #endif

@@ -8,6 +8,7 @@
 #include "base/memory.h"
 #include "model/expect.h"
 #include "model/parameter_order.h"
+#include "model/variation.h"
 #include "tarry/word.h"
 
 #include <stdlib.h>
@@ -22,17 +23,18 @@ typedef struct parameter_reader {
  */
 
 /* The scalar of a parameter, also where it is written as {value: ...}. */
-static int find_value(const tarry_entry *entry, const tarry_node **scalar, tarry_error *error) {
+static int find_value(const tarry_entry *entry, const tarry_node **scalar,
+                      const tarry_node **varies, tarry_error *error) {
     static const char *const keys[] = {"value", "varies"};
-    static const char *const later[] = {"varies"};
     *scalar = entry->node;
+    *varies = NULL;
     if (entry->node->kind == TARRY_NODE_SCALAR)
         return tarry_expect_scalar(entry->node, entry->key, error);
     int code = tarry_expect_keys(entry->node, entry->key, keys, 2, error);
     if (code == 0)
-        code = tarry_expect_not_yet(entry->node, entry->key, later, 1, error);
-    if (code == 0)
         code = tarry_expect_value(entry->node, entry->key, "value", scalar, error);
+    if (code == 0)
+        *varies = tarry_node_get(entry->node, "varies");
     return code != 0 ? code : tarry_expect_scalar(*scalar, entry->key, error);
 }
 
@@ -62,7 +64,8 @@ static int compile(tarry_builder *builder, uint32_t index, const char *text, tar
 static int compile_file(tarry_builder *builder, const tarry_node *map, tarry_error *error) {
     for (size_t i = 0; i < map->n; i++) {
         const tarry_node *scalar = NULL;
-        int code = find_value(&map->entries[i], &scalar, error);
+        int code = find_value(&map->entries[i], &scalar, &builder->parameters.items[i].varies,
+                              error);
         if (code == 0)
             code = compile(builder, (uint32_t)i, scalar->text, scalar->place, TARRY_ANY, error);
         if (code != 0)
@@ -157,6 +160,16 @@ static int read_map(parameter_reader *in, const tarry_node *map, tarry_error *er
     return code;
 }
 
+/* Those that vary, and those that are made of them. */
+static void find_varied(tarry_builder *builder) {
+    for (size_t i = 0; i < builder->parameters.n; i++) {
+        tarry_builder_parameter *parameter = &builder->parameters.items[builder->order[i]];
+        parameter->root = parameter->varies != NULL
+                              ? parameter->name
+                              : tarry_varied_name(builder, &parameter->expression);
+    }
+}
+
 /* ---- all --------------------------------------------------------------------------------------
  */
 
@@ -177,8 +190,10 @@ int tarry_read_parameters(tarry_builder *builder, tarry_error *error) {
         code = tarry_fail_memory(error, "the parameters");
     if (code == 0)
         code = read_map(&in, map, error);
-    if (code == 0)
+    if (code == 0) {
+        find_varied(builder);
         code = tarry_parameter_values(builder, fixed, builder->values, error);
+    }
     free(fixed);
     free(in.given);
     return code;

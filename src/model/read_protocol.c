@@ -10,6 +10,7 @@
 #include "model/like_genes.h"
 #include "model/parameter_order.h"
 #include "model/protocol_steps.h"
+#include "model/variation.h"
 
 #include <math.h>
 #include <stdio.h>
@@ -34,14 +35,28 @@ typedef struct protocol_reader {
 /* ---- settings ---------------------------------------------------------------------------------
  */
 
+/* A step is the same for all cells. A parameter that varies may be set by what it was, since each
+ * cell keeps its factor. */
+static int refuse_others(const protocol_reader *in, const tarry_entry *entry,
+                         const tarry_expression *expression, tarry_error *error) {
+    const tarry_builder_parameter *parameters = in->builder->parameters.items;
+    for (uint32_t i = 0; i < expression->n_parameters; i++) {
+        const tarry_builder_parameter *read = &parameters[expression->parameters[i]];
+        const bool itself = read->varies != NULL && strcmp(read->name, entry->key) == 0;
+        if (read->root != NULL && !itself)
+            return tarry_refuse_varied(in->builder, expression, entry->key, error);
+    }
+    return 0;
+}
+
 /* What a scalar comes to before the step. */
 static int work_out(protocol_reader *in, const tarry_entry *entry, tarry_dimension due,
                     double *value, tarry_error *error) {
     tarry_expression expression;
     const int code = tarry_builder_expression(in->builder, entry->node, due, entry->key,
                                               &expression, error);
-    if (code != 0)
-        return code;
+    if (code != 0 || refuse_others(in, entry, &expression, error) != 0)
+        return code != 0 ? code : TARRY_INPUT;
     *value = tarry_expression_value(&expression, in->before, NULL);
     if (!isfinite(*value))
         return tarry_fail_at(error, TARRY_INPUT, entry->node->place,
@@ -206,6 +221,13 @@ static int begin_line(protocol_reader *in, tarry_protocol_ramp *ramp, size_t i, 
     char until[TARRY_NUMBER_SIZE];
     if (in->ramping[index] != NULL)
         return fail_ramping(entry, in->ramping[index], error);
+    const tarry_builder_parameter *parameter = &in->builder->parameters.items[index];
+    if (parameter->root != NULL && parameter->varies == NULL && !in->fixed[index])
+        return tarry_fail_at(
+            error, TARRY_INPUT, entry->place,
+            "'%s' differs from cell to cell, since '%s' varies, so that a ramp would "
+            "begin elsewhere in each; set it first, or let '%s' ramp",
+            entry->key, parameter->root, parameter->root);
     const int code = work_out(in, entry, in->builder->parameters.items[index].dimension,
                               &ramp->last[i], error);
     ramp->first[i] = in->before[index];
@@ -296,6 +318,18 @@ static tarry_moment moment_of(const tarry_protocol_step *step) {
     return step->part == step->ramp->n ? TARRY_MOMENT_RAMP_END : TARRY_MOMENT_RAMP_PART;
 }
 
+/* Which parameters have been set so far. */
+static int keep_set(const protocol_reader *in, tarry_segment *segment, tarry_error *error) {
+    const size_t n = in->builder->parameters.n;
+    bool *is_set = tarry_arena_calloc(in->builder->arena, n, sizeof *is_set);
+    if (is_set == NULL)
+        return tarry_fail_memory(error, "the protocol");
+    if (n > 0)
+        memcpy(is_set, in->fixed, n * sizeof *is_set);
+    segment->is_set = is_set;
+    return 0;
+}
+
 /* The steps of one time; returns their code, and their number in *taken. */
 static int read_moment(protocol_reader *in, const tarry_protocol_step *steps, size_t n,
                        size_t *taken, tarry_error *error) {
@@ -314,6 +348,9 @@ static int read_moment(protocol_reader *in, const tarry_protocol_step *steps, si
     tarry_segment *segment = &builder->segments.items[builder->segments.n - 1];
     segment->moment = moment;
     segment->settings.to = (uint32_t)builder->settings.n;
+    code = keep_set(in, segment, error);
+    if (code != 0)
+        return code;
     if (!in->text.failed)
         segment->text = tarry_arena_text(builder->arena, in->text.data, in->text.size);
     return in->text.failed || segment->text == NULL ? tarry_fail_memory(error, "the protocol") : 0;

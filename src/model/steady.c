@@ -17,7 +17,7 @@
 
 /* One gene's promoter as a graph. Arrays in `arena`, which lives for one gene. */
 typedef struct promoter_graph {
-    const tarry_builder *builder;
+    const tarry_steady_source *source;
     const tarry_gene *gene;
     const tarry_promoter_state *states; /* of the first allele */
     const tarry_builder_move *moves;    /* of this gene */
@@ -41,7 +41,7 @@ static int fail_gene(const promoter_graph *graph, const char *why, tarry_error *
 
 /* Sums of rates and shares, row by row, then chances and mean dwells. */
 static int fill_chances(promoter_graph *graph, tarry_error *error) {
-    const tarry_segment *segment = &graph->builder->segments.items[0];
+    const tarry_segment *segment = &graph->source->segments[0];
     const uint32_t n = graph->n;
     for (size_t i = 0; i < graph->n_moves; i++) {
         const tarry_builder_move *move = &graph->moves[i];
@@ -66,7 +66,7 @@ static int fill_chances(promoter_graph *graph, tarry_error *error) {
         const int32_t lag = graph->states[i].lag;
         graph->dwell[i] = 1 / sum;
         if (lag != TARRY_NONE)
-            graph->dwell[i] = tarry_law_mean(&segment->laws[graph->builder->lags.items[lag].delay]);
+            graph->dwell[i] = tarry_law_mean(&segment->laws[graph->source->lags[lag].delay]);
         for (uint32_t j = 0; sum > 0 && j < n; j++)
             graph->chance[i * n + j] /= sum;
     }
@@ -186,7 +186,7 @@ static int steady_weights(promoter_graph *graph, double *weights, tarry_error *e
 static bool takes_no_time(const promoter_graph *graph, const tarry_segment *segment, uint32_t i) {
     const int32_t lag = graph->states[i].lag;
     return lag != TARRY_NONE &&
-           !(tarry_law_most(&segment->laws[graph->builder->lags.items[lag].delay]) > 0);
+           !(tarry_law_most(&segment->laws[graph->source->lags[lag].delay]) > 0);
 }
 
 /* Walk from state to state without time passing; 1: on the path, 2: done. */
@@ -223,8 +223,8 @@ static int check_cycles(promoter_graph *graph, const tarry_segment *segment, tar
 /* ---- all genes ----------------------------------------------------------------------------------
  */
 
-static int set_start(tarry_builder *builder, promoter_graph *graph, tarry_error *error) {
-    double *weights = tarry_arena_calloc(builder->arena, graph->n, sizeof *weights);
+static int set_start(promoter_graph *graph, tarry_error *error) {
+    double *weights = tarry_arena_calloc(graph->source->arena, graph->n, sizeof *weights);
     graph->chance = tarry_arena_calloc(&graph->arena, (size_t)graph->n * graph->n, sizeof(double));
     graph->dwell = tarry_arena_calloc(&graph->arena, graph->n, sizeof(double));
     graph->reach = tarry_arena_calloc(&graph->arena, (size_t)graph->n * graph->n, sizeof(bool));
@@ -240,38 +240,39 @@ static int set_start(tarry_builder *builder, promoter_graph *graph, tarry_error 
     tarry_cumulate(weights, graph->n);
     const tarry_range promoters = graph->gene->promoters;
     for (uint32_t i = promoters.from; i < promoters.to; i++)
-        builder->promoters.items[i].start = weights;
+        graph->source->promoters[i].start = weights;
     return 0;
 }
 
-static int finish_gene(tarry_builder *builder, promoter_graph *graph, tarry_error *error) {
-    const tarry_promoter *promoter = &builder->promoters.items[graph->gene->promoters.from];
+static int finish_gene(promoter_graph *graph, tarry_error *error) {
+    const tarry_steady_source *source = graph->source;
+    const tarry_promoter *promoter = &source->promoters[graph->gene->promoters.from];
     graph->n = promoter->states.to - promoter->states.from;
-    graph->states = &builder->states.items[promoter->states.from];
+    graph->states = &source->states[promoter->states.from];
     int code = 0;
     bool lasts = false;
     for (uint32_t i = 0; i < graph->n; i++)
         lasts = lasts || graph->states[i].lag != TARRY_NONE;
-    for (size_t i = 0; code == 0 && lasts && i < builder->segments.n; i++)
-        code = check_cycles(graph, &builder->segments.items[i], error);
+    for (size_t i = 0; code == 0 && lasts && i < source->n_segments; i++)
+        code = check_cycles(graph, &source->segments[i], error);
     if (code == 0 && promoter->steady)
-        code = set_start(builder, graph, error);
+        code = set_start(graph, error);
     return code;
 }
 
-int tarry_steady_starts(tarry_builder *builder, tarry_error *error) {
+int tarry_steady_starts(const tarry_steady_source *source, tarry_error *error) {
     size_t move = 0;
     int code = 0;
-    for (uint32_t i = 0; code == 0 && i < builder->genes.n; i++) {
-        promoter_graph graph = {.builder = builder, .gene = &builder->genes.items[i]};
+    for (uint32_t i = 0; code == 0 && i < source->n_genes; i++) {
+        promoter_graph graph = {.source = source, .gene = &source->genes[i]};
         if (graph.gene->promoters.from == graph.gene->promoters.to)
             continue;
         const size_t first = move;
-        while (move < builder->moves.n && builder->moves.items[move].gene == i)
+        while (move < source->n_moves && source->moves[move].gene == i)
             move++;
         graph.n_moves = move - first;
-        graph.moves = move > first ? &builder->moves.items[first] : NULL;
-        code = finish_gene(builder, &graph, error);
+        graph.moves = move > first ? &source->moves[first] : NULL;
+        code = finish_gene(&graph, error);
         tarry_arena_release(&graph.arena);
     }
     return code;

@@ -416,7 +416,9 @@ static int write_page(tarry_page *page, tarry_notes *notes, tarry_error *error) 
     tarry_page_reactions(page);
     tarry_page_completions(page);
     tarry_page_delays(page);
-    int code = write_sums(page, error);
+    int code = tarry_page_varied(page, error);
+    if (!code)
+        code = write_sums(page, error);
     if (!code)
         code = tarry_page_distances(page, notes, error);
     if (code)

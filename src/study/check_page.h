@@ -32,4 +32,7 @@ void tarry_page_delays(tarry_page *page);
 /* Distances from the steady means; those that are large go into the notes. */
 int tarry_page_distances(tarry_page *page, tarry_notes *notes, tarry_error *error);
 
+/* Parameters that differ from cell to cell. */
+int tarry_page_varied(tarry_page *page, tarry_error *error);
+
 #endif

@@ -38,8 +38,7 @@ int tarry_predict_views(tarry_prediction *p, const tarry_channel *channel, tarry
             continue;
         tarry_exact_view *view = &(*views)[g];
         code = tarry_exact_view_read(p->network, &p->genes[g], channel, &p->arena, view, error);
-        if (code == 0 && view->why != NULL && *why == NULL &&
-            (view->n > 0 || channel->species != TARRY_NONE || p->genes[g].why == NULL))
+        if (code == 0 && view->looks && *why == NULL)
             *why = view->why;
     }
     return code;
@@ -52,6 +51,11 @@ static int read_genes(tarry_prediction *p, tarry_error *error) {
         return tarry_fail_memory(error, "a prediction");
     for (uint32_t g = 0; code == 0 && g < p->network->n_genes; g++) {
         const tarry_gene *gene = &p->network->genes[g];
+        if (p->network->variation != NULL) {
+            p->genes[g] = (tarry_exact_gene){.gene = g,
+                                             .why = "parameters differ from cell to cell"};
+            continue;
+        }
         if (gene->promoters.from == gene->promoters.to) {
             p->genes[g] = (tarry_exact_gene){.gene = g, .why = "plain reactions have no exact law"};
             continue;

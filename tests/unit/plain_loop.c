@@ -5,6 +5,7 @@
 #include "base/random.h"
 #include "engine/amount.h"
 #include "engine/draw.h"
+#include "model/variation.h"
 
 #include <gsl/gsl_cdf.h>
 #include <math.h>
@@ -20,7 +21,10 @@ typedef struct completion {
 } completion;
 
 typedef struct plain {
-    const tarry_network *network;
+    const tarry_network *common;  /* of all cells */
+    const tarry_network *network; /* of this one */
+    tarry_cell_network own;       /* where they differ, */
+    tarry_drawer_set *tables;     /* and the tables of the laws they share */
     const tarry_segment *segment; /* in force */
     uint32_t n_segments_past;     /* segments put in force, the first included */
     double now, end;
@@ -625,6 +629,46 @@ static int run(plain *p, tarry_error *error) {
     return 0;
 }
 
+/* Tables are those of the laws that all cells share; a cell's own laws take them where they fit. */
+static int make_drawers(plain *p, tarry_error *error) {
+    const tarry_network *network = p->network;
+    int code = p->common->variation ? tarry_drawer_set_new_from(p->tables, &p->set, error)
+                                    : tarry_drawer_set_new(&p->set, error);
+    for (uint32_t s = 0; s < network->n_segments && !code; s++)
+        for (uint32_t d = 0; d < network->n_delays && !code; d++)
+            code = tarry_drawer_set_add(p->set, &network->segments[s].laws[d],
+                                        &p->drawers[(size_t)s * network->n_delays + d], error);
+    return code;
+}
+
+/* The cell's own parameters, where cells differ: one factor after another from a stream of their
+ * own.
+ */
+static int vary(plain *p, int64_t cell, tarry_error *error) {
+    const tarry_variation *variation = p->common->variation;
+    tarry_stream stream;
+    int code = tarry_cell_network_init(&p->own, p->common, error);
+    if (!code)
+        code = tarry_drawer_set_new(&p->tables, error);
+    for (uint32_t s = 0; s < p->common->n_segments && !code; s++)
+        for (uint32_t d = 0; d < p->common->n_delays && !code; d++) {
+            const tarry_drawer *unused;
+            code = tarry_drawer_set_add(p->tables, &p->common->segments[s].laws[d], &unused, error);
+        }
+    tarry_stream_init(&stream, p->common->run.seed, (uint64_t)cell, TARRY_STREAM_PARAMETERS);
+    for (uint32_t i = 0; i < variation->n && !code; i++) {
+        const tarry_drawer *factor;
+        code = tarry_drawer_set_add(p->tables, &variation->varied[i].law, &factor, error);
+        if (!code)
+            p->own.factors[i] = tarry_draw(factor, &stream);
+    }
+    if (!code)
+        code = tarry_cell_network_set(&p->own, cell, error);
+    p->network = &p->own.network;
+    p->segment = p->network->segments;
+    return code;
+}
+
 static int make(plain *p, tarry_error *error) {
     const tarry_network *network = p->network;
     p->n_leaves = 1;
@@ -642,26 +686,26 @@ static int make(plain *p, tarry_error *error) {
     if (!p->counts || !p->propensities || !p->status || !p->counters || !p->runs_on ||
         !p->last_due || !p->drawers)
         return tarry_fail_memory(error, "the plain loop");
-    int code = tarry_drawer_set_new(&p->set, error);
-    for (uint32_t s = 0; s < network->n_segments && !code; s++)
-        for (uint32_t d = 0; d < network->n_delays && !code; d++)
-            code = tarry_drawer_set_add(p->set, &network->segments[s].laws[d],
-                                        &p->drawers[(size_t)s * network->n_delays + d], error);
-    return code;
+    return make_drawers(p, error);
 }
 
 int plain_cell_run(const tarry_network *network, int64_t cell, tarry_record *record,
                    tarry_error *error) {
-    plain p = {.network = network, .segment = network->segments, .n_segments_past = 1};
+    plain p = {
+        .common = network, .network = network, .segment = network->segments, .n_segments_past = 1};
     p.record = record;
     tarry_record_reset(record, network);
     record->cell = cell;
-    int code = make(&p, error);
+    int code = network->variation ? vary(&p, cell, error) : 0;
+    if (!code)
+        code = make(&p, error);
     if (!code)
         code = start_cell(&p, cell, error);
     if (!code)
         code = run(&p, error);
     tarry_drawer_set_free(p.set);
+    tarry_drawer_set_free(p.tables);
+    tarry_cell_network_release(&p.own);
     free(p.counts);
     free(p.pending);
     free(p.propensities);

@@ -199,15 +199,31 @@ static void write_lag(maker *m) {
 }
 
 static void write_parameters_and_delays(maker *m) {
+    /* Few shapes, as of delays. */
+    static const char *const factors[] = {
+        "lognormal: {cv: 0.5}",
+        "gamma: {cv: 0.5}",
+        "normal: {cv: 0.25}",
+        "uniform: {cv: 0.3}",
+        "weibull: {cv: 0.4}",
+        "erlang: {cv: 0.5}",
+        "exponential: {cv: 1}",
+        "table: {values: [1, 2, 5], weights: [3, 2, 1]}",
+        "table: {edges: [1, 2, 4], weights: [1, 2]}",
+        "mix: [{share: 0.25, lasts: 1}, {share: 0.75, lasts: {exponential: {mean: 2}}}]",
+        "total: [1, {gamma: {mean: 2, sd: 1}}]"};
     const unsigned n_parameters = pick(m, MOST_PARAMETERS);
     const unsigned n_delays = pick(m, MOST_DELAYS);
     if (n_parameters > 0)
         WRITE("parameters:\n");
     for (unsigned i = 0; i < n_parameters; i++) {
-        WRITE("  k%u: ", i);
+        const bool varies = chance(m, 15);
+        WRITE(varies ? "  k%u: {value: " : "  k%u: ", i);
         if (i > 0 && chance(m, 30))
             WRITE("k%u * ", pick(m, i));
         write_number(m, 0.1, 2);
+        if (varies)
+            WRITE(", varies: {%s}}", factors[pick(m, sizeof factors / sizeof *factors)]);
         WRITE("\n");
     }
     m->n_parameters = n_parameters;

@@ -81,8 +81,6 @@ START_TEST(what_is_refused) {
             "a time and a length cannot be added");
     refused("parameters:\n  a: 2\n  b: a / (a - 2)\n", 3, 6,
             "'b', which is a / (a - 2), comes to no finite number");
-    reading_refused("parameters:\n  k: {value: 6, varies: {lognormal: {cv: 0.3}}}\n", NULL, 0,
-                    readers, 1, TARRY_NOT_YET, 2, 17, "'varies' cannot be used yet");
 }
 END_TEST
 
