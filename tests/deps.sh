@@ -74,6 +74,7 @@ END
 #include <nettle/sha2.h>
 int main(void) { struct sha256_ctx context; sha256_init(&context); return 0; }
 END
+    need_program gnuplot-nox gnuplot # for figures; a run does without
     case $CC in
     *clang*) openmp=libomp-dev ;;
     *) openmp=libgomp1 ;;

@@ -63,7 +63,7 @@ step_rules() {
         none "unfinished work" || status=1
     # What follows a point is the locale's, but %.0f has none. The program sets no locale.
     pick "$sources" | grep -vE '^src/(base/number\.c|cli/.*)$' |
-        xargs grep -nE '"[^"]*%[-+ #0-9]*(\.[0-9*]*)?l?([eEgGaA]|[fF])' | sed 's/%\.0f//g' |
+        xargs grep -nE '"[^"]*%[-+ #0-9]*(\.[0-9*]*)?l?([eEgGaA]|[fF])' | sed 's/%%//g; s/%\.0f//g' |
         grep -E '%[-+ #0-9]*(\.[0-9*]*)?l?[eEfFgGaA]' |
         none "numbers with a point written outside base/number" || status=1
     return $status

@@ -29,6 +29,8 @@ typedef struct tarry_results tarry_results;
                        "per_mean_squared:number pms_low:number pms_high:number")                   \
     X(transit, "name:text delay:text window:text mean_pending:number drawn:number "                \
                "mean_drawn:number sd_drawn:number lost:number")                                    \
+    X(lags, "name:text delay:text from:number to:number drawn:number share:number low:number "     \
+            "high:number law:number")                                                              \
     X(first, "name:text step:number time:number survival:number low:number high:number")
 
 typedef enum tarry_result_table {
@@ -43,6 +45,12 @@ const tarry_table *tarry_results_table(const tarry_results *results, tarry_resul
 
 /* Traces of the cells that were kept (cell, time, one column a name), or NULL. */
 const tarry_table *tarry_results_cells(const tarry_results *results);
+
+/* For figures, where tarry_run_options.traced asked for them, or NULL: traces of the first cells
+ * (cell, time, one column a name; of a long record its beginning), and what was active in them
+ * (gene, allele, cell, from, to). */
+const tarry_table *tarry_results_traces(const tarry_results *results);
+const tarry_table *tarry_results_periods(const tarry_results *results);
 
 size_t tarry_results_n_warnings(const tarry_results *results);
 const char *tarry_results_warning(const tarry_results *results, size_t i);

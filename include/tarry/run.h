@@ -13,6 +13,9 @@ typedef struct tarry_run_options {
     int threads;         /* 0: all cores */
     const char *sampler; /* NULL: "direct" */
     int64_t keep;        /* traces of the first `keep` cells go into the results */
+    int64_t traced;      /* for figures: traces and active periods of the first `traced` cells, */
+    const char *const *genes; /* of these genes and named bursts (none: of the first few) */
+    size_t n_genes;
     /* Looked at before each new cell; once it is not 0 no new cell starts (may be set by a signal
      * handler or another thread; NULL: never). */
     const volatile int *stop;

@@ -148,6 +148,12 @@ void tarry_file_remove_parts(const char *path) {
     free(name);
 }
 
+void tarry_folder_remove_empty(const char *path) {
+    /* It failing is no fault: there is something in it, or there is none. */
+    if (rmdir(path) != 0)
+        errno = 0;
+}
+
 int tarry_folder_make(const char *path, tarry_error *error) {
     if (mkdir(path, 0777) == 0)
         return 0;

@@ -28,6 +28,9 @@ int tarry_folder_is_empty(const char *path, bool *empty, tarry_error *error);
 /* *exists: there is something of this name. */
 int tarry_file_exists(const char *path, bool *exists, tarry_error *error);
 
+/* Remove a folder that holds nothing; any other stays as it is, and so does what is no folder. */
+void tarry_folder_remove_empty(const char *path);
+
 /* Ask, creating nothing, whether files could be made in this folder: it can be written to, or is
  * missing and its parent can be. TARRY_FILE where not. */
 int tarry_folder_writable(const char *path, tarry_error *error);

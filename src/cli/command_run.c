@@ -9,26 +9,79 @@
 #include <inttypes.h>
 #include <stdlib.h>
 #include <string.h>
+#include <unistd.h>
 
 /* The demonstration: a model of models/ that the build puts into the program. */
 extern const char tarry_demo_model[];
 extern const size_t tarry_demo_model_size;
 static const char demo_name[] = "two_state.yaml";
 
-enum { TABLE_WIDTH = 80 };
+enum {
+    TABLE_WIDTH = 80,
+    TRACED = 3, /* cells whose traces are drawn */
+};
 
-static int check_figures(const char *kind) {
-    static const char *const later[] = {"svg", "pdf", "png"};
-    if (!kind || !strcmp(kind, "none"))
+static int read_format(const char *word, tarry_figure_format *format) {
+    static const char *const words[] = {
+#define WORD(name, word) word,
+        TARRY_FIGURE_FORMATS(WORD)
+#undef WORD
+    };
+    *format = TARRY_FIGURE_SVG;
+    if (!word)
         return 0;
-    for (size_t i = 0; i < sizeof later / sizeof *later; i++)
-        if (!strcmp(kind, later[i]))
-            return tarry_complain(TARRY_EXIT_WRONG,
-                                  "--figures %s: not yet; version %s draws none, so leave it out "
-                                  "or say --figures none",
-                                  kind, tarry_version());
+    for (size_t i = 0; i < sizeof words / sizeof *words; i++) {
+        if (!strcmp(word, words[i])) {
+            *format = (tarry_figure_format)i;
+            return 0;
+        }
+    }
     return tarry_complain(TARRY_EXIT_WRONG,
-                          "--figures %s: one of svg, pdf, png and none is due here", kind);
+                          "--figures %s: one of svg, pdf, png and none is due here", word);
+}
+
+/* "a,b" -> names and a text that holds them, both to be freed. */
+static int split_genes(const char *list, char **text, const char ***names, size_t *n) {
+    *n = 0;
+    *text = list ? strdup(list) : NULL;
+    *names = list ? calloc(strlen(list) + 1, sizeof **names) : NULL;
+    if (!list)
+        return 0;
+    if (!*text || !*names)
+        return tarry_complain(TARRY_EXIT_FAILED, "out of memory for the names of genes");
+    for (char *at = *text, *comma = at; comma; at = comma + 1) {
+        comma = strchr(at, ',');
+        if (comma)
+            *comma = '\0';
+        at += strspn(at, " ");
+        at[strcspn(at, " ")] = '\0';
+        if (!*at)
+            return tarry_complain(TARRY_EXIT_WRONG,
+                                  "--genes %s: names with commas between them are due here", list);
+        (*names)[(*n)++] = at;
+    }
+    return 0;
+}
+
+static void show_warning(void *context, const char *sentence) {
+    const tarry_settings *settings = context;
+    if (!settings->quiet)
+        tarry_talk("%s", sentence);
+}
+
+/* The program that draws, as named in the variable GNUPLOT: from the root where it is a path, since
+ * it will run in another folder. NULL where it is not named; to be freed. */
+static char *find_gnuplot(void) {
+    const char *named = getenv("GNUPLOT");
+    char here[4096];
+    if (!named || !*named)
+        return NULL;
+    if (*named == '/' || !strchr(named, '/') || !getcwd(here, sizeof here))
+        return strdup(named);
+    char *path = malloc(strlen(here) + strlen(named) + 2);
+    if (path)
+        sprintf(path, "%s/%s", here, named);
+    return path;
 }
 
 static int read_model(const tarry_settings *settings, tarry_model **model) {
@@ -43,14 +96,19 @@ static int read_model(const tarry_settings *settings, tarry_model **model) {
 }
 
 static int simulate(const tarry_settings *settings, const tarry_model *model,
-                    tarry_results **results, tarry_provenance *provenance) {
+                    tarry_figure_options *figures, tarry_results **results,
+                    tarry_provenance *provenance) {
     tarry_error error = {0};
     tarry_progress progress;
+    figures->stop = tarry_interrupt_watch(!settings->quiet);
     const tarry_run_options options = {
         .threads = provenance->threads,
         .sampler = provenance->sampler,
         .keep = settings->keep,
-        .stop = tarry_interrupt_watch(!settings->quiet),
+        .traced = figures->format == TARRY_FIGURE_NONE ? 0 : TRACED,
+        .genes = figures->genes,
+        .n_genes = figures->n_genes,
+        .stop = figures->stop,
         .progress = tarry_progress_show,
         .progress_context = &progress,
     };
@@ -101,7 +159,8 @@ static int hand_out(const tarry_settings *settings, const char *folder, const ta
     return status ? status : table_status;
 }
 
-static int run_model(const tarry_settings *settings, const char *folder, const tarry_model *model) {
+static int run_model(const tarry_settings *settings, const char *folder,
+                     tarry_figure_options *figures, const tarry_model *model) {
     tarry_error error = {0};
     tarry_results *results = NULL;
     tarry_provenance provenance = {
@@ -110,12 +169,13 @@ static int run_model(const tarry_settings *settings, const char *folder, const t
         .n_overrides = settings->n_overrides,
         .keep = settings->keep,
         .threads = tarry_run_n_threads(model, (int)settings->threads),
+        .figures = figures,
     };
     if (tarry_write_check(folder, settings->overwrite, &error))
         return tarry_complain_error(&error);
     for (size_t i = 0; i < tarry_model_n_warnings(model); i++)
         tarry_talk("warning: %s", tarry_model_warning(model, i));
-    int status = simulate(settings, model, &results, &provenance);
+    int status = simulate(settings, model, figures, &results, &provenance);
     if (!status)
         status = hand_out(settings, folder, model, results, &provenance);
     if (!status && provenance.partial)
@@ -124,11 +184,9 @@ static int run_model(const tarry_settings *settings, const char *folder, const t
     return status;
 }
 
-int tarry_command_run(const tarry_settings *settings) {
+static int run(const tarry_settings *settings, tarry_figure_options *figures) {
     tarry_model *model = NULL;
-    int status = check_figures(settings->figures);
-    if (!status)
-        status = read_model(settings, &model);
+    int status = read_model(settings, &model);
     if (status)
         return status;
     char *made = settings->out ? NULL
@@ -136,10 +194,27 @@ int tarry_command_run(const tarry_settings *settings) {
                                      settings->operand ? settings->operand : demo_name, ".out");
     const char *folder = settings->out ? settings->out : made;
     if (folder)
-        status = run_model(settings, folder, model);
+        status = run_model(settings, folder, figures, model);
     else
         status = tarry_complain(TARRY_EXIT_FAILED, "out of memory for the folder's name");
     free(made);
     tarry_model_free(model);
+    return status;
+}
+
+int tarry_command_run(const tarry_settings *settings) {
+    tarry_figure_options figures = {.warn = show_warning, .warn_context = (void *)settings};
+    char *genes = NULL, *gnuplot = find_gnuplot();
+    const char **names = NULL;
+    int status = read_format(settings->figures, &figures.format);
+    if (!status)
+        status = split_genes(settings->genes, &genes, &names, &figures.n_genes);
+    figures.genes = names;
+    figures.gnuplot = gnuplot;
+    if (!status)
+        status = run(settings, &figures);
+    free(genes);
+    free(names);
+    free(gnuplot);
     return status;
 }

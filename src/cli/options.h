@@ -21,8 +21,9 @@ typedef struct tarry_settings {
     const char *operand; /* the one word that is no option, or NULL */
     const char *out;
     const char *sampler;
-    const char *figures;
-    long long threads; /* 0: all cores */
+    const char *figures; /* kind, or NULL */
+    const char *genes;   /* names with commas between them, or NULL */
+    long long threads;   /* 0: all cores */
     long long keep;
     bool overwrite;
     bool quiet;

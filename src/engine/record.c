@@ -7,9 +7,6 @@
 #include <stdlib.h>
 #include <string.h>
 
-/* Histograms of drawn lags cost 3 kB a lag; beyond this many lags they are left out. */
-enum { MOST_LAGS_WITH_BINS = 256 };
-
 uint32_t tarry_lag_bin(double x) {
     const double lowest = ldexp(1, TARRY_LAG_LOWEST);
     if (!(x >= lowest))
@@ -48,7 +45,7 @@ static record_shape shape_of(const tarry_network *network) {
         .snapshots = (size_t)network->n_channels * run->n_snapshots,
         .counts = (size_t)(run->n_spans + 1) * network->n_tracks,
         .lags = n_lags * run->n_spans,
-        .bins = n_lags <= MOST_LAGS_WITH_BINS ? n_lags * TARRY_LAG_BINS : 0,
+        .bins = n_lags <= TARRY_MOST_LAGS_WITH_BINS ? n_lags * TARRY_LAG_BINS : 0,
         .firsts = (size_t)network->n_responses * network->n_firsts,
     };
 }

@@ -12,7 +12,9 @@ enum {
     TARRY_LAG_BINS_OCTAVE = 8, /* histogram bins of drawn lags in each doubling */
     TARRY_LAG_LOWEST = -20,    /* first octave starts at 2^-20 time units; shorter ones go there */
     TARRY_LAG_OCTAVES = 48,    /* longer lags than 2^28 go into the last bin */
-    TARRY_LAG_BINS = TARRY_LAG_BINS_OCTAVE * TARRY_LAG_OCTAVES
+    TARRY_LAG_BINS = TARRY_LAG_BINS_OCTAVE * TARRY_LAG_OCTAVES,
+    TARRY_MOST_LAGS_WITH_BINS =
+        256, /* a histogram costs 3 kB a lag; with more lags there are none */
 };
 
 /* A track opens or closes. */

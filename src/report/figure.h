@@ -22,10 +22,12 @@ typedef struct tarry_figure {
     const char *signal; /* the model's; NULL: not of one signal */
     const char *window; /* the model's; NULL: of the whole record */
     char *script;       /* what STEM.gp holds */
-    char *data;         /* what STEM.csv holds */
-    char *svg;          /* the <svg> element for a page: ids begin with the stem, black is
-                           currentColor, no background; NULL where it could not be drawn */
-    int width, height;  /* of the picture, in 1/96 inch */
+    char *page_script; /* what makes STEM.page.svg for a page where the script makes no SVG, or NULL
+                        */
+    char *data;        /* what STEM.csv holds */
+    char *svg;         /* the <svg> element for a page: ids begin with the stem, black is
+                          currentColor, no background; NULL where it could not be drawn */
+    int width, height; /* of the picture, in 1/96 inch */
 } tarry_figure;
 
 typedef struct tarry_figure_list {

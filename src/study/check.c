@@ -369,9 +369,9 @@ static void write_files(tarry_page *page) {
     put_rows(page, "transit.csv", (double)network->n_lags * run->n_windows, NULL);
     put_rows(page, "cells.csv", run->n_frames, "for each cell kept (--keep)");
     tarry_page_list(page, 4, 4, "files");
-    tarry_text_add_string(
-        page->text, "  distribution.csv, burst_sizes.csv, dwells.csv and first.csv hold a row "
-                    "for\n  each bin or step that is found.\n");
+    tarry_text_add_string(page->text,
+                          "  distribution.csv, burst_sizes.csv, dwells.csv, lags.csv and first.csv "
+                          "hold a\n  row for each bin or step that is found.\n");
 }
 
 static int write_memory(tarry_page *page, tarry_notes *notes, tarry_error *error) {

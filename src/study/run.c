@@ -20,6 +20,7 @@
 #include "engine/cell.h"
 #include "model/model.h"
 #include "study/sheet.h"
+#include "study/sketch.h"
 #include "tally/results.h"
 #include "tally/tally.h"
 #include "tarry/run.h"
@@ -51,6 +52,7 @@ typedef struct job {
     double *kept; /* [kept cell][recorded channel][frame] */
     int64_t n_keep;
     uint32_t n_recorded;
+    tarry_sketch sketch;
 
     bool has_lock, has_added;
     pthread_mutex_t lock;
@@ -182,6 +184,8 @@ static void work(void *context, int index) {
         int code = tarry_cell_run(w->cell, cell, &w->record, &error);
         if (!code && wait_for_turn(j, cell)) {
             code = tarry_tally_set_add(j->set, &w->record, w->scratch, &error);
+            if (!code)
+                code = tarry_sketch_add(&j->sketch, &w->record, &error);
             if (!code) {
                 totals_count(&w->totals, &w->record, j->network);
                 keep_frames(j, &w->record);
@@ -208,9 +212,11 @@ tarry_run_memory tarry_run_memory_of(const tarry_network *network, int threads, 
     return memory;
 }
 
-static int check_memory(const tarry_network *network, int threads, int64_t keep,
+static int check_memory(const tarry_network *network, int threads, int64_t keep, double sketch,
                         tarry_error *error) {
-    const tarry_run_memory memory = tarry_run_memory_of(network, threads, keep);
+    tarry_run_memory memory = tarry_run_memory_of(network, threads, keep);
+    memory.kept += sketch;
+    memory.all += sketch;
     const double limit = network->run.limit_memory;
     if (memory.all <= limit)
         return 0;
@@ -309,6 +315,8 @@ static int report(const job *j, const totals *total, tarry_results **results, ta
         code = tarry_tally_set_report(j->set, r, error);
     if (!code)
         code = report_kept(j, r, error);
+    if (!code)
+        code = tarry_sketch_report(&j->sketch, j->n_done, r, error);
     if (code)
         tarry_results_free(r);
     else
@@ -329,7 +337,15 @@ static int job_init(job *j, const tarry_network *network, const tarry_run_option
     j->has_added = pthread_cond_init(&j->added, NULL) == 0;
     if (!j->has_lock || !j->has_added)
         return tarry_fail_memory(error, "the lock of a run");
-    int code = tarry_engine_new(network, options->sampler ? options->sampler : "direct", &j->engine,
+    const int64_t cells = network->run.cells;
+    int code = tarry_sketch_init(&j->sketch, network,
+                                 options->traced < cells ? options->traced : cells, options->genes,
+                                 options->n_genes, error);
+    if (!code)
+        code = check_memory(network, tarry_run_threads(network, options->threads), j->n_keep,
+                            tarry_sketch_bytes(&j->sketch), error);
+    if (!code)
+        code = tarry_engine_new(network, options->sampler ? options->sampler : "direct", &j->engine,
                                 error);
     if (!code)
         code = tarry_tally_set_new(network, &j->set, error);
@@ -342,6 +358,7 @@ static int job_init(job *j, const tarry_network *network, const tarry_run_option
 
 static void job_release(job *j) {
     free(j->kept);
+    tarry_sketch_release(&j->sketch);
     tarry_tally_set_free(j->set);
     tarry_engine_free(j->engine);
     if (j->has_added)
@@ -388,7 +405,7 @@ static int check_options(const tarry_run_options *options, tarry_error *error) {
     if (options->threads < 0)
         return tarry_fail(error, TARRY_INPUT, "threads must be 0 (all cores) or more, not %d",
                           options->threads);
-    if (options->keep < 0)
+    if (options->keep < 0 || options->traced < 0)
         return tarry_fail(error, TARRY_INPUT, "the number of cells kept must not be negative");
     return 0;
 }
@@ -405,10 +422,6 @@ int tarry_run_network(const tarry_network *network, const tarry_run_options *opt
     if (code)
         return code;
     const int n = tarry_run_threads(network, options->threads);
-    const int64_t keep = options->keep < network->run.cells ? options->keep : network->run.cells;
-    code = check_memory(network, n, keep, error);
-    if (code)
-        return code;
     job j = {0};
     worker *workers = tarry_calloc((size_t)n, sizeof *workers);
     code = workers ? job_init(&j, network, options, error)

@@ -15,6 +15,7 @@
     X(pooled)                                                                                      \
     X(autocorrelation)                                                                             \
     X(transit)                                                                                     \
+    X(lags)                                                                                        \
     X(first)                                                                                       \
     X(drift)
 

@@ -34,6 +34,8 @@ void tarry_results_free(tarry_results *results) {
     for (int i = 0; i < TARRY_N_RESULT_TABLES; i++)
         tarry_table_free(results->tables[i]);
     tarry_table_free(results->cells);
+    tarry_table_free(results->traces);
+    tarry_table_free(results->periods);
     tarry_notes_release(&results->notes);
     free(results);
 }
@@ -44,6 +46,14 @@ const tarry_table *tarry_results_table(const tarry_results *results, tarry_resul
 
 const tarry_table *tarry_results_cells(const tarry_results *results) {
     return results->cells;
+}
+
+const tarry_table *tarry_results_traces(const tarry_results *results) {
+    return results->traces;
+}
+
+const tarry_table *tarry_results_periods(const tarry_results *results) {
+    return results->periods;
 }
 
 size_t tarry_results_n_warnings(const tarry_results *results) {

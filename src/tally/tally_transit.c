@@ -5,6 +5,7 @@
  * which are pooled as bursts are. Formulas: docs/statistics.md, "In transit". */
 #include "base/table.h"
 #include "tally/kinds.h"
+#include "tally/pooled_lags.h"
 #include "tally/results.h"
 
 #include <math.h>
@@ -34,31 +35,11 @@ static void transit_add(const tarry_network *network, const tarry_record *record
     }
 }
 
-/* Is it the same step of another allele, or the same one? */
-static bool alike(const tarry_lag *one, const tarry_lag *other) {
-    if (one == other)
-        return true;
-    return one->gene != TARRY_NONE && one->gene == other->gene &&
-           strcmp(one->name, other->name) == 0;
-}
-
-/* Has an earlier lag of the same gene reported for this one? A gene's lags are neighbours. */
-static bool reported(const tarry_network *network, uint32_t lag) {
-    const tarry_lag *lags = network->lags;
-    for (uint32_t i = lag; i-- > 0 && lags[i].gene == lags[lag].gene;)
-        if (alike(&lags[i], &lags[lag]))
-            return true;
-    return false;
-}
-
 /* The sums of a lag and of those like it after it, over a window's spans. */
 static void gather(const tarry_network *network, const double *sums, uint32_t lag,
                    const tarry_window *window, double total[N_SUMS]) {
-    const tarry_lag *lags = network->lags;
     memset(total, 0, N_SUMS * sizeof *total);
-    for (uint32_t i = lag; i < network->n_lags && lags[i].gene == lags[lag].gene; i++) {
-        if (!alike(&lags[i], &lags[lag]))
-            continue;
+    for (uint32_t i = lag; i < network->n_lags; i = tarry_next_like_lag(network, lag, i)) {
         for (uint32_t span = window->spans.from; span < window->spans.to; span++)
             for (int j = 0; j < N_SUMS; j++)
                 total[j] += sums[((size_t)i * network->run.n_spans + span) * N_SUMS + (size_t)j];
@@ -81,7 +62,7 @@ static int transit_report(const tarry_network *network, const tarry_tally_set *s
     const double cells = tarry_tally_cells(set);
     int code = TARRY_OK;
     for (uint32_t i = 0; !code && i < network->n_lags; i++) {
-        if (reported(network, i))
+        if (tarry_is_like_earlier_lag(network, i))
             continue;
         for (uint32_t w = 0; !code && w < network->run.n_windows; w++) {
             const tarry_window *window = &network->run.windows[w];

@@ -66,6 +66,35 @@ run: {cells: 100, until: 1 min, every: 0.5 min, seed: 1}
 MODEL
 }
 
+# Two genes, one signal, a protocol step and lags that vary: something for every figure.
+gene_model() {
+    cat <<'MODEL'
+tarry: 1
+title: It's `touch pwned` $(touch pwned) @model {/Symbol a}_3 "x" \
+time: min
+genes:
+  vela:
+    promoter:
+      shut: {to: {open: 0.2}}
+      open: {to: {shut: 0.5}, initiates: 3}
+    transcript:
+      stages: {nascent: 2 min, nuclear: {gamma: {mean: 3 min, sd: 1 min}}}
+      half_life: 10 min
+  lyra:
+    promoter:
+      shut: {to: {open: 0.3}}
+      open: {to: {shut: k_shut}, initiates: 2}
+    transcript: {half_life: 5 min}
+parameters: {k_shut: 0.6}
+signals:
+  spot: {of: vela.nascent, noise: 0.2}
+  light: {sum: {lyra.transcript: 1}}
+protocol:
+  - {at: 20 min, set: {k_shut: 0.1}}
+run: {cells: 20, settle: 20 min, until: 40 min, every: 0.5 min, snapshots: [0 min, 40 min], seed: 1}
+MODEL
+}
+
 finish() {
     [ "$n_failed" = 0 ]
     exit

@@ -4,6 +4,7 @@
 # shellcheck source=tests/cli/helpers.sh
 . "${0%/*}/helpers.sh"
 small_model >small.yaml
+gene_model >gene.yaml
 
 all_commands() {
     run 0 help || return 1
@@ -17,7 +18,7 @@ ok "help lists the commands" all_commands
 all_options() {
     run 0 help run || return 1
     for option in out overwrite cells settle until every snapshots seed set threads sampler keep \
-        figures quiet; do
+        figures genes quiet; do
         says out "--$option" || return 1
     done
 }
@@ -62,7 +63,9 @@ ok "--set of what is no parameter" wrong "--set" run small.yaml --set k_open=1
 ok "a time that is none" wrong "--until" run small.yaml --until "ten minutes"
 ok "unknown sampler" wrong "directt" run small.yaml --sampler directt
 
-ok "figures, not yet" wrong "not yet" run small.yaml --figures svg
+ok "genes that figures show, one of them unknown" wrong "did you mean 'vela'?" run gene.yaml --genes lyra,vola
+ok "genes of a model without any" wrong "neither genes" run small.yaml --genes vela
+ok "an empty name among genes" wrong "names with commas" run gene.yaml --genes vela,,lyra
 ok "figures of no known kind" wrong "svg, pdf, png and none" run small.yaml --figures gif
 for command in measure fit compare plan sweep; do
     ok "$command, not yet" wrong "not yet" "$command" small.yaml

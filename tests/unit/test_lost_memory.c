@@ -356,7 +356,9 @@ START_TEST(program) {
     static char overwrite[] = "--overwrite", out[] = "--out", set[] = "--set", pace[] = "pace=2";
     static char keep[] = "--keep=1", threads[] = "--threads=2", run[] = "run", check[] = "check";
     char *model = (char *)put_model(3), *folder = (char *)test_path("out");
-    char *run_words[] = {run, model, overwrite, out, folder, keep, threads, set, pace, NULL};
+    static char figures[] = "--figures=none";
+    char *run_words[] = {run,     model, overwrite, out,     folder, keep,
+                         threads, set,   pace,      figures, NULL};
     char *check_words[] = {check, model, set, pace, NULL};
     crash_file = program_listen();
     ck_assert_int_gt(fail_each("check", 1, call_it, NULL, check_words, false, 1),
@@ -365,6 +367,20 @@ START_TEST(program) {
                      OWN_MEMORY ? 1000 : 0);
     if (OWN_MEMORY)
         ck_assert_int_gt(fail_each("run", 9, call_it, complete, run_words, true, 0), 1000);
+}
+END_TEST
+
+/* With a program in the place of gnuplot that does nothing: figures are made, and missed. */
+START_TEST(figures) {
+    static char overwrite[] = "--overwrite", out[] = "--out", run[] = "run", one[] = "--threads=1";
+    for (size_t i = 0; i < N_MODELS; i += 2) {
+        char *words[] = {run, (char *)put_model(i), overwrite, out, (char *)test_path("out"), one,
+                         NULL};
+        crash_file = program_listen();
+        ck_assert_int_eq(setenv("GNUPLOT", "/bin/true", 1), 0);
+        ck_assert_int_gt(fail_each("figures", 101, call_it, complete, words, false, 6),
+                         OWN_MEMORY ? 500 : 0);
+    }
 }
 END_TEST
 
@@ -380,6 +396,7 @@ int main(void) {
     const test_entry tests[] = {
         {"reading", reading}, {"checking", checking},       {"running", running},
         {"writing", writing}, {"overwriting", overwriting}, {"program", program},
+        {"figures", figures},
     };
     return run_tests("lost memory", tests, sizeof tests / sizeof *tests);
 }
