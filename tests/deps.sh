@@ -34,6 +34,16 @@ need_program() {
     done
 }
 
+# need_one_of PACKAGE PROGRAM... : any of them will do
+need_one_of() {
+    package=$1
+    shift
+    for program in "$@"; do
+        command -v "$program" >/dev/null 2>&1 && return
+    done
+    lack "$package" "the program $1"
+}
+
 # need_library PACKAGE WHAT FLAGS, with a few lines of C on standard input
 need_library() {
     cat >"$scratch/try.c"
@@ -91,6 +101,8 @@ need_test() {
 int main(void) { return suite_create("") == NULL; }
 END
     need_program libc-bin localedef
+    need_program libxml2-utils xmllint
+    need_one_of chromium chromium chromium-browser google-chrome google-chrome-stable
     version=$("$CC" -dumpversion 2>/dev/null | cut -d. -f1)
     case $CC in
     *clang*) sanitizers=libclang-rt-$version-dev ;;

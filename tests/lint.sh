@@ -39,7 +39,7 @@ none() {
 # No blanks at ends of lines, no tabs but in Makefiles, one newline at the end, no carriage returns.
 step_text() {
     status=0
-    for file in $(pick '\.(c|h|sh|awk|md|ya?ml|csv)$|^(Makefile|\.ci/run|\.clang-.*|\.gitignore)$'); do
+    for file in $(pick '\.(c|h|sh|awk|js|md|ya?ml|csv)$|^(Makefile|\.ci/run|\.clang-.*|\.gitignore)$'); do
         grep -nH '[[:blank:]]$' "$file"
         grep -nH "$(printf '\r')" "$file"
         [ "$file" = Makefile ] || grep -nH "$(printf '\t')" "$file"

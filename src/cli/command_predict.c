@@ -22,8 +22,10 @@ static int hand_out(const tarry_settings *settings, const char *folder, const ta
     else
         table_status = tarry_output(table);
     free(table);
-    if (written && !settings->quiet)
+    if (written && !settings->quiet) {
         tarry_talk("exact values in %s", folder);
+        tarry_command_say_page(folder);
+    }
     return status ? status : table_status;
 }
 

@@ -137,6 +137,7 @@ static void say_what_was_done(const tarry_results *results, const tarry_provenan
     else
         tarry_talk("%" PRId64 " cell%s in %s; results in %s", n, n == 1 ? "" : "s", duration,
                    folder);
+    tarry_command_say_page(folder);
 }
 
 /* Files first; the table comes in any case, since the work is done. */

@@ -124,3 +124,8 @@ char *tarry_command_folder(const char *path, const char *ending) {
     }
     return folder;
 }
+
+void tarry_command_say_page(const char *folder) {
+    const size_t n = strlen(folder);
+    tarry_talk("page: %s%sreport.html", folder, n && folder[n - 1] == '/' ? "" : "/");
+}

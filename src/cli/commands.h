@@ -44,4 +44,7 @@ int tarry_command_read_model(const tarry_settings *settings, tarry_model **model
  * freed; NULL when memory is short. */
 char *tarry_command_folder(const char *path, const char *ending);
 
+/* Say where the page of a run is. */
+void tarry_command_say_page(const char *folder);
+
 #endif

@@ -9,6 +9,7 @@
 #include <string.h>
 
 const char tarry_summary_name[] = "summary.json";
+const char tarry_page_name[] = "report.html";
 const char tarry_run_name[] = "run.json";
 const char tarry_figures_name[] = "figures";
 static const char unfinished_name[] = "unfinished.json"; /* there while files are being written */
@@ -19,6 +20,7 @@ static const char *const run_files[] = {
     TARRY_RESULT_TABLES(FILE_NAME)
 #undef FILE_NAME
         "cells.csv",
+    tarry_page_name,
     tarry_run_name,
 };
 

@@ -25,6 +25,7 @@ typedef struct tarry_run_folder {
 enum { TARRY_LONGEST_NAME = 255 }; /* of a file, with the name of a folder in the run's */
 
 extern const char tarry_summary_name[]; /* "summary.json" */
+extern const char tarry_page_name[];    /* "report.html" */
 extern const char tarry_run_name[];     /* "run.json" */
 extern const char tarry_figures_name[]; /* "figures" */
 

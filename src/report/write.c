@@ -1,10 +1,11 @@
-/* The files of a run, in their order: tables, figures, run.json, and summary.json last. */
+/* The files of a run, in their order: tables, figures, page, run.json, and summary.json last. */
 #include "tarry/write.h"
 
 #include "base/error.h"
 #include "base/file.h"
 #include "base/table.h"
 #include "report/drawing.h"
+#include "report/page.h"
 #include "report/run_folder.h"
 
 #include <stdio.h>
@@ -45,15 +46,24 @@ static int write_tables(tarry_run_folder *folder, const tarry_results *results,
     return write_table(folder, tarry_results_cells(results), error);
 }
 
+/* Figures, and the page that has those that could be drawn. */
 static int write_figures(tarry_run_folder *folder, const tarry_model *model,
-                         const tarry_results *results, const tarry_figure_options *options,
+                         const tarry_results *results, const tarry_provenance *provenance,
                          tarry_error *error) {
+    const tarry_figure_options *options = provenance->figures;
     tarry_figure_list figures = {0};
-    if (!options || options->format == TARRY_FIGURE_NONE)
-        return 0;
-    int status = tarry_figures_make(model, results, options, &figures, error);
+    tarry_text text = {0};
+    int status = 0;
+    if (options && options->format != TARRY_FIGURE_NONE) {
+        status = tarry_figures_make(model, results, options, &figures, error);
+        if (!status)
+            status = tarry_figures_draw(folder, options, &figures, error);
+    }
     if (!status)
-        status = tarry_figures_draw(folder, options, &figures, error);
+        status = tarry_page_write(model, results, provenance, &figures, &text, error);
+    if (!status)
+        status = tarry_run_folder_write(folder, tarry_page_name, &text, true, true, error);
+    tarry_text_release(&text);
     tarry_figure_list_release(&figures);
     return status;
 }
@@ -89,7 +99,7 @@ static int write_all(tarry_run_folder *folder, const tarry_model *model,
     if (!status)
         status = write_tables(folder, results, error);
     if (!status)
-        status = write_figures(folder, model, results, provenance->figures, error);
+        status = write_figures(folder, model, results, provenance, error);
     if (!status)
         status = write_run_json(folder, provenance, error);
     if (!status)

@@ -272,7 +272,7 @@ START_TEST(test_digests) {
     json_t *summary = read_json(folder, "summary.json");
     const json_t *files = json_object_get(summary, "files");
     char digest[65];
-    ck_assert_uint_eq(json_array_size(files), 4); /* means, bursts, first, run.json */
+    ck_assert_uint_eq(json_array_size(files), 5); /* means, bursts, first, run.json, page */
     for (size_t i = 0; i < json_array_size(files); i++) {
         const json_t *file = json_array_get(files, i);
         const char *name = json_string_value(json_object_get(file, "name"));
