@@ -70,6 +70,7 @@ const char tarry_page_style[] =
     "grid-template-columns:repeat(auto-fill,minmax(min(100%,30rem),1fr))}\n"
     "figure{margin:0;min-width:0}\n"
     ".picture svg{display:block;width:100%;height:auto;max-width:44rem}\n"
+    "@media screen and (prefers-color-scheme:dark){.picture svg{filter:brightness(1.3)}}\n"
     "figcaption{font-size:.9rem;line-height:1.45;margin-top:.4rem}\n"
     "pre{background:var(--band);padding:.8rem 1rem;overflow-x:auto;font-size:.85rem;"
     "line-height:1.45}\n"
