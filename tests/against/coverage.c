@@ -4,6 +4,7 @@
 
 #include <gsl/gsl_cdf.h>
 #include <math.h>
+#include <stdbool.h>
 #include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
@@ -60,6 +61,15 @@ static const struct {
           "half_life: 20 min}\n"
           "run: {settle: 300, until: 120, every: 4, lags: 40}\n",
      100},
+    {"unlike cells, 100 cells",
+     HEAD
+     "parameters: {k: {value: 2, varies: {lognormal: {cv: 0.5}}}, lag: {value: 4, varies: {gamma: "
+     "{cv: "
+     "0.2}}}}\ngenes:\n  vela:\n    start: steady\n    promoter:\n      shut: {to: {open: 0.1}}\n"
+     "      open: {to: {shut: 0.3}, initiates: k}\n"
+     "    transcript: {stages: {nascent: {fixed: lag}}, half_life: 6 min}\n" SPOT
+     "run: {settle: 60, until: 60, every: 2, lags: 15}\n",
+     100},
 };
 
 const char *coverage_title(size_t model) {
@@ -111,6 +121,7 @@ static const interval_kind kinds[] = {
      "correlation", WHOLE},
     {TARRY_TABLE_autocorrelation, "window first second lag", "per_mean_squared", "pms_low",
      "pms_high", "per mean squared", WHOLE},
+    {TARRY_TABLE_first, "name step time", "survival", "low", "high", "first", BY_SIZE},
     {TARRY_TABLE_means, "name time", "mean", "mean_se", NULL, "means: mean", WHOLE},
     {TARRY_TABLE_means, "name time", "sd", "sd_se", NULL, "means: sd", WHOLE},
     {TARRY_TABLE_means, "name time", "fano", "fano_se", NULL, "means: fano", WHOLE},
@@ -230,18 +241,26 @@ static coverage_class *class_of(coverage_counts *all, const char *name) {
     return added;
 }
 
-static void judge_row(const interval_kind *kind, const tarry_table *table, size_t row,
+/* What docs/statistics.md, "Moments", says: a mean plain, other figures on the log scale. *low
+ * comes in as the standard error. */
+static void from_error(const interval_kind *kind, double value, int n_cells, double *low,
+                       double *high) {
+    const int n_groups = n_cells < 64 ? n_cells : 64;
+    const double half = *low * gsl_cdf_tdist_Pinv(0.975, n_groups - 1);
+    const bool plain = strcmp(kind->value, "mean") == 0;
+    *low = plain ? value - half : value * exp(-half / value);
+    *high = plain ? value + half : value * exp(half / value);
+}
+
+static void judge_row(const interval_kind *kind, const tarry_table *table, size_t row, int n_cells,
                       reference *exact, coverage_counts *one) {
     char key[256], name[64];
     double low = tarry_table_number(table, row, tarry_table_column(table, kind->low)), high;
-    if (kind->high) {
+    if (kind->high)
         high = tarry_table_number(table, row, tarry_table_column(table, kind->high));
-    } else {
-        const double value = tarry_table_number(table, row, tarry_table_column(table, kind->value));
-        const double half = low * gsl_cdf_tdist_Pinv(0.975, 63);
-        low = value - half;
-        high = value + half;
-    }
+    else
+        from_error(kind, tarry_table_number(table, row, tarry_table_column(table, kind->value)),
+                   n_cells, &low, &high);
     /* No interval, or one of no width where the figure is certain (correlation at lag 0). */
     if (!(low < high))
         return;
@@ -261,7 +280,7 @@ static void add_repeat(size_t model, unsigned seed, reference *exact, coverage_c
     for (size_t k = 0; k < KINDS; k++) {
         const tarry_table *table = tarry_results_table(results, kinds[k].table);
         for (size_t row = 0; row < tarry_table_n_rows(table); row++)
-            judge_row(&kinds[k], table, row, exact, one);
+            judge_row(&kinds[k], table, row, models[model].cells, exact, one);
     }
     tarry_results_free(results);
 }

@@ -8,7 +8,7 @@
 
 #include <stddef.h>
 
-enum { COVERAGE_MODELS = 8, COVERAGE_MOST_CLASSES = 64 };
+enum { COVERAGE_MODELS = 9, COVERAGE_MOST_CLASSES = 64 };
 
 /* Intervals of one kind, such as "bursts: interval_mean" or "distribution: 0.01 to 0.1". */
 typedef struct coverage_class {

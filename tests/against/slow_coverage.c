@@ -1,4 +1,4 @@
-/* The table of docs/statistics.md: how often each 95 % interval holds, in eight models.
+/* The table of docs/statistics.md: how often each 95 % interval holds, in nine models.
  *
  *   slow_coverage [REPEATS]    default 1,000
  *
