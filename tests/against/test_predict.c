@@ -1,10 +1,7 @@
 /* Two routes to one number: what a simulation finds and what is worked out must agree, for models
- * of different structure. Each figure with an interval gives Z = (found - exact)/standard error.
- * Standard errors come from at most 64 groups of cells, so Z follows Student's t there; figures of
- * one run hang together. The largest |Z| of each table is held below 6 (a chance of 1e-7 for each
- * of some thousand figures with 63 degrees of freedom), and the mean square of Z over a table of
- * hundreds below 2. */
+ * of different structure. */
 
+#include "agree.h"
 #include "support.h"
 
 #include "tarry/tarry.h"
@@ -52,109 +49,11 @@ static const char *const models[] = {
     "  one: {of: vela.n, ramp: {from: 0.1, to: 0.3}, allele: 1, noise: {fixed: 0.1, share: 0.2}}\n",
 };
 
-/* ---- tables -------------------------------------------------------------------------------- */
-
-/* The rows of a table by their first columns, in the order of the exact one. */
-typedef struct pairing {
-    const tarry_table *found, *exact;
-    int keys[4]; /* columns, n_keys of them */
-    int n_keys;
-} pairing;
-
-static bool same_row(const pairing *p, size_t i, size_t j) {
-    for (int k = 0; k < p->n_keys; k++) {
-        const double x = tarry_table_number(p->found, i, p->keys[k]);
-        const double y = tarry_table_number(p->exact, j, p->keys[k]);
-        if (strcmp(tarry_table_text(p->found, i, p->keys[k]),
-                   tarry_table_text(p->exact, j, p->keys[k])) != 0)
-            return false;
-        if (isnan(x) != isnan(y) || fabs(x - y) > 1e-9)
-            return false;
-    }
-    return true;
-}
-
-typedef struct score {
-    size_t n;
-    double sum, most;
-    char where[128];
-} score;
-
-static void add_z(score *s, double z, const tarry_table *table, size_t row, const char *what) {
-    s->n++;
-    s->sum += z * z;
-    if (fabs(z) <= s->most)
-        return;
-    s->most = fabs(z);
-    snprintf(s->where, sizeof s->where, "%s row %zu (%s), %s", tarry_table_name(table), row,
-             tarry_table_text(table, row, 0), what);
-}
-
-/* The standard error behind an interval, or a column of it. */
-typedef double spread(const tarry_table *table, size_t row);
-
-static double interval_error(const tarry_table *table, size_t row) {
-    return (tarry_table_number(table, row, tarry_table_column(table, "high")) -
-            tarry_table_number(table, row, tarry_table_column(table, "low"))) /
-           3.92;
-}
-
-static double mean_error(const tarry_table *table, size_t row) {
-    return tarry_table_number(table, row, tarry_table_column(table, "mean_se"));
-}
-
-/* Of a promoter's state (a Fano factor below 1) the sd hardly changes with p near 1/2, and its
- * error is no normal one. */
-static double sd_error(const tarry_table *table, size_t row) {
-    if (tarry_table_number(table, row, tarry_table_column(table, "fano")) < 0.95)
-        return 0;
-    return tarry_table_number(table, row, tarry_table_column(table, "sd_se"));
-}
-
-static score compare(const tarry_results *found, const tarry_results *exact,
-                     tarry_result_table which, const char *const *keys, const char *value,
-                     spread *error_of, double least) {
-    score s = {0};
-    pairing p = {tarry_results_table(found, which), tarry_results_table(exact, which), {0}, 0};
-    for (; keys[p.n_keys] != NULL; p.n_keys++)
-        p.keys[p.n_keys] = tarry_table_column(p.found, keys[p.n_keys]);
-    const int column = tarry_table_column(p.found, value);
-    size_t start = 0;
-    for (size_t j = 0; j < tarry_table_n_rows(p.exact); j++) {
-        size_t i = start;
-        while (i < tarry_table_n_rows(p.found) && !same_row(&p, i, j))
-            i++;
-        if (i == tarry_table_n_rows(p.found))
-            continue; /* nothing was found there, or at another time */
-        start = i;
-        const double x = tarry_table_number(p.found, i, column);
-        const double y = tarry_table_number(p.exact, j, column);
-        const double se = error_of(p.found, i);
-        if (se > 0 && x > least && isfinite(y))
-            add_z(&s, (x - y) / se, p.found, i, value);
-    }
-    return s;
-}
-
-static void hold(const score *s, size_t model, size_t n_least) {
-    ck_assert_msg(s->n >= n_least, "model %zu: %zu figures only of %s", model, s->n, s->where);
-    ck_assert_msg(s->most < 6, "model %zu: Z is %.2f at %s", model, s->most, s->where);
-    if (s->n >= 100)
-        ck_assert_msg(s->sum / (double)s->n < 4, "model %zu: mean square of Z is %.2f", model,
-                      s->sum / (double)s->n);
-}
-
 /* ---- the test ------------------------------------------------------------------------------ */
 
 static void check_model(size_t m) {
-    static const char *const by_name[] = {"name", "time", NULL};
-    static const char *const counts[] = {"name", "window", "time", "count", NULL};
-    static const char *const figures[] = {"gene", "window", "quantity", NULL};
-    static const char *const signals[] = {"signal", "window", "quantity", NULL};
-    static const char *const sizes[] = {"gene", "window", "size", NULL};
-    static const char *const dwells[] = {"gene", "window", "period", "time", NULL};
-    static const char *const lags[] = {"window", "first", "second", "lag", NULL};
-    static const char *const firsts[] = {"name", "step", "time", NULL};
+    static const size_t steady_least[AGREE_KINDS] = {300, 80, 3, 4, 3, 1, 20, 30, 0};
+    static const size_t induced_least[AGREE_KINDS] = {300, 80, 3, 4, 3, 0, 0, 0, 10};
     const bool induced = strstr(models[m], "protocol:") != NULL;
     char text[4096], what[1024];
     tarry_model *model = NULL;
@@ -163,8 +62,7 @@ static void check_model(size_t m) {
     const tarry_run_options options = {.threads = 2};
     snprintf(text, sizeof text,
              "tarry: 1\ntime: min\n%srun: {cells: %d, settle: 100, until: 40, every: 0.5, "
-             "snapshots: [0, "
-             "10, 40], lags: 8}\n",
+             "snapshots: [0, 10, 40], lags: 8}\n",
              models[m], test_small() ? 400 : 3000);
     tarry_start();
     int code = tarry_model_read_text(text, strlen(text), "m.yaml", NULL, 0, &model, &error);
@@ -173,29 +71,10 @@ static void check_model(size_t m) {
     if (code == 0)
         code = tarry_predict(model, &exact, &error);
     ck_assert_msg(code == 0, "model %zu: %s", m, tarry_error_text(&error, what, sizeof what));
-    score s = compare(found, exact, TARRY_TABLE_means, by_name, "mean", mean_error, -1e9);
-    hold(&s, m, 300);
-    s = compare(found, exact, TARRY_TABLE_means, by_name, "sd", sd_error, -1e9);
-    hold(&s, m, 80);
-    s = compare(found, exact, TARRY_TABLE_distribution, counts, "probability", interval_error,
-                0.02);
-    hold(&s, m, 12);
-    s = compare(found, exact, TARRY_TABLE_bursts, figures, "value", interval_error, -1e9);
-    hold(&s, m, induced || test_small() ? 4 : 10);
-    s = compare(found, exact, TARRY_TABLE_signals, signals, "value", interval_error, -1e9);
-    hold(&s, m, 3);
-    if (induced) {
-        s = compare(found, exact, TARRY_TABLE_first, firsts, "survival", interval_error, 0.02);
-        hold(&s, m, 10);
-    } else {
-        s = compare(found, exact, TARRY_TABLE_burst_sizes, sizes, "probability", interval_error,
-                    0.02);
-        hold(&s, m, 1);
-        s = compare(found, exact, TARRY_TABLE_dwells, dwells, "survival", interval_error, 0.02);
-        hold(&s, m, 20);
-        s = compare(found, exact, TARRY_TABLE_autocorrelation, lags, "correlation", interval_error,
-                    -1e9);
-        hold(&s, m, 30);
+    for (int k = 0; k < AGREE_KINDS; k++) {
+        const agree_score s = agree_compare(found, exact, &agree_figures[k], NULL, NULL);
+        snprintf(what, sizeof what, "model %zu", m);
+        agree_hold(&s, what, induced ? induced_least[k] : steady_least[k]);
     }
     tarry_results_free(found);
     tarry_results_free(exact);

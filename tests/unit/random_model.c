@@ -172,7 +172,10 @@ static void write_delay(maker *m, int depth) {
         WRITE("}}");
         break;
     case 6:
-        WRITE("{table: {values: [0.5, 1, 2], weights: [1, 2, %u]}}", pick(m, 3));
+        if (chance(m, 25))
+            WRITE("{table: {file: tests/unit/kept/lags.csv}}");
+        else
+            WRITE("{table: {values: [0.5, 1, 2], weights: [1, 2, %u]}}", pick(m, 3));
         break;
     case 7:
         WRITE("{table: {edges: [0, 1, 2, 4], weights: [1, %u, 2]}}", pick(m, 3));
@@ -375,6 +378,22 @@ static void write_gene(maker *m, unsigned g) {
     write_fate(m);
 }
 
+/* Some that are all alike, and that nothing else speaks of. */
+static void write_like_genes(maker *m) {
+    WRITE("  many:\n    many: %u\n    promoter:\n      off:\n        to:\n          on: ",
+          2 + pick(m, 4));
+    write_rate(m, 0.1, 1, false);
+    WRITE("\n      on:\n        to:\n          off: ");
+    write_rate(m, 0.1, 1, false);
+    WRITE("\n        initiates: ");
+    write_rate(m, 0.2, 2, false);
+    WRITE("\n    transcript:\n      stages:\n        t: ");
+    write_lag(m);
+    WRITE("\n      decay: ");
+    write_rate(m, 0.2, 2, false);
+    WRITE("\n");
+}
+
 /* ---- reactions ---- */
 
 static void write_species_map(maker *m, const char *indent, const char *key, bool random,
@@ -519,6 +538,8 @@ static void write_signals(maker *m) {
             if (gene->protein)
                 WRITE("      g%u.protein: 0.1\n", g);
         }
+        if (chance(m, 30))
+            WRITE("    responds_above: %u\n", 1 + pick(m, 4));
         if (chance(m, 50))
             WRITE("    background: 2\n");
         if (chance(m, 50))
@@ -542,12 +563,29 @@ static void write_setting(maker *m) {
     }
 }
 
+static void write_ramp_or_repeat(maker *m) {
+    if (chance(m, 50)) {
+        WRITE("  - from: %u\n    to: %u\n    ramp:\n      k%u: ", pick(m, 5), 6 + pick(m, 9),
+              pick(m, m->n_parameters));
+        write_number(m, 0.1, 2);
+        WRITE("\n    steps: %u\n", 1 + pick(m, 6));
+        return;
+    }
+    WRITE("  - every: %u\n    times: %u\n    do:\n      - at: %u\n        set:\n    ",
+          5 + pick(m, 3), 1 + pick(m, 3), pick(m, 3));
+    write_setting(m);
+}
+
 static void write_protocol(maker *m) {
     if (m->n_parameters == 0 || !chance(m, 50))
         return;
     const unsigned n = 1 + pick(m, 3);
     unsigned at = pick(m, 4);
     WRITE("protocol:\n");
+    if (chance(m, 25)) {
+        write_ramp_or_repeat(m);
+        return;
+    }
     for (unsigned i = 0; i < n && at <= UNTIL; i++, at += 1 + pick(m, 8)) {
         WRITE("  - at: %u%s\n    set:\n", at, chance(m, 30) ? ".25" : "");
         write_setting(m);
@@ -558,11 +596,15 @@ static void write_run(maker *m) {
     static const char *const everies[] = {"0.5", "1", "2", "0.1", "4"};
     WRITE("run:\n  cells: 3\n  seed: 1\n  until: %d\n  every: %s\n", (int)UNTIL,
           everies[pick(m, 5)]);
-    if (chance(m, 50)) {
+    if (m->n_genes > 0 && chance(m, 10)) {
+        WRITE("  settle: auto\n");
+    } else if (chance(m, 50)) {
         WRITE("  settle: ");
         write_number(m, 1, 15);
         WRITE("\n");
     }
+    if (chance(m, 20))
+        WRITE("  lags: %u\n", 4 * pick(m, 4));
     if (chance(m, 50))
         WRITE("  snapshots: [0, %u, 7.3, %d]\n", 1 + pick(m, 6), (int)UNTIL);
     if (chance(m, 40))
@@ -570,7 +612,8 @@ static void write_run(maker *m) {
               (int)UNTIL);
     if (m->n_species > 0 && chance(m, 20))
         WRITE("  record: [x0]\n");
-    WRITE("limits:\n  firings: 30000\n  pending: 3000\n");
+    WRITE("limits:\n  firings: 30000\n  pending: 3000\n%s",
+          chance(m, 10) ? "  memory: 1 GB\n" : "");
 }
 
 char *random_model(uint64_t number_of_model) {
@@ -584,6 +627,8 @@ char *random_model(uint64_t number_of_model) {
         WRITE("genes:\n");
     for (unsigned g = 0; g < m->n_genes; g++)
         write_gene(m, g);
+    if (m->n_genes > 0 && chance(m, 10))
+        write_like_genes(m);
     if (m->n_species > 0)
         WRITE("species:\n");
     for (unsigned s = 0; s < m->n_species; s++)

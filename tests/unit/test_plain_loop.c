@@ -70,21 +70,25 @@ END_TEST
 /* What the generator is there for: each of these words stands in one of the models at least. */
 START_TEST(random_models_say_everything) {
     static const char *const words[] = {
-        "copies",         "start: steady",  "start: s",  "start: {",      "bursts_in",
-        "lasts:",         "then:",          "initiates", "stages",        "half_life",
-        "decay",          "lifetime",       "protein",   "fixed",         "exponential",
-        "erlang",         "gamma",          "lognormal", "normal",        "uniform",
-        "weibull",        "edges",          "values",    "mix",           "total",
-        "uses",           "makes",          "needs",     "later",         "chance",
-        "if_short: skip", "if_short: stop", "geometric", "from: 1",       "poisson",
-        "propensity",     "bursts:",        "signals",   "ramp",          "sum:",
-        "varies:",        "{cv: ",          "noise",     "background",    "brightness",
-        "protocol",       "promoter: s",    "settle",    "snapshots",     "windows",
-        "record",         "hill",           "repress",   "no_overtaking", "headway",
+        "copies",         "start: steady",  "start: s",       "start: {",      "bursts_in",
+        "lasts:",         "then:",          "initiates",      "stages",        "half_life",
+        "decay",          "lifetime",       "protein",        "fixed",         "exponential",
+        "erlang",         "gamma",          "lognormal",      "normal",        "uniform",
+        "weibull",        "edges",          "values",         "mix",           "total",
+        "uses",           "makes",          "needs",          "later",         "chance",
+        "if_short: skip", "if_short: stop", "geometric",      "from: 1",       "poisson",
+        "propensity",     "bursts:",        "signals",        "ramp",          "sum:",
+        "varies:",        "{cv: ",          "noise",          "background",    "brightness",
+        "protocol",       "promoter: s",    "settle",         "snapshots",     "windows",
+        "record",         "hill",           "repress",        "no_overtaking", "headway",
+        "many: ",         "settle: auto",   "responds_above", "file: ",        "lags: ",
+        "memory: ",       "every: 5",       "times: ",        "steps: ",       "ramp:\n      k",
+        "clearance",      "lost: ",         "allele: ",       "from: [t0",     "share: 0.1",
+        "initiates: yes",
     };
     enum { N_WORDS = sizeof words / sizeof words[0] };
     int seen[N_WORDS] = {0};
-    for (uint64_t i = 0; i < 100; i++) {
+    for (uint64_t i = 0; i < 300; i++) {
         char *text = random_model(i);
         ck_assert_ptr_nonnull(text);
         for (size_t j = 0; j < N_WORDS; j++)
