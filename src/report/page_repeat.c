@@ -68,12 +68,32 @@ static void add_of_simulation(const tarry_page *page, tarry_text *command) {
     }
 }
 
+/* What is drawn: nothing that numbers depend on, but the same files come of it. */
+static void add_figures(const tarry_figure_options *figures, tarry_text *command) {
+    static const char *const words[] = {
+#define FIGURE_WORD(name, word) [TARRY_FIGURE_##name] = word,
+        TARRY_FIGURE_FORMATS(FIGURE_WORD)
+#undef FIGURE_WORD
+    };
+    tarry_text genes = {0};
+    if (figures->format != TARRY_FIGURE_SVG)
+        add_option(command, "--figures", words[figures->format]);
+    for (size_t i = 0; i < figures->n_genes; i++)
+        tarry_text_printf(&genes, "%s%s", i ? "," : "", figures->genes[i]);
+    command->failed = command->failed || genes.failed;
+    if (!command->failed && genes.size)
+        add_option(command, "--genes", genes.data);
+    tarry_text_release(&genes);
+}
+
 static void write_command(const tarry_page *page, tarry_text *command) {
     tarry_text_add_string(command, page->exact ? "tarry predict" : "tarry run");
     add_word(command, tarry_page_file(page));
     add_given(page, command);
     if (!page->exact)
         add_of_simulation(page, command);
+    if (page->provenance->figures)
+        add_figures(page->provenance->figures, command);
 }
 
 static void add_command(tarry_page *page) {

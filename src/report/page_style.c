@@ -24,6 +24,7 @@ const char tarry_page_style[] =
     "h3 small{font-weight:400;color:var(--quiet);font-size:.9rem}\n"
     "p,li,figcaption,dd{max-width:44rem}\n"
     "p{margin:.6rem 0}\n"
+    "p:empty{display:none}\n"
     "a{color:var(--link)}\n"
     ":focus-visible{outline:2px solid var(--link);outline-offset:2px}\n"
     ".run{color:var(--quiet)}\n"
@@ -88,6 +89,9 @@ const char tarry_page_style[] =
     "body{max-width:none;padding:0;font-size:10pt}nav,details{display:none}"
     ".scroll{overflow:visible}.tall{max-height:none}.scroll th{position:static!important}"
     "h2,h3{break-after:avoid}figure,tr,.warnings{break-inside:avoid}"
+    ".pictures{display:block;columns:2;column-gap:.6cm}figure{margin-bottom:.6cm}"
+    ".picture svg{max-height:20cm}"
+    "figcaption{font-size:8.5pt}table{font-size:8.5pt}h2{margin-top:1.2cm}"
     "pre{white-space:pre-wrap;overflow-wrap:anywhere}a{text-decoration:none}}\n";
 
 /* Heads of the table of all genes become buttons that sort it: numbers from the most to the least

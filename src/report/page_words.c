@@ -265,6 +265,7 @@ static void tell_product(const telling *t, const char *product, const char *word
     say(t, ". ");
 }
 
+/* A paragraph on its activity, one on its molecules; the caller opens and closes them. */
 void tarry_page_tell_gene(tarry_page *page, const tarry_table *table,
                           const tarry_quantities *quantities, const char *name, uint32_t window) {
     telling t = {.page = page,
@@ -275,6 +276,7 @@ void tarry_page_tell_gene(tarry_page *page, const tarry_table *table,
                  .window = window};
     t.of_alleles = t.gene && t.gene->n_copies > 1;
     tell_activity(&t);
+    tarry_html_put(page->text, "</p>\n<p class=\"told\">");
     tell_product(&t, "transcript", "finished transcripts");
     tell_product(&t, "protein", "proteins");
     if (!page->exact && tarry_results_n_cells(page->results) == 1)

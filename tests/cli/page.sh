@@ -98,6 +98,23 @@ interrupted() {
 }
 ok "the page of an interrupted run says so, and tells the command of what was done" interrupted
 
+short() {
+    run 0 run "$hostile" --cells 3 "$@"
+}
+without_pictures() {
+    short --figures none --out none && ! grep -q "<figure" none/report.html && says none/report.html "(--figures none)" &&
+        text '//*[@class="command"]/code' none/report.html | grep -q -- " --figures none$" &&
+        GNUPLOT=$work/none short --out missing && ! grep -q "<figure" missing/report.html &&
+        says missing/report.html "Figures could not be drawn"
+}
+ok "a page without pictures says why" without_pictures
+
+other_kinds() {
+    short --figures pdf --out pdf && [ "$(grep -c "<figure" pdf/report.html)" = "$(find pdf/figures -name '*.pdf' | wc -l)" ] &&
+        grep -q "<svg" pdf/report.html
+}
+ok "the page has its pictures also where the folder has others" other_kinds
+
 # ---- in a browser: not again with sanitizers, which it has nothing to do with
 
 find_browser() {

@@ -171,7 +171,7 @@ START_TEST(test_bursting_gene) {
                "silent: they end without a transcript being started. Between bursts it is off for "
                "25.0" NBSP "min (24.0 to 26.0) on average; it is on 10.0" NBSP "% (8.8 to 11.2) of "
                "the time. All in all each allele starts 30.0" NBSP "transcripts an hour (24.0 to "
-               "36.0). A cell holds 62.0" NBSP "finished transcripts (61.0 to 63.0) on average, "
+               "36.0). \nA cell holds 62.0" NBSP "finished transcripts (61.0 to 63.0) on average, "
                "with a Fano factor of 13.0 (12.0 to 14.0), more than the 1 of a Poisson law; their "
                "number stays correlated for about 47.0" NBSP "min (44.0 to 50.0). ");
     ck_assert_ptr_null(strstr(page, "rest on"));
@@ -220,7 +220,7 @@ START_TEST(test_missing_figures) {
                      "interval of bursts. No transcript is started. ");
     check_says(page, "rigel is always on: every state of its promoter initiates, so that one burst "
                      "cannot be told from the next and numbers on bursts are left out. All in all "
-                     "it starts 2.00" NBSP "transcripts a minute (1.90 to 2.10). A cell holds "
+                     "it starts 2.00" NBSP "transcripts a minute (1.90 to 2.10). \nA cell holds "
                      "20.0" NBSP "finished transcripts (19.0 to 21.0) on average, with a Fano "
                      "factor of 1.01 (0.91 to 1.11), not told apart from the 1 of a Poisson law. ");
     check_says(page, "pulse begins 3.00" NBSP "times a minute (2.90 to 3.10) on average and holds "
