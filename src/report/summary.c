@@ -182,16 +182,36 @@ static json_t *describe_figures(const tarry_table *table, const tarry_groups *gr
     return windows;
 }
 
+/* A run of very many genes has its figures in its CSV files; here stand the first of them, and how
+ * many do not. */
+enum { MOST_NAMES = 1000 };
+
+static void tell_left_out(json_writer *writer, const char *name, size_t n, const char *file) {
+    if (n <= MOST_NAMES)
+        return;
+    bool failed = false;
+    json_t *object = json_object();
+    tarry_json_put(object, "names", json_integer((json_int_t)(n - MOST_NAMES)), &failed);
+    tarry_json_put(object, "stand_in", json_string(file), &failed);
+    if (failed) {
+        json_decref(object);
+        object = NULL;
+    }
+    member(writer, name, object);
+}
+
 static int write_figures(json_writer *writer, const char *name, const char *column,
-                         const tarry_table *table, tarry_error *error) {
+                         const char *left_out, const char *file, const tarry_table *table,
+                         tarry_error *error) {
     tarry_groups groups = {0};
     const int status = tarry_groups_init(&groups, table, column, error);
     if (!status) {
         key(writer, name);
         json_writer inner = begin(writer->text, writer->depth + 1);
-        for (size_t g = 0; g < groups.n; g++)
+        for (size_t g = 0; g < groups.n && g < MOST_NAMES; g++)
             member(&inner, groups.names[g], describe_figures(table, &groups, g));
         end(&inner);
+        tell_left_out(writer, left_out, groups.n, file);
     }
     tarry_groups_release(&groups);
     return status;
@@ -220,13 +240,17 @@ static int write_species(json_writer *writer, const tarry_model *model,
     if (!status) {
         key(writer, "species");
         json_writer inner = begin(writer->text, writer->depth + 1);
+        size_t n = 0;
         for (size_t i = 0, j; i < snapshots.n; i = j) {
             for (j = i; j < snapshots.n && snapshots.items[j].name == snapshots.items[i].name; j++)
                 ;
+            if (n++ >= MOST_NAMES)
+                continue;
             member(&inner, snapshots.items[i].name,
                    describe_snapshots(means, snapshots.items + i, j - i));
         }
         end(&inner);
+        tell_left_out(writer, "species_left_out", n, "means.csv");
     }
     tarry_snapshots_release(&snapshots);
     return status;
@@ -333,10 +357,10 @@ int tarry_summary_write(const tarry_model *model, const tarry_results *results,
                         size_t n_files, tarry_text *text, tarry_error *error) {
     json_writer writer = begin(text, 1);
     write_head(&writer, model, results, provenance);
-    int status = write_figures(&writer, "genes", "gene",
+    int status = write_figures(&writer, "genes", "gene", "genes_left_out", "bursts.csv",
                                tarry_results_table(results, TARRY_TABLE_bursts), error);
     if (!status)
-        status = write_figures(&writer, "signals", "signal",
+        status = write_figures(&writer, "signals", "signal", "signals_left_out", "signals.csv",
                                tarry_results_table(results, TARRY_TABLE_signals), error);
     if (!status)
         status = write_species(&writer, model, results, error);

@@ -56,20 +56,23 @@ static bool is_far(const tarry_distance *d) {
 /* One gene's products, items[0 .. n), some of them far off: the one that is furthest off is named.
  */
 static int note_gene(const tarry_network *network, const tarry_distance *items, size_t n,
-                     size_t n_far, tarry_notes *notes, tarry_error *error) {
+                     size_t n_far, size_t n_like, tarry_notes *notes, tarry_error *error) {
     const tarry_distance *worst = items;
     for (size_t i = 1; i < n; i++)
         if (is_far(&items[i]) &&
             (!is_far(worst) || fabs(items[i].relative) > fabs(worst->relative)))
             worst = &items[i];
-    char number[TARRY_NUMBER_SIZE], others[64] = "";
+    char number[TARRY_NUMBER_SIZE], others[64] = "", like[64] = "";
     tarry_number_short(100 * fabs(worst->relative), 2, number);
     if (n_far > 1)
         snprintf(others, sizeof others, ", the furthest off of %zu products of its gene", n_far);
-    return tarry_notes_add(notes, network->species[worst->species].place, error,
-                           "when the record begins the mean of '%s' is %s %% %s its steady mean%s",
-                           network->species[worst->species].name, number,
-                           worst->relative < 0 ? "below" : "above", others);
+    if (n_like > 0)
+        snprintf(like, sizeof like, "; the same holds of %zu genes that follow it", n_like);
+    return tarry_notes_add(
+        notes, network->species[worst->species].place, error,
+        "when the record begins the mean of '%s' is %s %% %s its steady mean%s%s",
+        network->species[worst->species].name, number, worst->relative < 0 ? "below" : "above",
+        others, like);
 }
 
 /* How long to settle, where that takes little to find out. */
@@ -95,17 +98,40 @@ static int note_remedy(const tarry_network *network, const tarry_distances *dist
                            n_unknown > 0 ? " that can be worked out" : "");
 }
 
+/* The end of the gene whose items begin at `from`. */
+static size_t end_of_gene(const tarry_distances *d, size_t from) {
+    size_t to = from;
+    while (to < d->n && d->items[to].gene == d->items[from].gene)
+        to++;
+    return to;
+}
+
+/* The next gene, from `to` on, is as far off in each of its products as the one before. */
+static bool goes_on(const tarry_distances *d, size_t from, size_t to) {
+    const size_t n = to - from;
+    if (to == d->n || end_of_gene(d, to) - to != n)
+        return false;
+    for (size_t i = 0; i < n; i++)
+        if (d->items[from + i].why != NULL || d->items[to + i].why != NULL ||
+            !(d->items[from + i].relative == d->items[to + i].relative))
+            return false;
+    return true;
+}
+
 static int note_far(const tarry_network *network, const tarry_distances *distances,
                     tarry_notes *notes, tarry_error *error) {
     size_t n_genes = 0, from = 0;
     int code = 0;
     while (from < distances->n && !code) {
-        size_t to = from, n_far = 0;
-        for (; to < distances->n && distances->items[to].gene == distances->items[from].gene; to++)
-            n_far += is_far(&distances->items[to]);
+        const size_t first = from, n = end_of_gene(distances, from) - from;
+        size_t n_far = 0, n_like = 0;
+        for (size_t i = 0; i < n; i++)
+            n_far += is_far(&distances->items[first + i]);
+        for (; goes_on(distances, from, from + n); from += n)
+            n_like++;
+        from += n;
         if (n_far > 0 && n_genes++ < MOST_TOLD)
-            code = note_gene(network, distances->items + from, to - from, n_far, notes, error);
-        from = to;
+            code = note_gene(network, distances->items + first, n, n_far, n_like, notes, error);
     }
     if (!code && n_genes > MOST_TOLD)
         code = tarry_notes_add(notes, (tarry_place){0}, error,

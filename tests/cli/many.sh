@@ -43,4 +43,24 @@ few_lines() {
         grep -q "Spread over 2000 genes" out && grep -q "^vela_2000,all,burst_frequency" crowd.out/bursts.csv
 }
 ok "two thousand genes: few lines on the terminal, all in the files" few_lines
+
+# Above 1,000 names summary.json points to the files.
+bounded() {
+    grep -q '"genes_left_out": {"names": 1000, "stand_in": "bursts.csv"}' crowd.out/summary.json &&
+        ! grep -q '"vela_1001": {' crowd.out/summary.json &&
+        [ "$(wc -c <crowd.out/summary.json)" -lt 6000000 ] &&
+        [ "$(wc -c <crowd.out/report.html)" -lt 1500000 ]
+}
+ok "two thousand genes: summary.json and the page stay small" bounded
+
+# Ten thousand genes are read, checked and run in 1 GB (sanitizers take address space of their own).
+gene vela 10000 | sed 's/copies: 2/copies: 1/' | model throng 10
+in_bounds() {
+    (
+        [ -n "${TARRY_TEST_SMALL:-}" ] || ulimit -v 1000000
+        run 0 check throng.yaml &&
+            run 0 run throng.yaml --until 5 --every 1 --out throng.out --figures none --quiet
+    ) && [ "$(wc -l <out)" -lt 80 ]
+}
+ok "ten thousand genes in 1 GB" in_bounds
 finish
