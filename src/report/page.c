@@ -24,14 +24,27 @@ bool tarry_page_shows(const tarry_page *page, const tarry_groups *groups, const 
            tarry_page_has_picture(page, genes ? name : NULL, genes ? NULL : name);
 }
 
-bool tarry_page_shows_of(const tarry_page *page, const char *name) {
-    char owner[256];
+/* The gene whose name is the first n bytes, or NULL. Names come in the order of genes: the search
+ * goes on from the last one found. */
+static const tarry_gene *find_owner(tarry_page *page, const char *name, size_t n) {
+    const tarry_network *network = page->network;
+    for (uint32_t i = 0; i < network->n_genes; i++) {
+        const uint32_t at = (page->owner + i) % network->n_genes;
+        const char *gene = network->genes[at].name;
+        if (!strncmp(gene, name, n) && !gene[n]) {
+            page->owner = at;
+            return &network->genes[at];
+        }
+    }
+    return NULL;
+}
+
+bool tarry_page_shows_of(tarry_page *page, const char *name) {
     const size_t n = strcspn(name, ". ");
-    if (page->genes.n <= TARRY_PAGE_GENES || !name[n] || n >= sizeof owner)
+    if (page->genes.n <= TARRY_PAGE_GENES || !name[n])
         return true;
-    memcpy(owner, name, n);
-    owner[n] = '\0';
-    return !tarry_network_gene(page->network, owner) || tarry_page_shows(page, &page->genes, owner);
+    const tarry_gene *owner = find_owner(page, name, n);
+    return !owner || tarry_page_shows(page, &page->genes, owner->name);
 }
 
 /* ---- top ------------------------------------------------------------------------------------ */

@@ -28,6 +28,7 @@ typedef struct tarry_page {
     tarry_groups genes, signals; /* rows of `bursts` and `signals` */
     bool exact;                  /* predicted: there are no cells and no intervals */
     bool marked;                 /* a figure carries the star of those that rest on few periods */
+    uint32_t owner;              /* the gene that a name was of last */
 } tarry_page;
 
 /* A number and its interval as the tables have them; NaN where there is none. */
@@ -41,7 +42,7 @@ bool tarry_page_shows(const tarry_page *page, const tarry_groups *groups, const 
 
 /* The same for a species or first response by its name: whether it is of a gene that has one, or of
  * no gene. */
-bool tarry_page_shows_of(const tarry_page *page, const char *name);
+bool tarry_page_shows_of(tarry_page *page, const char *name);
 
 /* Whether a gene or signal (one of them is NULL) has a picture. */
 bool tarry_page_has_picture(const tarry_page *page, const char *gene, const char *signal);

@@ -71,7 +71,7 @@ static void add_of_simulation(const tarry_page *page, tarry_text *command) {
 /* What is drawn: nothing that numbers depend on, but the same files come of it. */
 static void add_figures(const tarry_figure_options *figures, tarry_text *command) {
     static const char *const words[] = {
-#define FIGURE_WORD(name, word) [TARRY_FIGURE_##name] = word,
+#define FIGURE_WORD(name, word) [TARRY_FIGURE_##name] = (word),
         TARRY_FIGURE_FORMATS(FIGURE_WORD)
 #undef FIGURE_WORD
     };

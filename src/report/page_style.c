@@ -128,8 +128,10 @@ const char tarry_page_script[] =
     "  });\n"
     "});\n";
 
+enum { HASH_SIZE = BASE64_ENCODE_RAW_LENGTH(32) };
+
 /* SHA-256 of the script in base64, as the policy wants it. */
-static void hash_script(char out[BASE64_ENCODE_RAW_LENGTH(32) + 1]) {
+static void hash_script(char out[HASH_SIZE + 1]) {
     static const char digits[] = "0123456789abcdef";
     char hex[TARRY_SHA256_TEXT];
     uint8_t bytes[32];
@@ -138,12 +140,12 @@ static void hash_script(char out[BASE64_ENCODE_RAW_LENGTH(32) + 1]) {
         bytes[i] = (uint8_t)((strchr(digits, hex[2 * i]) - digits) * 16 +
                              (strchr(digits, hex[2 * i + 1]) - digits));
     base64_encode_raw(out, sizeof bytes, bytes);
-    out[BASE64_ENCODE_RAW_LENGTH(32)] = '\0';
+    out[HASH_SIZE] = '\0';
 }
 
 /* The browser fetches nothing whatever stands in the page, and runs that script at most. */
 void tarry_page_policy(bool with_script, tarry_text *text) {
-    char hash[BASE64_ENCODE_RAW_LENGTH(32) + 1];
+    char hash[HASH_SIZE + 1];
     hash_script(hash);
     tarry_text_add_string(text, "default-src 'none'; style-src 'unsafe-inline'");
     if (with_script)

@@ -292,8 +292,12 @@ START_TEST(test_frame) {
 END_TEST
 
 /* A thousand genes: one line each, and no sections but for the one that is asked for. */
+/* Lags are told of genes that have a section, and of what is no gene. */
 START_TEST(test_thousand_genes) {
     tarry_model model;
+    static char names[1000][24];
+    static tarry_gene genes[1000];
+    static const char *const lags[] = {"vela_7.nascent", "vela_8.nascent", "lock.later"};
     tarry_results *results = new_results();
     tarry_provenance named = provenance;
     const char *const wanted[] = {"vela_7"};
@@ -303,13 +307,21 @@ START_TEST(test_thousand_genes) {
     fill_model(&model, 1);
     named.figures = &options;
     for (int i = 1; i <= 1000; i++) {
-        char name[16];
-        snprintf(name, sizeof name, "vela_%d", i);
+        char *name = names[i - 1];
+        snprintf(name, sizeof *names, "vela_%d", i);
+        genes[i - 1] = (tarry_gene){
+            .name = name, .n_copies = 1, .promoters = {0, 1}, .tells = true};
         add(results, name, "all", "burst_frequency", "/min per allele", i, 0.5, 200);
         add(results, name, "all", "burst_size_mean", "initiations", 17, 1, 200);
         add(results, name, "all", "silent_fraction", "1", 0.05, 0.01, 200);
         add(results, name, "all", "transcript_mean", "molecules per cell", 62, 1, 200);
     }
+    model.network.n_genes = 1000;
+    model.network.genes = genes;
+    for (size_t i = 0; i < sizeof lags / sizeof *lags; i++)
+        ck_assert_int_eq(tarry_table_add(results->tables[TARRY_TABLE_transit], NULL, lags[i], "",
+                                         "all", 1.0, 2.0, 3.0, 4.0, 0.0),
+                         0);
     char *page = write_page(&model, results, &named, &none);
     ck_assert_uint_lt(strlen(page), 1000000);
     check_says(page, "<summary>All 1000 genes, a line each</summary>");
@@ -319,6 +331,9 @@ START_TEST(test_thousand_genes) {
     check_says(page, "<section id=\"gene-vela_7\">");
     check_says(page, "; script-src 'sha256-");
     ck_assert_ptr_null(strstr(page, "<section id=\"gene-vela_8\">"));
+    check_says(page, "<th scope=\"row\">vela_7.nascent</th>");
+    check_says(page, "<th scope=\"row\">lock.later</th>");
+    ck_assert_ptr_null(strstr(page, "vela_8.nascent"));
     free(page);
     tarry_results_free(results);
 }
@@ -332,7 +347,7 @@ START_TEST(test_faults_of_page) {
         tarry_results *results = new_results();
         add_vela(results, "before", 0.01, 12);
         for (int i = 0; many && i < 30; i++) {
-            char name[16];
+            char name[24];
             snprintf(name, sizeof name, "vela_%d", i);
             add(results, name, "after", "burst_frequency", "/min per allele", i, 0.5, 200);
         }
