@@ -13,7 +13,7 @@ INSTALL ?= install
 
 WARNINGS = -Wall -Wextra -Wshadow -Wconversion -Wstrict-prototypes
 STANDARD = -std=c11 -D_POSIX_C_SOURCE=200809L $(WARNINGS) -ffp-contract=off -fopenmp
-ALL_CFLAGS = $(STANDARD) -Iinclude -Isrc -Itests/unit $(CFLAGS)
+ALL_CFLAGS = $(STANDARD) -Iinclude -Isrc -Itests/unit -Itests/fuzz $(CFLAGS)
 LIBS = -lgsl -lgslcblas -lyaml -ljansson -lnettle -lm
 
 # Calls that tests make fail on purpose (tests/unit/faults.h).
@@ -27,7 +27,7 @@ SLOW_SOURCES = $(sort $(wildcard tests/*/slow_*.c))
 BENCH_SOURCES = $(sort $(wildcard tests/bench/*.c))
 EXAMPLE_SOURCES = $(wildcard tests/unit/example.c)
 SUPPORT_SOURCES = $(sort $(filter-out $(TEST_SOURCES) $(SLOW_SOURCES) $(EXAMPLE_SOURCES),\
-                    $(wildcard tests/unit/*.c tests/against/*.c)))
+                    $(wildcard tests/unit/*.c tests/against/*.c tests/fuzz/fuzz*.c)))
 
 LIB_OBJECTS = $(LIB_SOURCES:%.c=$(BUILD)/%.o)
 CLI_OBJECTS = $(CLI_SOURCES:%.c=$(BUILD)/%.o) $(BUILD)/demo_model.o
@@ -135,6 +135,21 @@ coverage: deps-test
 	@$(MAKE) --no-print-directory -j$(JOBS) $(BUILD)/tests/against/slow_coverage
 	@$(BUILD)/tests/against/slow_coverage
 
+
+# Fuzzing: the library anew with what libFuzzer needs, in a folder of its own. FUZZ_FLAGS say what to look for.
+FUZZ_TARGETS = model expression quantity table
+FUZZ_FLAGS = -fsanitize=address,undefined -fno-sanitize-recover=all
+SECONDS ?= 60
+
+fuzz: deps-dev
+	@$(MAKE) --no-print-directory -s -j$(JOBS) BUILD=$(BUILD)-fuzz CC=clang \
+	  CFLAGS='-O1 -g -fsanitize=fuzzer-no-link $(FUZZ_FLAGS)' $(FUZZ_TARGETS:%=$(BUILD)-fuzz/fuzz_%)
+	@sh tests/fuzz/run.sh $(BUILD)-fuzz $(SECONDS) $(FUZZ_TARGETS)
+
+FUZZ_OBJECTS = $(patsubst %.c,$(BUILD)/%.o,$(wildcard tests/fuzz/fuzz*.c))
+$(FUZZ_TARGETS:%=$(BUILD)/fuzz_%): $(BUILD)/fuzz_%: tests/fuzz/entry.c $(FUZZ_OBJECTS) $(BUILD)/libtarry.a
+	$(CC) $(ALL_CFLAGS) -DFUZZ_TARGET=fuzz_$* -fsanitize=fuzzer $(LDFLAGS) -o $@ $^ $(LIBS)
+
 lint: deps-dev
 	@MAKE='$(MAKE)' BUILD='$(BUILD)' JOBS='$(JOBS)' sh tests/lint.sh
 
@@ -164,11 +179,11 @@ install: all
 	$(INSTALL) -m 644 $(wildcard models/*.*) $(DESTDIR)$(PREFIX)/share/tarry/models
 
 clean:
-	rm -rf $(BUILD) $(BUILD)-asan $(BUILD)-lint-gcc $(BUILD)-lint-clang $(BUILD)-tsan
+	rm -rf $(BUILD) $(BUILD)-asan $(BUILD)-fuzz $(BUILD)-lint-gcc $(BUILD)-lint-clang $(BUILD)-tsan
 
 FORCE:
 .PHONY: all tests tests-slow everything list-tests list-tests-slow deps deps-test deps-dev demo test \
-  test-slow coverage lint tsan memcheck instructions bench format install clean FORCE
+  test-slow coverage fuzz lint tsan memcheck instructions bench format install clean FORCE
 .SECONDARY:
 .DELETE_ON_ERROR:
 -include $(LIB_OBJECTS:.o=.d) $(CLI_OBJECTS:.o=.d) $(SUPPORT_OBJECTS:.o=.d) $(BENCH_OBJECTS:.o=.d) \

@@ -208,6 +208,8 @@ static int read_start_weights(tarry_gene_work *work, const tarry_node *map, doub
         if (code == 0 && !(weight >= 0))
             code = tarry_fail_number(error, entry->node->place, "a weight must be 0 or more, not ",
                                      weight, "");
+        if (code != 0)
+            return code;
         weights[state] = weight;
         sum += weight;
     }

@@ -34,7 +34,7 @@ static int tell_figures(tarry_prediction *p, const tarry_gene *gene, const char 
     char room[64];
     int code = 0;
     figures_of(b, figures);
-    for (int i = 0; code == 0 && i < TARRY_N_BURST_QUANTITIES; i++)
+    for (tarry_burst_quantity i = 0; code == 0 && i < TARRY_N_BURST_QUANTITIES; i++)
         code = tarry_table_add(p->results->tables[TARRY_TABLE_bursts], error, gene->name, window,
                                tarry_burst_quantity_name(i),
                                tarry_burst_quantity_unit(p->network, gene, i, room), figures[i],

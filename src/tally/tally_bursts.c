@@ -309,7 +309,7 @@ static void estimate_shares(const tarry_tally_set *set, const tarry_tally_kind *
 static int add_rows(const tarry_network *network, const burst_row *row, tarry_table *table,
                     tarry_error *error) {
     int code = TARRY_OK;
-    for (int i = 0; !code && i < TARRY_N_BURST_QUANTITIES; i++) {
+    for (tarry_burst_quantity i = 0; !code && i < TARRY_N_BURST_QUANTITIES; i++) {
         if (!row->gene->tells && i != TARRY_initiation_rate)
             continue;
         const tarry_estimate *estimate = &row->estimates[i];
@@ -331,7 +331,7 @@ static bool rests_on_periods(int quantity) {
 }
 
 static void list_few(const burst_row *row, tarry_text *text) {
-    for (int i = 0; i < TARRY_N_BURST_QUANTITIES; i++)
+    for (tarry_burst_quantity i = 0; i < TARRY_N_BURST_QUANTITIES; i++)
         if (rests_on_periods(i) && row->samples[i] < FEW_PERIODS)
             tarry_text_printf(text, "%s%s (%.0f)", text->size > 0 ? ", " : "",
                               tarry_burst_quantity_name(i), row->samples[i]);

@@ -57,6 +57,8 @@ ok "two thousand genes: summary.json and the page stay small" bounded
 gene vela 10000 | sed 's/copies: 2/copies: 1/' | model throng 10
 in_bounds() {
     (
+        # -v is no part of the standard, but of every shell that is /bin/sh somewhere.
+        # shellcheck disable=SC3045
         [ -n "${TARRY_TEST_SMALL:-}" ] || ulimit -v 1000000
         run 0 check throng.yaml &&
             run 0 run throng.yaml --until 5 --every 1 --out throng.out --figures none --quiet
