@@ -61,6 +61,8 @@ step_rules() {
         none "OpenMP reductions (their order, and so the last bit, would vary)" || status=1
     pick '\.(c|h|sh|awk|md)$|^Makefile$' | xargs grep -nE '\b(TO[D]O|FIX[M]E)\b' |
         none "unfinished work" || status=1
+    pick "$sources" | xargs grep -nE '\bgsl_(matrix_c?alloc|vector_c?alloc|linalg_LU_decomp|linalg_exponential_ss) *\(' |
+        none "functions of GSL that do not survive a lack of memory (base/matrix has others)" || status=1
     # What follows a point is the locale's, but %.0f has none. The program sets no locale.
     pick "$sources" | grep -vE '^src/(base/number\.c|cli/.*)$' |
         xargs grep -nE '"[^"]*%[-+ #0-9]*(\.[0-9*]*)?l?([eEgGaA]|[fF])' | sed 's/%%//g; s/%\.0f//g' |

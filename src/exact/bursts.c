@@ -3,9 +3,9 @@
 #include "exact/chain.h"
 
 #include "base/error.h"
+#include "base/matrix.h"
 #include "base/memory.h"
 
-#include <gsl/gsl_linalg.h>
 #include <gsl/gsl_math.h>
 #include <math.h>
 #include <stdlib.h>
@@ -35,19 +35,15 @@ static double rate(const finder *f, size_t i, size_t j) {
 
 /* x (-moves) = b, in place of b; or (-moves) x = b where `columns`. */
 static int solve(size_t n, const double *moves, bool columns, double *b, tarry_error *error) {
-    gsl_matrix *a = gsl_matrix_alloc(n, n);
-    gsl_permutation *p = gsl_permutation_alloc(n);
-    gsl_vector_view view = gsl_vector_view_array(b, n);
-    int sign = 0, code = 0;
-    if (a == NULL || p == NULL)
+    gsl_matrix *a = tarry_matrix_new(n, n);
+    int code = 0;
+    if (a == NULL)
         code = tarry_fail_memory(error, "the bursts of a gene");
     for (size_t i = 0; code == 0 && i < n; i++)
         for (size_t j = 0; j < n; j++)
             gsl_matrix_set(a, columns ? i : j, columns ? j : i, -moves[i * n + j]);
-    if (code == 0 &&
-        (gsl_linalg_LU_decomp(a, p, &sign) != 0 || gsl_linalg_LU_svx(a, p, &view.vector) != 0))
+    if (code == 0 && tarry_matrix_solve(a, b))
         code = tarry_fail(error, TARRY_NUMERIC, "a promoter's periods cannot be solved");
-    gsl_permutation_free(p);
     gsl_matrix_free(a);
     return code;
 }
@@ -78,23 +74,26 @@ static int find_moments(const finder *f, tarry_exact_dwell *d) {
 static int average_states(finder *f, double from, double to) {
     const size_t n = f->n;
     const double length = to - from;
-    gsl_matrix *a = gsl_matrix_calloc(2 * n, 2 * n), *e = gsl_matrix_calloc(2 * n, 2 * n);
+    gsl_matrix *a = tarry_matrix_new(2 * n, 2 * n), *e = tarry_matrix_new(2 * n, 2 * n);
+    gsl_matrix *work = tarry_matrix_new(2 * n, 2 * n);
     double *p = tarry_arena_calloc(f->arena, n, sizeof *p);
     f->mean_state = tarry_arena_calloc(f->arena, n, sizeof *f->mean_state);
-    int code = !a || !e || !p || !f->mean_state ? no_memory(f)
-                                                : tarry_exact_states(f->gene, from, p, f->error);
+    int code = !a || !e || !work || !p || !f->mean_state
+                   ? no_memory(f)
+                   : tarry_exact_states(f->gene, from, p, f->error);
     for (size_t i = 0; code == 0 && i < n; i++) {
         for (size_t j = 0; j < n; j++)
             gsl_matrix_set(a, i, j, length * rate(f, i, j));
         gsl_matrix_set(a, i, n + i, 1);
     }
-    if (code == 0 && gsl_linalg_exponential_ss(a, e, GSL_PREC_DOUBLE) != 0)
+    if (code == 0 && tarry_matrix_exponential(a, 1, e, work))
         code = tarry_fail(f->error, TARRY_NUMERIC, "the exponential of a generator failed");
     for (size_t j = 0; code == 0 && j < n; j++)
         for (size_t i = 0; i < n; i++)
             f->mean_state[j] += p[i] * gsl_matrix_get(e, i, n + j);
     gsl_matrix_free(a);
     gsl_matrix_free(e);
+    gsl_matrix_free(work);
     return code;
 }
 
@@ -332,17 +331,19 @@ int tarry_exact_bursts_read(const tarry_exact_gene *gene, double from, double to
 int tarry_exact_dwell_survival(const tarry_exact_dwell *dwell, double t, double *survival,
                                tarry_error *error) {
     const size_t n = dwell->n;
-    gsl_matrix *a = gsl_matrix_alloc(n, n), *e = gsl_matrix_calloc(n, n);
-    int code = a == NULL || e == NULL ? tarry_fail_memory(error, "a dwell") : 0;
+    gsl_matrix *a = tarry_matrix_new(n, n), *e = tarry_matrix_new(n, n);
+    gsl_matrix *work = tarry_matrix_new(n, n);
+    int code = a == NULL || e == NULL || work == NULL ? tarry_fail_memory(error, "a dwell") : 0;
     *survival = 0;
     for (size_t i = 0; code == 0 && i < n * n; i++)
         a->data[i] = dwell->moves[i] * t;
-    if (code == 0 && gsl_linalg_exponential_ss(a, e, GSL_PREC_DOUBLE) != 0)
+    if (code == 0 && tarry_matrix_exponential(a, 1, e, work))
         code = tarry_fail(error, TARRY_NUMERIC, "the exponential of a generator failed");
     for (size_t i = 0; code == 0 && i < n; i++)
         for (size_t j = 0; j < n; j++)
             *survival += dwell->entry[i] * gsl_matrix_get(e, i, j);
     gsl_matrix_free(a);
     gsl_matrix_free(e);
+    gsl_matrix_free(work);
     return code;
 }

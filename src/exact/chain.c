@@ -1,21 +1,22 @@
 #include "exact/chain.h"
 
 #include "base/error.h"
+#include "base/matrix.h"
 #include "base/memory.h"
 
-#include <gsl/gsl_linalg.h>
 #include <math.h>
 #include <stdlib.h>
 #include <string.h>
 
 typedef struct workspace {
-    gsl_matrix *generator, *exponential;
+    gsl_matrix *generator, *exponential, *room;
     double *next;
 } workspace;
 
 static void release(workspace *w) {
     gsl_matrix_free(w->generator);
     gsl_matrix_free(w->exponential);
+    gsl_matrix_free(w->room);
     free(w->next);
 }
 
@@ -24,8 +25,7 @@ static int move_on(const tarry_exact_gene *gene, size_t regime, double length, d
                    workspace *w, tarry_error *error) {
     const size_t n = gene->n_states;
     tarry_exact_generator(gene, regime, w->generator->data);
-    gsl_matrix_scale(w->generator, length);
-    if (gsl_linalg_exponential_ss(w->generator, w->exponential, GSL_PREC_DOUBLE) != 0)
+    if (tarry_matrix_exponential(w->generator, length, w->exponential, w->room))
         return tarry_fail(error, TARRY_NUMERIC, "the exponential of a generator failed");
     double sum = 0;
     for (size_t j = 0; j < n; j++) {
@@ -43,9 +43,10 @@ static int move_on(const tarry_exact_gene *gene, size_t regime, double length, d
 
 int tarry_exact_states(const tarry_exact_gene *gene, double time, double *p, tarry_error *error) {
     const size_t n = gene->n_states;
-    workspace w = {gsl_matrix_calloc(n, n), gsl_matrix_calloc(n, n), tarry_calloc(n, sizeof *p)};
+    workspace w = {tarry_matrix_new(n, n), tarry_matrix_new(n, n), tarry_matrix_new(n, n),
+                   tarry_calloc(n, sizeof *p)};
     int code = 0;
-    if (w.generator == NULL || w.exponential == NULL || w.next == NULL)
+    if (w.generator == NULL || w.exponential == NULL || w.room == NULL || w.next == NULL)
         code = tarry_fail_memory(error, "the states of a promoter");
     memcpy(p, gene->start, n * sizeof *p);
     for (size_t i = 0; code == 0 && i < gene->n_regimes && gene->regimes[i].from < time; i++) {

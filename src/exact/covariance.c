@@ -4,9 +4,9 @@
 #include "exact/delayed.h"
 
 #include "base/error.h"
+#include "base/matrix.h"
 #include "base/memory.h"
 
-#include <gsl/gsl_linalg.h>
 #include <math.h>
 #include <stdlib.h>
 
@@ -53,7 +53,7 @@ static int check_steady(const tarry_exact_gene *gene, double from, double to, do
 
 typedef struct pulse_work {
     size_t n;
-    gsl_matrix *generator, *scaled, *exponential;
+    gsl_matrix *generator, *exponential, *room;
     double *before; /* pi jump */
     double *after;  /* jump 1 */
     double square;  /* mean rate squared */
@@ -62,16 +62,14 @@ typedef struct pulse_work {
 
 static void release_pulse(pulse_work *w) {
     gsl_matrix_free(w->generator);
-    gsl_matrix_free(w->scaled);
+    gsl_matrix_free(w->room);
     gsl_matrix_free(w->exponential);
 }
 
 static double pulse_at(void *context, double h) {
     pulse_work *w = context;
     double sum = 0;
-    gsl_matrix_memcpy(w->scaled, w->generator);
-    gsl_matrix_scale(w->scaled, h);
-    if (gsl_linalg_exponential_ss(w->scaled, w->exponential, GSL_PREC_DOUBLE) != 0)
+    if (tarry_matrix_exponential(w->generator, h, w->exponential, w->room))
         return NAN;
     for (size_t i = 0; i < w->n; i++)
         for (size_t j = 0; j < w->n; j++)
@@ -84,12 +82,12 @@ static int start_pulse(const tarry_exact_gene *gene, size_t regime, const double
     const size_t n = gene->n_states;
     const double *jump = gene->regimes[regime].jump;
     *w = (pulse_work){.n = n,
-                      .generator = gsl_matrix_alloc(n, n),
-                      .scaled = gsl_matrix_alloc(n, n),
-                      .exponential = gsl_matrix_alloc(n, n),
+                      .generator = tarry_matrix_new(n, n),
+                      .room = tarry_matrix_new(n, n),
+                      .exponential = tarry_matrix_new(n, n),
                       .before = tarry_arena_calloc(arena, n, sizeof(double)),
                       .after = tarry_arena_calloc(arena, n, sizeof(double))};
-    if (!w->generator || !w->scaled || !w->exponential || !w->before || !w->after)
+    if (!w->generator || !w->room || !w->exponential || !w->before || !w->after)
         return tarry_fail_memory(error, "the initiations of a promoter");
     tarry_exact_generator(gene, regime, w->generator->data);
     *rate = 0;

@@ -1,8 +1,8 @@
 #include "exact/phases.h"
 
 #include "base/error.h"
+#include "base/matrix.h"
 
-#include <gsl/gsl_linalg.h>
 #include <math.h>
 #include <string.h>
 
@@ -77,12 +77,10 @@ static size_t fill(const tarry_law *law, tarry_phases *phases, size_t at, double
 /* Time spent in each phase in the mean, from x (diag(out) - moves) = entry, made to add up to 1. */
 static int meet(tarry_phases *phases, tarry_error *error) {
     const size_t n = phases->n;
-    gsl_matrix *a = gsl_matrix_calloc(n, n);
-    gsl_permutation *p = gsl_permutation_alloc(n);
-    gsl_vector_view met = gsl_vector_view_array(phases->met, n);
-    int sign = 0, status = 0;
+    gsl_matrix *a = tarry_matrix_new(n, n);
+    int status = 0;
     double sum = 0;
-    if (a == NULL || p == NULL)
+    if (a == NULL)
         status = tarry_fail_memory(error, "the phases of a delay");
     for (size_t i = 0; status == 0 && i < n; i++) {
         double out = phases->exit[i];
@@ -93,14 +91,12 @@ static int meet(tarry_phases *phases, tarry_error *error) {
         gsl_matrix_set(a, i, i, out);
         phases->met[i] = phases->entry[i];
     }
-    if (status == 0 &&
-        (gsl_linalg_LU_decomp(a, p, &sign) != 0 || gsl_linalg_LU_svx(a, p, &met.vector) != 0))
+    if (status == 0 && tarry_matrix_solve(a, phases->met))
         status = tarry_fail(error, TARRY_NUMERIC, "the phases of a delay cannot be solved");
     for (size_t i = 0; i < n; i++)
         sum += phases->met[i];
     for (size_t i = 0; status == 0 && i < n; i++)
         phases->met[i] /= sum;
-    gsl_permutation_free(p);
     gsl_matrix_free(a);
     return status;
 }

@@ -16,9 +16,9 @@
 #include "model/analysis_flow.h"
 
 #include "base/error.h"
+#include "base/matrix.h"
 
 #include <gsl/gsl_blas.h>
-#include <gsl/gsl_errno.h>
 #include <math.h>
 #include <stdlib.h>
 #include <string.h>
@@ -98,12 +98,11 @@ static void sort_path(const tarry_flow_path *path, sorted *s) {
 
 /* ---- promoter and stages as one linear system ----------------------------------------------- */
 
-/* v' = a v; w(s) = row . v(s). The memory is ours: GSL does not look whether it gets what it asks
- * for. */
+/* v' = a v; w(s) = row . v(s). */
 typedef struct chain {
     size_t n;
     double *memory;
-    gsl_matrix a, exponential, power, next_power;
+    gsl_matrix a, exponential, room;
     gsl_vector v, next, row;
 } chain;
 
@@ -114,16 +113,15 @@ static void chain_release(chain *c) {
 /* Room for the matrices and vectors, all 0. */
 static int chain_allocate(chain *c) {
     const size_t n = c->n, square = n * n;
-    double *at = c->memory = tarry_calloc(4 * square + 3 * n, sizeof *at);
+    double *at = c->memory = tarry_calloc(3 * square + 3 * n, sizeof *at);
     if (!at)
         return 1;
     c->a = gsl_matrix_view_array(at, n, n).matrix;
     c->exponential = gsl_matrix_view_array(at + square, n, n).matrix;
-    c->power = gsl_matrix_view_array(at + 2 * square, n, n).matrix;
-    c->next_power = gsl_matrix_view_array(at + 3 * square, n, n).matrix;
-    c->v = gsl_vector_view_array(at + 4 * square, n).vector;
-    c->next = gsl_vector_view_array(at + 4 * square + n, n).vector;
-    c->row = gsl_vector_view_array(at + 4 * square + 2 * n, n).vector;
+    c->room = gsl_matrix_view_array(at + 2 * square, n, n).matrix;
+    c->v = gsl_vector_view_array(at + 3 * square, n).vector;
+    c->next = gsl_vector_view_array(at + 3 * square + n, n).vector;
+    c->row = gsl_vector_view_array(at + 3 * square + 2 * n, n).vector;
     return 0;
 }
 
@@ -162,42 +160,9 @@ static int chain_init(chain *c, const tarry_flow *flow, const sorted *s, double 
     return 0;
 }
 
-static void chain_swap(gsl_matrix *one, gsl_matrix *other) {
-    const gsl_matrix kept = *one;
-    *one = *other;
-    *other = kept;
-}
-
-/* exp(a time) into `exponential`: the series for a time / 2^k, whose norm is at most 1/2 so that 17
- * terms give all digits, squared k times (Moler & Van Loan 1978, SIAM Rev. 20:801, method 3). */
+/* exp(a time) into `exponential`. */
 static int chain_exponential(chain *c, double time) {
-    enum { TERMS = 17 };
-    double norm = 0;
-    int k = 0, status = 0;
-    if (c->n == 0)
-        return 0;
-    for (size_t i = 0; i < c->n; i++) {
-        const gsl_vector_view row = gsl_matrix_row(&c->a, i);
-        norm = fmax(norm, gsl_blas_dasum(&row.vector) * time);
-    }
-    if (!isfinite(norm))
-        return GSL_EOVRFLW;
-    frexp(2 * norm, &k);
-    k = k > 0 ? k : 0;
-    gsl_matrix_set_identity(&c->power);
-    gsl_matrix_set_identity(&c->exponential);
-    for (int term = 1; term <= TERMS && !status; term++) {
-        status = gsl_blas_dgemm(CblasNoTrans, CblasNoTrans, ldexp(time, -k) / term, &c->power,
-                                &c->a, 0, &c->next_power);
-        chain_swap(&c->power, &c->next_power);
-        gsl_matrix_add(&c->exponential, &c->power);
-    }
-    for (; k > 0 && !status; k--) {
-        status = gsl_blas_dgemm(CblasNoTrans, CblasNoTrans, 1, &c->exponential, &c->exponential, 0,
-                                &c->power);
-        chain_swap(&c->exponential, &c->power);
-    }
-    return status;
+    return c->n == 0 ? 0 : tarry_matrix_exponential(&c->a, time, &c->exponential, &c->room);
 }
 
 static int chain_step(chain *c) {

@@ -248,6 +248,14 @@ static int write_it(void *context, tarry_error *error) {
     return code;
 }
 
+static int predict_it(void *context, tarry_error *error) {
+    const source *from = context;
+    tarry_results *results = NULL;
+    const int code = tarry_predict(from->model, &results, error);
+    tarry_results_free(results);
+    return code;
+}
+
 static int tell_it(void *context, tarry_error *error) {
     const source *from = context;
     char *table = NULL;
@@ -292,6 +300,50 @@ START_TEST(checking) {
         source from = {0};
         set_up(&from, i);
         fail_all("checking", check_it, &from, 100);
+        tarry_model_free(from.model);
+    }
+}
+END_TEST
+
+/* Working one out takes long, so that a part of the allocations must do. */
+static const struct {
+    const char *text;
+    long stride;
+} predictable[] = {
+    {"tarry: 1\n"
+     "time: min\n"
+     "genes:\n"
+     "  vela:\n"
+     "    start: steady\n"
+     "    promoter: {shut: {to: {open: 1}}, open: {to: {shut: 1}, initiates: 1}}\n"
+     "    transcript: {stages: {nascent: 0.5}, half_life: 0.2}\n"
+     "signals: {spot: {of: vela.nascent, ramp: {from: 0, to: 1}}}\n"
+     "run: {settle: 15, until: 1, every: 1, lags: 1, cells: 1}\n",
+     8},
+    {"tarry: 1\n"
+     "time: min\n"
+     "parameters: {k: 1}\n"
+     "genes:\n"
+     "  vela:\n"
+     "    promoter: {shut: {lasts: {erlang: {steps: 2, mean: 3}}, then: {open: 1}}, open: {to: "
+     "{shut: k}, initiates: 2}}\n"
+     "    transcript: {stages: {nascent: 0.5}, half_life: 5}\n"
+     "protocol: [{at: 1, set: {k: 2}}]\n"
+     "run: {until: 2, every: 1, lags: 1, cells: 1}\n",
+     300},
+};
+
+START_TEST(predicting) {
+    for (size_t i = 0; i < sizeof predictable / sizeof *predictable; i++) {
+        source from = {.path = test_path("model.yaml")};
+        tarry_error error = {0};
+        put_file(from.path, predictable[i].text);
+        tarry_start();
+        ck_assert_int_eq(tarry_model_read(from.path, NULL, 0, &from.model, &error), 0);
+        for (int lasting = 0; lasting < 1 + OWN_MEMORY; lasting++)
+            ck_assert_int_gt(
+                fail_each("predicting", predictable[i].stride, predict_it, NULL, &from, lasting, 0),
+                OWN_MEMORY ? 1000 : 0);
         tarry_model_free(from.model);
     }
 }
@@ -394,9 +446,9 @@ static void use_memory_for_files(void) {
 int main(void) {
     use_memory_for_files();
     const test_entry tests[] = {
-        {"reading", reading}, {"checking", checking},       {"running", running},
-        {"writing", writing}, {"overwriting", overwriting}, {"program", program},
-        {"figures", figures},
+        {"reading", reading}, {"predicting", predicting}, {"checking", checking},
+        {"running", running}, {"writing", writing},       {"overwriting", overwriting},
+        {"program", program}, {"figures", figures},
     };
     return run_tests("lost memory", tests, sizeof tests / sizeof *tests);
 }
