@@ -165,7 +165,7 @@ static int refuse_strangers(const tarry_run_folder *folder, tarry_error *error) 
 }
 
 int tarry_run_folder_look(tarry_run_folder *folder, bool overwrite, tarry_error *error) {
-    bool empty = true, was_cut_short = false, no_figures;
+    bool empty = true, no_figures;
     int status = tarry_folder_is_empty(folder->path, &empty, error);
     if (!status)
         status = tarry_folder_writable(folder->path, error);
@@ -183,7 +183,7 @@ int tarry_run_folder_look(tarry_run_folder *folder, bool overwrite, tarry_error 
     if (!status)
         status = read_list(folder, tarry_summary_name, &folder->has_summary, error);
     if (!status)
-        status = read_list(folder, unfinished_name, &was_cut_short, error);
+        status = read_list(folder, unfinished_name, &folder->was_cut_short, error);
     return status ? status : refuse_strangers(folder, error);
 }
 
@@ -216,6 +216,8 @@ int tarry_run_folder_announce(const tarry_run_folder *folder, tarry_error *error
         tarry_text_printf(&text, "%s\n    {\"name\": \"%s\"}", i ? "," : "", run_files[i]);
     for (size_t i = 0; i < folder->n_planned; i++)
         tarry_text_printf(&text, ",\n    {\"name\": \"%s\"}", folder->planned[i]);
+    for (size_t i = 0; i < folder->n_earlier; i++)
+        tarry_text_printf(&text, ",\n    {\"name\": \"%s\"}", folder->earlier[i]);
     tarry_text_add_string(&text, "\n  ]\n}\n");
     const int status = text.failed
                            ? tarry_fail_memory(error, unfinished_name)
@@ -229,6 +231,15 @@ int tarry_run_folder_close(const tarry_run_folder *folder, tarry_error *error) {
     return tarry_run_folder_remove(folder, unfinished_name, error);
 }
 
+/* A drawing program that outlived its killed run may still write into the folder of figures. Once
+ * that folder is gone it cannot, and the one that is made anew is ours alone. */
+static void remove_earlier_figures(const tarry_run_folder *folder) {
+    for (size_t i = 0; i < folder->n_earlier; i++)
+        if (is_figure(folder->earlier[i]))
+            tarry_run_folder_remove(folder, folder->earlier[i], NULL);
+    tarry_folder_remove_empty(tarry_run_folder_path(folder, tarry_figures_name));
+}
+
 void tarry_run_folder_remove_parts(const tarry_run_folder *folder) {
     tarry_file_remove_parts(tarry_run_folder_path(folder, tarry_summary_name));
     tarry_file_remove_parts(tarry_run_folder_path(folder, unfinished_name));
@@ -237,6 +248,8 @@ void tarry_run_folder_remove_parts(const tarry_run_folder *folder) {
     for (size_t i = 0; i < folder->n_earlier; i++)
         if (is_figure(folder->earlier[i]))
             tarry_file_remove_parts(tarry_run_folder_path(folder, folder->earlier[i]));
+    if (folder->was_cut_short)
+        remove_earlier_figures(folder);
 }
 
 /* Room for one more in the list, with its name. */

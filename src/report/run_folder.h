@@ -14,7 +14,8 @@ typedef struct tarry_run_folder {
     char *room;        /* for the path of one file: taking back must not depend on memory */
     tarry_arena arena; /* names */
     bool has_summary;
-    char **earlier; /* files that an earlier run names and a run may write */
+    bool was_cut_short; /* unfinished.json is there */
+    char **earlier;     /* files that an earlier run names and a run may write */
     size_t n_earlier, earlier_capacity;
     char **planned; /* files that this run may write, besides those that every run may */
     size_t n_planned, planned_capacity;

@@ -171,4 +171,38 @@ END
 }
 ok "being interrupted ends gnuplot and all that it started" interrupted
 
+# It goes on drawing when the run is killed, and would draw over what the next run has drawn and listed.
+outlived() {
+    fake orphan <<'END' || return 1
+echo $$ >"$OLD/orphan.pid"
+for _ in $(seq 300); do
+    [ ! -e "$OLD/go" ] || break
+    sleep 0.1
+done
+shift
+for script in "$@"; do
+    echo "drawn by the dead" >"${script%.gp}.svg"
+done
+END
+    rm -f orphan.pid
+    OLD=$PWD GNUPLOT=./orphan "$TARRY" run gene.yaml --out outlived >out 2>err &
+    program=$!
+    for _ in 1 2 3 4 5 6 7 8 9 10; do
+        sleep 0.1
+        [ -s orphan.pid ] && break
+    done
+    kill -KILL "$program"
+    wait "$program" 2>/dev/null
+    [ -e outlived/unfinished.json ] && run 0 run gene.yaml --out outlived --overwrite || return 1
+    ! has_ended "$(cat orphan.pid)" || return 1
+    touch go
+    for _ in $(seq 100); do
+        sleep 0.1
+        ! has_ended "$(cat orphan.pid)" || break
+    done
+    has_ended "$(cat orphan.pid)" && listed outlived && [ "$(files svg outlived)" -ge 15 ] &&
+        [ ! -e outlived/unfinished.json ]
+}
+ok "a gnuplot that outlives a killed run draws over nothing" outlived 2>/dev/null
+
 finish

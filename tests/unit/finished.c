@@ -87,3 +87,12 @@ long long number_in_summary(const char *folder, const char *key) {
     json_decref(summary);
     return number;
 }
+
+int count_listed(const char *folder) {
+    bool exists;
+    json_t *summary = load_summary(folder, &exists);
+    const json_t *files = json_object_get(summary, "files");
+    const int n = json_is_array(files) ? (int)json_array_size(files) : -1;
+    json_decref(summary);
+    return n;
+}

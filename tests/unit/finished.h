@@ -16,6 +16,9 @@ folder_state look_at_folder(const char *folder);
 /* Files in the folder, or -1 where there is none. */
 int count_files_in(const char *folder);
 
+/* Files that summary.json lists, or -1. */
+int count_listed(const char *folder);
+
 /* A number of the top level of summary.json, or -1. */
 long long number_in_summary(const char *folder, const char *key);
 

@@ -84,6 +84,12 @@ static int finish(pid_t process) {
     return status;
 }
 
+/* Whether the process has ended; it can be waited for all the same. */
+static bool has_ended(pid_t process) {
+    siginfo_t about = {0};
+    return !waitid(P_PID, (id_t)process, &about, WEXITED | WNOHANG | WNOWAIT) && about.si_pid != 0;
+}
+
 /* When unfinished.json was made, or 0 where there is none. */
 static double time_of_unfinished(const char *folder) {
     char path[ROOM];
@@ -105,7 +111,7 @@ static duration measure(void) {
         snprintf(folder, sizeof folder, "%s/measured%d", test_folder(), i);
         const double from = now();
         const pid_t process = start(folder, "--seed", "1");
-        while (count_files_in(folder) < 1)
+        while (count_files_in(folder) < 1 && !has_ended(process))
             wait_for(1e-4);
         const double to_files = now() - from;
         const int status = finish(process);
@@ -122,9 +128,9 @@ static int kill_at_random(const char *folder, const duration *run, int i) {
     const bool writing = i % 2;
     char seed[32];
     snprintf(seed, sizeof seed, "%d", i + 2);
-    const double before = time_of_unfinished(folder), most = now() + 60;
+    const double before = time_of_unfinished(folder);
     const pid_t process = start(folder, "--seed", seed);
-    while (writing && time_of_unfinished(folder) == before && now() < most)
+    while (writing && time_of_unfinished(folder) == before && !has_ended(process))
         wait_for(1e-4);
     wait_for(draw() * (writing ? run->whole - run->to_files : run->whole));
     kill(process, SIGKILL);
@@ -159,10 +165,21 @@ START_TEST(killed) {
     ck_assert_int_eq(finish(start(folder, "--seed", "1")), 0);
     ck_assert_int_eq(look_at_folder(folder), FOLDER_FINISHED);
     ck_assert_int_eq(count_files_in(folder), count_files_in(test_path("measured0")));
+    ck_assert_int_eq(count_listed(folder), count_listed(test_path("measured0")));
+    ck_assert_int_eq(count_files_in(test_path("out/figures")),
+                     count_files_in(test_path("measured0/figures")));
 }
 END_TEST
 
 /* ---- asked to stop --------------------------------------------------------------------------- */
+
+static FILE *open_in(const char *folder, const char *name) {
+    char path[ROOM];
+    ck_assert_int_lt(snprintf(path, sizeof path, "%s/%s", folder, name), ROOM);
+    FILE *file = fopen(path, "r");
+    ck_assert_msg(file != NULL, "%s", path);
+    return file;
+}
 
 static json_t *load(const char *folder) {
     char path[ROOM];
@@ -170,6 +187,43 @@ static json_t *load(const char *folder) {
     json_t *summary = json_load_file(path, 0, NULL);
     ck_assert_msg(summary != NULL, "%s", path);
     return summary;
+}
+
+/* The next line of a page that does not say whether the run was interrupted; false at the end. */
+static bool next_line(FILE *page, char **line, size_t *size) {
+    static const char *const marks[] = {"interrupted", "class=\"run\""};
+    while (getline(line, size, page) > 0)
+        if (!strstr(*line, marks[0]) && !strstr(*line, marks[1]))
+            return true;
+    return false;
+}
+
+static void check_pages(const char *folder, const char *other_folder) {
+    FILE *page = open_in(folder, "report.html"), *other = open_in(other_folder, "report.html");
+    char *line = NULL, *other_line = NULL;
+    size_t size = 0, other_size = 0, n = 0;
+    bool more, other_more;
+    do {
+        more = next_line(page, &line, &size);
+        other_more = next_line(other, &other_line, &other_size);
+        ck_assert_int_eq(more, other_more);
+        ASSERT_FAST(!more || !strcmp(line, other_line), "%s", line);
+        n += more;
+    } while (more);
+    ck_assert_uint_gt(n, 100);
+    free(line);
+    free(other_line);
+    fclose(page);
+    fclose(other);
+}
+
+/* The page bears the mark, too, and is looked at by itself. */
+static void strip_page(json_t *files) {
+    for (size_t i = json_array_size(files); i-- > 0;) {
+        const char *name = json_string_value(json_object_get(json_array_get(files, i), "name"));
+        if (!strcmp(name, "report.html"))
+            json_array_remove(files, i);
+    }
 }
 
 /* Take off what tells a partial run from a whole one of as many cells, having looked at it. */
@@ -186,6 +240,7 @@ static void strip(json_t *summary, bool is_partial) {
         ck_assert_int_eq(strncmp(text, "interrupted: ", 13), 0);
         json_array_remove(warnings, i);
     }
+    strip_page(json_object_get(summary, "files"));
     json_object_del(summary, "status");
     json_object_del(summary, "cells_asked");
     json_object_del(summary, "options"); /* --cells */
@@ -206,6 +261,7 @@ static void check_partial(const char *folder) {
     json_decref(one);
     json_decref(other);
     ck_assert_int_eq(count_files_in(folder), count_files_in(whole));
+    check_pages(folder, whole);
 }
 
 START_TEST(asked_to_stop) {
