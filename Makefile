@@ -55,6 +55,27 @@ $(BUILD)/%.o: %.c $(BUILD)/flags
 
 $(BUILD)/src/base/start.o: private ALL_CFLAGS += -DTARRY_FLAGS='"$(STANDARD) $(CFLAGS)"'
 
+# The shared library: objects of their own, since code that can lie anywhere is a little slower. What it hands out
+# is what include/tarry declares (tests/exports.awk), and nothing else.
+SONAME = libtarry.so.0
+SHARED_OBJECTS = $(LIB_SOURCES:%.c=$(BUILD)/shared/%.o)
+
+$(BUILD)/shared/%.o: %.c $(BUILD)/flags
+	@mkdir -p $(@D)
+	$(CC) $(ALL_CFLAGS) -fPIC -MMD -MP -c -o $@ $<
+
+$(BUILD)/shared/src/base/start.o: private ALL_CFLAGS += -DTARRY_FLAGS='"$(STANDARD) $(CFLAGS) -fPIC"'
+
+$(BUILD)/exports.map: tests/exports.awk $(wildcard include/tarry/*.h)
+	@mkdir -p $(@D)
+	awk -f tests/exports.awk $(wildcard include/tarry/*.h) > $@.new && mv $@.new $@
+
+$(BUILD)/$(SONAME): $(SHARED_OBJECTS) $(BUILD)/exports.map $(BUILD)/members
+	$(CC) $(ALL_CFLAGS) $(LDFLAGS) -shared -Wl,-soname,$(SONAME) -Wl,--version-script=$(BUILD)/exports.map \
+	  -Wl,-z,defs -o $@ $(SHARED_OBJECTS) $(LIBS) -lpthread
+
+shared: $(BUILD)/$(SONAME)
+
 # models/two_state.yaml, byte by byte, as what `tarry run` without a model runs.
 $(BUILD)/demo_model.c: models/two_state.yaml
 	@mkdir -p $(@D)
@@ -169,22 +190,41 @@ instructions: deps-dev
 format: deps-dev
 	clang-format -i $$(git ls-files '*.c' '*.h')
 
-install: all
-	$(INSTALL) -d $(DESTDIR)$(PREFIX)/bin $(DESTDIR)$(PREFIX)/lib $(DESTDIR)$(PREFIX)/include/tarry \
+LIBDIR ?= $(PREFIX)/lib
+VERSION = $(shell sed -n 's/^.define TARRY_VERSION "\(.*\)"/\1/p' include/tarry/tarry.h)
+
+# What a program that links the library needs to know; Libs.private is for the static one.
+$(BUILD)/tarry.pc: FORCE
+	@mkdir -p $(@D)
+	@printf '%s\n' 'prefix=$(PREFIX)' 'libdir=$(LIBDIR)' 'includedir=$${prefix}/include' '' \
+	  'Name: tarry' 'Description: Simulation of gene expression with lags' 'Version: $(VERSION)' \
+	  'Cflags: -I$${includedir}' 'Libs: -L$${libdir} -ltarry' \
+	  'Libs.private: $(LIBS) -lpthread' > $@
+
+install: all shared $(BUILD)/tarry.pc
+	$(INSTALL) -d $(DESTDIR)$(PREFIX)/bin $(DESTDIR)$(LIBDIR)/pkgconfig $(DESTDIR)$(PREFIX)/include/tarry \
 	  $(DESTDIR)$(PREFIX)/share/doc/tarry $(DESTDIR)$(PREFIX)/share/tarry/models
 	$(INSTALL) -m 755 $(BUILD)/tarry $(DESTDIR)$(PREFIX)/bin/tarry
-	$(INSTALL) -m 644 $(BUILD)/libtarry.a $(DESTDIR)$(PREFIX)/lib/libtarry.a
+	$(INSTALL) -m 644 $(BUILD)/libtarry.a $(DESTDIR)$(LIBDIR)/libtarry.a
+	$(INSTALL) -m 755 $(BUILD)/$(SONAME) $(DESTDIR)$(LIBDIR)/$(SONAME)
+	ln -sf $(SONAME) $(DESTDIR)$(LIBDIR)/libtarry.so
+	$(INSTALL) -m 644 $(BUILD)/tarry.pc $(DESTDIR)$(LIBDIR)/pkgconfig/tarry.pc
 	$(INSTALL) -m 644 include/tarry/*.h $(DESTDIR)$(PREFIX)/include/tarry
-	$(INSTALL) -m 644 $(wildcard *.md docs/*.md) $(DESTDIR)$(PREFIX)/share/doc/tarry
+	$(INSTALL) -m 644 $(wildcard *.md docs/*.*) $(DESTDIR)$(PREFIX)/share/doc/tarry
 	$(INSTALL) -m 644 $(wildcard models/*.*) $(DESTDIR)$(PREFIX)/share/tarry/models
+
+uninstall:
+	rm -f $(DESTDIR)$(PREFIX)/bin/tarry $(DESTDIR)$(LIBDIR)/libtarry.a $(DESTDIR)$(LIBDIR)/libtarry.so \
+	  $(DESTDIR)$(LIBDIR)/$(SONAME) $(DESTDIR)$(LIBDIR)/pkgconfig/tarry.pc
+	rm -rf $(DESTDIR)$(PREFIX)/include/tarry $(DESTDIR)$(PREFIX)/share/doc/tarry $(DESTDIR)$(PREFIX)/share/tarry
 
 clean:
 	rm -rf $(BUILD) $(BUILD)-asan $(BUILD)-fuzz $(BUILD)-lint-gcc $(BUILD)-lint-clang $(BUILD)-tsan
 
 FORCE:
 .PHONY: all tests tests-slow everything list-tests list-tests-slow deps deps-test deps-dev demo test \
-  test-slow coverage fuzz lint tsan memcheck instructions bench format install clean FORCE
+  test-slow coverage fuzz lint tsan memcheck instructions bench format install uninstall shared clean FORCE
 .SECONDARY:
 .DELETE_ON_ERROR:
--include $(LIB_OBJECTS:.o=.d) $(CLI_OBJECTS:.o=.d) $(SUPPORT_OBJECTS:.o=.d) $(BENCH_OBJECTS:.o=.d) \
+-include $(LIB_OBJECTS:.o=.d) $(SHARED_OBJECTS:.o=.d) $(CLI_OBJECTS:.o=.d) $(SUPPORT_OBJECTS:.o=.d) $(BENCH_OBJECTS:.o=.d) \
   $(TESTS:=.d) $(SLOW_TESTS:=.d) $(EXAMPLES:=.d)

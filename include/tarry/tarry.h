@@ -22,7 +22,8 @@ void tarry_start(void);
 /* "0.1.0" */
 const char *tarry_version(void);
 
-/* Compiler, flags and library versions, for `tarry version --build`. */
-const char *tarry_build(void);
+/* Compiler, flags and library versions, for `tarry version --build`: lines of text, to be freed with free();
+ * NULL when memory is short. */
+char *tarry_build(void);
 
 #endif

@@ -1,10 +1,13 @@
 #include "tarry/tarry.h"
 
+#include "base/text.h"
+
 #include <gsl/gsl_errno.h>
 #include <gsl/gsl_version.h>
 #include <jansson.h>
 #include <nettle/version.h>
 #include <uthash.h>
+#include <yaml.h>
 
 #define QUOTE(x) #x
 #define TEXT_OF(x) QUOTE(x)
@@ -30,11 +33,15 @@ const char *tarry_version(void) {
     return TARRY_VERSION;
 }
 
-const char *tarry_build(void) {
-    return "compiler: " COMPILER "\n"
-           "flags: " TARRY_FLAGS "\n"
-           "threads: POSIX\n"
-           "libraries: GSL " GSL_VERSION ", jansson " JANSSON_VERSION
-           ", nettle " TEXT_OF(NETTLE_VERSION_MAJOR) "." TEXT_OF(
-               NETTLE_VERSION_MINOR) ", uthash " TEXT_OF(UTHASH_VERSION) ", libyaml\n";
+char *tarry_build(void) {
+    tarry_text text = {0};
+    tarry_text_printf(
+        &text,
+        "compiler: %s\nflags: %s\nthreads: POSIX\nlibraries: GSL %s, jansson %s, nettle %d.%d, "
+        "uthash %s, libyaml %s\n",
+        COMPILER, TARRY_FLAGS, GSL_VERSION, JANSSON_VERSION, NETTLE_VERSION_MAJOR,
+        NETTLE_VERSION_MINOR, TEXT_OF(UTHASH_VERSION), yaml_get_version_string());
+    if (text.failed)
+        tarry_text_release(&text);
+    return text.data;
 }

@@ -385,7 +385,9 @@ int tarry_summary_write_run(const tarry_provenance *provenance, tarry_text *text
     member(&writer, "ranks", json_integer(1));
     member(&writer, "lanes", json_integer(1));
     member(&writer, "host", tarry_json_text(known ? host.nodename : "unknown"));
-    member(&writer, "build", tarry_json_text(tarry_build()));
+    char *build = tarry_build();
+    member(&writer, "build", build ? tarry_json_text(build) : NULL);
+    free(build);
     end(&writer);
     tarry_text_add(text, "\n", 1);
     return text->failed ? tarry_fail_memory(error, "run.json") : 0;

@@ -325,7 +325,7 @@ static int add_rows(const tarry_network *network, const burst_row *row, tarry_ta
 /* ---- caveats ---- */
 
 /* Figures that rest on periods, and so on few of them. */
-static bool rests_on_periods(int quantity) {
+static bool rests_on_periods(tarry_burst_quantity quantity) {
     return quantity != TARRY_active_fraction && quantity != TARRY_initiation_rate &&
            quantity != TARRY_outside_fraction;
 }

@@ -314,7 +314,9 @@ START_TEST(test_same_bytes) {
     json_t *run = read_json(test_path("b"), "run.json");
     ck_assert_int_eq(json_integer_value(json_object_get(run, "threads")), 64);
     ck_assert(json_number_value(json_object_get(run, "seconds")) == 1e6);
-    ck_assert_str_eq(json_string_value(json_object_get(run, "build")), tarry_build());
+    char *build = tarry_build();
+    ck_assert_str_eq(json_string_value(json_object_get(run, "build")), build);
+    free(build);
     json_decref(run);
     tarry_results_free(results);
 }
