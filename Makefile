@@ -1,3 +1,4 @@
+# SPDX-License-Identifier: GPL-3.0-or-later
 # tarry: build, test, check, install. DEVELOPERS.md tells what each goal is for.
 #
 # Goals that a fresh machine may start with (demo, test, lint, bench) look for the packages that they

@@ -1,4 +1,5 @@
 #!/bin/sh
+# SPDX-License-Identifier: GPL-3.0-or-later
 # Find what is missing to build, run, test or check tarry, and install it.
 #
 #   sh tests/deps.sh GROUP...    groups: build, test, dev

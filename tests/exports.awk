@@ -1,3 +1,4 @@
+# SPDX-License-Identifier: GPL-3.0-or-later
 # The functions that headers declare, as a version script for the linker: these are global, all else local.
 #
 #   awk -f tests/exports.awk include/tarry/*.h

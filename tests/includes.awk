@@ -1,3 +1,4 @@
+# SPDX-License-Identifier: GPL-3.0-or-later
 # Check the #include lines of C files: which folder may include which, and in what order.
 #
 #   awk -f tests/includes.awk FILE...

@@ -1,4 +1,5 @@
 #!/bin/sh
+# SPDX-License-Identifier: GPL-3.0-or-later
 # Count the instructions that an event of the bench takes (a firing or a completion), which unlike its
 # time is the same on every run, and compare with what is stored.
 #

@@ -1,4 +1,5 @@
 #!/bin/sh
+# SPDX-License-Identifier: GPL-3.0-or-later
 # Look for what compilers, analysers and a few rules of the project can find; and, running the program, what
 # ThreadSanitizer and Valgrind see and how many instructions it takes.
 #
@@ -56,6 +57,10 @@ step_includes() {
 
 step_rules() {
     status=0
+    # The loops of the bench stay as they were written; their hash is told with the timing.
+    for file in $(pick '\.(c|h|sh|awk|js)$|^(Makefile|\.ci/run)$' | grep -v '^tests/bench/hand_loop\.c$'); do
+        head -n 2 "$file" | grep -q 'SPDX-License-Identifier: GPL-3.0-or-later' || echo "$file"
+    done | none "files without a line for the licence" || status=1
     sources='^(src|include)/.*\.[ch]$'
     pick "$sources" | xargs grep -nE '^[[:space:]]*#[[:space:]]*pragma omp.*reduction' |
         none "OpenMP reductions (their order, and so the last bit, would vary)" || status=1

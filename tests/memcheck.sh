@@ -1,4 +1,5 @@
 #!/bin/sh
+# SPDX-License-Identifier: GPL-3.0-or-later
 # Look for memory that is read before it is written, used after it was freed, or lost: the program under
 # Valgrind's memcheck on the example models, and one test in which each allocation fails in turn.
 #

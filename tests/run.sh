@@ -1,4 +1,5 @@
 #!/bin/sh
+# SPDX-License-Identifier: GPL-3.0-or-later
 # Build and run the tests, two programs at a time, and sum up.
 #
 #   sh tests/run.sh PART...    parts: plain, sanitized, slow

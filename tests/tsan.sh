@@ -1,4 +1,5 @@
 #!/bin/sh
+# SPDX-License-Identifier: GPL-3.0-or-later
 # Look for data races: the program under ThreadSanitizer, with four threads, on the example models, whole
 # and interrupted.
 #

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #ifndef TARRY_H
 #define TARRY_H
 
@@ -22,8 +24,8 @@ void tarry_start(void);
 /* "0.1.0" */
 const char *tarry_version(void);
 
-/* Compiler, flags and library versions, for `tarry version --build`: lines of text, to be freed with free();
- * NULL when memory is short. */
+/* Compiler, flags and library versions, for `tarry version --build`: lines of text, to be freed
+ * with free(); NULL when memory is short. */
 char *tarry_build(void);
 
 #endif

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Files. Each call that can fail is looked at, the one that closes too, since a full disk or a
  * network folder may report what went wrong only then. */
 #include "base/file.h"

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #include "base/logarithm.h"
 
 /* Each `inverse` is 1/c rounded to 10 bits, so that products with it lose little; each `logarithm`

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Heap memory and arenas.
  *
  * An arena is a chain of blocks, the newest first. A block doubles the one before it up to a bound;

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Numbers as text.
  *
  * Reading. A decimal of at most 2^53 with at most 22 powers of ten is one exact product or quotient

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Tables: cells row by row, each a number or a pointer to a text that the table keeps once. */
 #include "base/table.h"
 

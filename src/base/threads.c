@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Plain POSIX threads, made anew for each piece of work (tens of microseconds each). OpenMP would
  * end the process where memory or threads run out, which is not for a library to do. */
 #define _GNU_SOURCE /* sched_getaffinity */

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #ifndef TARRY_BASE_THREADS_H
 #define TARRY_BASE_THREADS_H
 

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* tarry check: what a model comes down to. */
 
 #include "cli/commands.h"

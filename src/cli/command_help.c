@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* tarry help: from the tables of commands and options. */
 
 #include "cli/commands.h"

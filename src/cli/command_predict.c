@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* tarry predict: what a run would find with endlessly many cells, by the mathematics. */
 
 #include "cli/commands.h"

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* tarry run: simulate, write the files of the run, print the table per gene. */
 
 #include "cli/commands.h"

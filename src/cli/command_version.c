@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* tarry version: which program this is, and with --build how it was made. */
 
 #include "cli/commands.h"

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* The program: streams and signals in order, then the command. */
 
 #include "cli/commands.h"

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Options are rows of one table: how a value is read, what it may be, where it goes and what help
  * says all follow from the row. Values of the model's own keys are only carried along: the reader
  * of models checks them, with units, as it checks the file. */

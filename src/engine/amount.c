@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Random numbers of molecules by inversion.
  *
  * Geometric: n - least >= j exactly where u <= q^j. Poisson: from 0 upwards for small means; else a

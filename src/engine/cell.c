@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* The loop: one cell from its start to its end, as docs/engine.md lays down.
  *
  * Exact because exponential times have no memory: a reaction time that a completion or a protocol

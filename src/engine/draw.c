@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Drawing lags by inversion.
  *
  * A drawer is a law made ready: the kind of formula and its numbers side by side. Whatever takes a

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Setting an engine up: the network packed for the hot loop, and a drawer for every delay. */
 
 #include "engine/cell_state.h"

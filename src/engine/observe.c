@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Recording: frames, snapshots, counters at span bounds, marks and lags under way. Observations
  * take no random numbers and cut nothing; they are made when an event after them is about to
  * happen. */

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Making tables of quantiles.
  *
  * Each interval gets the cubic that has the quantile and its slope 1/density at both ends; its

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* The direct method (Gillespie 1976, J. Comput. Phys. 22:403): one number for the time, one for the
  * choice. Up to LINEAR reactions the choice is a search in sums from left to right, of which only
  * those from the lowest changed reaction on are summed anew; above, it goes down a binary tree in

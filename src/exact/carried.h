@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #ifndef TARRY_EXACT_CARRIED_H
 #define TARRY_EXACT_CARRIED_H
 

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* What a signal sees of a transcript, r, by its first two moments: E[exp(s r)] to second order in
  * s. Only derivatives at s = 0 mean something. */
 

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Probabilities are the coefficients of G(z) at z = 0. On a circle of radius r they come out of a
  * Fourier transform as r^n P(n), with an error of the size of rounding times G(r) at each n. So
  * each n is read from the circle whose G(r) r^-n is least: r = 1 serves all but the far tails,

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Pieces are halved until the series of each has converged: its last coefficients are small. Series
  * in Chebyshev polynomials through their own nodes are within a small factor of the best polynomial
  * (Trefethen 2013, Approximation Theory and Approximation Practice, chapter 15; from memory). */

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* The mean of f(a - D) over a lag D: a shift where D is fixed, a sum over values and mixes, one
  * part after another for a total, and else an integral over the density by Gauss-Legendre
  * quadrature.

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #include "exact/gauss.h"
 
 const double tarry_gauss_node[TARRY_GAUSS] = {

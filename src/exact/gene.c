@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Reading a gene back from the network. Only what is recognised is trusted: each effect that
  * changes one of the gene's species must be one met on the way, else what it changes is refused. */
 

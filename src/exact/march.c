@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Radau IIA collocation with five nodes, of order 9 and L-stable (Hairer & Wanner 1996, Solving
  * Ordinary Differential Equations II, section IV.5): steps are as long as the solution is smooth,
  * however fast the promoter switches.

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Factorial moments are derivatives of G at z = 1. They come from values on a small circle around 1
  * by Cauchy's formula, with N points exact but for the N-th derivative on: with a radius that is a
  * fraction of 1/(mean + Fano factor) that is below rounding (Trefethen & Weideman 2014, SIAM Rev.

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* The promoter with its clearance as one Markov chain. A state of the chain is (clearance, phase):
  * clearance 0 is ready to initiate, c > 0 the phase c - 1 of a clearance under way; the phases of
  * all states of the promoter follow one another. */

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* A molecule with dwell D in its stage, in it since x, shines rho(x/D) while x < D; a loss at rate
  * r leaves exp(-r x) of those that came in. Means over D are taken by a density or values
  * (measure.h); what came before the stage is folded in by its laws (delayed.h). */

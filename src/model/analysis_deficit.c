@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* How far the mean of the molecules that come one way is from steady a time t after the start.
  *
  * A molecule counted at t was initiated a time X earlier, X being the sum of the independent steps

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Reading a gene back from the network.
  *
  * Only what is recognised is trusted: every effect that changes a product must be an initiation, an

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Paths in elementary steps.
  *
  * A lag made of X1, then X2, ... that is met at a random moment of the steady state is met within

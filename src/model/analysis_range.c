@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Bounds on expressions by interval arithmetic (Moore 1966, Interval Analysis): each operation maps
  * bounds to bounds that hold whatever values lie within. A species that occurs twice counts as two,
  * so that the bounds may be wider than the truth and never narrower, but for rounding. */

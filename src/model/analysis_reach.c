@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* What can ever happen: a least fixed point. What is there at the start or set by the protocol is
  * at hand; a reaction whose reactants can be there and whose rate is not 0 throughout fires; what
  * it and the lags it starts make is there. Amounts are told apart only for what nothing makes. */

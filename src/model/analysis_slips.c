@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* What looks like a slip in a model. Each check is a function; what it says is a whole sentence
  * that tells what would follow. */
 

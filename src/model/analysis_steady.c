@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Means of products when the record begins, against the steady state: what analysis_flow.h reads
  * back from the network and analysis_deficit.c works out for each path, put together. */
 

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Conserved sums: weights y with y . change = 0 for everything that can happen.
  *
  * Unknowns are the weights of species and of lags: what is under way in a lag that holds no species

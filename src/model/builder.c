@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #include "model/builder.h"
 
 /* Lists and names of the builder, and drafts of effects. Names are found by uthash, so that a model

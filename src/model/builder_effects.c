@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #include "model/builder.h"
 
 /* Effects in the making: changes come in any order and are brought to the network's order here. */

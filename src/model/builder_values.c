@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #include "model/builder.h"
 
 /* Scalars that stand for numbers: rates, means and constants. They stay expressions here; what they

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #include "model/builder.h"
 
 /* The first pass over genes: names of their species, promoters and tracks, so that expressions

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #include "model/expect.h"
 
 /* Every message has the same build: what it is about, what stands there, what would be right. */

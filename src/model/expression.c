@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Recursive descent, by rank: + -, then * /, then unary -, then ^ to the right. The depth of the
  * descent is bounded, so that no text can exhaust the stack.
  *

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #include "model/builder.h"
 
 /* What depends on the whole model: values in each segment, which reactions an effect touches, which

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* First responses: which steps begin one, what is waited for after each, and marks on the effects
  * that may bring it. Without a protocol there is none of it, and no effect carries a mark.
  *

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #include "model/gene_layout.h"
 
 /* What a gene is made of. Read twice: once for the names of all genes, once for what they do. */

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Incomplete gamma functions.
  *
  * Below a = 20, and far from the middle, GSL's are used: there they are right to 1e-12. Near the

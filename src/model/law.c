@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Laws of waiting times: what holds for every family.
  *
  * A law is plain data and a family is a table of functions, indexed by kind. Probabilities are

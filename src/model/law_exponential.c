@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* The exponential law: no memory. */
 
 #include "model/law_family.h"

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* A lag that always has the same length. */
 
 #include "model/law_family.h"

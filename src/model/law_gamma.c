@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* The gamma law and, where its shape is a whole number of steps, the Erlang law. */
 
 #include "base/error.h"

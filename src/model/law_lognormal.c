@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* The lognormal law, given by the mean and sd of the lag itself. */
 
 #include "model/law_family.h"

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* A lag that follows one of several laws, chosen at random. */
 
 #include "base/error.h"

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* The normal law, truncated at 0: a lag is never negative. Mean and sd are given as they are before
  * truncation; the moments here are those after it.
  *

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Measured laws: a histogram that is uniform within its bins, and a list of values. */
 
 #include "base/error.h"

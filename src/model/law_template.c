@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #include "model/law_template.h"
 
 /* Law templates -> laws: each expression is worked out with the parameters of one segment, weights

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* A lag made of several, one after another.
  *
  * Means and variances add. For cdf, survival and its integral the parts are first brought to their

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* The uniform law. */
 
 #include "model/law_family.h"

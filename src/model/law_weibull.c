@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* The Weibull law. */
 
 #include "model/incomplete_gamma.h"

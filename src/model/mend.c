@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* The mended line is made from the characters of the file, not from what the YAML reader made of
  * them, so that a user sees the line that he wrote. Only values that begin after `{`, `[`, `,` or
  * `: ` are looked at, which is where a call can be split. */

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #include "model/model.h"
 
 /* Reading a model from its first byte to the finished network. */

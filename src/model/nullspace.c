@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Fraction-free elimination (common practice): rows are kept as whole numbers, small by their
  * greatest common divisors; products are formed in 128 bits and checked against 64. The basis found
  * is then made readable by sums and differences of its vectors. */

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Depth first search with a stack of its own (Tarjan 1976, Acta Informatica 6:171), so that a chain
  * of a hundred thousand parameters is no deeper for the program than a chain of two. */
 #include "model/parameter_order.h"

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* One result for each operation, however it is written. x^n for whole n from -16 to 16 is a product
  * (square and multiply, and the reciprocal where n < 0), for other n it is pow(x, n); whether n is
  * known when compiling makes no difference. hill(x, K, n) = 1 / (1 + (K/x)^n) and repress(x, K, n)

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #include "model/protocol_steps.h"
 
 /* An entry is read once, with times relative to its own clock, and placed as often as it happens;

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* A unit is kept as a fraction of two whole numbers (20 min in hours is 20 * 60 / 3600), so that
  * reading a quantity rounds once where a scale that was rounded before would round twice. */
 #include "model/quantity.h"

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #include "model/read_reactions.h"
 
 /* Numbers of molecules used and made, whole or random. */

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #include "model/builder.h"
 
 /* `bursts:` names what opens, closes and counts on a track of its own, for plain reactions. Their

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #include "model/read_delays.h"
 
 /* Delays: YAML -> law templates. A template holds expressions; laws are made of it for each segment

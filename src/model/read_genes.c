@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #include "model/read_genes.h"
 
 /* Genes -> lags, reactions and effects. A molecule goes from stage to stage: each completion takes

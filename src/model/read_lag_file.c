@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #include "model/read_delays.h"
 
 /* Measured histograms of waiting times: small CSV files that lie beside the model. A row is

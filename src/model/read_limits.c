@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* `limits:`, which keep a slip in a model from filling the machine. */
 #include "model/read_run.h"
 

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Names first, so that an expression may read parameters that come later in the file; then what
  * reads what, which gives an order; then, in that order, units and values. What --set gives takes
  * an expression's place after the units of the file are known, so that a value must fit the unit

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #include "model/read_genes.h"
 
 /* Promoters: any number of states and any graph between them. A state is left at rates (`to`) or

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Steps are put in order of time, those of one time in the order of the file, and each time makes
  * one segment. What a step sets is worked out with the parameters before it. Parameters that are
  * expressions of others follow, unless they have been set themselves. A ramp is a row of steps. */

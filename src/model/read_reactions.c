@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #include "model/read_reactions.h"
 
 /* Plain reactions: what is used and needed at initiation, what is made, and what happens later. An

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* What the output names, and which of these names are recorded frame by frame. */
 #include "model/read_run.h"
 

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* `run:` as a whole: its keys, what the command line gives in their place, cells and seed. */
 #include "model/read_run.h"
 

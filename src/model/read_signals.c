@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* `signals:`: what an instrument sees. A signal is a weighted sum of counts and of molecules under
  * way, each of which shines by the share of its own dwell that it has spent (a ramp). All numbers
  * in it hold for the whole run. */

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* The times of a run. Frames stand at whole multiples of `every`, the last at `until`: that `until`
  * is such a multiple is checked to 1e-9 of it, since 0.1 and its like are no binary fractions, and
  * `every` is then taken to be exactly until / (number of frames - 1). */

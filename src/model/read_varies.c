@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* `varies: {gamma: {cv: 0.3}}` under a parameter: the law of the factor by which cells differ. A
  * law whose spread relative to its mean can be chosen takes `cv` alone; any law can be written as a
  * delay is, in whatever unit, and is then scaled to a mean of 1. */

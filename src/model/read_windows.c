@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* A window is a stretch of the record for which figures are made. The engine counts in spans, the
  * stretches between neighbouring bounds of windows, so that windows may overlap. Without `windows:`
  * there is one, `all`, or where protocol steps fall within the record `w1`, `w2`, ... between them;

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #include "model/builder.h"
 
 /* `settle: auto`: the time after which the means that can be worked out are as good as steady. The

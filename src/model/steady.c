@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #include "model/steady.h"
 
 /* The stationary law of a promoter. It is a semi-Markov process: from state i it goes to j with

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* UTF-8 by RFC 3629, section 4: the second byte's range depends on the first, all others are
  * 80..BF. */
 #include "model/utf8.h"

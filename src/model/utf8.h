@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #ifndef TARRY_MODEL_UTF8_H
 #define TARRY_MODEL_UTF8_H
 

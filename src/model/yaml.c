@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* libyaml's events come one after another, so the tree is built with a stack of open maps and lists
  * and no recursion; the stack has a fixed height, which is the limit of nesting. Entries of an open
  * collection are gathered in a heap array that its level keeps for the next one, and copied to the

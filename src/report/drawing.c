@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* All scripts go to one gnuplot, one after another. A picture counts once it is whole; what is not
  * is removed. Where a picture is wanted that is no SVG, a second script makes an SVG for the page;
  * both go again. */

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Which figures are made: for each gene that is shown all that has to do with it, then the signals,
  * then species of no gene. What is drawn and how stands in the files figure_*.c. */
 #include "report/figure.h"

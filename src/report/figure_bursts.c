@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Sizes of bursts, with the exact law where there is one, and how long periods last. */
 #include "report/figure_parts.h"
 

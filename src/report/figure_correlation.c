@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Autocorrelations, a panel for each name and a curve for each window, and cross-correlations of
  * signals. */
 #include "report/figure_parts.h"

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Distributions at the snapshots. Neighbouring bins are joined where there are more than can be
  * told apart; of what is joined the interval is Wilson's on the number of cells, since at one time
  * every cell speaks once. */

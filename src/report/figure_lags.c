@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* How long lags were, beside the law that was asked for, and how long the first response took. */
 #include "report/figure_parts.h"
 

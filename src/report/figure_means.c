@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Means over time with their bands: what a gene makes, signals, and what is on its way. */
 #include "report/figure_parts.h"
 

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* A few cells as they are: what is seen of a gene at once (its signals, or the first stage) a panel
  * for each cell, with its active periods; below what changes slowly, all cells in one panel. */
 #include "report/figure_parts.h"

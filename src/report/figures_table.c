@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #include "report/figures_table.h"
 
 #include "report/lines.h"

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* The page from top to bottom: what was run, warnings, contents, the parts. */
 #include "report/page.h"
 

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #include "report/html.h"
 #include "report/page_parts.h"
 

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Pictures, gene by gene, with captions and a text for those who cannot see them. */
 #include "report/html.h"
 #include "report/page_parts.h"

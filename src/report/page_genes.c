@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Sections of single genes and signals: sentences, then all figures with intervals. */
 #include "base/number.h"
 #include "report/html.h"

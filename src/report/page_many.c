@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Where genes are many: how figures spread over them, and a line for each. */
 #include "report/html.h"
 #include "report/page_parts.h"

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* What somebody else needs to get the same numbers: model, command, version. */
 #include "base/file.h"
 #include "base/number.h"

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* How the page looks, and the little script that sorts the table of many genes. */
 #include "base/file.h"
 #include "report/page_parts.h"

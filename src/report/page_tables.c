@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Counts at the snapshots, first responses, lags in transit. */
 #include "report/html.h"
 #include "report/page_parts.h"

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* A gene in sentences. They say only what figures are there for: a gene that never switched on has
  * no burst size, one that is always on no bursts, one cell no intervals. */
 #include "report/html.h"

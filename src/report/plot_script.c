@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* The two texts of a figure. Places on the page are shares of its width and height, so that one
  * script does for every kind of picture; the legend is set by hand, one entry for each name in any
  * panel. Of long curves so many rows are left out that no more

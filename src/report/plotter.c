@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* The one place in the library that starts another program: figures are gnuplot's work.
  *
  * The time it may take is counted in naps between two looks, since the library reads no clock: a

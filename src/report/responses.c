@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* The median is where the curve reaches one half, its bounds where the curve's bounds do
  * (Brookmeyer & Crowley 1982, Biometrics 38:29), each on the straight line through the bin in which
  * it happens. docs/statistics.md, "First responses". */

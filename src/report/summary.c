@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* The members are made and written one after another, each gene by itself, so that thousands of
  * genes need no more memory than their text. */
 #include "report/summary.h"

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* The table that a run prints: the figures of genes and of signals, counts at the snapshots, lags
  * in transit, notes. Above GENES_SHOWN genes their spread stands for them. */
 #include "tarry/write.h"

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* The files of a run, in their order: tables, figures, page, run.json, and summary.json last. */
 #include "tarry/write.h"
 

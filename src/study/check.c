@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* The report of `tarry check`: the expanded model as the engine sees it, what can be said of it
  * without simulating, what a run of it will take, and what looks wrong. */
 

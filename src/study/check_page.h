@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #ifndef TARRY_STUDY_CHECK_PAGE_H
 #define TARRY_STUDY_CHECK_PAGE_H
 

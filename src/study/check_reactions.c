@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Reactions, completions and delays as a reader would write them down. */
 
 #include "study/check_page.h"

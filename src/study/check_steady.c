@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Means when the record begins against the steady ones: a table, and warnings where they are far
  * apart. */
 

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Parameters that differ from cell to cell, and delays whose shape does. */
 
 #include "study/check_page.h"

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Means and spreads at frames and snapshots, pooled over windows, and laws at snapshots.
  *
  * Pooled over a window, each frame counts alike: the mean of means, and the mean of E[x^2] less the

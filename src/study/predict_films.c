@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Autocorrelations of signals and products, cross-correlations of signals, at the lags of a run. */
 
 #include "study/predict.h"

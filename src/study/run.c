@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Simulating: cells go out to threads, their records come back into tallies.
  *
  * Cells are handed out in increasing order. A finished record is added to its group (cell mod 64)

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #ifndef TARRY_TALLY_DWELLS_H
 #define TARRY_TALLY_DWELLS_H
 

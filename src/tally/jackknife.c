@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Intervals from delete-a-group replicates.
  *
  * The spread is taken about the figure from all groups, as Kott (2001) does, not about the mean of

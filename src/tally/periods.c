@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* From marks to periods.
  *
  * Marks of all tracks come in order of time. Each track keeps where its period under way began; a

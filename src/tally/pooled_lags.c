@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #include "tally/pooled_lags.h"
 
 #include <string.h>

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #include "tally/quantities.h"
 
 #include <stdio.h>

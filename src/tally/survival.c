@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #include "tally/survival.h"
 
 /* First bin of those that ended; those cut off follow. */

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* The set of all sums: groups made when their first cell comes, totals, replicates.
  *
  * A group keeps the sums of all kinds in one array, kind after kind, and the blocks of each kind.

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Autocorrelations of signals and products and cross-correlations of signals: autocorrelation.csv,
  * decay times in bursts.csv (products) and signals.csv.
  *

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* How many initiations a burst holds: burst_sizes.csv.
  *
  * Bursts that start in the window and have closed, alleles and cells pooled, in the bins of counts

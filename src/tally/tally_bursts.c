@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Burst figures of each gene and window: bursts.csv.
  *
  * The alleles of a gene are pooled, and so are cells. A period, and an interval from one opening to

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Distributions of recorded names at each snapshot and pooled over each window: distribution.csv.
  *
  * Species are counted into the bins of tally/bins.h, kept in blocks since few of them are ever in

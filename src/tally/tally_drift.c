@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Drift: does a product's mean move within a window? It only warns.
  *
  * Each cell gives the difference between its means over the frames of the second and of the first

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* How long active and inactive periods last: dwells.csv, survival curves (tally/survival.h).
  *
  * Periods that start in the window count. Rows stand at the ends of bins in which some period

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* First responses: first.csv, for each step of the protocol the chance that nothing has come yet
  * (tally/survival.h).
  *

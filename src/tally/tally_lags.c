@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* How long the lags were that were drawn: lags.csv, one row for each delayed step and bin that any
  * fell into, with the share that the law asked for gives the bin.
  *

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Moments over time: means.csv.
  *
  * A slot is one channel at one time; every cell gives it one value. The first cell of a group fixes

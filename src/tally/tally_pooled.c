@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Moments pooled over the frames of a window and over cells: P_mean, P_fano and P_cv2 of each
  * product P of a gene in bursts.csv; signal_mean, signal_sd and signal_cv2 in signals.csv.
  *

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Molecules under way: transit.csv, one row for each delayed step and window.
  *
  * The sums are those of the record (engine/record.h), added over cells; a window's are those of its

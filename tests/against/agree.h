@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #ifndef TARRY_TEST_AGREE_H
 #define TARRY_TEST_AGREE_H
 

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* The table of docs/statistics.md: how often each 95 % interval holds, in nine models.
  *
  *   slow_coverage [REPEATS]    default 1,000

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Signals of one allele: each is that of a gene with one copy, and they know nothing of each other.
  *
  * open 0.1, shut 0.3, initiates 2 per min, dwell 4 min: mean 2, variance 9.51777986, correlations

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Reversible binding of 10 + 10 molecules: the exact law of the number of pairs.
  *
  * By detailed balance P(m) is proportional to K^m / (m! ((10 - m)!)^2) (common practice); with K =

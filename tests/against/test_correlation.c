@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Autocorrelations of what a microscope sees, against Campbell's theorem (common practice; for
  * these signals Larson et al. 2011, Science 332:475; Coulon & Larson 2016, Methods Enzymol.
  * 572:159): with Poisson initiation at rate r and a kernel k, C(tau) = r * integral of k(u) k(u +

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* The estimator of autocorrelation.csv against a general-purpose statistics library: R's package
  * stats, version 4.2.2 (Debian r-base-core 4.2.2.20221110-2), run once; its numbers are recorded
  * here.

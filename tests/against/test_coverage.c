@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* 95 % intervals hold in about 95 % of 50 repeats of two small runs; `make coverage` does it at
  * length. Binomial statistics of 50 repeats: the sd of one share is 3.1 %, five of them make 80 %.
  */

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Delayed degradation in its two readings: molecules that are gone at once when their removal
  * begins (consuming), and molecules that stay until it ends (non-consuming), which differ by a
  * factor in the variance (Bratsun et al. 2005, PNAS 102:14593; Barrio et al. 2006, PLoS Comput.

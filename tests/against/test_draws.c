@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* What is drawn against GSL (2.7): lags by Kolmogorov and Smirnov's statistic, mean and sd; tables
  * of quantiles against gsl_cdf_*inv in both tails; random numbers of molecules by chi-square.
  *

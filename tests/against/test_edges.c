@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Right at the edges: where records, counts, rates and windows are as small or as large as they
  * come. Exact laws are those of Poisson processes and Markov chains (common practice). */
 

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Exact laws of counts against closed forms and against the master equation by other means.
  *
  * Every probability above 1e-12 must agree to a relative 1e-6. */

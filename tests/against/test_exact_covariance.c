@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Exact covariances of counts and signals, and bursts, against closed forms. */
 
 #include "support.h"

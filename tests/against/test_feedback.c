@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Delayed negative feedback: a protein that shuts its own gene off after a lag.
  *
  * Oscillation: Lewis 2003, Curr. Biol. 13:1398, whose abstract predicts a period close to the

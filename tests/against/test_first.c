@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* First responses against the chance that nothing has come yet. A gene's initiations are a
  * Markovian arrival process (D0 between them, D1 at them); if one that is a old has not given rise
  * to what is waited for with the chance g(a), each on its own, then none of those since the step

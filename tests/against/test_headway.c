@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Transcripts that do not overtake each other on their allele, and keep a headway.
  *
  * With a fixed dwell D and Poisson initiation at rate k, completion i = max(start + D, completion

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Ways of initiating and of translating that are no plain rates, against the truncated master
  * equation, the renewal law of the queue GI/M/infinity, and the cumulants of a Poisson cluster. */
 

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* What must not matter in law: the unit of time, the order of genes, a fixed lag once all is
  * settled, the frames. Each variant must follow the exact law by itself (kummer.h). */
 

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Production with a lag: what is on its way and what has arrived, for every kind of delay.
  *
  * Law: an infinite-server queue fed by a Poisson process (common practice; see Josic et al. 2011,

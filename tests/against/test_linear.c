@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Birth, death, immigration and dimerisation: mean and sd over time.
  *
  * Source of models and acceptance rule: Evans, Gillespie & Wilkinson 2008, Bioinformatics 24:285,

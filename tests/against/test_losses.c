@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Stages that lose molecules on the way, fed by a Poisson process: each molecule's fate is
  * independent of the others', so that what is in the stage, what came out and what was lost are
  * Poisson (common practice: marks on a Poisson process; Kingman 1993, Poisson Processes). Means are

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Read-out noise with a part that goes with the signal, on counts whose law is known.
  *
  * Transcripts that come at a rate and decay one by one, from none on, are Poisson at every time

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Molecules that do not overtake each other, against the laws of two queues. */
 
 #include "master.h"

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Two routes to one number: what a simulation finds and what is worked out must agree, for models
  * of different structure. */
 

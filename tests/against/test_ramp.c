@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* A ramp of the protocol: molecules that are born and die at rates which both go up in steps. The
  * count begins at 0 and so is Poisson at every time (Bartlett 1949, J. R. Stat. Soc. B 11:211, from
  * memory); its mean obeys m' = k(t) - g(t) m, integrated here from stretch to stretch by GSL's

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Short records: figures without bias although few periods end within them, and intervals that
  * hold.
  *

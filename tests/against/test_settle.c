@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* `settle: auto`: the time after which each mean is within 0.1 % of its steady value, against the
  * closed forms of the means of linear systems started without molecules, whose roots GSL finds. */
 

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* A promoter of three states of which two are active at different rates: sizes and dwells by the
  * matrix laws of a Markov chain (common practice: phase-type laws), worked out with GSL's linear
  * algebra.

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* The two-state gene: transcripts by the Kummer-function law (Peccoud & Ycart 1995, Theor. Popul.
  * Biol. 48:222), its burst limit, and what its bursts look like (common practice: competing
  * exponential times make sizes geometric from 0). */

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Parameters that differ from cell to cell, against mixtures over their laws. */
 
 #include "sample.h"

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* The figures of each window equal those of a run that has only that regime: once a step is long
  * past, nothing tells the two apart. Dwells that begin in a window may go on past the next step, so
  * the windows end long before it. */

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* How long a firing or a completion takes: the engine bare and with the default tallies, beside
  * loops written by hand for the same model, all in one run and one thread, turn about, so that a
  * machine whose speed drifts treats all alike. Medians of the rounds are printed.

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #ifndef TARRY_BENCH_HAND_LOOP_H
 #define TARRY_BENCH_HAND_LOOP_H
 

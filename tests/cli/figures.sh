@@ -1,4 +1,5 @@
 #!/bin/sh
+# SPDX-License-Identifier: GPL-3.0-or-later
 # shellcheck disable=SC2317 # cases are functions, called by name
 # Figures: kinds, what is written beside them, quoting, and a gnuplot that does not do as it should.
 # shellcheck source=tests/cli/helpers.sh

@@ -1,4 +1,5 @@
 #!/bin/sh
+# SPDX-License-Identifier: GPL-3.0-or-later
 # shellcheck disable=SC2317 # cases are functions, called by name
 # A disk that fills up, at whatever place: a small file system in memory where that can be mounted (as
 # root; in a name space of mounts, which goes with its shell), and a limit on the size of files.

@@ -1,3 +1,4 @@
+# SPDX-License-Identifier: GPL-3.0-or-later
 # shellcheck shell=sh
 # For the scripts of this folder, which source it: cases that print `ok NAME` or `not ok NAME`.
 #

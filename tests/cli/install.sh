@@ -1,4 +1,5 @@
 #!/bin/sh
+# SPDX-License-Identifier: GPL-3.0-or-later
 # shellcheck disable=SC2317 # cases are functions, called by name
 # make install: the program, the library both ways, and nothing exported but what is promised. The build folder
 # is that of the program under test. (Not under sanitizers, which want a program that is built as they are.)

@@ -1,4 +1,5 @@
 #!/bin/sh
+# SPDX-License-Identifier: GPL-3.0-or-later
 # shellcheck disable=SC2317 # cases are functions, called by name
 # Being interrupted: what is finished is saved and equals a run of just those cells.
 # shellcheck source=tests/cli/helpers.sh

@@ -1,4 +1,5 @@
 #!/bin/sh
+# SPDX-License-Identifier: GPL-3.0-or-later
 # shellcheck disable=SC2317 # cases are functions, called by name
 # Like genes give the files of the same genes written out, and many of them stay small on the page.
 # shellcheck source=tests/cli/helpers.sh

@@ -1,4 +1,5 @@
 #!/bin/sh
+# SPDX-License-Identifier: GPL-3.0-or-later
 # shellcheck disable=SC2317 # cases are functions, called by name
 # report.html: sound markup that fetches nothing, the command it tells, and how a browser shows it, on
 # a narrow and a wide screen, light and dark.

@@ -1,3 +1,4 @@
+// SPDX-License-Identifier: GPL-3.0-or-later
 /* Added to copies of report.html (page.sh): tells what is wrong with the page as it is shown. `page` is
  * its name. */
 addEventListener("load", function () {

@@ -1,4 +1,5 @@
 #!/bin/sh
+# SPDX-License-Identifier: GPL-3.0-or-later
 # shellcheck disable=SC2317 # cases are functions, called by name
 # tarry predict: the files and the table of a run, without one.
 # shellcheck source=tests/cli/helpers.sh

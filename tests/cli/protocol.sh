@@ -1,4 +1,5 @@
 #!/bin/sh
+# SPDX-License-Identifier: GPL-3.0-or-later
 # shellcheck disable=SC2317 # cases are functions, called by name
 # Repeats of the protocol give the files of their steps written out, and a ramp those of its steps but
 # for first responses: a ramp is one step to respond to.

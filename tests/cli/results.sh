@@ -1,4 +1,5 @@
 #!/bin/sh
+# SPDX-License-Identifier: GPL-3.0-or-later
 # shellcheck disable=SC2317 # cases are functions, called by name
 # What a run leaves: streams, files, overwriting, full disks and closed pipes.
 # shellcheck source=tests/cli/helpers.sh

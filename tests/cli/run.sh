@@ -1,4 +1,5 @@
 #!/bin/sh
+# SPDX-License-Identifier: GPL-3.0-or-later
 # Try the program on every case of this folder, and run its scripts.
 #
 #   sh tests/cli/run.sh [NAME...]    NAME.case or NAME.sh; default: all of them

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* What libFuzzer calls. FUZZ_TARGET is one of the functions of fuzz.h, by the Makefile. */
 
 #include "fuzz.h"

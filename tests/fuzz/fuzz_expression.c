@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Expressions: a fault has a column within the text; what compiles gives the same value as its
  * folded copy, and reads only what it says it reads. */
 

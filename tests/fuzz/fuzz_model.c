@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Models: whatever is read, an answer with words and a place, or a network whose parts fit together
  * and that can be checked. */
 

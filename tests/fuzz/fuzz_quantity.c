@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Quantities and units: what is read is a finite number that comes back the same from its digits.
  */
 

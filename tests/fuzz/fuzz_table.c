@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Files of measured lags, read for a model: an answer with words and a line, or shares that add up
  * to 1 on values that ascend. */
 

@@ -1,4 +1,5 @@
 #!/bin/sh
+# SPDX-License-Identifier: GPL-3.0-or-later
 # Let libFuzzer look for inputs that break a reader.
 #
 #   sh tests/fuzz/run.sh BUILD SECONDS TARGET...

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* A short tour of libtarry, with nothing but its public headers: read a model, simulate it, and
  * print a figure from the tables of results. Built and run with the tests, and against an installed
  * copy. */

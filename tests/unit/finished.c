@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* SHA-256 by nettle as in the library, but file by file from the disk. */
 #include "finished.h"
 

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #ifndef TARRY_TESTS_OWN_MEMORY_H
 #define TARRY_TESTS_OWN_MEMORY_H
 

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #include "plain_loop.h"
 
 #include "base/error.h"

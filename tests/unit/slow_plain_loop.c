@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* The engine against the plain loop on more random models than test_plain_loop has time for. */
 #include "random_cells.h"
 #include "support.h"

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* What can be said of a model without simulating it.
  *
  * Conserved sums are worked out by hand (each case says how). Means at a time after the start are

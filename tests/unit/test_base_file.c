@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Files: what is read and written, and what is left when a call fails. SHA-256 against the examples
  * that NIST gives for FIPS 180-4. */
 #include "base/file.h"

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Against GSL's own functions (which are all right while there is memory) and closed forms. */
 #include "base/matrix.h"
 

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Heap memory and arenas. */
 #include "base/memory.h"
 #include "faults.h"

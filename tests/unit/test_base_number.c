@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Numbers as text, against IEEE 754 arithmetic worked out by hand, the C library's strtod and
  * printf, and under a locale with a decimal comma. */
 #include "base/number.h"

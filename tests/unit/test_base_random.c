@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* The random streams and the logarithm against plain versions written from the publications, the C
  * library and the laws of uniform numbers. */
 #include "base/logarithm.h"

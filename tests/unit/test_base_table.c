@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Tables and their CSV, whose quoting is that of RFC 4180, section 2. */
 #include "base/table.h"
 #include "faults.h"

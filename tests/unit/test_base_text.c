@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Errors, growing texts, nearest words and notes. */
 #include "base/error.h"
 #include "base/notes.h"

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 #define _GNU_SOURCE /* sched_getaffinity */
 
 #include "base/threads.h"

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Drawing lags: formulas by hand, how many numbers a draw takes, sharing, failures. The laws of
  * what is drawn are looked at in tests/against/test_draws.c. */
 #include "engine/draw.h"

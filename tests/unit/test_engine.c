@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* The engine's rules that can be told from outside: what stops a cell and how it is said, what is
  * dropped, counted, cancelled, and what does not change when something else is recorded. */
 

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Values are compared with C's own arithmetic and libm, written out beside each expression; the
  * formulas of hill and repress are those of design.md (x^n/(K^n + x^n) and 1 less that). */
 #include "base/text.h"

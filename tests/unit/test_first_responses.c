@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Which steps begin a first response, what is waited for, and that the engine tells it: by hand. */
 #include "engine/cell.h"
 #include "model/model.h"

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* The corpora of tests/fuzz, and inputs that once broke a reader: each is fed to its reader again.
  * To be run in the folder that holds tests. */
 

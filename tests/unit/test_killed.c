@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Runs that end before their time: killed where they stand, or asked to stop. Moments are drawn
  * over the time that a whole run takes, half of them while it writes its files. */
 

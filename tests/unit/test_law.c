@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Laws of waiting times against GSL's laws, quadrature by GSL and closed forms.
  *
  * GSL (2.7) is the outside source: gsl_cdf_* and gsl_ran_*_pdf for the families it has, QUADPACK's

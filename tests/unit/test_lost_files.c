@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Files that cannot be opened, read, written, flushed, closed or put in their place: each such call
  * of a whole `tarry run` fails once, in a new folder and over the results of an earlier run. */
 

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Memory that runs out, anywhere: each allocation of reading, checking, running and writing a model
  * fails once, alone and then with all that follow, those made inside libyaml, jansson, GSL and the
  * C library among them (own_memory.h says how). */

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Whole models, read as a user's: the head of the file, values at a step of the protocol, files
  * beside the model, many genes, and memory that runs out. Rules: design.md, section 3. */
 #include "base/text.h"

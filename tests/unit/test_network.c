@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Small models against their networks, worked out by hand from design.md, section 3, and the
  * contract in model/network.h. The starts are compared with stationary laws: closed forms, cycles
  * and chains solved by hand, and one general case by GSL's singular values. */

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* report.html from results that were put together here. Expected sentences and numbers are worked
  * out by hand; markup is escaped as the HTML Living Standard has it (13.1.2, 13.1.4) and so that
  * XML 1.0 (2.2, 2.4) takes it too. How a browser shows the page: tests/cli/page.sh. */

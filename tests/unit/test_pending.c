@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Pending completions against an array that is searched from end to end. */
 
 #include "base/random.h"

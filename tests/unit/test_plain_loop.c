@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* The engine against the plain loop of plain_loop.c, byte by byte over whole records: on the
  * example models, on models made at random and on those that showed a fault once (tests/unit/kept).
  * To be run in the folder that holds models and tests. */

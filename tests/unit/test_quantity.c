@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Units: sizes are those of the SI and of the calendar (BIPM, The International System of Units,
  * 9th edition, table 8: min, h, d), 1 kb = 1000 bp by common practice. */
 #include "model/quantity.h"

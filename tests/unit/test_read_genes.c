@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* What is refused in genes and delays, with the place and the words that help; the rules are those
  * of design.md, section 3. */
 #include "network_text.h"

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* `parameters:` and --set. Values are worked out by hand; units of time are those of the SI
  * brochure (BIPM, 9th edition, table 8). */
 #include "base/text.h"

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* `protocol:`. What is right follows from design.md (section 3, Protocol); values by hand. */
 #include "reading.h"
 #include "support.h"

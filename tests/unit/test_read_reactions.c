@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* What is refused and noted in species, reactions and bursts, and files of lags; the rules are
  * those of design.md, section 3. */
 #include "network_text.h"

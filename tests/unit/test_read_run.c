@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* `run:` and `limits:`. What is right follows from design.md (section 3, Run); times and frames are
  * worked out by hand. */
 #include "base/text.h"

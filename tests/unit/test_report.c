@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Results -> files and text. Files are read back by what is not ours: jansson's parser, sha256sum
  * of the system, strtod of the C library. Expected texts are written out by hand. */
 #include "base/file.h"

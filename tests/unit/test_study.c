@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Running cells on many threads, and the report of `tarry check`.
  *
  * That every number of threads gives the same bytes is the promise of include/tarry/run.h. What a

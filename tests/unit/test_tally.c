@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* The generic part of the estimators: jackknife, shares, bins, blocks, sets. Expected values are
  * worked out from GSL's statistics, quantiles and histograms, or written out in full; those of
  * Wilson's interval are printed in Newcombe (1998), Stat. Med. 17:857, table I, method 3 (from

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Autocorrelations against sums written out, against GSL's general transform, against exact
  * expectations, and against the autocorrelation of shot noise. */
 

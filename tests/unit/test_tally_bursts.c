@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Burst figures and sizes of marks written by hand, worked out by hand beside them; then those of a
  * two-state promoter, whose figures are known. */
 

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Distributions against counts by hand and GSL's histograms, lags and drift against GSL's
  * statistics and Student's law. */
 #include "base/table.h"

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Dwell curves against the product limit of times as they are, and against a published one. */
 
 #include "base/random.h"

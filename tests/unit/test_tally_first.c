@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* First responses of records written by hand: shares counted by hand, the interval of a share where
  * none or all respond by Wilson (1927, J. Am. Stat. Assoc. 22:209). */
 #include "hand.h"

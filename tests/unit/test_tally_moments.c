@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Moments over time and pooled over windows, against GSL's statistics of the same values. */
 #include "base/table.h"
 #include "hand.h"

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* Reading `varies`, and the network of one cell. Values by hand. */
 
 #include "support.h"

@@ -1,3 +1,5 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+
 /* The tree of a model file: what is read, every refusal with its place, and sizes. What is right is
  * YAML 1.1 (yaml.org/spec/1.1) where the text is accepted, and design.md's list of refusals. Places
  * are counted by hand. */
