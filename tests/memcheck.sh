@@ -36,6 +36,17 @@ fi
 work=$(mktemp -d "${TMPDIR:-/tmp}/tarry-memcheck-XXXXXX") || exit 1
 trap 'rm -rf "$work"' EXIT
 export CK_FORK=no CK_RUN_CASE="memory faults"
+cat >"$work/small.yaml" <<'END'
+tarry: 1
+time: min
+genes:
+  vela:
+    start: steady
+    promoter: {shut: {lasts: {erlang: {steps: 2, mean: 1}}, then: {open: 1}}, open: {to: {shut: 1}, initiates: 1}}
+    transcript: {stages: {nascent: 0.5}, half_life: 0.2}
+signals: {spot: {of: vela.nascent, ramp: {from: 0, to: 1}}}
+run: {settle: 15, until: 1, every: 1, lags: 1, cells: 1}
+END
 {
     echo "failing-allocations $BUILD/tests/unit/test_study"
     for model in models/*.yaml; do
@@ -43,6 +54,7 @@ export CK_FORK=no CK_RUN_CASE="memory faults"
         echo "$name $BUILD/tarry run $model --cells 2 --keep 1 --threads 2 --quiet --out $work/$name"
     done
     echo "check $BUILD/tarry check models/two_state.yaml"
+    echo "predict $BUILD/tarry predict $work/small.yaml --quiet --out $work/predicted"
 } | xargs -P "$JOBS" -L 1 sh "$0" one "$work"
 cat "$work"/*.found 2>/dev/null && exit 1
 echo "memcheck: nothing found in $(find "$work" -name '*.log' | wc -l) programs"
