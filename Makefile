@@ -204,19 +204,30 @@ $(BUILD)/tarry.pc: FORCE
 
 install: all shared $(BUILD)/tarry.pc
 	$(INSTALL) -d $(DESTDIR)$(PREFIX)/bin $(DESTDIR)$(LIBDIR)/pkgconfig $(DESTDIR)$(PREFIX)/include/tarry \
-	  $(DESTDIR)$(PREFIX)/share/doc/tarry $(DESTDIR)$(PREFIX)/share/tarry/models
+	  $(DESTDIR)$(PREFIX)/share/doc/tarry $(DESTDIR)$(PREFIX)/share/tarry/models \
+	  $(DESTDIR)$(PREFIX)/share/man/man1 $(DESTDIR)$(PREFIX)/share/bash-completion/completions \
+	  $(DESTDIR)$(PREFIX)/share/zsh/site-functions
 	$(INSTALL) -m 755 $(BUILD)/tarry $(DESTDIR)$(PREFIX)/bin/tarry
 	$(INSTALL) -m 644 $(BUILD)/libtarry.a $(DESTDIR)$(LIBDIR)/libtarry.a
 	$(INSTALL) -m 755 $(BUILD)/$(SONAME) $(DESTDIR)$(LIBDIR)/$(SONAME)
 	ln -sf $(SONAME) $(DESTDIR)$(LIBDIR)/libtarry.so
 	$(INSTALL) -m 644 $(BUILD)/tarry.pc $(DESTDIR)$(LIBDIR)/pkgconfig/tarry.pc
 	$(INSTALL) -m 644 include/tarry/*.h $(DESTDIR)$(PREFIX)/include/tarry
-	$(INSTALL) -m 644 $(wildcard *.md docs/*.*) $(DESTDIR)$(PREFIX)/share/doc/tarry
+	$(BUILD)/tarry help --as man > $(BUILD)/tarry.1
+	$(BUILD)/tarry help --as bash > $(BUILD)/completion.bash
+	$(BUILD)/tarry help --as zsh > $(BUILD)/completion.zsh
+	$(INSTALL) -m 644 $(BUILD)/tarry.1 $(DESTDIR)$(PREFIX)/share/man/man1/tarry.1
+	$(INSTALL) -m 644 $(BUILD)/completion.bash $(DESTDIR)$(PREFIX)/share/bash-completion/completions/tarry
+	$(INSTALL) -m 644 $(BUILD)/completion.zsh $(DESTDIR)$(PREFIX)/share/zsh/site-functions/_tarry
+	$(INSTALL) -m 644 $(wildcard *.md docs/*) $(DESTDIR)$(PREFIX)/share/doc/tarry
 	$(INSTALL) -m 644 $(wildcard models/*.*) $(DESTDIR)$(PREFIX)/share/tarry/models
 
 uninstall:
 	rm -f $(DESTDIR)$(PREFIX)/bin/tarry $(DESTDIR)$(LIBDIR)/libtarry.a $(DESTDIR)$(LIBDIR)/libtarry.so \
-	  $(DESTDIR)$(LIBDIR)/$(SONAME) $(DESTDIR)$(LIBDIR)/pkgconfig/tarry.pc
+	  $(DESTDIR)$(LIBDIR)/$(SONAME) $(DESTDIR)$(LIBDIR)/pkgconfig/tarry.pc \
+	  $(DESTDIR)$(PREFIX)/share/man/man1/tarry.1 \
+	  $(DESTDIR)$(PREFIX)/share/bash-completion/completions/tarry \
+	  $(DESTDIR)$(PREFIX)/share/zsh/site-functions/_tarry
 	rm -rf $(DESTDIR)$(PREFIX)/include/tarry $(DESTDIR)$(PREFIX)/share/doc/tarry $(DESTDIR)$(PREFIX)/share/tarry
 
 clean:

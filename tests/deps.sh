@@ -103,6 +103,7 @@ int main(void) { return suite_create("") == NULL; }
 END
     need_program libc-bin localedef
     need_program libxml2-utils xmllint
+    need_program groff-base groff
     need_one_of chromium chromium chromium-browser google-chrome google-chrome-stable
     version=$("$CC" -dumpversion 2>/dev/null | cut -d. -f1)
     case $CC in

@@ -3,12 +3,13 @@
 /* tarry help: from the tables of commands and options. */
 
 #include "cli/commands.h"
+#include "cli/manual.h"
 #include "cli/talk.h"
 #include "tarry/tarry.h"
 
 #include <stdio.h>
 
-static const char preface[] =
+const char tarry_help_preface[] =
     "tarry simulates gene expression one molecule and one cell at a time, with the\n"
     "lags of transcription and translation, and gives burst statistics, distributions\n"
     "and autocorrelations with error bars.\n\n";
@@ -20,7 +21,7 @@ static const char ending[] =
     "For research; not for clinical decisions.\n";
 
 static void help_on_all(void) {
-    fputs(preface, stdout);
+    fputs(tarry_help_preface, stdout);
     for (size_t i = 0; i < tarry_n_commands; i++) {
         const tarry_command *command = &tarry_commands[i];
         char left[40];
@@ -55,6 +56,8 @@ int tarry_command_help_on(const tarry_command *command) {
 
 int tarry_command_help(const tarry_settings *settings) {
     const tarry_command *command = NULL;
+    if (settings->as)
+        return tarry_manual_write(settings->as);
     if (settings->operand && !(command = tarry_command_find(settings->operand)))
         return tarry_command_unknown(settings->operand);
     return tarry_command_help_on(command);

@@ -38,7 +38,7 @@ const tarry_command tarry_commands[] = {
     {"compare", "MODEL", TARRY_FOR_ALL, "which of several models the data favour", NULL, NULL},
     {"plan", "MODEL", TARRY_FOR_ALL, "which experiment would tell most", NULL, NULL},
     {"sweep", "MODEL", TARRY_FOR_ALL, "which parameter matters for what", NULL, NULL},
-    {"help", "[COMMAND]", TARRY_FOR_ALL, "this text, or help on one command", NULL,
+    {"help", "[COMMAND]", TARRY_FOR_HELP, "this text, or help on one command", NULL,
      tarry_command_help},
     {"version", NULL, TARRY_FOR_VERSION, "the version of the program", NULL, tarry_command_version},
 };

@@ -21,6 +21,9 @@ typedef struct tarry_command {
 extern const tarry_command tarry_commands[];
 extern const size_t tarry_n_commands;
 
+/* What the program is, in a paragraph. */
+extern const char tarry_help_preface[];
+
 /* By name, or NULL. */
 const tarry_command *tarry_command_find(const char *name);
 

@@ -66,6 +66,8 @@ static const option_row options[] = {
      "genes that figures show; default: the first 6"},
     {"quiet", NULL, VALUE_NONE, WRITING_COMMANDS, FIELD(quiet), 0, 0,
      "no progress and no remarks on standard error"},
+    {"as", "KIND", VALUE_TEXT, TARRY_FOR_HELP, FIELD(as), 0, 0,
+     "as a manual page (man) or completion (bash, zsh)"},
     {"build", NULL, VALUE_NONE, TARRY_FOR_VERSION, FIELD(build), 0, 0,
      "also how the program was built"},
     {"help", NULL, VALUE_NONE, TARRY_FOR_ALL, FIELD(help), 0, 0, "this text"},
@@ -250,19 +252,36 @@ void tarry_options_release(tarry_settings *settings) {
     memset(settings, 0, sizeof *settings);
 }
 
-void tarry_options_help(tarry_command_bit command, FILE *stream) {
+/* What help says of an option, its range included. */
+static void tell(const option_row *option, char *out, size_t size) {
+    if (option->most == MOST_SEED)
+        snprintf(out, size, "%s (0 to 2^63-1)", option->help);
+    else if (option->most)
+        snprintf(out, size, "%s (%lld to %lld)", option->help, option->least, option->most);
+    else
+        snprintf(out, size, "%s", option->help);
+}
+
+void tarry_options_each(tarry_command_bit command,
+                        void (*visit)(const tarry_option_words *option, void *context),
+                        void *context) {
     for (size_t i = 0; i < N_OPTIONS; i++) {
-        const option_row *option = &options[i];
-        char left[40];
-        if (!(option->commands & command))
+        char help[160];
+        if (!(options[i].commands & command))
             continue;
-        snprintf(left, sizeof left, "--%s%s%s", option->word, option->value ? " " : "",
-                 option->value ? option->value : "");
-        fprintf(stream, "  %-19s  %s", left, option->help);
-        if (option->most == MOST_SEED)
-            fprintf(stream, " (0 to 2^63-1)");
-        else if (option->most)
-            fprintf(stream, " (%lld to %lld)", option->least, option->most);
-        fputc('\n', stream);
+        tell(&options[i], help, sizeof help);
+        const tarry_option_words words = {options[i].word, options[i].value, help};
+        visit(&words, context);
     }
+}
+
+static void write_line(const tarry_option_words *option, void *context) {
+    char left[40];
+    snprintf(left, sizeof left, "--%s%s%s", option->word, option->value ? " " : "",
+             option->value ? option->value : "");
+    fprintf(context, "  %-19s  %s\n", left, option->help);
+}
+
+void tarry_options_help(tarry_command_bit command, FILE *stream) {
+    tarry_options_each(command, write_line, stream);
 }

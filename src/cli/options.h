@@ -16,6 +16,7 @@ typedef enum tarry_command_bit {
     TARRY_FOR_CHECK = 2,
     TARRY_FOR_VERSION = 4,
     TARRY_FOR_PREDICT = 8,
+    TARRY_FOR_HELP = 16,
     TARRY_FOR_ALL = ~0,
 } tarry_command_bit;
 
@@ -24,6 +25,7 @@ typedef struct tarry_settings {
     const char *out;
     const char *sampler;
     const char *figures; /* kind, or NULL */
+    const char *as;      /* man, bash, zsh */
     const char *genes;   /* names with commas between them, or NULL */
     long long threads;   /* 0: all cores */
     long long keep;
@@ -45,5 +47,16 @@ void tarry_options_release(tarry_settings *settings);
 
 /* One line or more for each option of a command. */
 void tarry_options_help(tarry_command_bit command, FILE *stream);
+
+/* Each option of a command, as in help. `value` is NULL for a flag. */
+typedef struct tarry_option_words {
+    const char *word; /* without the dashes */
+    const char *value;
+    const char *help; /* with the range of a number; lasts for the call */
+} tarry_option_words;
+
+void tarry_options_each(tarry_command_bit command,
+                        void (*visit)(const tarry_option_words *option, void *context),
+                        void *context);
 
 #endif
