@@ -43,6 +43,23 @@ growing_disk() {
     [ "$status" = 0 ] && [ "$n_full" -ge 8 ] && sound disk/run
 }
 
+# With figures, of which a part may fit, and a page that is larger than all the rest.
+disk_with_figures() {
+    gene_model >gene.yaml
+    mkdir drawn && mount -t tmpfs -o size=4k tmpfs drawn || return 1
+    n_full=0
+    for pages in 16 64 100 120 140 160 240 2000; do
+        mount -o "remount,size=$((4 * pages))k" drawn || return 1
+        "$TARRY" run gene.yaml --quiet --out drawn/run >out 2>err
+        status=$?
+        [ "$status" != 0 ] || break
+        refused "No space left on device" drawn/run || return 1
+        n_full=$((n_full + 1))
+    done
+    echo "    disks that were too small: $n_full"
+    [ "$status" = 0 ] && [ "$n_full" -ge 4 ] && sound drawn/run
+}
+
 # What cannot be begun changes nothing.
 earlier_results_stay() {
     cat /dev/zero >disk/zeroes 2>/dev/null
@@ -77,10 +94,11 @@ limited_files() {
 }
 
 if [ "${1:-}" = mounting ]; then
-    trap 'cd / && umount "$work/disk" "$work/few"; rm -rf "$work"' EXIT
+    trap 'cd / && umount "$work/disk" "$work/few" "$work/drawn"; rm -rf "$work"' EXIT
     ok "a disk that fills up leaves nothing half-made" growing_disk
     ok "a disk that is full keeps earlier results" earlier_results_stay
     ok "a disk that takes no more files" no_more_files
+    ok "a disk that fills up while figures are drawn" disk_with_figures
     finish
 fi
 
