@@ -7,12 +7,16 @@
 #include <stdio.h>
 #include <string.h>
 
-enum { ERROR_TEXT = 2048 };
+enum { ERROR_TEXT = 2048, LINE_TEXT = 4096 };
 
+/* One line: what is quoted from a file may hold characters that would move a terminal's cursor. */
 static void talk(const char *format, va_list arguments) {
-    fputs("tarry: ", stderr);
-    vfprintf(stderr, format, arguments);
-    fputc('\n', stderr);
+    char line[LINE_TEXT];
+    vsnprintf(line, sizeof line, format, arguments);
+    for (char *at = line; *at != '\0'; at++)
+        if ((unsigned char)*at < ' ' || *at == 127)
+            *at = '?';
+    fprintf(stderr, "tarry: %s\n", line);
 }
 
 void tarry_talk(const char *format, ...) {

@@ -21,6 +21,7 @@
 #include <stdbool.h>
 #include <stdio.h>
 #include <string.h>
+#include <strings.h>
 
 enum { LONGEST_SHOWN = 60, HIGHEST_EXPONENT = 100, MANY = 1000000 };
 
@@ -251,6 +252,18 @@ static int fail_by_scope(compiler *in, tarry_token name) {
     return in->scope->fail(in->scope->context, word, place_at(in, name.at), in->error);
 }
 
+/* Words in which programs write what is no number, with a sign or not; YAML has a point before
+ * them. */
+static bool is_no_number(const char *text, size_t n) {
+    static const char *const words[] = {"nan", "inf", "infinity"};
+    size_t from = n > 0 && (text[0] == '-' || text[0] == '+');
+    from += from < n && text[from] == '.';
+    for (size_t i = 0; i < sizeof words / sizeof *words; i++)
+        if (strlen(words[i]) == n - from && strncasecmp(text + from, words[i], n - from) == 0)
+            return true;
+    return false;
+}
+
 static int fail_name(compiler *in, tarry_token name, tarry_token before) {
     const char *word = in->text + name.at;
     const function *call = find_function(in, name);
@@ -265,6 +278,8 @@ static int fail_name(compiler *in, tarry_token name, tarry_token before) {
     if (known != 0)
         return known;
     const char *near = nearest(in, name);
+    if (is_no_number(word, name.n))
+        return fail_at(in, name.at, "a finite number is due here, not '%.*s'", shown(name.n), word);
     if (near != NULL)
         return fail_at(in, name.at, "there is no '%.*s' here; did you mean '%s'?", shown(name.n),
                        word, near);
@@ -426,6 +441,8 @@ static int read_group(compiler *in, unit_type *type) {
 
 static int fail_no_value(compiler *in) {
     tarry_token found = in->token, before = in->previous;
+    if (is_no_number(in->text, strlen(in->text)))
+        return fail_at(in, 0, "a finite number is due here, not '%s'", in->text);
     if (found.kind == TARRY_TOKEN_END && before.n > 0)
         return fail_at(in, before.at, "a value is missing after '%.*s'", shown(before.n),
                        in->text + before.at);

@@ -64,7 +64,13 @@ try() {
         return 1
     fi
     inventory >"$work/before"
-    (cd "$work/files" && eval "\"\$TARRY\" $command") >"$work/out" 2>"$work/err" </dev/null
+    # What is refused is refused in less than a second and with little memory. (Sanitizers take more of both. -t
+    # and -v are no part of the standard, but of every shell that is /bin/sh somewhere.)
+    # shellcheck disable=SC3045
+    (
+        [ -n "${TARRY_TEST_SMALL:-}" ] || { ulimit -t 1 && ulimit -v 1000000; }
+        cd "$work/files" && eval "\"\$TARRY\" $command"
+    ) >"$work/out" 2>"$work/err" </dev/null
     status=$?
     inventory >"$work/after"
     good=true
