@@ -170,6 +170,18 @@ int tarry_folder_make(const char *path, tarry_error *error) {
     return fail_errno(error, path, "create this folder", number);
 }
 
+int tarry_folder_flush(const char *path, tarry_error *error) {
+    const int folder = open(path, O_RDONLY | O_DIRECTORY | O_CLOEXEC);
+    if (folder < 0)
+        return errno == ENOENT ? 0 : fail_errno(error, path, "open this folder", errno);
+    int status = 0;
+    if (fsync(folder) != 0 && errno != EINVAL)
+        status = fail_errno(error, path, "write into this folder", errno);
+    if (close(folder) != 0 && status == 0)
+        status = fail_errno(error, path, "write into this folder", errno);
+    return status;
+}
+
 int tarry_folder_is_empty(const char *path, bool *empty, tarry_error *error) {
     DIR *folder = opendir(path);
     if (folder == NULL && errno == ENOENT) {

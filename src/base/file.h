@@ -24,6 +24,10 @@ int tarry_file_write(const char *path, const char *bytes, size_t n, tarry_error 
 /* Create a folder; fine when it is there already. */
 int tarry_folder_make(const char *path, tarry_error *error);
 
+/* Have the names of its files on the disk before anything that comes after; fine when there is no
+ * such folder. */
+int tarry_folder_flush(const char *path, tarry_error *error);
+
 /* *empty: the folder does not exist or holds nothing. TARRY_FILE when `path` is something else. */
 int tarry_folder_is_empty(const char *path, bool *empty, tarry_error *error);
 

@@ -92,6 +92,12 @@ static int write_summary(tarry_run_folder *folder, const tarry_model *model,
     return status;
 }
 
+/* A summary.json that outlives a power failure must not outlive what it lists. */
+static int flush_names(const tarry_run_folder *folder, tarry_error *error) {
+    const int status = tarry_folder_flush(tarry_run_folder_path(folder, tarry_figures_name), error);
+    return status ? status : tarry_folder_flush(folder->path, error);
+}
+
 /* Everything but unfinished.json, which is there meanwhile. */
 static int write_all(tarry_run_folder *folder, const tarry_model *model,
                      const tarry_results *results, const tarry_provenance *provenance,
@@ -106,6 +112,8 @@ static int write_all(tarry_run_folder *folder, const tarry_model *model,
         status = write_run_json(folder, provenance, error);
     if (!status)
         status = tarry_run_folder_remove_leftovers(folder, error);
+    if (!status)
+        status = flush_names(folder, error);
     if (!status)
         status = write_summary(folder, model, results, provenance, error);
     return status;

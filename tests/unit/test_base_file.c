@@ -201,6 +201,22 @@ START_TEST(writing_where_one_cannot) {
 }
 END_TEST
 
+START_TEST(names_are_flushed) {
+    tarry_error error = {0};
+    ck_assert_int_eq(tarry_folder_flush(test_folder(), &error), 0);
+    ck_assert_int_eq(tarry_folder_flush(test_path("none"), &error), 0);
+    const fault kinds[] = {FAULT_OPEN, FAULT_FSYNC, FAULT_CLOSE};
+    for (size_t i = 0; i < sizeof kinds / sizeof *kinds; i++) {
+        faults_arm(kinds[i], 0, EIO);
+        const int status = tarry_folder_flush(test_folder(), &error);
+        faults_clear();
+        ck_assert_int_eq(status, TARRY_FILE);
+        ck_assert_str_eq(error.file, test_folder());
+        ck_assert_ptr_nonnull(strstr(error.message, strerror(EIO)));
+    }
+}
+END_TEST
+
 START_TEST(folders) {
     tarry_error error = {0};
     bool yes = false;
@@ -273,6 +289,7 @@ int main(void) {
         {"writing whole or not at all", writing_whole_or_not_at_all},
         {"writing goes on", writing_goes_on_after_signals_and_short_writes},
         {"writing where one cannot", writing_where_one_cannot},
+        {"names are flushed", names_are_flushed},
         {"folders", folders},
         {"files are found and removed", files_are_found_and_removed},
         {"SHA-256", sha256},

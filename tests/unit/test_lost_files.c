@@ -93,7 +93,7 @@ START_TEST(each_in_turn) {
         int least[2]; /* calls there must be: in a new folder, over an earlier run */
     } cases[] = {
         {FAULT_OPEN, EMFILE, {10, 12}},  {FAULT_READ, EIO, {4, 8}},
-        {FAULT_WRITE, ENOSPC, {10, 10}}, {FAULT_FSYNC, EIO, {10, 10}},
+        {FAULT_WRITE, ENOSPC, {10, 10}}, {FAULT_FSYNC, EIO, {12, 12}},
         {FAULT_CLOSE, EDQUOT, {10, 10}}, {FAULT_RENAME, EACCES, {10, 10}},
     };
     const size_t i = (size_t)_i / 2;

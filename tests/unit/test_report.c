@@ -436,10 +436,9 @@ static void check_nothing_left(const char *folder) {
 
 /* Fail each call of one kind in turn: an error comes, and nothing half-made stays. Returns how many
  * there were. */
-static long fail_in_turn(fault which, int number, int expected) {
+static long fail_in_turn(const char *folder, fault which, int number, int expected) {
     tarry_model model;
     tarry_results *results = make_results();
-    const char *folder = test_path("out");
     long n = 0;
     fill_model(&model, 1);
     for (;; n++) {
@@ -464,12 +463,19 @@ static long fail_in_turn(fault which, int number, int expected) {
 START_TEST(test_faults_of_files) {
     static const fault kinds[] = {FAULT_OPEN, FAULT_WRITE, FAULT_FSYNC, FAULT_CLOSE, FAULT_RENAME};
     const fault which = kinds[_i];
-    ck_assert_int_ge(fail_in_turn(which, ENOSPC, TARRY_FILE), 4); /* four files */
+    ck_assert_int_ge(fail_in_turn(test_path("out"), which, ENOSPC, TARRY_FILE), 4); /* four files */
+}
+END_TEST
+
+/* Each file is flushed before it gets its name, and the names before summary.json gets its own. */
+START_TEST(test_names_are_flushed) {
+    const long n_files = fail_in_turn(test_path(), FAULT_RENAME, EIO, TARRY_FILE);
+    ck_assert_int_eq(fail_in_turn(test_path(), FAULT_FSYNC, EIO, TARRY_FILE), n_files + 1);
 }
 END_TEST
 
 START_TEST(test_faults_of_memory) {
-    ck_assert_int_ge(fail_in_turn(FAULT_MEMORY, 0, TARRY_MEMORY), 10);
+    ck_assert_int_ge(fail_in_turn(test_path("out"), FAULT_MEMORY, 0, TARRY_MEMORY), 10);
 }
 END_TEST
 
@@ -770,6 +776,7 @@ int main(void) {
     tcase_add_test(tests, test_overwrite);
     tcase_add_test(tests, test_foreign_summary);
     tcase_add_loop_test(tests, test_faults_of_files, 0, 5);
+    tcase_add_test(tests, test_names_are_flushed);
     tcase_add_test(tests, test_faults_of_memory);
     tcase_add_test(tests, test_faults_of_json);
     tcase_add_test(tests, test_full_disk);
