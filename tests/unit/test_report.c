@@ -469,8 +469,8 @@ END_TEST
 
 /* Each file is flushed before it gets its name, and the names before summary.json gets its own. */
 START_TEST(test_names_are_flushed) {
-    const long n_files = fail_in_turn(test_path(), FAULT_RENAME, EIO, TARRY_FILE);
-    ck_assert_int_eq(fail_in_turn(test_path(), FAULT_FSYNC, EIO, TARRY_FILE), n_files + 1);
+    const long n_files = fail_in_turn(test_path("out"), FAULT_RENAME, EIO, TARRY_FILE);
+    ck_assert_int_eq(fail_in_turn(test_path("other"), FAULT_FSYNC, EIO, TARRY_FILE), n_files + 1);
 }
 END_TEST
 
