@@ -51,8 +51,9 @@ static int split_genes(const char *list, char **text, const char ***names, size_
         return 0;
     if (!*text || !*names)
         return tarry_complain(TARRY_EXIT_FAILED, "out of memory for the names of genes");
-    for (char *at = *text, *comma = at; comma; at = comma + 1) {
-        comma = strchr(at, ',');
+    for (char *at = *text, *next; at; at = next) {
+        char *comma = strchr(at, ',');
+        next = comma ? comma + 1 : NULL;
         if (comma)
             *comma = '\0';
         at += strspn(at, " ");

@@ -51,14 +51,15 @@ static int read_phases(expansion *x, const tarry_lag *lag, const char *format, c
 }
 
 static int read_parts(expansion *x) {
-    static double one = 1, zero = 0;
+    static const double one_ = 1, zero_ = 0; /* only read */
+    double *const one = (double *)&one_, *const zero = (double *)&zero_;
     int code = 0;
     for (size_t i = 0; code == 0 && i < x->n_parts && x->reader->gene->why == NULL; i++) {
         const tarry_promoter_state *state = &x->network->states[x->promoter->states.from + i];
         part *p = &x->parts[i];
         p->at = x->n_phases;
         p->lasts = state->lag != TARRY_NONE;
-        p->phases = (tarry_phases){1, &one, &zero, &zero, &one};
+        p->phases = (tarry_phases){1, one, zero, zero, one};
         if (p->lasts)
             code = read_phases(x, &x->network->lags[state->lag],
                                "the state '%s' lasts a time that is no sum or mix of exponential "

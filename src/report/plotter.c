@@ -30,7 +30,7 @@ static const long nap = 2000000; /* ns */
 
 /* The variables of this process, with the date fixed unless it is already. */
 static char **make_environment(void) {
-    static char date[] = "SOURCE_DATE_EPOCH=0";
+    static const char date[] = "SOURCE_DATE_EPOCH=0";
     size_t n = 0;
     bool has_date = false;
     while (environ && environ[n])
@@ -39,7 +39,7 @@ static char **make_environment(void) {
     for (size_t i = 0; copy && i < n; i++)
         copy[i] = environ[i];
     if (copy && !has_date)
-        copy[n] = date;
+        copy[n] = (char *)date; /* only read */
     return copy;
 }
 
