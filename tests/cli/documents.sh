@@ -46,7 +46,7 @@ not_yet() {
 ok "docs/model.md lists the keys that are not yet" not_yet
 
 options_known() {
-    for file in README.md docs/model.md docs/files.md; do
+    for file in README.md docs/model.md docs/files.md docs/exact.md; do
         # shellcheck disable=SC2013 # options are words
         for option in $(grep -o -- '--[a-z]*' "$root/$file" | sort -u); do
             "$TARRY" help run | grep -qF -- "  $option" || "$TARRY" version "$option" >out || return 1
@@ -67,21 +67,5 @@ files_told() {
     done
 }
 ok "docs/files.md names every file and its columns" files_told
-
-# Two runs of some seconds each, too long with sanitizers.
-walk() {
-    run 0 run "$models/two_state.yaml" --out short && mv out short.txt &&
-        run 0 run "$models/two_state.yaml" --set "length=8.4 kb" --out long && mv out long.txt ||
-        return 1
-    grep '^    .* to [0-9.]*$' "$root/README.md" | sed 's/^    //' >shown
-    [ "$(wc -l <shown)" -ge 20 ] || return 1
-    while IFS= read -r line; do
-        grep -qxF -- "$line" short.txt long.txt || {
-            echo "    not so: $line"
-            return 1
-        }
-    done <shown
-}
-[ -n "${TARRY_TEST_SMALL:-}" ] || ok "the numbers in README.md are those of the program" walk
 
 finish

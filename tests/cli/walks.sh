@@ -1,0 +1,40 @@
+#!/bin/sh
+# SPDX-License-Identifier: GPL-3.0-or-later
+# shellcheck disable=SC2317 # cases are functions, called by name
+# The commands of README.md and of docs are run, and the numbers that README.md shows are among what they print.
+# (Some seconds each: too long with sanitizers.)
+# shellcheck source=tests/cli/helpers.sh
+. "${0%/*}/helpers.sh"
+if [ -n "${TARRY_TEST_SMALL:-}" ]; then
+    finish
+fi
+root=${models%/models}
+ln -s "$models" models
+mkdir build
+ln -s "$TARRY" build/tarry
+
+# command LINE : what follows the prompt, run as a user would
+command_runs() {
+    sh -c "$1" >>printed 2>err </dev/null
+}
+
+: >printed
+for page in "$root/README.md" "$root"/docs/*.md; do
+    sed -n 's/^    \$ //p' "$page" >commands
+    while IFS= read -r line; do
+        ok "$(basename "$page"): $line" command_runs "$line" </dev/null
+    done <commands
+done
+
+numbers() {
+    grep -E '^    .* (to [0-9.]*|[0-9.]+)$' "$root/README.md" | sed 's/^    //' >shown
+    [ "$(wc -l <shown)" -ge 30 ] || return 1
+    while IFS= read -r line; do
+        grep -qxF -- "$line" printed || {
+            echo "    not so: $line"
+            return 1
+        }
+    done <shown
+}
+ok "the numbers in README.md are those of the program" numbers
+finish
