@@ -19,6 +19,7 @@ LIBS = -lgsl -lgslcblas -lyaml -ljansson -lnettle -lm
 
 # Calls that tests make fail on purpose (tests/unit/faults.h).
 FAULTS = malloc calloc realloc strdup strndup open read write fsync close rename
+FAULTS += tarry_arena_calloc tarry_arena_text tarry_arena_format tarry_arena_grow
 TEST_LDFLAGS = $(FAULTS:%=-Wl,--wrap=%)
 
 LIB_SOURCES = $(sort $(filter-out src/cli/%,$(wildcard src/*/*.c)))

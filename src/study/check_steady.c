@@ -69,7 +69,8 @@ static int note_gene(const tarry_network *network, const tarry_distance *items, 
     if (n_far > 1)
         snprintf(others, sizeof others, ", the furthest off of %zu products of its gene", n_far);
     if (n_like > 0)
-        snprintf(like, sizeof like, "; the same holds of %zu genes that follow it", n_like);
+        snprintf(like, sizeof like, "; the same holds of %zu gene%s after it", n_like,
+                 n_like == 1 ? "" : "s");
     return tarry_notes_add(
         notes, network->species[worst->species].place, error,
         "when the record begins the mean of '%s' is %s %% %s its steady mean%s%s",

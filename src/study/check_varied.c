@@ -4,6 +4,7 @@
 
 #include "study/check_page.h"
 
+#include "base/error.h"
 #include "base/number.h"
 #include "model/variation.h"
 
@@ -35,9 +36,14 @@ static int write_solved(tarry_page *page, tarry_error *error) {
     int code = tarry_cell_network_init(&cell, network, error);
     for (uint32_t i = 0; code == 0 && i < network->variation->n; i++)
         cell.factors[i] = 1 + 0.1 / (i + 1.0);
-    if (code == 0 && tarry_cell_network_set(&cell, 0, NULL) != 0) {
-        tarry_cell_network_release(&cell); /* such a cell cannot be: a run will tell */
-        return 0;
+    if (code == 0) {
+        tarry_error fault = {0};
+        code = tarry_cell_network_set(&cell, 0, &fault);
+        /* Such a cell cannot be: a run will tell. Memory that is short is told now. */
+        if (code != 0) {
+            tarry_cell_network_release(&cell);
+            return code == TARRY_MEMORY ? tarry_fail_memory(error, "a page about the model") : 0;
+        }
     }
     for (uint32_t i = 0; code == 0 && i < network->n_lags; i++) {
         const uint32_t delay = network->lags[i].delay;

@@ -2,10 +2,13 @@
 
 #include "faults.h"
 
+#include "base/memory.h"
+
 #include <errno.h>
 #include <fcntl.h>
 #include <stdarg.h>
 #include <stdatomic.h>
+#include <stdio.h>
 #include <stdlib.h>
 #include <unistd.h>
 
@@ -20,6 +23,10 @@ ssize_t __real_write(int file, const void *bytes, size_t n);
 int __real_fsync(int file);
 int __real_close(int file);
 int __real_rename(const char *from, const char *to);
+void *__real_tarry_arena_calloc(tarry_arena *arena, size_t n, size_t size);
+char *__real_tarry_arena_text(tarry_arena *arena, const char *text, size_t n);
+int __real_tarry_arena_grow(tarry_arena *arena, void **array, size_t *capacity, size_t needed,
+                            size_t size);
 
 void *__wrap_malloc(size_t size);
 void *__wrap_calloc(size_t n, size_t size);
@@ -32,6 +39,12 @@ ssize_t __wrap_write(int file, const void *bytes, size_t n);
 int __wrap_fsync(int file);
 int __wrap_close(int file);
 int __wrap_rename(const char *from, const char *to);
+void *__wrap_tarry_arena_calloc(tarry_arena *arena, size_t n, size_t size);
+char *__wrap_tarry_arena_text(tarry_arena *arena, const char *text, size_t n);
+char *__wrap_tarry_arena_format(tarry_arena *arena, const char *format, ...)
+    __attribute__((format(printf, 2, 3)));
+int __wrap_tarry_arena_grow(tarry_arena *arena, void **array, size_t *capacity, size_t needed,
+                            size_t size);
 
 static atomic_int armed = N_FAULTS;
 static atomic_long countdown;
@@ -59,7 +72,7 @@ static bool strikes(fault which) {
     if (atomic_load(&armed) != (int)which || atomic_fetch_sub(&countdown, 1) != 0)
         return false;
     atomic_store(&struck, true);
-    errno = which == FAULT_MEMORY ? ENOMEM : atomic_load(&error_number);
+    errno = which == FAULT_MEMORY || which == FAULT_ARENA ? ENOMEM : atomic_load(&error_number);
     return true;
 }
 
@@ -121,4 +134,33 @@ int __wrap_close(int file) {
 
 int __wrap_rename(const char *from, const char *to) {
     return strikes(FAULT_RENAME) ? -1 : __real_rename(from, to);
+}
+
+void *__wrap_tarry_arena_calloc(tarry_arena *arena, size_t n, size_t size) {
+    return strikes(FAULT_ARENA) ? NULL : __real_tarry_arena_calloc(arena, n, size);
+}
+
+char *__wrap_tarry_arena_text(tarry_arena *arena, const char *text, size_t n) {
+    return strikes(FAULT_ARENA) ? NULL : __real_tarry_arena_text(arena, text, n);
+}
+
+/* The text is made here, since arguments of no fixed number cannot be handed on. */
+char *__wrap_tarry_arena_format(tarry_arena *arena, const char *format, ...) {
+    if (strikes(FAULT_ARENA))
+        return NULL;
+    va_list arguments, again;
+    va_start(arguments, format);
+    va_copy(again, arguments);
+    const int n = vsnprintf(NULL, 0, format, arguments);
+    char *text = n < 0 ? NULL : __real_tarry_arena_calloc(arena, (size_t)n + 1, 1);
+    if (text)
+        vsnprintf(text, (size_t)n + 1, format, again);
+    va_end(again);
+    va_end(arguments);
+    return text;
+}
+
+int __wrap_tarry_arena_grow(tarry_arena *arena, void **array, size_t *capacity, size_t needed,
+                            size_t size) {
+    return strikes(FAULT_ARENA) ? 1 : __real_tarry_arena_grow(arena, array, capacity, needed, size);
 }

@@ -23,6 +23,7 @@
 
 typedef enum fault {
     FAULT_MEMORY, /* malloc, calloc, realloc, strdup, strndup */
+    FAULT_ARENA,  /* tarry_arena_calloc, _text, _format, _grow: a block seldom ends just there */
     FAULT_OPEN,
     FAULT_READ,
     FAULT_WRITE,
@@ -33,7 +34,8 @@ typedef enum fault {
 } fault;
 
 /* Call number `after` from now on (the next is 0) fails with `number` in errno. FAULT_READ and
- * FAULT_WRITE with number 0 do not fail but move a single byte. FAULT_MEMORY always says ENOMEM. */
+ * FAULT_WRITE with number 0 do not fail but move a single byte. FAULT_MEMORY and
+ * FAULT_ARENA always say ENOMEM. */
 void faults_arm(fault which, long after, int number);
 
 /* Whether the fault has come to pass since it was armed. */
