@@ -109,7 +109,7 @@ static int find_time(const tarry_network *network, tarry_place place, double *se
     tarry_error search;
     const int code = tarry_analysis_settle(network, NEAR_ENOUGH, settle, &n_unknown, &search);
     if (code == TARRY_NUMERIC)
-        return tarry_fail_at(error, TARRY_NUMERIC, place,
+        return tarry_fail_at(error, TARRY_INPUT, place,
                              "no time was found after which all means are steady; give a time, as "
                              "settle: 10 h");
     if (code != 0)

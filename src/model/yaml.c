@@ -119,9 +119,24 @@ static const struct {
      "a text that begins with '*' or '&' stands in quotes"},
     {"did not find expected whitespace or line break",
      "tags ('!...') are not read; leave them out"},
-    {"could not find expected directive name", "a line cannot begin with '%'"},
-    {"found unknown directive name", "a line cannot begin with '%'"},
+    {"could not find expected directive name", "a line cannot begin with '%'; leave it out"},
+    {"found unknown directive name", "a line cannot begin with '%'; leave it out"},
     {"found undefined tag handle", "tags ('!...') are not read; leave them out"},
+    {"did not find expected tag URI", "tags ('!...') are not read; leave them out"},
+    {"did not find URI escaped octet", "tags ('!...') are not read; leave them out"},
+    {"did not find the expected '>'", "tags ('!...') are not read; leave them out"},
+    {"found an incorrect ", "tags ('!...') are not read; leave them out"},
+    {"found incompatible YAML document", "a line cannot begin with '%'; leave it out"},
+    {"found duplicate %", "a line cannot begin with '%'; leave it out"},
+    {"found unexpected non-alphabetical character", "a line cannot begin with '%'; leave it out"},
+    {"found extremely long version number", "a line cannot begin with '%'; leave it out"},
+    {"did not find expected version number", "a line cannot begin with '%'; leave it out"},
+    {"did not find expected digit or '.' character", "a line cannot begin with '%'; leave it out"},
+    {"did not find expected '!'", "a line cannot begin with '%'; leave it out"},
+    {"did not find expected whitespace", "a line cannot begin with '%'; leave it out"},
+    {"found unexpected ':'", "a blank follows the ':' of 'key: value', and a text with ':' in it "
+                             "stands in quotes"},
+    {"found an indentation indicator equal to 0", "no 0 can follow '|' or '>'; leave it out"},
 };
 
 static int fail_start(reader *in, tarry_place place, size_t at, tarry_error *error) {
@@ -140,10 +155,12 @@ static int fail_parser(reader *in, tarry_error *error) {
     tarry_place place = place_of(in, parser->problem_mark);
     if (strcmp(problem, "found character that cannot start any token") == 0)
         return fail_start(in, place, byte_of(in, parser->problem_mark), error);
-    for (size_t i = 0; i < sizeof problems / sizeof *problems; i++)
+    const char *ours = NULL;
+    for (size_t i = 0; i < sizeof problems / sizeof *problems && ours == NULL; i++)
         if (strncmp(problem, problems[i].theirs, strlen(problems[i].theirs)) == 0)
-            return tarry_fail_at(error, TARRY_INPUT, place, "%s", problems[i].ours);
-    return tarry_fail_at(error, TARRY_INPUT, place, "this is no YAML: %s", problem);
+            ours = problems[i].ours;
+    return tarry_fail_at(error, TARRY_INPUT, place, "%s%s",
+                         ours != NULL ? "" : "this is no YAML: ", ours != NULL ? ours : problem);
 }
 
 /* ---- building -------------------------------------------------------------------------------- */

@@ -64,6 +64,18 @@ ok "no such file" refused "the model file 'nowhere.yaml' cannot be read" nowhere
     awk 'BEGIN { for (i = 0; i < 100000; i++) printf "  p%d: p%d + 1\n", i, i + 1; print "  p100000: p0" }'
 } >m.yaml
 ok "a circle of 100,000 parameters" refused "parameters are made of one another in a circle: p0 -> p1 -> p2"
+awk 'BEGIN {
+    printf "tarry: 1\ntime: min\ngenes:\n  vela:\n    promoter:\n"
+    for (i = 0; i < 251; i++) printf "      s%d: {to: {s%d: 1}}\n", i, (i + 1) % 251
+    print "    transcript: {half_life: 1}\nrun: {until: 1}"
+}' >m.yaml
+ok "251 states of a promoter" refused "m.yaml:6:7: a promoter has at most 250 states; this one has 251"
+awk 'BEGIN {
+    printf "tarry: 1\ntime: min\nspecies: {a: 0}\ndelays:\n"
+    for (i = 0; i < 70; i++) printf "  d%d: d%d\n", i, i + 1
+    print "  d70: 1\nreactions: {one: {rate: 1, later: [{after: d0, makes: {a: 1}}]}}\nrun: {until: 1}"
+}' >m.yaml
+ok "70 delays made of one another" refused "m.yaml:69:8: delays are made of one another more than 64 deep"
 
 # An editor's mark and line ends of another system are no fault.
 marked() {

@@ -92,6 +92,13 @@ START_TEST(test_bad_propensities) {
     CHECK_STOP("species: {x: 3}\nreactions:\n  go: {uses: {x: 1}, rate: 1}\n"
                "  odd: {makes: {x: 1}, propensity: 0.001 / x}\nrun: {until: 100}\n",
                TARRY_RUN, "propensity of \"odd\" is inf");
+    CHECK_STOP("species: {x: 0}\nreactions:\n  one: {makes: {x: 1}, rate: 1e308}\n"
+               "  other: {makes: {x: 1}, rate: 1e308}\nrun: {until: 100}\n",
+               TARRY_RUN, "the propensities add up to infinity");
+    CHECK_STOP(
+        "species: {a: 1, b: 1, c: 1, e: 1, f: 1, g: 1, i: 1, j: 1, k: 1, l: 1, m: 1, n: 1, o: 1}\n"
+        "reactions: {odd: {makes: {a: 1}, propensity: -a}}\nrun: {until: 100}\n",
+        TARRY_RUN, "propensity of \"odd\" is -1", "a = 1, b = 1", ", ...");
 }
 END_TEST
 

@@ -43,6 +43,18 @@ static const char *noted(const tarry_model *model, const char *words) {
     return "";
 }
 
+/* Told by the size alone; nothing of the text is looked at. */
+START_TEST(too_large) {
+    tarry_model *model = NULL;
+    tarry_error error = {0};
+    ck_assert_int_eq(
+        tarry_model_read_text("", ((size_t)64 << 20) + 1, "m.yaml", NULL, 0, &model, &error),
+        TARRY_INPUT);
+    ck_assert_str_eq(error.message, "this model is too large: at most 67108864 bytes are read");
+    ck_assert_ptr_null(model);
+}
+END_TEST
+
 START_TEST(head_of_the_file) {
     refused("", 1, 1, "");
     refused("- tarry\n", 1, 1, "must be a map");
@@ -312,6 +324,7 @@ END_TEST
 
 int main(void) {
     const test_entry tests[] = {
+        {"too large", too_large},
         {"head of the file", head_of_the_file},
         {"values change at a step", values_change_at_a_step},
         {"values that go wrong at a step", values_that_go_wrong_at_a_step},

@@ -2,6 +2,7 @@
 
 /* What is refused and noted in species, reactions and bursts, and files of lags; the rules are
  * those of design.md, section 3. */
+#include "model/builder.h"
 #include "network_text.h"
 #include "support.h"
 
@@ -191,6 +192,19 @@ START_TEST(files_of_lags_refused) {
 }
 END_TEST
 
+/* No text comes to so many (a number of molecules ends at 1e6), but what adds them up may. */
+START_TEST(too_many_at_once) {
+    tarry_draft draft = {0};
+    const int64_t amounts[] = {(int64_t)INT32_MAX + 1, -(int64_t)INT32_MAX - 1};
+    for (size_t i = 0; i < 2; i++) {
+        tarry_error error = {0};
+        ck_assert_int_eq(tarry_draft_change(&draft, 0, amounts[i], &error), TARRY_INPUT);
+        ck_assert_str_eq(error.message, "more than 2147483647 molecules change at once");
+    }
+    tarry_draft_release(&draft);
+}
+END_TEST
+
 int main(void) {
     const test_entry tests[] = {
         {"species", species},
@@ -198,6 +212,7 @@ int main(void) {
         {"later", later},
         {"random amounts", random_amounts},
         {"bursts", bursts},
+        {"too many at once", too_many_at_once},
         {"molecules are anonymous", molecules_are_anonymous},
         {"files of lags", files_of_lags},
         {"files of lags refused", files_of_lags_refused},
