@@ -159,6 +159,9 @@ coverage: deps-test
 	@$(BUILD)/tests/against/slow_coverage
 
 
+branches: deps-test
+	@MAKE='$(MAKE)' BUILD='$(BUILD)' JOBS='$(JOBS)' sh tests/branches.sh
+
 # Fuzzing: the library anew with what libFuzzer needs, in a folder of its own. FUZZ_FLAGS say what to look for.
 FUZZ_TARGETS = model expression quantity table
 FUZZ_FLAGS = -fsanitize=address,undefined -fno-sanitize-recover=all
@@ -232,11 +235,11 @@ uninstall:
 	rm -rf $(DESTDIR)$(PREFIX)/include/tarry $(DESTDIR)$(PREFIX)/share/doc/tarry $(DESTDIR)$(PREFIX)/share/tarry
 
 clean:
-	rm -rf $(BUILD) $(BUILD)-asan $(BUILD)-fuzz $(BUILD)-lint-gcc $(BUILD)-lint-clang $(BUILD)-tsan
+	rm -rf $(BUILD) $(BUILD)-asan $(BUILD)-branches $(BUILD)-fuzz $(BUILD)-lint-gcc $(BUILD)-lint-clang $(BUILD)-tsan
 
 FORCE:
 .PHONY: all tests tests-slow everything list-tests list-tests-slow deps deps-test deps-dev demo test \
-  test-slow coverage fuzz lint tsan memcheck instructions bench format install uninstall shared clean FORCE
+  test-slow coverage branches fuzz lint tsan memcheck instructions bench format install uninstall shared clean FORCE
 .SECONDARY:
 .DELETE_ON_ERROR:
 -include $(LIB_OBJECTS:.o=.d) $(SHARED_OBJECTS:.o=.d) $(CLI_OBJECTS:.o=.d) $(SUPPORT_OBJECTS:.o=.d) $(BENCH_OBJECTS:.o=.d) \

@@ -2,11 +2,12 @@
 # SPDX-License-Identifier: GPL-3.0-or-later
 # Build and run the tests, two programs at a time, and sum up.
 #
-#   sh tests/run.sh PART...    parts: plain, sanitized, slow
+#   sh tests/run.sh PART...    parts: plain, sanitized, slow, branches
 #
 # plain      unit tests, tests against outside sources, the example, cases of the command line
 # sanitized  the same with smaller samples under AddressSanitizer and UndefinedBehaviorSanitizer
 # slow       programs tests/*/slow_*.c, which take longer
+# branches   the plain tests with smaller samples, built for gcov (tests/branches.sh)
 #
 # Settings from the environment: BUILD, JOBS, MAKE. What each program says is kept in
 # BUILD/test-logs. The last line is "N passed, N failed"; what failed is told before it, and the exit
@@ -82,7 +83,7 @@ build_and_run() {
         echo "0 1 build ($part does not build)" >"$logs/build.count"
         return
     fi
-    "$MAKE" --no-print-directory -s BUILD="$folder" "$list" | sed '/^$/d' >"$logs/programs"
+    "$MAKE" --no-print-directory -s BUILD="$folder" "$list" | sed "/^\$/d;${LEAVE_OUT:+/$LEAVE_OUT/d}" >"$logs/programs"
     run_programs "$logs" <"$logs/programs"
     [ "$part" = slow ] || run_cli "$folder" "$logs"
 }
@@ -114,12 +115,19 @@ for part in "$@"; do
         build_and_run sanitized "$BUILD-asan" "all tests" list-tests CFLAGS="$sanitizers"
         unset TARRY_TEST_SMALL ASAN_OPTIONS UBSAN_OPTIONS
         ;;
+    branches)
+        # What a killed program has counted may be half written. Threads count in turn.
+        export TARRY_TEST_SMALL=1 CK_DEFAULT_TIMEOUT=240 LEAVE_OUT=test_killed
+        build_and_run branches "$BUILD-branches" "all tests" list-tests CC=gcc \
+            CFLAGS="-O0 -g --coverage -fprofile-update=atomic"
+        unset TARRY_TEST_SMALL LEAVE_OUT
+        ;;
     slow)
         export CK_DEFAULT_TIMEOUT=1800
         build_and_run slow "$BUILD" "all tests-slow" list-tests-slow
         ;;
     *)
-        echo "run.sh: there is no part $part; parts are plain, sanitized, slow" >&2
+        echo "run.sh: there is no part $part; parts are plain, sanitized, slow, branches" >&2
         exit 2
         ;;
     esac

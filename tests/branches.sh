@@ -1,0 +1,27 @@
+#!/bin/sh
+# SPDX-License-Identifier: GPL-3.0-or-later
+# Which lines and branches of src the tests run, and which refusals none of them provokes.
+#
+#   sh tests/branches.sh
+#
+# It builds in BUILD-branches without optimisation, runs the plain tests there with smaller samples
+# (tests/run.sh), and sums up what gcov counted (tests/branches.awk). What each line did is then in
+# BUILD-branches/gcov. Settings from the environment: BUILD, JOBS, MAKE, LEAST (of the branches taken, in % of
+# those of a folder).
+set -u
+
+BUILD=${BUILD:-build}
+folder=$BUILD-branches
+[ ! -d "$folder" ] || find "$folder" -name '*.gcda' -exec rm -f {} + || exit 1
+sh tests/run.sh branches || exit 1
+
+rm -rf "$folder/gcov"
+mkdir -p "$folder/gcov" || exit 1
+for source in src/*/*.c; do
+    gcov -b -c -t -o "$folder/${source%.c}.o" "$source" >"$folder/gcov/$(echo "$source" | tr / -).gcov" \
+        2>"$folder/gcov.log" || {
+        cat "$folder/gcov.log"
+        exit 1
+    }
+done
+awk -v least="${LEAST:-model 92,engine 94,tally 96}" -f tests/branches.awk "$folder"/gcov/*.gcov
