@@ -29,17 +29,17 @@ field() {
 }
 
 # The flags are lists of words.
-# shellcheck disable=SC2046
+# shellcheck disable=SC2046,SC2086
 shared() {
-    "${CC:-cc}" -std=c11 $(field Cflags) -o shared "$root/tests/unit/example.c" $(field Libs) >out 2>err &&
+    ${CC:-cc} -std=c11 $(field Cflags) -o shared "$root/tests/unit/example.c" $(field Libs) >out 2>err &&
         LD_LIBRARY_PATH=$lib ./shared >out 2>err && says out "initiations in a burst" &&
         LD_LIBRARY_PATH=$lib ldd ./shared | grep -q "libtarry.so.0 => $lib"
 }
 ok "the example with the shared library" shared
 
-# shellcheck disable=SC2046
+# shellcheck disable=SC2046,SC2086
 static() {
-    "${CC:-cc}" -std=c11 $(field Cflags) -o static "$root/tests/unit/example.c" "$lib/libtarry.a" \
+    ${CC:-cc} -std=c11 $(field Cflags) -o static "$root/tests/unit/example.c" "$lib/libtarry.a" \
         $(field Libs.private) >out 2>err && ./static >out 2>err && says out "initiations in a burst"
 }
 ok "the example with the static library" static

@@ -6,6 +6,7 @@
 # shellcheck source=tests/cli/helpers.sh
 . "${0%/*}/helpers.sh"
 if [ -n "${TARRY_TEST_SMALL:-}" ]; then
+    echo "skipped: under sanitizers"
     finish
 fi
 root=${models%/models}
