@@ -110,7 +110,10 @@ static int make_others(tarry_figure_work *work, uint32_t *channels, tarry_error 
 static int say_left_out(tarry_figure_work *work, tarry_error *error) {
     const tarry_shown *shown = &work->shown;
     tarry_text text = {0};
-    if (shown->n_genes_left)
+    if (work->list->n == 0 && work->network->n_channels > 0)
+        tarry_text_add_string(&text, "there are no figures, since nothing that could be shown is "
+                                     "recorded: name it under run: record");
+    else if (shown->n_genes_left)
         tarry_text_printf(&text, "figures show %zu of %zu genes; --genes NAME,NAME names others",
                           shown->n_genes, shown->n_genes + shown->n_genes_left);
     if (text.failed)

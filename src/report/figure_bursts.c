@@ -56,7 +56,8 @@ static int add_law(tarry_figure_work *work, uint32_t gene, const tarry_window *w
     tarry_exact_gene exact;
     tarry_exact_bursts law;
     const char *why = NULL;
-    if (work->network->genes[gene].promoters.from == work->network->genes[gene].promoters.to)
+    const tarry_range promoters = work->network->genes[gene].promoters;
+    if (promoters.from == promoters.to || work->network->variation)
         return 0;
     int code = tarry_exact_gene_read(&work->flows, work->network->segments, gene, &work->arena,
                                      &exact, error);
@@ -96,8 +97,8 @@ static int add_size_panel(tarry_figure_work *work, const tarry_figure_subject *s
     tarry_text_printf(&words->caption, "%s%s%s%.0f bursts%s.", plot->n_panels > 1 ? " " : "",
                       several ? window->name : "", several ? ": " : "", n,
                       law ? "; the line is the exact law, worked out from the rates" : "");
-    tarry_text_printf(&words->alternative, "%s%s Mean size ", several ? " Window " : "",
-                      several ? window->name : "");
+    tarry_text_printf(&words->alternative, " %s%s size ", several ? window->name : "",
+                      several ? ": mean" : "Mean");
     tarry_figure_add_number(&words->alternative,
                             tarry_figure_quantity(&figures, window->name, "burst_size_mean"));
     tarry_text_printf(&words->alternative, " in %.0f bursts.", n);
@@ -110,7 +111,8 @@ int tarry_figure_burst_sizes(tarry_figure_work *work, const tarry_figure_subject
                        .y_label = "probability",
                        .x_name = "size",
                        .y_name = "probability",
-                       .own_x = true};
+                       .own_x = true,
+                       .whole_x = true};
     tarry_figure_words words = {.kind = "burst-sizes", .title = "Burst sizes"};
     int code = 0;
     if (!subject->gene)

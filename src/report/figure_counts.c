@@ -177,7 +177,8 @@ int tarry_figure_counts(tarry_figure_work *work, const tarry_figure_subject *sub
                        .y_label = subject->of_signals ? "density" : "probability of a count",
                        .x_name = subject->of_signals ? "signal" : "count",
                        .y_name = "probability",
-                       .own_x = true};
+                       .own_x = true,
+                       .whole_x = !subject->of_signals};
     tarry_figure_words words = {.kind = subject->of_signals ? "distribution" : "counts",
                                 .title = subject->of_signals ? "Signals at the snapshots"
                                                              : "Counts at the snapshots"};

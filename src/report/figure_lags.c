@@ -122,7 +122,8 @@ static void add_lag(const tarry_figure_work *work, uint32_t lag, tarry_plot *plo
     double drawn;
     if (rows.n < 2) /* a lag that is always the same needs no picture */
         return;
-    tarry_plot_panel *panel = tarry_plot_add_panel(plot, tarry_figure_short_name(of->name));
+    const char *name = of->gene == TARRY_NONE ? of->name : tarry_figure_short_name(of->name);
+    tarry_plot_panel *panel = tarry_plot_add_panel(plot, name);
     if (!panel)
         return;
     const lag_range range = find_range(&rows, &drawn);
@@ -141,8 +142,8 @@ static void add_lag(const tarry_figure_work *work, uint32_t lag, tarry_plot *plo
         else
             add_smooth_law(law, &range, plot);
     }
-    tarry_text_printf(&words->caption, "%s%s: %.0f lags.", plot->n_panels > 1 ? " " : "",
-                      tarry_figure_short_name(of->name), drawn);
+    tarry_text_printf(&words->caption, "%s%s: %.0f lags.", plot->n_panels > 1 ? " " : "", name,
+                      drawn);
 }
 
 static bool belongs(const tarry_figure_subject *subject, const tarry_lag *lag) {

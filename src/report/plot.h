@@ -64,6 +64,7 @@ typedef struct tarry_plot {
     const char *x_name, *y_name; /* columns of the CSV */
     const char *mark_name;       /* of upright grey marks, for the legend; NULL: unnamed */
     bool own_x;                  /* each panel has an x axis of its own */
+    bool whole_x;                /* x are whole numbers */
     bool failed;
     tarry_plot_panel *panels;
     tarry_plot_series *series;
@@ -101,7 +102,8 @@ void tarry_plot_write_script(const tarry_plot *plot, const char *stem, const cha
                              tarry_figure_format format, tarry_text *script);
 
 /* Append `string` as gnuplot reads it, and nothing in it is carried out: in single quotes, those in
- * it doubled, control characters as blanks. */
+ * it as apostrophes (U+2019; gnuplot 5.4 misreads some runs of doubled quotes), control characters
+ * as blanks. */
 void tarry_plot_quote(tarry_text *text, const char *string);
 
 #endif

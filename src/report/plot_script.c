@@ -34,6 +34,7 @@ enum {
     BLANK = 16,
     MOST_POINTS = 320, /* of a smooth curve */
     FIRST_ENTRY = 10,  /* number of the legend's first label */
+    X_TICS = 7,        /* at most, about */
     Y_TICS = 5,        /* at most, about */
 };
 
@@ -86,8 +87,13 @@ static int legend_lines(const tarry_plot *plot) {
     return end.line + (end.x > LEGEND_LEFT);
 }
 
+/* What stands above a panel: its title, or a little room for the number at the axis' end. */
+static int title_height(const tarry_plot *plot, size_t panel) {
+    return *plot->panels[panel].title ? LINE : GAP;
+}
+
 static int panel_height(const tarry_plot *plot, size_t panel) {
-    return body_height(plot) + GAP + (*plot->panels[panel].title ? LINE : 0) +
+    return body_height(plot) + GAP + title_height(plot, panel) +
            (plot->own_x && panel + 1 < plot->n_panels ? TICS : 0);
 }
 
@@ -170,7 +176,7 @@ void tarry_plot_quote(tarry_text *text, const char *string) {
     for (; *string; string++) {
         const unsigned char c = (unsigned char)*string;
         if (c == '\'')
-            tarry_text_add(text, "''", 2);
+            tarry_text_add_string(text, "\xe2\x80\x99");
         else
             tarry_text_add(text, c < 0x20 || c == 0x7f ? " " : string, 1);
     }
@@ -354,9 +360,12 @@ static void add_look(const tarry_plot_series *series, tarry_text *script) {
         tarry_text_add_string(script, "dark");
     else
         add_colour(script, series->colour);
-    tarry_text_add_string(script, looks[series->kind]);
-    if (series->colour >= TARRY_PLOT_COLOURS)
-        tarry_text_add_string(script, " dashtype 2");
+    const bool again = series->colour >= TARRY_PLOT_COLOURS;
+    const bool filled = series->kind == TARRY_SERIES_BARS || series->kind == TARRY_SERIES_SHADE;
+    if (again && filled)
+        tarry_text_add_string(script, " fillstyle transparent pattern 4 noborder");
+    else
+        tarry_text_printf(script, "%s%s", looks[series->kind], again ? " dashtype 2" : "");
 }
 
 /* ":COLUMN", or ":(COLUMN divided by the width)". */
@@ -563,6 +572,10 @@ static void set_axes(const tarry_plot *plot, size_t p, span x, span y, tarry_tex
         tarry_text_add_string(script, "autofreq");
     else
         add_number(script, round_up((y.to - y.from) / Y_TICS));
+    if (plot->whole_x) {
+        tarry_text_add_string(script, "\nset xtics ");
+        add_number(script, fmax(1, round_up((x.to - x.from) / X_TICS)));
+    }
     tarry_text_add_string(script, "\nset xlabel ");
     tarry_plot_quote(script, last ? plot->x_label : "");
     tarry_text_add_string(script, " offset 0,0.5\n");
@@ -570,7 +583,7 @@ static void set_axes(const tarry_plot *plot, size_t p, span x, span y, tarry_tex
 
 static void write_panel(const tarry_plot *plot, size_t p, int top, tarry_text *script) {
     const tarry_plot_panel *panel = &plot->panels[p];
-    const int height = tarry_plot_height(plot), from = top + (*panel->title ? LINE : 0);
+    const int height = tarry_plot_height(plot), from = top + title_height(plot, p);
     const span x = x_range(plot, panel);
     tarry_text_add(script, "\n", 1);
     set_margin(script, "t", height - from, height);

@@ -42,10 +42,10 @@ static int lags_add(const tarry_network *network, const tarry_record *record, do
     return 0;
 }
 
-/* The law of a lag where it is one and the same from 0 to `until`, or NULL. */
+/* The law of a lag where it is one and the same from 0 to `until` and in all cells, or NULL. */
 static const tarry_law *only_law(const tarry_network *network, uint32_t lag) {
     const tarry_law *law = NULL;
-    if (network->lags[lag].in_order)
+    if (network->lags[lag].in_order || network->variation)
         return NULL;
     for (uint32_t s = 0; s < network->n_segments; s++) {
         const bool over = s + 1 < network->n_segments && network->segments[s + 1].start <= 0;
