@@ -24,36 +24,161 @@ for model in "$models"/*.yaml; do
     ok "$(basename "$model") is sound, and opens with what it shows" sound
 done
 
-# The first block of YAML in a document.
-first_block() {
-    awk '/^```yaml$/ && !seen { on = 1; next } /^```$/ { if (on) seen = 1; on = 0 } on' "$1"
+mkdir pages pages/docs
+cp "$root"/README.md "$root"/DEVELOPERS.md pages
+cp "$root"/docs/*.md pages/docs
+
+# Blocks of YAML, each in a file of its own: whole.N is a model, part.FRAME.N stands under a line
+# `<!-- part: FRAME -->` and is put into that frame; a block that is neither is bare.N.
+blocks() {
+    awk '/^<!-- part: / { frame = $3 }
+        /^```yaml$/ { on = 1; text = ""; next }
+        /^```$/ && on {
+            name = text ~ /^tarry:/ ? "whole" : frame != "" ? "part." frame : "bare"
+            printf "%s", text >(name "." ++n)
+            on = 0
+            frame = ""
+        }
+        on { text = text $0 "\n" }' pages/*.md pages/docs/*.md
 }
 
-format() {
-    first_block "$root/docs/model.md" >format.yaml && run 0 check format.yaml && says out "No warnings."
+# frame NAME : the model around a part, which is standard input
+frame() {
+    echo "tarry: 1"
+    echo "time: min"
+    case $1 in
+    top)
+        echo "run: {until: 10 min}"
+        echo "delays: {folding: 25 min}"
+        cat
+        return
+        ;;
+    esac
+    echo "run: {until: 10 min}"
+    echo "parameters: {k_open: 0.04}"
+    echo "genes:"
+    echo "  spica: {promoter: {on: {initiates: 1}}, transcript: {half_life: 5 min}, protein: {translation: 1, half_life: 1 h}}"
+    echo "  vela:"
+    echo "    copies: 2"
+    echo "    transcript: {stages: {nascent: 2 min, releasing: 1 min, nuclear: 8 min}, half_life: 35 min}"
+    echo "    promoter:"
+    case $1 in
+    promoter)
+        echo "      open: {to: {shut: 0.3}, initiates: 3}"
+        sed 's/^/      /'
+        ;;
+    signals)
+        echo "      shut: {to: {open: k_open}}"
+        echo "      open: {to: {shut: 0.3}, initiates: 3}"
+        echo "signals:"
+        sed 's/^/  /'
+        ;;
+    *) echo "there is no frame '$1'" ;;
+    esac
 }
-ok "the model in docs/model.md is sound" format
 
-# Keys that a list called `later` in the reader holds, and those in the table of the document.
-not_yet() {
-    awk '/(later|LATER)\[\] = \{/ { on = 1 } on { print } /\}/ { on = 0 }' "$root"/src/model/*.c |
-        grep -o '"[a-z_]*"' | tr -d '"' | sort -u >refused
+blocks
+ok "no block of YAML in the documents is neither a model nor marked as part of one" [ "$(echo bare.*)" = "bare.*" ]
+for block in whole.* part.*; do
+    shown() {
+        cp "$block" model.yaml
+        case $block in
+        part.*) kind=${block#part.} && frame "${kind%.*}" <"$block" >model.yaml ;;
+        esac
+        run 0 check model.yaml && run 0 run model.yaml --cells 2 --until '60 min' --snapshots '60 min' \
+            --settle 0 --figures none --out shown --overwrite
+    }
+    ok "the block $block of the documents is read and runs" shown
+done
+whole_sound() {
+    for block in whole.*; do
+        run 0 check "$block" && says out "No warnings." || return 1
+    done
+}
+ok "nothing looks wrong in models that the documents show" whole_sound
+
+# Rows of the table at the end of docs/model.md: "WHERE | WORD, WORD".
+not_yet_rows() {
     # shellcheck disable=SC2016 # the quotes are those of the document
-    sed -n '/^## Not yet/,/^Of the commands/s/^| [^|]* |//p' "$root/docs/model.md" |
-        grep -o '`[a-z_]*`' | tr -d '`' | grep -vx noise | sort -u >told
-    [ -s refused ] && cmp refused told
+    sed -n '/^## Not yet/,$s/^| \([a-z`-].*\) | \(`.*\) |$/\1 | \2/p' "$root/docs/model.md" | tr -d '`,'
 }
-ok "docs/model.md lists the keys that are not yet" not_yet
+
+refuses() {
+    small_model >small.yaml
+    case $1 in
+    "top level"*) echo "$2: 1" >>small.yaml && run 2 check small.yaml && says err "cannot be used yet" ;;
+    --sampler) run 2 run small.yaml --sampler "$2" && says err "cannot be used yet" ;;
+    commands) run 2 "$2" small.yaml && says err "not yet" ;;
+    *) echo "    no such place: $1" && false ;;
+    esac
+}
+
+not_yet_rows >rows
+ok "docs/model.md has a table of what is not yet" [ "$(wc -l <rows)" = 3 ]
+while IFS= read -r row; do
+    for word in ${row#* | }; do
+        ok "not yet: ${row%% | *} $word" refuses "${row%% | *}" "$word" </dev/null
+    done
+done <rows
+
+# What the program refuses so, and its sources say: keys, samplers, commands.
+all_not_yet() {
+    awk '/(later|LATER)\[\] = \{/ { on = 1 } on { print } /\}/ { on = 0 }' "$root"/src/model/*.c "$root"/src/engine/*.c |
+        grep -o '"[a-z_]*"' | tr -d '"' >refused
+    "$TARRY" help | sed -n 's/^  tarry \([a-z]*\) .*(not yet)$/\1/p' >>refused
+    sed 's/.* | //' rows | tr ' ' '\n' | sort >told
+    sort refused | cmp - told
+}
+ok "docs/model.md lists all that is not yet" all_not_yet
 
 options_known() {
-    for file in README.md docs/model.md docs/files.md docs/exact.md; do
+    for file in README.md docs/model.md docs/files.md docs/exact.md docs/statistics.md docs/reliability.md docs/changes.md; do
         # shellcheck disable=SC2013 # options are words
         for option in $(grep -o -- '--[a-z]*' "$root/$file" | sort -u); do
-            "$TARRY" help run | grep -qF -- "  $option" || "$TARRY" version "$option" >out || return 1
+            [ "$option" = -- ] || "$TARRY" help run | grep -qF -- "  $option" || "$TARRY" version "$option" >out || return 1
         done
     done
 }
 ok "every option that the documents name is there" options_known
+
+# Goals of make: those that the pages name are there, and DEVELOPERS.md tells of all but those that only other goals
+# call.
+goals() {
+    # shellcheck disable=SC2016 # the quotes are those of the documents
+    grep -ohE '(`|^    )make [a-z-]+(`| |$)' pages/*.md pages/docs/*.md | sed 's/.*make //; s/[` ].*//' | sort -u >named
+    # shellcheck disable=SC1003 # it is a backslash that goes
+    sed -n '/^\.PHONY:/,/[^\\]$/p' "$root/Makefile" | tr -d '\\' | sed 's/^\.PHONY://' | tr -s ' ' '\n' |
+        grep -v '^$' | sort >there
+    comm -23 named there >missing
+    comm -13 named there | grep -vxE 'all|tests|tests-slow|everything|list-tests|list-tests-slow|deps-test|shared|FORCE' >>missing
+    sed 's/^/    /' missing
+    [ "$(wc -l <named)" -ge 15 ] && [ ! -s missing ]
+}
+ok "the documents name the goals of make, and none that is not there" goals
+
+# Files and folders in quotes, links and pictures. What holds capitals stands for several (test_NAME.c).
+places() {
+    # shellcheck disable=SC2016 # the quotes are those of the documents
+    {
+        grep -ohE '`(src|tests|docs|models|include)/[^` ]*`' pages/*.md pages/docs/*.md | tr -d '`'
+        grep -ohE '`(base|model|engine|tally|exact|study|report|cli)/[^` ]*`' pages/*.md pages/docs/*.md | tr -d '`' | sed 's|^|src/|'
+        grep -ohE '\]\([^)#:]*' pages/README.md pages/DEVELOPERS.md | sed 's/^](//'
+        grep -ohE '\]\([^)#:]*' pages/docs/*.md | sed 's|^](|docs/|'
+    } |
+        grep -v '[A-Z]\{4\}' | grep -vx 'src/fit' | sort -u >named
+    [ "$(wc -l <named)" -ge 50 ] || return 1
+    good=true
+    while IFS= read -r place; do
+        # Some are patterns, and base/number stands for its header.
+        # shellcheck disable=SC2086
+        set -- "$root"/$place
+        [ -e "$1" ] || [ -e "$root/$place.h" ] && continue
+        echo "    there is no $place"
+        good=false
+    done <named
+    $good
+}
+ok "every file that the documents name is there" places
 
 files_told() {
     run 0 run "$models/two_colours.yaml" --cells 20 --out all --keep 1 || return 1

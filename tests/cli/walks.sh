@@ -19,9 +19,19 @@ command_runs() {
     sh -c "$1" >>printed 2>err </dev/null
 }
 
+# What a page asks to be typed: lines after a prompt, and blocks of shell but for those that say why not:
+# `<!-- not run: REASON -->` before them.
+typed() {
+    awk '/^    \$ / { print substr($0, 7) }
+        /^<!-- not run: ..* -->$/ { left_out = 1 }
+        /^```$/ { if (on) left_out = 0; on = 0 }
+        on && !left_out
+        /^```sh$/ { on = 1 }' "$1"
+}
+
 : >printed
-for page in "$root/README.md" "$root"/docs/*.md; do
-    sed -n 's/^    \$ //p' "$page" >commands
+for page in "$root"/README.md "$root"/DEVELOPERS.md "$root"/docs/*.md; do
+    typed "$page" >commands
     while IFS= read -r line; do
         ok "$(basename "$page"): $line" command_runs "$line" </dev/null
     done <commands
