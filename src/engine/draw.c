@@ -293,9 +293,13 @@ static int make(tarry_drawer_set *set, const tarry_law *law, tarry_drawer *drawe
     case TARRY_LAW_BINS:
     case TARRY_LAW_VALUES:
         return make_rows(set, law, drawer, error);
-    default:
+    case TARRY_LAW_MIX:
+    case TARRY_LAW_TOTAL:
         return make_parts(set, law, drawer, error);
+    case TARRY_N_LAWS:
+        break;
     }
+    return tarry_fail(error, TARRY_NUMERIC, "a lag of this kind cannot be drawn");
 }
 
 int tarry_drawer_set_add(tarry_drawer_set *set, const tarry_law *law, const tarry_drawer **drawer,
