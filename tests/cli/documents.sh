@@ -193,4 +193,33 @@ files_told() {
 }
 ok "docs/files.md names every file and its columns" files_told
 
+# The picture of the way of the data: every folder of src is in it, and none that is not there.
+picture() {
+    xmllint --noout "$root/docs/data_way.svg" || return 1
+    grep -o 'class="folder"[^>]*>[a-z]*' "$root/docs/data_way.svg" | sed 's/.*>//' | sort -u >drawn
+    for folder in "$root"/src/*; do
+        basename "$folder"
+    done | sort | cmp - drawn
+}
+ok "the picture of the data's way names the folders of src" picture
+
+# The reading order: at most eight files.
+reading_order() {
+    sed -n '/^## Where to start reading/,$p' "$root/docs/architecture.md" | grep -c '^[0-9]\. `' >n_files
+    [ "$(cat n_files)" -ge 5 ] && [ "$(cat n_files)" -le 8 ]
+}
+ok "docs/architecture.md has a reading order of at most eight files" reading_order
+
+# Numbers in docs/reliability.md that can be counted: cases, and the stored instructions per event.
+counted() {
+    set -- "$root"/tests/cli/*.case
+    says "$root/docs/reliability.md" "$# one-file cases" || return 1
+    grep -v '^#' "$root/tests/bench/instructions" >stored
+    while read -r case _ figure; do
+        grep "^| ($case) " "$root/docs/reliability.md" | grep -qF "| $(LC_ALL=C awk -v x="$figure" 'BEGIN { printf "%.0f", x }') |" || return 1
+    done <stored
+    [ -s stored ]
+}
+ok "docs/reliability.md has the numbers of cases and of instructions" counted
+
 finish
