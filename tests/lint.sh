@@ -121,6 +121,8 @@ step_library() {
         "$folder/calls" | none "files are touched outside base/file" || status=1
     awk '$1 != "number.o" && $2 ~ /^(strtod|strtof|strtold|atof|__isoc99_sscanf|sscanf)$/' \
         "$folder/calls" | none "numbers are read outside base/number" || status=1
+    awk '$1 != "plotter.o" && $2 ~ /^(fork|vfork|posix_spawnp?|exec[lv][pe]*|popen|waitpid|kill)$/' \
+        "$folder/calls" | none "programs are started outside report/plotter" || status=1
     # Locks of OpenMP's critical sections are not data.
     objdump -t "$folder/libtarry.a" | awk '
         /file format/ { object = $1 }
