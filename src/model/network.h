@@ -317,10 +317,37 @@ typedef struct tarry_run_plan {
     double limit_memory;  /* bytes, all tallies and cells together */
 } tarry_run_plan;
 
+/* ---- laboratory data ----------------------------------------------------------------------------
+ *
+ * A network may stand for a file of data: names, times and windows, and no species that react. */
+
+/* What is taken off before values are correlated. */
+typedef enum tarry_film_mean {
+    TARRY_FILM_MEAN_ALL,   /* the mean over cells and frames */
+    TARRY_FILM_MEAN_FRAME, /* the mean over cells at each frame */
+    TARRY_FILM_MEAN_CELL,  /* each cell's own mean */
+} tarry_film_mean;
+
+typedef struct tarry_data_plan {
+    const char *kind;      /* "traces", "counts", "means" */
+    const char *sha256;    /* of the file */
+    const char *resampled; /* "cell", "group", ...: what intervals come from */
+    int64_t n_resampled;   /* of these there are so many */
+    int64_t n_rows;
+    double start;   /* the time of frame 0 */
+    double missing; /* share of the frames between a cell's first and last one */
+    bool gaps;      /* values may be NaN */
+    tarry_film_mean mean;
+    uint32_t longest;     /* frames from the first to the last of a cell, at most */
+    const double *shifts; /* [channel] a value amid its values, */
+    const double *ranges; /* and the largest less the least of them */
+} tarry_data_plan;
+
 typedef struct tarry_network {
     tarry_arena *arena;
-    const char *title;     /* "" where none is given */
-    const char *time_unit; /* "min" */
+    const char *title;           /* "" where none is given */
+    const char *time_unit;       /* "min" */
+    const tarry_data_plan *data; /* NULL: a model */
 
     uint32_t n_species;
     const tarry_species *species;

@@ -92,7 +92,8 @@ static void show_channels(tarry_shown *shown, const tarry_network *network, bool
             continue;
         if (channel->signal != TARRY_NONE) {
             const bool few = named || shown->n_signals < TARRY_SHOWN_MOST;
-            const bool seen = sees_shown(shown, network, (uint32_t)channel->signal, named);
+            const bool seen = network->data ||
+                              sees_shown(shown, network, (uint32_t)channel->signal, named);
             shown->channels[c] = seen && few;
             shown->n_signals += seen && few;
             shown->n_signals_left += !(seen && few);

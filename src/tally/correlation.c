@@ -2,6 +2,8 @@
 
 #include "tally/correlation.h"
 
+#include "tally/correlation_gaps.h"
+
 #include <assert.h>
 #include <gsl/gsl_fft_halfcomplex.h>
 #include <gsl/gsl_fft_real.h>
@@ -42,7 +44,7 @@ static size_t trace_transform(const tarry_film_shape *shape) {
 }
 
 tarry_film_shape tarry_film_shape_of(size_t n_frames, size_t n_lags, bool stationary) {
-    tarry_film_shape shape = {n_frames, n_lags, 2, stationary};
+    tarry_film_shape shape = {n_frames, n_lags, 2, stationary, false, false};
     if (shape.n_lags > n_frames)
         shape.n_lags = n_frames;
     while (shape.n_padded + 1 < n_frames + shape.n_lags)
@@ -51,15 +53,23 @@ tarry_film_shape tarry_film_shape_of(size_t n_frames, size_t n_lags, bool statio
 }
 
 size_t tarry_series_n_sums(const tarry_film_shape *shape) {
+    if (shape->gaps)
+        return tarry_gaps_n_sums(shape, shape->n_lags);
     return series_power(shape) + shape->n_padded / 2 + 1;
 }
 
 size_t tarry_pair_n_sums(const tarry_film_shape *shape) {
+    if (shape->gaps)
+        return tarry_gaps_n_sums(shape, 2 * shape->n_lags - 1);
     return pair_spectrum(shape) + shape->n_padded;
 }
 
 size_t tarry_trace_size(const tarry_film_shape *shape) {
-    return trace_transform(shape) + shape->n_padded;
+    return shape->gaps ? tarry_gaps_trace_size(shape) : trace_transform(shape) + shape->n_padded;
+}
+
+size_t tarry_trace_work(const tarry_film_shape *shape) {
+    return shape->gaps ? shape->n_padded : 0;
 }
 
 /* ---- one cell ---- */
@@ -86,6 +96,10 @@ double tarry_trace_mean(const double *trace, size_t n) {
 
 void tarry_trace_prepare(const tarry_film_shape *shape, const double *frames, double shift,
                          double *buffer) {
+    if (shape->gaps) {
+        tarry_gaps_prepare(shape, frames, shift, buffer);
+        return;
+    }
     const size_t n = shape->n_frames;
     double *head = buffer + TRACE_HEADS, *tail = buffer + trace_tails(shape);
     double *x = buffer + trace_transform(shape);
@@ -104,7 +118,11 @@ void tarry_trace_prepare(const tarry_film_shape *shape, const double *frames, do
 }
 
 void tarry_series_add(const tarry_film_shape *shape, const double *frames, double shift,
-                      const double *buffer, double *sums) {
+                      const double *buffer, double *work, double *sums) {
+    if (shape->gaps) {
+        tarry_gaps_add(shape, buffer, buffer, 0, shape->n_lags, work, sums);
+        return;
+    }
     const double d = buffer[0];
     const double *head = buffer + TRACE_HEADS, *tail = buffer + trace_tails(shape);
     const double *x = buffer + trace_transform(shape);
@@ -134,8 +152,12 @@ static void add_product(const double *first, const double *second, size_t n, dou
 }
 
 void tarry_pair_add(const tarry_film_shape *shape, const double *first, const double *second,
-                    double *sums) {
+                    double *work, double *sums) {
     const size_t n_lags = shape->n_lags;
+    if (shape->gaps) {
+        tarry_gaps_add(shape, first, second, 1 - (ptrdiff_t)n_lags, 2 * n_lags - 1, work, sums);
+        return;
+    }
     const double *head1 = first + TRACE_HEADS, *tail1 = first + trace_tails(shape);
     const double *head2 = second + TRACE_HEADS, *tail2 = second + trace_tails(shape);
     double *restrict middle = sums + PAIR_EDGES + n_lags - 1;
@@ -162,6 +184,8 @@ static double next_tail(const double *series, size_t k, double tail) {
 }
 
 void tarry_series_move(const tarry_film_shape *shape, double n, double by, double *sums) {
+    if (shape->gaps)
+        return; /* one shift for all cells */
     double *edges = sums + series_edges(shape);
     double head = 0.0, tail = 0.0;
     for (size_t k = 1; k < shape->n_lags; k++) {
@@ -177,6 +201,8 @@ void tarry_series_move(const tarry_film_shape *shape, double n, double by, doubl
 
 void tarry_pair_move(const tarry_film_shape *shape, double n, const double *first, double by_first,
                      const double *second, double by_second, double *sums) {
+    if (shape->gaps)
+        return;
     double *middle = sums + PAIR_EDGES + shape->n_lags - 1;
     double head1 = 0.0, tail1 = 0.0, head2 = 0.0, tail2 = 0.0;
     for (size_t k = 1; k < shape->n_lags; k++) {
@@ -192,13 +218,26 @@ void tarry_pair_move(const tarry_film_shape *shape, double n, const double *firs
 
 /* ---- covariances ---- */
 
-double tarry_series_mean(double n, const double *sums) {
-    return sums[D] / n;
+double tarry_series_mean(const tarry_film_shape *shape, double n, const double *sums) {
+    return shape->gaps ? tarry_gaps_mean(sums) : sums[D] / n;
+}
+
+double tarry_series_pairs(const tarry_film_shape *shape, double n, const double *sums, size_t lag) {
+    return shape->gaps ? tarry_gaps_pairs(shape->n_lags, sums, lag)
+                       : n * (double)(shape->n_frames - lag);
+}
+
+double tarry_pair_pairs(const tarry_film_shape *shape, double n, const double *sums,
+                        ptrdiff_t lag) {
+    if (shape->gaps)
+        return tarry_gaps_pairs(2 * shape->n_lags - 1, sums,
+                                (size_t)(lag + (ptrdiff_t)shape->n_lags - 1));
+    return n * ((double)shape->n_frames - fabs((double)lag));
 }
 
 double tarry_series_mean_square(const tarry_film_shape *shape, double n, double shift,
                                 const double *sums) {
-    const double mean = shift + tarry_series_mean(n, sums);
+    const double mean = shift + tarry_series_mean(shape, n, sums);
     double squares = 0.0;
     if (shape->stationary)
         return mean * mean;
@@ -277,6 +316,10 @@ static bool defined(const tarry_film_shape *shape, double n) {
 
 void tarry_series_covariance(const tarry_film_shape *shape, double n, const double *sums,
                              double *work, double *covariance) {
+    if (shape->gaps) {
+        tarry_gaps_covariance(shape, n, shape->n_lags, sums, covariance);
+        return;
+    }
     if (!defined(shape, n)) {
         fill_nan(covariance, shape->n_lags);
         return;
@@ -314,6 +357,10 @@ void tarry_pair_covariance(const tarry_film_shape *shape, double n, const double
                            const double *second, const double *sums, double *work,
                            double *covariance) {
     const size_t n_lags = shape->n_lags;
+    if (shape->gaps) {
+        tarry_gaps_covariance(shape, n, 2 * n_lags - 1, sums, covariance);
+        return;
+    }
     if (!defined(shape, n)) {
         fill_nan(covariance, 2 * n_lags - 1);
         return;

@@ -21,7 +21,10 @@
  *   otherwise: 1/(N-k) sum over t of the sample covariance of x(t) and y(t+k) over cells; undefined
  *   for one cell.
  *
- * Sums of own means are about a shift, so that large means lose no digits. */
+ * Sums of own means are about a shift, so that large means lose no digits.
+ *
+ * Where frames may be missing these functions do the same with what is there:
+ * tally/correlation_gaps.h. */
 
 #include <stdbool.h>
 #include <stddef.h>
@@ -31,6 +34,8 @@ typedef struct tarry_film_shape {
     size_t n_lags;   /* lags 0 .. n_lags - 1, at most N */
     size_t n_padded; /* a power of two, at least N + n_lags - 1 */
     bool stationary;
+    bool gaps;     /* frames may be NaN, at the ends too; stationary */
+    bool own_mean; /* with gaps: of each trace its own mean is taken off, and stays off */
 } tarry_film_shape;
 
 /* n_lags is cut to n_frames. */
@@ -43,15 +48,17 @@ size_t tarry_pair_n_sums(const tarry_film_shape *shape);
 
 /* One trace made ready in a buffer of tarry_trace_size() doubles. */
 size_t tarry_trace_size(const tarry_film_shape *shape);
+/* Doubles that adding one takes to work with. */
+size_t tarry_trace_work(const tarry_film_shape *shape);
 double tarry_trace_mean(const double *trace, size_t n);
 void tarry_trace_prepare(const tarry_film_shape *shape, const double *frames, double shift,
                          double *buffer);
 
 /* Add a trace, and a pair of them, that were made ready. `frames` as above. */
 void tarry_series_add(const tarry_film_shape *shape, const double *frames, double shift,
-                      const double *buffer, double *sums);
+                      const double *buffer, double *work, double *sums);
 void tarry_pair_add(const tarry_film_shape *shape, const double *first, const double *second,
-                    double *sums);
+                    double *work, double *sums);
 
 /* Sums over n cells for shifts lower by `by` (a pair's before those of its series). */
 void tarry_series_move(const tarry_film_shape *shape, double n, double by, double *sums);
@@ -59,7 +66,11 @@ void tarry_pair_move(const tarry_film_shape *shape, double n, const double *firs
                      const double *second, double by_second, double *sums);
 
 /* Mean less the shift, over n cells and all frames. */
-double tarry_series_mean(double n, const double *sums);
+double tarry_series_mean(const tarry_film_shape *shape, double n, const double *sums);
+
+/* Pairs of frames at a lag, and of a pair of series at one from -(n_lags - 1) on. */
+double tarry_series_pairs(const tarry_film_shape *shape, double n, const double *sums, size_t lag);
+double tarry_pair_pairs(const tarry_film_shape *shape, double n, const double *sums, ptrdiff_t lag);
 
 /* Its square; where the series is not stationary the mean over frames of that of each frame. */
 double tarry_series_mean_square(const tarry_film_shape *shape, double n, double shift,

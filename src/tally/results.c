@@ -85,3 +85,7 @@ double tarry_results_completions(const tarry_results *results) {
 int tarry_results_is_predicted(const tarry_results *results) {
     return results->is_predicted;
 }
+
+int tarry_results_is_measured(const tarry_results *results) {
+    return results->is_measured;
+}

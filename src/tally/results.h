@@ -19,6 +19,7 @@ struct tarry_results {
     double firings;
     double completions;
     bool is_predicted;
+    bool is_measured;
 };
 
 /* Empty tables. */

@@ -149,7 +149,13 @@ double tarry_tally_set_bytes(const tarry_network *network) {
 
 int tarry_tally_set_add(tarry_tally_set *set, const tarry_record *record, double *scratch,
                         tarry_error *error) {
-    tally_group *group = &set->groups[record->cell % TARRY_GROUPS];
+    return tarry_tally_set_add_to(set, record, (size_t)(record->cell % TARRY_GROUPS), scratch,
+                                  error);
+}
+
+int tarry_tally_set_add_to(tarry_tally_set *set, const tarry_record *record, size_t index,
+                           double *scratch, tarry_error *error) {
+    tally_group *group = &set->groups[index];
     int failed = group->sums ? 0 : group_init(group, set);
     assert(failed || group->n_cells <= 0.0 || record->cell > group->last_cell);
     for (size_t k = 0; !failed && k < set->n_kinds; k++) {

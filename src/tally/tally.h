@@ -88,6 +88,9 @@ void tarry_tally_set_free(tarry_tally_set *set);
  * set can only be freed. */
 int tarry_tally_set_add(tarry_tally_set *set, const tarry_record *record, double *scratch,
                         tarry_error *error);
+/* The same to a group of the caller's choice, 0 <= group < TARRY_GROUPS. */
+int tarry_tally_set_add_to(tarry_tally_set *set, const tarry_record *record, size_t group,
+                           double *scratch, tarry_error *error);
 size_t tarry_tally_set_scratch(const tarry_network *network); /* doubles */
 
 /* Bytes that a full set will take with its total and its replicates, one block in 16 counted as in

@@ -6,11 +6,14 @@
  * The sums and what follows from them are in tally/correlation.h; here is what is kept of which
  * channel and window, and the figures. A window is taken as stationary where the cells settled and
  * no protocol step comes before its end; elsewhere the mean over cells at each frame is taken off.
+ * For data it is as their reader was told. Their read-out noise is not known: what counts as the
+ * variance is the line through lags 1 to 3, put back to 0.
  * Formulas: docs/statistics.md, "Autocorrelation". */
 #include "base/error.h"
 #include "base/memory.h"
 #include "base/number.h"
 #include "base/table.h"
+#include "tally/channels.h"
 #include "tally/correlation.h"
 #include "tally/kinds.h"
 #include "tally/results.h"
@@ -49,6 +52,8 @@ static size_t n_pairs(const film_layout *layout) {
 }
 
 static bool is_stationary(const tarry_network *network, const tarry_window *window) {
+    if (network->data)
+        return network->data->mean != TARRY_FILM_MEAN_FRAME;
     for (uint32_t i = 1; i < network->n_segments; i++)
         if (network->segments[i].start < window->to)
             return false;
@@ -61,8 +66,14 @@ static bool is_film(const tarry_window *window) {
 }
 
 static tarry_film_shape shape_of(const tarry_network *network, const tarry_window *window) {
-    return tarry_film_shape_of(window->frames.to - window->frames.from, network->run.n_lags,
-                               is_stationary(network, window));
+    const bool gaps = tarry_channels_gaps(network);
+    const uint32_t n_frames = window->frames.to - window->frames.from;
+    tarry_film_shape shape = tarry_film_shape_of(gaps ? network->data->longest : n_frames,
+                                                 network->run.n_lags,
+                                                 is_stationary(network, window));
+    shape.gaps = gaps;
+    shape.own_mean = gaps && network->data->mean == TARRY_FILM_MEAN_CELL;
+    return shape;
 }
 
 /* Form: a shift for each window and series. Sums of a window: number of cells, those of its series,
@@ -87,16 +98,17 @@ static size_t autocorrelation_size(const tarry_network *network) {
     return n;
 }
 
-/* Traces of all signals, which pair, and of one product at a time. */
+/* Traces of all signals, which pair, and of one product at a time; then room to work in. */
 static size_t autocorrelation_scratch(const tarry_network *network) {
     size_t most = 0;
     for (uint32_t w = 0; w < network->run.n_windows; w++) {
         const tarry_film_shape shape = shape_of(network, &network->run.windows[w]);
-        const size_t n = tarry_trace_size(&shape);
+        const size_t n = tarry_trace_size(&shape) * (layout_of(network).n_signals + 1) +
+                         tarry_trace_work(&shape);
         if (is_film(&network->run.windows[w]) && n > most)
             most = n;
     }
-    return most * (layout_of(network).n_signals + 1);
+    return most;
 }
 
 /* One window's part of the sums. */
@@ -144,29 +156,50 @@ static double *pair_of(const window_view *view, size_t i, size_t j) {
 
 /* ---- one cell ---- */
 
+/* Where the trace of a cell begins that has no frame before: at the first that is known of any
+ * channel. */
+static uint32_t first_known(const tarry_network *network, const tarry_record *record,
+                            const tarry_window *window) {
+    uint32_t first = window->frames.to;
+    const double *frames = record->frames;
+    for (uint32_t c = 0; c < network->n_channels; c++) {
+        uint32_t t = window->frames.from;
+        while (t < first && isnan(frames[t]))
+            t++;
+        first = t;
+        frames += network->run.n_frames;
+    }
+    const uint32_t last = window->frames.to - network->data->longest;
+    return first < last ? first : last;
+}
+
 static void add_window(const tarry_network *network, const tarry_record *record,
                        const window_view *view, double *scratch) {
     const size_t n_products = view->n_series - view->n_signals;
     const size_t trace_size = tarry_trace_size(&view->shape);
+    double *work = scratch + (1 + view->n_signals) * trace_size;
+    const uint32_t from = view->shape.gaps ? first_known(network, record, view->window)
+                                           : view->window->frames.from;
     size_t series = 0, recorded = 0;
     for (uint32_t c = 0; c < network->n_channels; c++) {
-        const double *frames = record->frames + recorded * network->run.n_frames +
-                               view->window->frames.from;
+        const double *frames = record->frames + recorded * network->run.n_frames + from;
         recorded += network->channels[c].recorded;
         if (!network->channels[c].correlates)
             continue;
         if (*view->n_cells <= 0.0)
-            view->shifts[series] = tarry_trace_mean(frames, view->shape.n_frames);
+            view->shifts[series] = view->shape.gaps
+                                       ? network->data->shifts[c]
+                                       : tarry_trace_mean(frames, view->shape.n_frames);
         double *trace = scratch + (series < n_products ? 0 : 1 + series - n_products) * trace_size;
         tarry_trace_prepare(&view->shape, frames, view->shifts[series], trace);
-        tarry_series_add(&view->shape, frames, view->shifts[series], trace,
+        tarry_series_add(&view->shape, frames, view->shifts[series], trace, work,
                          series_of(view, series));
         series++;
     }
     for (size_t i = 0; i < view->n_signals; i++)
         for (size_t j = i + 1; j < view->n_signals; j++)
             tarry_pair_add(&view->shape, scratch + (1 + i) * trace_size,
-                           scratch + (1 + j) * trace_size, pair_of(view, i, j));
+                           scratch + (1 + j) * trace_size, work, pair_of(view, i, j));
     *view->n_cells += 1.0;
 }
 
@@ -253,17 +286,26 @@ static double without_noise(const tarry_signal *signal, const window_view *view,
     return (fixed - share * square) / (1.0 + share);
 }
 
+/* The line through lags 1 to 3, put back to 0: noise of single frames is in lag 0 alone. */
+static double put_back(const double *covariance) {
+    return (4.0 * covariance[1] + covariance[2] - 2.0 * covariance[3]) / 3.0;
+}
+
+enum { LAGS_PUT_BACK = 4 };
+
 static series_level level_of(const tarry_network *network, const tarry_channel *channel,
-                             const window_view *view, size_t series, double covariance_0) {
+                             const window_view *view, size_t series, const double *covariance) {
     const double mean = view->shifts[series] +
-                        tarry_series_mean(*view->n_cells, series_of(view, series));
+                        tarry_series_mean(&view->shape, *view->n_cells, series_of(view, series));
     const double background = channel->signal == TARRY_NONE
                                   ? 0.0
                                   : network->signals[channel->signal].background;
-    series_level level = {mean - background, covariance_0};
-    if (channel->signal != TARRY_NONE)
+    series_level level = {mean - background, covariance[0]};
+    if (network->data && tarry_channel_is_real(channel) && view->shape.n_lags >= LAGS_PUT_BACK)
+        level.variance = put_back(covariance);
+    else if (channel->signal != TARRY_NONE)
         level.variance = without_noise(&network->signals[channel->signal], view, series,
-                                       covariance_0);
+                                       covariance[0]);
     const double least = least_spread * fabs(mean);
     if (!(level.variance > least * least))
         level.variance = NAN;
@@ -278,7 +320,7 @@ static void series_figures(const tarry_network *network, const tarry_channel *ch
     double *scalars = figures + 3 * n;
     tarry_series_covariance(&view->shape, *view->n_cells, series_of(view, series), work,
                             covariance);
-    *level = level_of(network, channel, view, series, covariance[0]);
+    *level = level_of(network, channel, view, series, covariance);
     const double squared = level->mean * level->mean;
     for (size_t k = 0; k < n; k++) {
         correlation[k] = covariance[k] / level->variance;
@@ -373,22 +415,25 @@ static tarry_estimate ask(const report_state *reporting, size_t figure, tarry_sc
     return tarry_tally_estimate(reporting->set, reporting->kind, figure, scale);
 }
 
-/* n_rows rows of one curve, the first at lag `least`, from three runs of figures. */
+/* n_rows rows of one curve, the first at lag `least`, from three runs of figures; `sums` are those
+ * of the series or pair. */
 static int report_curve(const report_state *reporting, const window_view *view, const char *first,
                         const char *second, ptrdiff_t least, size_t n_rows, size_t figure,
-                        tarry_error *error) {
+                        const double *sums, tarry_error *error) {
     tarry_table *table = reporting->results->tables[TARRY_TABLE_autocorrelation];
     int code = TARRY_OK;
     for (size_t i = 0; !code && i < n_rows; i++) {
         const ptrdiff_t lag = least + (ptrdiff_t)i;
-        const double frames = (double)view->shape.n_frames - fabs((double)lag);
+        const double pairs = least < 0 ? tarry_pair_pairs(&view->shape, *view->n_cells, sums, lag)
+                                       : tarry_series_pairs(&view->shape, *view->n_cells, sums,
+                                                            (size_t)lag);
         const tarry_estimate covariance = ask(reporting, figure + i, TARRY_SCALE_PLAIN);
         const tarry_estimate correlation = ask(reporting, figure + n_rows + i, TARRY_SCALE_PLAIN);
         const tarry_estimate squared = ask(reporting, figure + 2 * n_rows + i, TARRY_SCALE_PLAIN);
         code = tarry_table_add(table, error, view->window->name, first, second,
-                               (double)lag * reporting->network->run.every, *view->n_cells * frames,
-                               covariance.value, correlation.value, correlation.low,
-                               correlation.high, squared.value, squared.low, squared.high);
+                               (double)lag * reporting->network->run.every, pairs, covariance.value,
+                               correlation.value, correlation.low, correlation.high, squared.value,
+                               squared.low, squared.high);
     }
     return code;
 }
@@ -465,10 +510,11 @@ static int note_decay(report_state *reporting, const window_view *view, const ch
 }
 
 static int report_series(report_state *reporting, const window_view *view,
-                         const tarry_channel *channel, size_t figure, tarry_error *error) {
+                         const tarry_channel *channel, size_t series, size_t figure,
+                         tarry_error *error) {
     const size_t n_lags = view->shape.n_lags, scalars = figure + 3 * n_lags;
     int code = report_curve(reporting, view, channel->name, channel->name, 0, n_lags, figure,
-                            error);
+                            series_of(view, series), error);
     if (!code)
         code = channel->signal != TARRY_NONE
                    ? report_signal(reporting, view, channel->name, scalars, error)
@@ -490,17 +536,19 @@ static int report_window(report_state *reporting, const window_view *view, size_
                          tarry_error *error) {
     const tarry_network *network = reporting->network;
     const size_t n_lags = view->shape.n_lags;
+    size_t series = 0;
     int code = TARRY_OK;
     for (uint32_t c = 0; !code && c < network->n_channels; c++) {
         if (!network->channels[c].correlates)
             continue;
-        code = report_series(reporting, view, &network->channels[c], *figure, error);
+        code = report_series(reporting, view, &network->channels[c], series++, *figure, error);
         *figure += series_n_figures(&view->shape);
     }
     for (size_t i = 0; !code && i < view->n_signals; i++) {
         for (size_t j = i + 1; !code && j < view->n_signals; j++) {
             code = report_curve(reporting, view, signal_name(network, i), signal_name(network, j),
-                                1 - (ptrdiff_t)n_lags, 2 * n_lags - 1, *figure, error);
+                                1 - (ptrdiff_t)n_lags, 2 * n_lags - 1, *figure, pair_of(view, i, j),
+                                error);
             *figure += pair_n_figures(&view->shape);
         }
     }
@@ -543,7 +591,7 @@ static int note_short(const report_state *reporting, tarry_error *error) {
             "correlations hold the truth in 90 %% of runs and those of plateaus "
             "in 82 to 85 %%, not in 95 %%",
             (int)CELLS_UNLIKE);
-    if (changes(network) && cells < CELLS_CHANGING)
+    if (!network->data && changes(network) && cells < CELLS_CHANGING)
         return tarry_notes_add(
             notes, (tarry_place){0}, error,
             "in windows in which means change with time, or that nothing settled "

@@ -8,6 +8,7 @@
  * allow for frames of one cell being alike. Formulas: docs/statistics.md, "Distributions". */
 #include "base/table.h"
 #include "tally/bins.h"
+#include "tally/channels.h"
 #include "tally/kinds.h"
 #include "tally/real_bins.h"
 #include "tally/results.h"
@@ -27,8 +28,9 @@ static shape shape_of(const tarry_network *network) {
     shape s = {.n_slots = (size_t)network->run.n_snapshots + network->run.n_windows};
     for (uint32_t i = 0; i < network->n_channels; i++) {
         const tarry_channel *channel = &network->channels[i];
-        s.n_species += channel->recorded && channel->species != TARRY_NONE ? s.n_slots : 0;
-        s.n_signals += channel->recorded && channel->signal != TARRY_NONE ? s.n_slots : 0;
+        const bool real = tarry_channel_is_real(channel);
+        s.n_species += channel->recorded && !real ? s.n_slots : 0;
+        s.n_signals += channel->recorded && real ? s.n_slots : 0;
     }
     return s;
 }
@@ -63,8 +65,14 @@ static size_t bins_at(const shape *s, size_t slot) {
     return s->n_signals * TARRY_REAL_BINS_FORM + slot * TARRY_REAL_BINS;
 }
 
-/* Bins start 2^-20 times as wide as the largest number in the signal's description. */
-static double least_width(const tarry_network *network, const tarry_signal *signal) {
+/* Bins start 2^-20 times as wide as the largest number in the signal's description, or as the
+ * range of the data. */
+static double least_width(const tarry_network *network, uint32_t channel) {
+    const tarry_signal *signal = &network->signals[network->channels[channel].signal];
+    if (network->data) {
+        const double range = network->data->ranges[channel];
+        return ldexp(1.0, (range > 0.0 ? ilogb(range) : 0) - 20);
+    }
     double most = fmax(fabs(signal->background), fabs(signal->noise));
     for (uint32_t i = signal->weights.from; i < signal->weights.to; i++)
         most = fmax(most, fabs(network->weights[i].weight));
@@ -78,6 +86,8 @@ static double least_width(const tarry_network *network, const tarry_signal *sign
 static int add_counts(tarry_blocks *blocks, size_t slot, const double *values, size_t n) {
     const size_t first = slot * BLOCKS_PER_SLOT * TARRY_BLOCK;
     for (size_t i = 0; i < n; i++) {
+        if (isnan(values[i])) /* missing in data */
+            continue;
         double *at = tarry_blocks_at(blocks, first + tarry_bin_of(values[i]));
         if (!at)
             return 1;
@@ -117,8 +127,8 @@ static int distribution_add(const tarry_network *network, const tarry_record *re
         const tarry_channel *channel = &network->channels[i];
         if (!channel->recorded)
             continue;
-        const bool real = channel->signal != TARRY_NONE;
-        const double least = real ? least_width(network, &network->signals[channel->signal]) : 0.0;
+        const bool real = tarry_channel_is_real(channel);
+        const double least = real ? least_width(network, i) : 0.0;
         for (size_t slot = 0; !failed && slot < s.n_slots; slot++) {
             size_t n;
             const double *values = slot_values(
@@ -160,8 +170,20 @@ typedef struct telling {
 
 static int tell_bin(const telling *t, double count, double width, const double counts[TARRY_GROUPS],
                     tarry_error *error) {
-    const tarry_estimate share = tarry_jackknife_share(tarry_tally_jackknife(t->set), counts,
-                                                       t->totals, tarry_tally_cells(t->set));
+    const size_t n_groups = tarry_tally_n_groups(t->set);
+    double here[TARRY_GROUPS], totals[TARRY_GROUPS], n_values = 0.0;
+    size_t n = 0; /* groups that have a value in this slot */
+    for (size_t g = 0; g < n_groups; g++) {
+        if (!(t->totals[g] > 0.0))
+            continue;
+        here[n] = counts[g];
+        totals[n++] = t->totals[g];
+        n_values += t->totals[g];
+    }
+    const tarry_jackknife some = n < n_groups ? tarry_jackknife_of(n)
+                                              : *tarry_tally_jackknife(t->set);
+    const double n_cells = t->window ? tarry_tally_cells(t->set) : n_values;
+    const tarry_estimate share = tarry_jackknife_share(&some, here, totals, n_cells);
     return tarry_table_add(t->table, error, t->name, t->window, t->time, count, width, share.value,
                            share.low, share.high);
 }
@@ -228,7 +250,7 @@ static int distribution_report(const tarry_network *network, const tarry_tally_s
     for (uint32_t i = 0; !code && i < network->n_channels; i++) {
         const tarry_channel *channel = &network->channels[i];
         for (size_t slot = 0; !code && channel->recorded && slot < n_slots; slot++) {
-            const bool pooled = slot >= run->n_snapshots, real = channel->signal != TARRY_NONE;
+            const bool pooled = slot >= run->n_snapshots, real = tarry_channel_is_real(channel);
             telling t = {.network = network, .set = set, .kind = kind, .name = channel->name};
             t.window = pooled ? run->windows[slot - run->n_snapshots].name : NULL;
             t.time = pooled ? NAN : run->snapshots[slot];

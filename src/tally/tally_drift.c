@@ -1,6 +1,6 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 
-/* Drift: does a product's mean move within a window? It only warns.
+/* Drift: does a product's mean, or one of data, move within a window? It only warns.
  *
  * Each cell gives the difference between its means over the frames of the second and of the first
  * half of the window; cells are independent, so that Student's paired test asks whether the mean
@@ -21,9 +21,13 @@
 static const double level = 1e-3; /* of all tests of a run together */
 enum { MOST_NOTES = 10 };
 
-enum { FIRST, SECOND, SQUARES, N_SUMS }; /* means of the halves, squared differences */
+enum { FIRST, SECOND, SQUARES, CELLS, N_SUMS }; /* means of halves, squared differences, cells */
 
-/* Every recorded channel has room for its sums; those that are no product leave it unused. */
+static bool is_tested(const tarry_network *network, const tarry_channel *channel) {
+    return network->data || tarry_channel_is_product(network, channel);
+}
+
+/* Every recorded channel has room for its sums; those that are not tested leave it unused. */
 static size_t drift_size(const tarry_network *network) {
     return (size_t)tarry_channels_recorded(network) * network->run.n_windows * N_SUMS;
 }
@@ -34,11 +38,16 @@ static uint32_t half_of(const tarry_window *window) {
     return range.to > range.from ? (range.to - range.from) / 2 : 0;
 }
 
+/* Of those that are known; NaN where none is. */
 static double mean_of(const double *values, uint32_t n) {
     double sum = 0.0;
-    for (uint32_t i = 0; i < n; i++)
-        sum += values[i];
-    return sum / n;
+    uint32_t known = 0;
+    for (uint32_t i = 0; i < n; i++) {
+        const bool is_known = !isnan(values[i]);
+        sum += is_known ? values[i] : 0.0;
+        known += is_known;
+    }
+    return sum / known;
 }
 
 static void add_window(const tarry_window *window, const double *frames, double *sums) {
@@ -47,6 +56,9 @@ static void add_window(const tarry_window *window, const double *frames, double 
         return;
     const double first = mean_of(frames + window->frames.from, half);
     const double second = mean_of(frames + window->frames.to - half, half);
+    if (isnan(first) || isnan(second))
+        return;
+    sums[CELLS] += 1.0;
     sums[FIRST] += first;
     sums[SECOND] += second;
     sums[SQUARES] += (second - first) * (second - first);
@@ -62,7 +74,7 @@ static void drift_add(const tarry_network *network, const tarry_record *record, 
         if (!channel->recorded)
             continue;
         for (uint32_t w = 0; w < run->n_windows; w++, sums += N_SUMS)
-            if (tarry_channel_is_product(network, channel))
+            if (is_tested(network, channel))
                 add_window(&run->windows[w], frames, sums);
         frames += run->n_frames;
     }
@@ -77,7 +89,8 @@ typedef struct drift_test {
 } drift_test;
 
 /* The paired test's two-sided p-value from sums over n >= 2 cells. */
-static double p_value(double n, const double sums[N_SUMS]) {
+static double p_value(const double sums[N_SUMS]) {
+    const double n = sums[CELLS];
     const double mean = (sums[SECOND] - sums[FIRST]) / n;
     const double variance = (sums[SQUARES] - n * mean * mean) / (n - 1.0);
     if (mean == 0.0)
@@ -87,17 +100,17 @@ static double p_value(double n, const double sums[N_SUMS]) {
     return 2.0 * gsl_cdf_tdist_Q(fabs(mean) / sqrt(variance / n), n - 1.0);
 }
 
-static size_t make_tests(const tarry_network *network, const double *sums, double cells,
-                         drift_test *tests) {
+static size_t make_tests(const tarry_network *network, const double *sums, drift_test *tests) {
     const tarry_run_plan *run = &network->run;
     size_t n = 0;
     for (uint32_t i = 0; i < network->n_channels; i++) {
         const tarry_channel *channel = &network->channels[i];
         for (uint32_t w = 0; channel->recorded && w < run->n_windows; w++, sums += N_SUMS) {
-            if (!tarry_channel_is_product(network, channel) || half_of(&run->windows[w]) == 0)
+            const double cells = sums[CELLS];
+            if (!is_tested(network, channel) || half_of(&run->windows[w]) == 0 || cells < 2.0)
                 continue;
             tests[n++] = (drift_test){i, w, sums[FIRST] / cells, sums[SECOND] / cells,
-                                      p_value(cells, sums)};
+                                      p_value(sums)};
         }
     }
     return n;
@@ -141,17 +154,21 @@ static const char *show(double x, char out[TARRY_NUMBER_SIZE]) {
 static int warn(const tarry_network *network, const drift_test *test, tarry_notes *notes,
                 tarry_error *error) {
     const tarry_channel *channel = &network->channels[test->channel];
-    const int32_t gene = network->species[channel->species].gene;
+    const int32_t gene = network->data ? TARRY_NONE : network->species[channel->species].gene;
+    const tarry_place place = network->data ? (tarry_place){0} : network->genes[gene].place;
     char first[TARRY_NUMBER_SIZE], second[TARRY_NUMBER_SIZE], p[TARRY_NUMBER_SIZE + 2] = "= ";
     show(test->p, p + 2);
-    return tarry_notes_add(notes, network->genes[gene].place, error,
-                           "%s drifts in window %s: its mean is %s in the first half and %s in the "
-                           "second (paired test over cells, p %s after Holm), so figures pooled "
-                           "over the window mix the two; settle longer (run: settle), or choose "
-                           "windows in which it is steady",
-                           channel->name, network->run.windows[test->window].name,
-                           show(test->first, first), show(test->second, second),
-                           test->p < 1e-12 ? "< 1e-12" : p);
+    return tarry_notes_add(
+        notes, place, error,
+        "%s drifts in window %s: its mean is %s in the first half and %s in the "
+        "second (paired test over cells, p %s after Holm), so figures pooled "
+        "over the window mix the two; %s",
+        channel->name, network->run.windows[test->window].name, show(test->first, first),
+        show(test->second, second), test->p < 1e-12 ? "< 1e-12" : p,
+        network->data ? "cut the time in which it is steady (--from, --to), or "
+                        "take off the mean at each frame (--mean frame)"
+                      : "settle longer (run: settle), or choose windows in which "
+                        "it is steady");
 }
 
 static int drift_report(const tarry_network *network, const tarry_tally_set *set,
@@ -162,7 +179,7 @@ static int drift_report(const tarry_network *network, const tarry_tally_set *set
     drift_test *tests = tarry_calloc(drift_size(network) / N_SUMS, sizeof *tests);
     if (!tests)
         return tarry_fail_memory(error, "the tests for drift");
-    const size_t n = make_tests(network, tarry_tally_sums(set, kind), cells, tests);
+    const size_t n = make_tests(network, tarry_tally_sums(set, kind), tests);
     const size_t n_drift = judge(tests, n);
     int code = TARRY_OK;
     for (size_t i = 0; !code && i < n_drift && i < MOST_NOTES; i++)

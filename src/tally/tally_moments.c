@@ -8,6 +8,9 @@
  * moves the sums of one group to the shift of the other, which for counts is exact as well.
  * (Shifted data: Chan, Golub & LeVeque 1983, Am. Stat. 37:242.)
  *
+ * Data may lack values: then each slot has its own number of cells, and its standard errors rest on
+ * the groups that have any there.
+ *
  * Standard errors are worked out in `report`, slot by slot, from the groups' sums. Formulas:
  * docs/statistics.md, "Moments". */
 #include "base/table.h"
@@ -29,6 +32,7 @@ typedef struct slots {
     size_t n_snapshots;
     size_t n;
     size_t shift, sum, squares, cells; /* where they start in the sums */
+    bool gaps;                         /* a number of cells for each slot, not one for all */
 } slots;
 
 static slots slots_of(const tarry_network *network) {
@@ -39,15 +43,22 @@ static slots slots_of(const tarry_network *network) {
     s.sum = s.n;
     s.squares = 2 * s.n;
     s.cells = 3 * s.n;
+    s.gaps = tarry_channels_gaps(network);
     return s;
 }
 
 static size_t moments_size(const tarry_network *network) {
-    return slots_of(network).cells + 1;
+    const slots s = slots_of(network);
+    return s.cells + (s.gaps ? s.n : 1);
 }
 
 static size_t moments_form(const tarry_network *network) {
     return slots_of(network).n;
+}
+
+/* Cells that have a value in slot i. */
+static double cells_in(const slots *s, const double *sums, size_t i) {
+    return sums[s->cells + (s->gaps ? i : 0)];
 }
 
 /* ---- sums ------------------------------------------------------------------------------------ */
@@ -64,10 +75,30 @@ static void add_values(const double *values, size_t n, bool first, double *restr
     }
 }
 
+/* Values that are there, to the slots from number `slot` on. */
+static void add_known(const slots *s, const double *values, size_t n, size_t slot, double *sums) {
+    for (size_t i = 0; i < n; i++) {
+        const size_t at = slot + i;
+        if (isnan(values[i]))
+            continue;
+        if (sums[s->cells + at] <= 0.0)
+            sums[s->shift + at] = values[i];
+        const double d = values[i] - sums[s->shift + at];
+        sums[s->sum + at] += d;
+        sums[s->squares + at] += d * d;
+        sums[s->cells + at] += 1.0;
+    }
+}
+
 static void moments_add(const tarry_network *network, const tarry_record *record, double *sums,
                         double *scratch) {
     (void)scratch;
     const slots s = slots_of(network);
+    if (s.gaps) {
+        add_known(&s, record->frames, s.n_frames, 0, sums);
+        add_known(&s, record->snapshots, s.n_snapshots, s.n_frames, sums);
+        return;
+    }
     const bool first = sums[s.cells] <= 0.0;
     add_values(record->frames, s.n_frames, first, sums + s.shift, sums + s.sum, sums + s.squares);
     add_values(record->snapshots, s.n_snapshots, first, sums + s.shift + s.n_frames,
@@ -78,8 +109,10 @@ static void moments_add(const tarry_network *network, const tarry_record *record
 /* Move the other's sums to the shift of `one`. */
 static void moments_align(const tarry_network *network, double *one, double *other) {
     const slots s = slots_of(network);
-    const double cells = other[s.cells];
     for (size_t i = 0; i < s.n; i++) {
+        const double cells = cells_in(&s, other, i);
+        if (!(cells_in(&s, one, i) > 0.0))
+            one[s.shift + i] = other[s.shift + i];
         const double by = other[s.shift + i] - one[s.shift + i];
         const double sum = other[s.sum + i];
         other[s.squares + i] += by * (2.0 * sum + cells * by);
@@ -103,14 +136,16 @@ typedef struct source {
     const double *total;
     const double *groups[TARRY_GROUPS];
     slots slots;
+    size_t n_groups;
 } source;
 
 static source source_of(const tarry_network *network, const tarry_tally_set *set,
                         const tarry_tally_kind *kind) {
     source from = {.jackknife = tarry_tally_jackknife(set),
                    .total = tarry_tally_sums(set, kind),
-                   .slots = slots_of(network)};
-    for (size_t g = 0; g < tarry_tally_n_groups(set); g++)
+                   .slots = slots_of(network),
+                   .n_groups = tarry_tally_n_groups(set)};
+    for (size_t g = 0; g < from.n_groups; g++)
         from.groups[g] = tarry_tally_group_sums(set, kind, g);
     return from;
 }
@@ -120,18 +155,24 @@ static void estimate_slot(const source *from, size_t i, double figures[TARRY_N_M
     const slots *s = &from->slots;
     const double *total = from->total;
     const double shift = total[s->shift + i];
+    const double cells = cells_in(s, total, i);
     double replicates[TARRY_N_MOMENTS][TARRY_GROUPS];
-    work_out(total[s->cells], shift, total[s->sum + i], total[s->squares + i], figures);
-    for (size_t g = 0; g < from->jackknife->n_groups; g++) {
+    size_t n = 0; /* groups that have a value here */
+    work_out(cells, shift, total[s->sum + i], total[s->squares + i], figures);
+    for (size_t g = 0; g < from->n_groups; g++) {
         const double *group = from->groups[g];
         double without[TARRY_N_MOMENTS];
-        work_out(total[s->cells] - group[s->cells], shift, total[s->sum + i] - group[s->sum + i],
+        if (!(cells_in(s, group, i) > 0.0))
+            continue;
+        work_out(cells - cells_in(s, group, i), shift, total[s->sum + i] - group[s->sum + i],
                  total[s->squares + i] - group[s->squares + i], without);
         for (int j = 0; j < TARRY_N_MOMENTS; j++)
-            replicates[j][g] = without[j];
+            replicates[j][n] = without[j];
+        n++;
     }
+    const tarry_jackknife some = n < from->n_groups ? tarry_jackknife_of(n) : *from->jackknife;
     for (int j = 0; j < TARRY_N_MOMENTS; j++)
-        errors[j] = tarry_jackknife_se(from->jackknife, figures[j], replicates[j]);
+        errors[j] = tarry_jackknife_se(&some, figures[j], replicates[j]);
 }
 
 /* ---- the table ------------------------------------------------------------------------------- */
@@ -171,9 +212,12 @@ static int note_rough(const rough_rows *rough, tarry_notes *notes, tarry_error *
 static int report_slot(const source *from, const tarry_channel *channel, size_t slot, double time,
                        tarry_table *table, rough_rows *rough, tarry_error *error) {
     double figures[TARRY_N_MOMENTS], errors[TARRY_N_MOMENTS];
+    if (!(cells_in(&from->slots, from->total, slot) > 0.0))
+        return TARRY_OK;
     estimate_slot(from, slot, figures, errors);
-    look_at(channel, figures, errors, rough);
-    if (channel->species == TARRY_NONE)
+    if (!(from->slots.gaps && tarry_channel_is_real(channel))) /* few replicates, as a rule */
+        look_at(channel, figures, errors, rough);
+    if (tarry_channel_is_real(channel))
         figures[TARRY_FANO] = errors[TARRY_FANO] = NAN;
     return tarry_table_add(table, error, channel->name, time, figures[TARRY_MEAN],
                            figures[TARRY_SD], errors[TARRY_MEAN], errors[TARRY_SD],
@@ -189,10 +233,10 @@ static int report_channel(const tarry_network *network, const source *from, uint
     const tarry_channel *c = &network->channels[channel];
     const size_t snapshot = from->slots.n_frames + (size_t)channel * run->n_snapshots;
     const uint32_t n_frames = c->recorded ? run->n_frames : 0;
-    const double same = 1e-9 * run->every;
+    const double same = 1e-9 * run->every, start = network->data ? network->data->start : 0.0;
     int code = TARRY_OK;
     for (uint32_t i = 0, j = 0; !code && (i < n_frames || j < run->n_snapshots);) {
-        const double at = i + 1 < n_frames ? i * run->every : run->until;
+        const double at = i + 1 < n_frames ? start + i * run->every : run->until;
         const double frame_time = i < n_frames ? at : INFINITY;
         const double snapshot_time = j < run->n_snapshots ? run->snapshots[j] : INFINITY;
         if (snapshot_time <= frame_time + same) {

@@ -5,8 +5,11 @@
  *
  * Frames of one cell are not independent. The mean of squares about the pooled mean is short by the
  * variance of that mean, which is estimated from the spread of the cells' own means and added; with
- * one frame a cell this is the usual n - 1 divisor. Sums are about a shift as in tally_moments.c,
- * fixed by the first frame of the group's first cell. Formulas: docs/statistics.md, "Pooled". */
+ * one frame a cell this is the usual n - 1 divisor. Of data each cell has as many frames as are
+ * known of it; the mean is then a ratio, and its variance that of a ratio estimator (Cochran 1977,
+ * Sampling Techniques, section 6.3), which with equal numbers of frames is the same. Sums are about
+ * a shift as in tally_moments.c, fixed by the first frame of the group's first cell. Formulas:
+ * docs/statistics.md, "Pooled". */
 #include "base/table.h"
 #include "tally/channels.h"
 #include "tally/kinds.h"
@@ -29,22 +32,31 @@ enum {
     SUM,     /* of d over frames and cells */
     SQUARES, /* of d^2 over frames and cells */
     CELLS,   /* of (sum of d over a cell's frames)^2 over cells */
-    N_SUMS
+    N_SUMS,
+    /* where frames may be missing also, over cells, sums of */
+    FRAMES = N_SUMS, /* their number f, */
+    FRAMES_SQUARED,  /* f^2, */
+    PRODUCTS,        /* f times the sum of d, */
+    KNOWN,           /* and 1 for each cell with f > 0 */
+    N_SUMS_GAPS
 };
 
-/* The sums: a shift for each channel and window, then N_SUMS for each, then the number of cells. */
+/* The sums: a shift for each channel and window, then n_sums for each, then the number of cells. */
 typedef struct layout {
     size_t n_windows;
     size_t n; /* recorded channels times windows */
+    size_t n_sums;
 } layout;
 
 static layout layout_of(const tarry_network *network) {
     const size_t n_windows = network->run.n_windows;
-    return (layout){n_windows, tarry_channels_recorded(network) * n_windows};
+    return (layout){n_windows, tarry_channels_recorded(network) * n_windows,
+                    tarry_channels_gaps(network) ? N_SUMS_GAPS : N_SUMS};
 }
 
 static size_t pooled_size(const tarry_network *network) {
-    return layout_of(network).n * (1 + N_SUMS) + 1;
+    const layout l = layout_of(network);
+    return l.n * (1 + l.n_sums) + 1;
 }
 
 static size_t pooled_form(const tarry_network *network) {
@@ -69,26 +81,68 @@ static void add_frames(const double *frames, size_t n, double shift, double sums
     sums[CELLS] += sum * sum;
 }
 
+/* Frames that are known; the first of the group gives the shift. */
+static void add_known(const double *frames, size_t n, double *shift, double sums[N_SUMS_GAPS]) {
+    double sum = 0.0, squares = 0.0, known = 0.0;
+    for (size_t i = 0; i < n; i++) {
+        if (isnan(frames[i]))
+            continue;
+        if (sums[FRAMES] + known <= 0.0)
+            *shift = frames[i];
+        const double d = frames[i] - *shift;
+        sum += d;
+        squares += d * d;
+        known += 1.0;
+    }
+    sums[SUM] += sum;
+    sums[SQUARES] += squares;
+    sums[CELLS] += sum * sum;
+    sums[FRAMES] += known;
+    sums[FRAMES_SQUARED] += known * known;
+    sums[PRODUCTS] += known * sum;
+    sums[KNOWN] += known > 0.0;
+}
+
 static void pooled_add(const tarry_network *network, const tarry_record *record, double *sums,
                        double *scratch) {
     (void)scratch;
     const layout l = layout_of(network);
-    double *cells = sums + l.n * (1 + N_SUMS);
+    double *cells = sums + l.n * (1 + l.n_sums);
     for (size_t i = 0; i < l.n; i++) {
         const tarry_range range = network->run.windows[i % l.n_windows].frames;
         const double *frames = record->frames + i / l.n_windows * network->run.n_frames;
+        double *own = sums + l.n + i * l.n_sums;
         if (range.from >= range.to)
             continue;
+        if (l.n_sums == N_SUMS_GAPS) {
+            add_known(frames + range.from, range.to - range.from, &sums[i], own);
+            continue;
+        }
         if (*cells <= 0.0)
             sums[i] = frames[range.from];
-        add_frames(frames + range.from, range.to - range.from, sums[i], sums + l.n + i * N_SUMS);
+        add_frames(frames + range.from, range.to - range.from, sums[i], own);
     }
     *cells += 1.0;
 }
 
+static void align_known(double *one_shift, const double *one, double *other_shift, double *other) {
+    if (one[FRAMES] <= 0.0)
+        *one_shift = *other_shift;
+    const double by = *other_shift - *one_shift;
+    other[SQUARES] += by * (2.0 * other[SUM] + other[FRAMES] * by);
+    other[CELLS] += by * (2.0 * other[PRODUCTS] + other[FRAMES_SQUARED] * by);
+    other[PRODUCTS] += by * other[FRAMES_SQUARED];
+    other[SUM] += by * other[FRAMES];
+    *other_shift = *one_shift;
+}
+
 static void pooled_align(const tarry_network *network, double *one, double *other) {
     const layout l = layout_of(network);
-    const double cells = other[l.n * (1 + N_SUMS)];
+    const double cells = other[l.n * (1 + l.n_sums)];
+    for (size_t i = 0; i < l.n && l.n_sums == N_SUMS_GAPS; i++)
+        align_known(&one[i], one + l.n + i * l.n_sums, &other[i], other + l.n + i * l.n_sums);
+    if (l.n_sums == N_SUMS_GAPS)
+        return;
     for (size_t i = 0; i < l.n; i++) {
         const double frames = n_frames(&network->run.windows[i % l.n_windows]);
         const double by = other[i] - one[i], by_cell = frames * by;
@@ -112,12 +166,27 @@ static double variance_of(double cells, double frames, const double sums[N_SUMS]
     return about_mean / n + between / (cells - 1.0) / cells / (frames * frames);
 }
 
+/* The same where cells differ in their number of frames. */
+static double variance_known(const double sums[N_SUMS_GAPS]) {
+    const double n = sums[FRAMES], cells = sums[KNOWN], mean = sums[SUM] / n;
+    const double about_mean = sums[SQUARES] - sums[SUM] * mean;
+    if (cells < 2.0)
+        return n >= 2.0 ? about_mean / (n - 1.0) : NAN;
+    const double between = sums[CELLS] - 2.0 * mean * sums[PRODUCTS] +
+                           mean * mean * sums[FRAMES_SQUARED];
+    return about_mean / n + between / (n * n) * cells / (cells - 1.0);
+}
+
 static void work_out(const double *sums, const double *less, layout l, size_t i, double frames,
                      double figures[TARRY_N_MOMENTS]) {
-    const size_t at = l.n + i * N_SUMS, cells_at = l.n * (1 + N_SUMS);
-    double left[N_SUMS];
-    for (size_t j = 0; j < N_SUMS; j++)
+    const size_t at = l.n + i * l.n_sums, cells_at = l.n * (1 + l.n_sums);
+    double left[N_SUMS_GAPS];
+    for (size_t j = 0; j < l.n_sums; j++)
         left[j] = sums[at + j] - (less ? less[at + j] : 0.0);
+    if (l.n_sums == N_SUMS_GAPS) {
+        tarry_moments_of(sums[i] + left[SUM] / left[FRAMES], variance_known(left), figures);
+        return;
+    }
     const double cells = sums[cells_at] - (less ? less[cells_at] : 0.0);
     tarry_moments_of(sums[i] + left[SUM] / (cells * frames), variance_of(cells, frames, left),
                      figures);
