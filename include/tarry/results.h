@@ -65,6 +65,9 @@ double tarry_results_completions(const tarry_results *results);
 /* True of what tarry_predict worked out: there are no cells then, no seed and no sampler. */
 int tarry_results_is_predicted(const tarry_results *results);
 
+/* True of what tarry_measure found in data: there is no model then, no seed and no sampler. */
+int tarry_results_is_measured(const tarry_results *results);
+
 void tarry_results_free(tarry_results *results); /* NULL is fine */
 
 #endif

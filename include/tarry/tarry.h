@@ -8,6 +8,7 @@
 
 #include "tarry/check.h"
 #include "tarry/error.h"
+#include "tarry/measure.h"
 #include "tarry/model.h"
 #include "tarry/predict.h"
 #include "tarry/results.h"

@@ -3,6 +3,7 @@
 /* tarry run: simulate, write the files of the run, print the table per gene. */
 
 #include "cli/commands.h"
+#include "cli/drawing.h"
 #include "cli/interrupt.h"
 #include "cli/progress.h"
 #include "cli/talk.h"
@@ -11,7 +12,6 @@
 #include <inttypes.h>
 #include <stdlib.h>
 #include <string.h>
-#include <unistd.h>
 
 /* The demonstration: a model of models/ that the build puts into the program. */
 extern const char tarry_demo_model[];
@@ -22,25 +22,6 @@ enum {
     TABLE_WIDTH = 80,
     TRACED = 3, /* cells whose traces are drawn */
 };
-
-static int read_format(const char *word, tarry_figure_format *format) {
-    static const char *const words[] = {
-#define WORD(name, word) word,
-        TARRY_FIGURE_FORMATS(WORD)
-#undef WORD
-    };
-    *format = TARRY_FIGURE_SVG;
-    if (!word)
-        return 0;
-    for (size_t i = 0; i < sizeof words / sizeof *words; i++) {
-        if (!strcmp(word, words[i])) {
-            *format = (tarry_figure_format)i;
-            return 0;
-        }
-    }
-    return tarry_complain(TARRY_EXIT_WRONG,
-                          "--figures %s: one of svg, pdf, png and none is due here", word);
-}
 
 /* "a,b" -> names and a text that holds them, both to be freed. */
 static int split_genes(const char *list, char **text, const char ***names, size_t *n) {
@@ -64,27 +45,6 @@ static int split_genes(const char *list, char **text, const char ***names, size_
         (*names)[(*n)++] = at;
     }
     return 0;
-}
-
-static void show_warning(void *context, const char *sentence) {
-    const tarry_settings *settings = context;
-    if (!settings->quiet)
-        tarry_talk("%s", sentence);
-}
-
-/* The program that draws, as named in the variable GNUPLOT: from the root where it is a path, since
- * it will run in another folder. NULL where it is not named; to be freed. */
-static char *find_gnuplot(void) {
-    const char *named = getenv("GNUPLOT");
-    char here[4096];
-    if (!named || !*named)
-        return NULL;
-    if (*named == '/' || !strchr(named, '/') || !getcwd(here, sizeof here))
-        return strdup(named);
-    char *path = malloc(strlen(here) + strlen(named) + 2);
-    if (path)
-        sprintf(path, "%s/%s", here, named);
-    return path;
 }
 
 static int read_model(const tarry_settings *settings, tarry_model **model) {
@@ -207,14 +167,13 @@ static int run(const tarry_settings *settings, tarry_figure_options *figures) {
 }
 
 int tarry_command_run(const tarry_settings *settings) {
-    tarry_figure_options figures = {.warn = show_warning, .warn_context = (void *)settings};
-    char *genes = NULL, *gnuplot = find_gnuplot();
+    tarry_figure_options figures;
+    char *genes = NULL, *gnuplot = NULL;
     const char **names = NULL;
-    int status = read_format(settings->figures, &figures.format);
+    int status = tarry_drawing_read(settings, &figures, &gnuplot);
     if (!status)
         status = split_genes(settings->genes, &genes, &names, &figures.n_genes);
     figures.genes = names;
-    figures.gnuplot = gnuplot;
     if (!status)
         status = run(settings, &figures);
     free(genes);

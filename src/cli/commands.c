@@ -26,6 +26,13 @@ static const char about_predict[] =
     "simulating any, and writes the same files. What the mathematics does not cover\n"
     "is left out, and said why.\n";
 
+static const char about_measure[] =
+    "Measures laboratory data by the estimators of a run and writes the same files.\n"
+    "DATA.csv holds traces of single cells (cell,time,NAME...), counts in fixed cells\n"
+    "(time,NAME..., a row a cell; or time,count,cells) or means (time,NAME,NAME_se).\n"
+    "A column `group` (dish, embryo, day) is what intervals come from, where there\n"
+    "are 4 groups or more. --time names the unit of the column `time`.\n";
+
 const tarry_command tarry_commands[] = {
     {"check", "MODEL", TARRY_FOR_CHECK, "read and check a model, print what it comes down to",
      about_check, tarry_command_check},
@@ -33,7 +40,8 @@ const tarry_command tarry_commands[] = {
      tarry_command_run},
     {"predict", "MODEL", TARRY_FOR_PREDICT, "the same without simulation, where known",
      about_predict, tarry_command_predict},
-    {"measure", "DATA.csv", TARRY_FOR_ALL, "the same figures from laboratory data", NULL, NULL},
+    {"measure", "DATA.csv", TARRY_FOR_MEASURE, "the same figures from laboratory data",
+     about_measure, tarry_command_measure},
     {"fit", "MODEL", TARRY_FOR_ALL, "rates and delays from data, with intervals", NULL, NULL},
     {"compare", "MODEL", TARRY_FOR_ALL, "which of several models the data favour", NULL, NULL},
     {"plan", "MODEL", TARRY_FOR_ALL, "which experiment would tell most", NULL, NULL},
@@ -117,7 +125,8 @@ char *tarry_command_folder(const char *path, const char *ending) {
     const char *slash = strrchr(path, '/');
     const char *name = slash ? slash + 1 : path;
     const char *dot = strrchr(name, '.');
-    const bool known = dot && dot != name && (!strcmp(dot, ".yaml") || !strcmp(dot, ".yml"));
+    const bool known = dot && dot != name &&
+                       (!strcmp(dot, ".yaml") || !strcmp(dot, ".yml") || !strcmp(dot, ".csv"));
     const size_t n = known ? (size_t)(dot - name) : strlen(name);
     char *folder = malloc(n + strlen(ending) + 1);
     if (folder) {

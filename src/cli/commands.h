@@ -39,6 +39,7 @@ int tarry_command_help_on(const tarry_command *command);
 int tarry_command_run(const tarry_settings *settings);
 int tarry_command_check(const tarry_settings *settings);
 int tarry_command_predict(const tarry_settings *settings);
+int tarry_command_measure(const tarry_settings *settings);
 int tarry_command_help(const tarry_settings *settings);
 int tarry_command_version(const tarry_settings *settings);
 

@@ -34,33 +34,50 @@ typedef struct option_row {
 
 #define FIELD(name) offsetof(tarry_settings, name)
 #define MODEL_COMMANDS (TARRY_FOR_RUN | TARRY_FOR_CHECK | TARRY_FOR_PREDICT)
-#define WRITING_COMMANDS (TARRY_FOR_RUN | TARRY_FOR_PREDICT)
+#define WRITING_COMMANDS (TARRY_FOR_RUN | TARRY_FOR_PREDICT | TARRY_FOR_MEASURE)
+#define WORKING_COMMANDS (TARRY_FOR_RUN | TARRY_FOR_MEASURE)
 #define MOST_CELLS 1000000000000
 #define MOST_SEED 9223372036854775807
 
 static const option_row options[] = {
     {"out", "DIR", VALUE_TEXT, WRITING_COMMANDS, FIELD(out), 0, 0,
-     "folder for results; default: NAME.out or NAME.exact"},
+     "folder for results; default: NAME.out (.exact, .measured)"},
     {"overwrite", NULL, VALUE_NONE, WRITING_COMMANDS, FIELD(overwrite), 0, 0,
      "replace the results of an earlier run in that folder"},
+    {"time", "UNIT", VALUE_KEY, TARRY_FOR_MEASURE, 0, 0, 0,
+     "unit of the column `time` (s, min, h or d); must be given"},
+    {"kind", "KIND", VALUE_KEY, TARRY_FOR_MEASURE, 0, 0, 0,
+     "traces, counts or means; default: told from the columns"},
+    {"counted", "A,B,...", VALUE_KEY, TARRY_FOR_MEASURE, 0, 0, 0,
+     "columns of traces that are counts, not brightness (or all)"},
+    {"gaps", "HOW", VALUE_KEY, TARRY_FOR_MEASURE, 0, 0, 0,
+     "frames that are not there were `dark` or are `missing`"},
+    {"background", "X", VALUE_KEY, TARRY_FOR_MEASURE, 0, 0, 0,
+     "what is read where nothing shines; default: 0"},
+    {"mean", "WHICH", VALUE_KEY, TARRY_FOR_MEASURE, 0, 0, 0,
+     "taken off to correlate: of all (default), frame or cell"},
+    {"from", "T", VALUE_KEY, TARRY_FOR_MEASURE, 0, 0, 0, "leave out what comes before"},
+    {"to", "T", VALUE_KEY, TARRY_FOR_MEASURE, 0, 0, 0, "leave out what comes after"},
+    {"lags", "T", VALUE_KEY, TARRY_FOR_MEASURE, 0, 0, 0,
+     "longest lag; default: a quarter of the longest trace"},
     {"cells", "N", VALUE_NUMBER, MODEL_COMMANDS, 0, 1, MOST_CELLS, "cells to simulate"},
     {"settle", "T", VALUE_KEY, MODEL_COMMANDS, 0, 0, 0,
      "time simulated before the record, or `auto`"},
     {"until", "T", VALUE_KEY, MODEL_COMMANDS, 0, 0, 0, "length of the record"},
-    {"every", "T", VALUE_KEY, MODEL_COMMANDS, 0, 0, 0, "time between frames"},
-    {"snapshots", "T,T,...", VALUE_KEY, MODEL_COMMANDS, 0, 0, 0,
+    {"every", "T", VALUE_KEY, MODEL_COMMANDS | TARRY_FOR_MEASURE, 0, 0, 0, "time between frames"},
+    {"snapshots", "T,T,...", VALUE_KEY, MODEL_COMMANDS | TARRY_FOR_MEASURE, 0, 0, 0,
      "times at which distributions are taken"},
     {"seed", "N", VALUE_NUMBER, MODEL_COMMANDS, 0, 0, MOST_SEED,
      "the same seed gives the same results"},
     {"set", "NAME=VALUE", VALUE_SETTING, MODEL_COMMANDS, 0, 0, 0,
      "give a parameter another value; may be repeated"},
-    {"threads", "N", VALUE_WHOLE, TARRY_FOR_RUN, FIELD(threads), 1, 4096,
+    {"threads", "N", VALUE_WHOLE, WORKING_COMMANDS, FIELD(threads), 1, 4096,
      "threads to work with; default: all cores"},
     {"sampler", "NAME", VALUE_TEXT, TARRY_FOR_RUN, FIELD(sampler), 0, 0,
      "how the next reaction is drawn; default: direct"},
     {"keep", "N", VALUE_WHOLE, TARRY_FOR_RUN, FIELD(keep), 0, MOST_CELLS,
      "write traces of the first N cells"},
-    {"figures", "KIND", VALUE_TEXT, TARRY_FOR_RUN, FIELD(figures), 0, 0,
+    {"figures", "KIND", VALUE_TEXT, WORKING_COMMANDS, FIELD(figures), 0, 0,
      "svg (default), pdf, png or none"},
     {"genes", "A,B,...", VALUE_TEXT, TARRY_FOR_RUN, FIELD(genes), 0, 0,
      "genes that figures show; default: the first 6"},

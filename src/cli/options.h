@@ -17,6 +17,7 @@ typedef enum tarry_command_bit {
     TARRY_FOR_VERSION = 4,
     TARRY_FOR_PREDICT = 8,
     TARRY_FOR_HELP = 16,
+    TARRY_FOR_MEASURE = 32,
     TARRY_FOR_ALL = ~0,
 } tarry_command_bit;
 

@@ -46,7 +46,7 @@ static int make_all(tarry_figure_work *work, const tarry_figure_subject *subject
 }
 
 static bool is_plain(const tarry_network *network, const tarry_channel *channel) {
-    return channel->species != TARRY_NONE &&
+    return channel->species != TARRY_NONE && channel->signal == TARRY_NONE &&
            network->species[channel->species].role == TARRY_SPECIES_PLAIN;
 }
 

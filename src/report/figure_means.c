@@ -12,8 +12,10 @@
 /* Mean and its interval: plain, Student's t with a group less than there are. */
 static void add_means(const tarry_figure_work *work, const char *name, tarry_plot *plot) {
     const int64_t n_cells = tarry_results_n_cells(work->results);
-    const tarry_jackknife jackknife = tarry_jackknife_of(n_cells < TARRY_GROUPS ? (size_t)n_cells
-                                                                                : TARRY_GROUPS);
+    const tarry_data_plan *data = work->network->data;
+    const int64_t n = data ? data->n_resampled : n_cells;
+    const tarry_jackknife jackknife = tarry_jackknife_of(n < TARRY_GROUPS ? (size_t)n
+                                                                          : TARRY_GROUPS);
     const tarry_figure_rows rows = tarry_figure_rows_of(work, TARRY_TABLE_means, name);
     tarry_plot_add_series(plot, TARRY_SERIES_LINE, "", 0);
     for (size_t i = 0; i < rows.n; i++) {
@@ -49,7 +51,7 @@ static int make(tarry_figure_work *work, const tarry_figure_subject *subject, bo
         tarry_plot_panel *panel = tarry_plot_add_panel(&plot, tarry_figure_short_name(name));
         if (!panel)
             break;
-        panel->x_from = 0;
+        panel->x_from = work->network->data ? work->network->data->start : 0;
         panel->x_to = work->network->run.until;
         add_means(work, name, &plot);
         tarry_figure_mark_steps(work, &plot);

@@ -87,6 +87,7 @@ static void add_verdict(tarry_page *page) {
     tarry_html_put(page->text, "<p class=\"run\"><span class=\"%s\">%s.</span> ",
                    page->provenance->partial ? "state partial" : "state",
                    page->exact                 ? "Exact values"
+                   : page->network->data       ? "Measured data"
                    : page->provenance->partial ? "Partial run"
                                                : "Complete run");
     add_escaped(page, "", &run, "; ");
@@ -148,10 +149,15 @@ static void add_entries(tarry_page *page, const tarry_groups *groups, const char
 /* The parts that came of it stand in the page's text already. */
 static void add_contents(tarry_page *page, const char *parts) {
     static const char *const entries[][2] = {
-        {"counts", "Counts at the snapshots"}, {"responses", "First responses"},
-        {"transit", "Lags in transit"},        {"figures", "Figures"},
-        {"words", "Words used here"},          {"model", "Model"},
-        {"repeat", "How to repeat this run"},  {"cite", "How to cite it"},
+        {"counts", "Counts at the snapshots"},
+        {"responses", "First responses"},
+        {"transit", "Lags in transit"},
+        {"figures", "Figures"},
+        {"words", "Words used here"},
+        {"model", "Model"},
+        {"data", "Data"},
+        {"repeat", "How to repeat this"},
+        {"cite", "How to cite it"},
     };
     tarry_html_put(page->text, "<nav aria-label=\"Contents\">\n<ul>\n");
     add_entries(page, &page->genes, "Genes", "genes", "gene");
@@ -184,7 +190,13 @@ static void add_words(tarry_page *page) {
                        "fallen to 1/e of the way down to its plateau."},
     };
     tarry_html_put(page->text, "<section id=\"words\">\n<h2>Words used here</h2>\n<dl>\n");
-    for (size_t i = page->exact ? 1 : 0; i < sizeof words / sizeof *words; i++)
+    if (page->network->data)
+        tarry_html_put(page->text, "<dt>95 %% interval</dt><dd>From leaving out each of at most 64 "
+                                   "groups of cells in turn (or each dish, embryo or day, where "
+                                   "they are named). Intervals are point by point: of 100, about 5 "
+                                   "miss.</dd>\n");
+    for (size_t i = page->exact || page->network->data ? 1 : 0; i < sizeof words / sizeof *words;
+         i++)
         tarry_html_put(page->text, "<dt>%s</dt><dd>%s</dd>\n", words[i][0], words[i][1]);
     if (page->marked)
         tarry_html_put(page->text,
@@ -195,8 +207,11 @@ static void add_words(tarry_page *page) {
 
 static void add_end(tarry_page *page) {
     tarry_html_put(page->text,
-                   "</main>\n<footer>\n<p>For research use only: a simulation says what "
-                   "a model implies. Not for clinical decisions.</p>\n</footer>\n");
+                   page->network->data
+                       ? "</main>\n<footer>\n<p>For research use only. Not for clinical "
+                         "decisions.</p>\n</footer>\n"
+                       : "</main>\n<footer>\n<p>For research use only: a simulation says what "
+                         "a model implies. Not for clinical decisions.</p>\n</footer>\n");
     if (page->genes.n > TARRY_PAGE_GENES) {
         tarry_text_add_string(page->text, "<script>");
         tarry_text_add_string(page->text, tarry_page_script);

@@ -58,8 +58,10 @@ static void add_missing(tarry_page *page, size_t n_drawn) {
         tarry_html_put(page->text, "<p>No figures were made (--figures none). The tables above and "
                                    "the files of the run have all numbers.</p>\n");
     else if (!page->figures->n)
-        tarry_html_put(page->text, "<p>Nothing was recorded that could be drawn: see "
-                                   "<code>record</code> in the model.</p>\n");
+        tarry_html_put(page->text, page->network->data
+                                       ? "<p>There is nothing to draw.</p>\n"
+                                       : "<p>Nothing was recorded that could be drawn: see "
+                                         "<code>record</code> in the model.</p>\n");
     else if (n_drawn < page->figures->n)
         tarry_html_put(page->text,
                        "<p><strong>%s could not be drawn</strong>, since gnuplot is missing or "

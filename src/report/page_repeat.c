@@ -89,10 +89,12 @@ static void add_figures(const tarry_figure_options *figures, tarry_text *command
 }
 
 static void write_command(const tarry_page *page, tarry_text *command) {
-    tarry_text_add_string(command, page->exact ? "tarry predict" : "tarry run");
+    tarry_text_add_string(command, page->exact           ? "tarry predict"
+                                   : page->network->data ? "tarry measure"
+                                                         : "tarry run");
     add_word(command, tarry_page_file(page));
     add_given(page, command);
-    if (!page->exact)
+    if (!page->exact && !page->network->data)
         add_of_simulation(page, command);
     if (page->provenance->figures)
         add_figures(page->provenance->figures, command);
@@ -120,7 +122,34 @@ static void add_model(tarry_page *page) {
     tarry_html_put(page->text, "</code></pre>\n</section>\n");
 }
 
+/* Of data the head, and what tells the file from any other. */
+static void add_data(tarry_page *page) {
+    tarry_html_put(page->text,
+                   "<section id=\"data\">\n<h2>Data</h2>\n<p>The first lines of %s:</p>\n"
+                   "<pre class=\"model\" tabindex=\"0\"><code>",
+                   tarry_page_file(page));
+    tarry_html_lines(page->text, page->model->text, page->model->text_size);
+    tarry_html_put(page->text,
+                   "</code></pre>\n</section>\n"
+                   "<section id=\"repeat\">\n<h2>How to repeat this</h2>\n"
+                   "<p>With version %s of tarry this command gives the same numbers from the same "
+                   "data, on any number of threads:</p>\n",
+                   tarry_version());
+    add_command(page);
+    tarry_html_put(
+        page->text,
+        "</section>\n<section id=\"cite\">\n<h2>How to cite it</h2>\n"
+        "<p>tarry, version %s: the same estimators for simulated and laboratory data. The "
+        "measurement is identified by the command above and by its data, a file whose SHA-256 is"
+        "</p>\n<p class=\"digest\"><code>%s</code></p>\n</section>\n",
+        tarry_version(), page->network->data->sha256);
+}
+
 void tarry_page_repeat(tarry_page *page) {
+    if (page->network->data) {
+        add_data(page);
+        return;
+    }
     char digest[TARRY_SHA256_TEXT];
     tarry_sha256(page->model->text, page->model->text_size, digest);
     add_model(page);

@@ -17,10 +17,11 @@ static void add_more(tarry_page *page, const char *file) {
 
 static void begin_counts(tarry_page *page) {
     tarry_html_put(page->text,
-                   "<section id=\"counts\">\n<h2>Counts at the snapshots</h2>\n"
+                   "<section id=\"counts\">\n<h2>%s</h2>\n"
                    "<p>Over cells, at the times at which all cells are looked at (s.e.: standard "
-                   "error of the mean; sd: standard deviation between cells).</p>\n");
-    tarry_page_begin_table(page, "Counts at the snapshots", true);
+                   "error of the mean; sd: standard deviation between cells).</p>\n",
+                   tarry_snapshots_title(page->network));
+    tarry_page_begin_table(page, tarry_snapshots_title(page->network), true);
     tarry_html_put(page->text,
                    "<thead><tr><th scope=\"col\">name</th>"
                    "<th scope=\"col\" class=\"n\">time <span class=\"unit\">%s</span></th>"

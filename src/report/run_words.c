@@ -4,12 +4,40 @@
 
 #include "base/number.h"
 
+/* Films have frames, fixed cells times. */
+static void data_words(const tarry_network *network, const tarry_results *results,
+                       tarry_text *text) {
+    const tarry_run_plan *plan = &network->run;
+    const tarry_data_plan *data = network->data;
+    const long long n = (long long)tarry_results_n_cells(results);
+    const char *unit = network->time_unit;
+    char from[TARRY_NUMBER_SIZE], until[TARRY_NUMBER_SIZE], every[TARRY_NUMBER_SIZE];
+    tarry_number_write_rounded(data->start, 12, from);
+    tarry_number_write_rounded(plan->until, 12, until);
+    tarry_number_write_rounded(plan->every, 12, every);
+    tarry_text_printf(text, "%s, measured: %lld %s%s, ", data->kind, n,
+                      plan->n_frames > 0 ? "cell" : "row", n == 1 ? "" : "s");
+    if (plan->n_frames > 0)
+        tarry_text_printf(text, "frames every %s %s from %s to %s %s", every, unit, from, until,
+                          unit);
+    else
+        tarry_text_printf(text, "%lu time%s from %s to %s %s", (unsigned long)plan->n_snapshots,
+                          plan->n_snapshots == 1 ? "" : "s", from, until, unit);
+    if (data->resampled)
+        tarry_text_printf(text, "; intervals by %s (%lld)", data->resampled,
+                          (long long)data->n_resampled);
+}
+
 void tarry_run_words(const tarry_network *network, const tarry_results *results, tarry_text *text) {
     const tarry_run_plan *plan = &network->run;
     const int64_t n = tarry_results_n_cells(results);
     const int64_t asked = tarry_results_n_cells_asked(results);
     const char *unit = network->time_unit;
     char until[TARRY_NUMBER_SIZE], every[TARRY_NUMBER_SIZE], settle[TARRY_NUMBER_SIZE];
+    if (network->data) {
+        data_words(network, results, text);
+        return;
+    }
     tarry_number_write(plan->until, until);
     tarry_number_write(plan->every, every);
     tarry_number_write(plan->settle, settle);

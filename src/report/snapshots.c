@@ -62,7 +62,13 @@ static const tarry_species *find_species(const tarry_network *network, const cha
     return NULL;
 }
 
+const char *tarry_snapshots_title(const tarry_network *network) {
+    return network->data && network->n_species == 0 ? "Means" : "Counts at the snapshots";
+}
+
 bool tarry_snapshots_tell(const tarry_network *network, const char *name, uint32_t *at) {
+    if (network->data && network->run.n_frames == 0)
+        return true;
     const bool changes = network->n_segments > 1 || !(network->run.settle > 0);
     const tarry_species *species = find_species(network, name, at);
     if (!species)

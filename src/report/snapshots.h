@@ -31,4 +31,7 @@ void tarry_snapshots_release(tarry_snapshots *snapshots);
  * where the last name was found, 0 before the first. */
 bool tarry_snapshots_tell(const tarry_network *network, const char *name, uint32_t *at);
 
+/* "Counts at the snapshots"; of data that are means, "Means". */
+const char *tarry_snapshots_title(const tarry_network *network);
+
 #endif

@@ -74,6 +74,29 @@ static json_t *describe_model(const tarry_model *model) {
     return object;
 }
 
+/* Data are told by their head: of the file itself there is the digest. */
+static json_t *describe_data(const tarry_model *model) {
+    const tarry_data_plan *data = model->network.data;
+    bool failed = false;
+    json_t *object = json_object();
+    tarry_json_put(object, "file", tarry_json_text(base_name(model->file)), &failed);
+    tarry_json_put(object, "sha256", json_string(data->sha256), &failed);
+    tarry_json_put(object, "kind", json_string(data->kind), &failed);
+    tarry_json_put(object, "rows", json_integer((json_int_t)data->n_rows), &failed);
+    if (data->resampled) {
+        tarry_json_put(object, "resampled", json_string(data->resampled), &failed);
+        tarry_json_put(object, "resampled_number", json_integer((json_int_t)data->n_resampled),
+                       &failed);
+    }
+    tarry_json_put(object, "missing_share", tarry_json_number(data->missing), &failed);
+    tarry_json_put(object, "head", tarry_json_text(model->text), &failed);
+    if (failed) {
+        json_decref(object);
+        return NULL;
+    }
+    return object;
+}
+
 static json_t *describe_overrides(const tarry_provenance *provenance) {
     bool failed = false;
     json_t *list = json_array();
@@ -110,14 +133,17 @@ static json_t *describe_windows(const tarry_run_plan *plan) {
 }
 
 /* The plan as it was carried out: file, options and defaults taken together. */
-static json_t *describe_plan(const tarry_run_plan *plan) {
+static json_t *describe_plan(const tarry_run_plan *plan, const tarry_data_plan *data) {
     bool failed = false;
     json_t *object = json_object();
     json_t *snapshots = json_array();
     for (uint32_t i = 0; i < plan->n_snapshots; i++)
         tarry_json_append(snapshots, tarry_json_number(plan->snapshots[i]), &failed);
     const double lags = plan->n_lags ? (plan->n_lags - 1) * plan->every : 0;
-    tarry_json_put(object, "settle", tarry_json_number(plan->settle), &failed);
+    if (data)
+        tarry_json_put(object, "from", tarry_json_number(data->start), &failed);
+    else
+        tarry_json_put(object, "settle", tarry_json_number(plan->settle), &failed);
     tarry_json_put(object, "until", tarry_json_number(plan->until), &failed);
     tarry_json_put(object, "every", tarry_json_number(plan->every), &failed);
     tarry_json_put(object, "lags", tarry_json_number(lags), &failed);
@@ -346,11 +372,16 @@ static void write_head(json_writer *writer, const tarry_model *model, const tarr
     member(writer, "status", json_string(provenance->partial ? "partial" : "complete"));
     member(writer, "title", tarry_json_text(network->title));
     member(writer, "time_unit", tarry_json_text(network->time_unit));
-    member(writer, "method", json_string(predicted ? "exact" : "simulation"));
-    if (!predicted)
+    member(writer, "method",
+           json_string(predicted       ? "exact"
+                       : network->data ? "measurement"
+                                       : "simulation"));
+    if (network->data)
+        member(writer, "cells", json_integer(tarry_results_n_cells(results)));
+    else if (!predicted)
         write_simulation(writer, network, results, provenance);
     member(writer, "options", describe_overrides(provenance));
-    member(writer, "run", describe_plan(&network->run));
+    member(writer, "run", describe_plan(&network->run, network->data));
     member(writer, "warnings", describe_warnings(model, results));
 }
 
@@ -371,7 +402,10 @@ int tarry_summary_write(const tarry_model *model, const tarry_results *results,
     if (status)
         return status;
     member(&writer, "files", describe_files(files, n_files));
-    member(&writer, "model", describe_model(model));
+    if (model->network.data)
+        member(&writer, "data", describe_data(model));
+    else
+        member(&writer, "model", describe_model(model));
     end(&writer);
     tarry_text_add(text, "\n", 1);
     return text->failed ? tarry_fail_memory(error, "summary.json") : 0;

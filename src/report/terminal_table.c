@@ -96,7 +96,7 @@ static void add_counts_head(table_page *page) {
     char time[32];
     snprintf(time, sizeof time, "time [%s]", page->network->time_unit);
     tarry_text_add(page->text, "\n", 1);
-    tarry_lines_left(page->text, "Counts at the snapshots", LABEL);
+    tarry_lines_left(page->text, tarry_snapshots_title(page->network), LABEL);
     tarry_lines_right(page->text, time, COLUMN + 2);
     tarry_text_printf(page->text, "%9s%9s%9s%9s\n", "mean", "s.e.", "sd", "Fano");
 }

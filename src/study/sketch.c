@@ -75,7 +75,8 @@ static int add_traces(const tarry_sketch *sketch, const tarry_record *record, ta
         const double *frames = record->frames;
         size_t n = 0;
         row[n++] = (double)record->cell;
-        row[n++] = frame + 1 == run->n_frames ? run->until : (double)frame * run->every;
+        const double start = network->data ? network->data->start : 0.0;
+        row[n++] = frame + 1 == run->n_frames ? run->until : start + (double)frame * run->every;
         for (uint32_t c = 0; c < network->n_channels; c++) {
             if (!network->channels[c].recorded)
                 continue;

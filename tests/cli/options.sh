@@ -68,7 +68,7 @@ ok "genes that figures show, one of them unknown" wrong "did you mean 'vela'?" r
 ok "genes of a model without any" wrong "neither genes" run small.yaml --genes vela
 ok "an empty name among genes" wrong "names with commas" run gene.yaml --genes vela,,lyra
 ok "figures of no known kind" wrong "svg, pdf, png and none" run small.yaml --figures gif
-for command in measure fit compare plan sweep; do
+for command in fit compare plan sweep; do
     ok "$command, not yet" wrong "not yet" "$command" small.yaml
 done
 
