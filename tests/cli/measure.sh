@@ -11,7 +11,7 @@ species=vela.shut,vela.open,vela.nascent,vela.nuclear,vela.transcript,vela.immat
 
 # The traces of a run, measured: where the estimator is the same, so are the numbers, to the byte.
 as_the_run() {
-    run 0 measure run/cells.csv --time min --counted $species --snapshots 120 --out measured --figures none || return 1
+    run 0 measure run/cells.csv --time min --counted "$species" --snapshots 120 --out measured --figures none || return 1
     cmp -s run/means.csv measured/means.csv && cmp -s run/distribution.csv measured/distribution.csv
 }
 ok "means and distributions of a run's traces are the run's" as_the_run
@@ -49,7 +49,7 @@ threads() {
     run 0 measure run/cells.csv --time min --threads 1 --out one_thread &&
         run 0 measure run/cells.csv --time min --threads 3 --out three || return 1
     for file in means.csv distribution.csv autocorrelation.csv signals.csv summary.json report.html; do
-        cmp -s one_thread/$file three/$file || return 1
+        cmp -s "one_thread/$file" "three/$file" || return 1
     done
 }
 ok "the same bytes for any number of threads" threads
@@ -66,7 +66,7 @@ printf 'cell,time,count\na,0,0\nb,0,0\nc,0,3\nd,5,2\ne,5,7\n' >cells.csv
 printf '# invented\ntime,count,cells\n0,0,2\n0,3,1\n5,2,1\n5,7,1\n' >histogram.csv
 counts() {
     for file in rows cells histogram; do
-        run 0 measure $file.csv --time h && says out "counts, measured: 5 rows, 2 times" || return 1
+        run 0 measure "$file.csv" --time h && says out "counts, measured: 5 rows, 2 times" || return 1
     done
     cut -d, -f1-5,7,9 rows.measured/means.csv >one
     cut -d, -f1-5,7,9 cells.measured/means.csv | cmp -s - one &&
