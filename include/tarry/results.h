@@ -68,6 +68,21 @@ int tarry_results_is_predicted(const tarry_results *results);
 /* True of what tarry_measure found in data: there is no model then, no seed and no sampler. */
 int tarry_results_is_measured(const tarry_results *results);
 
+/* A run beside the exact laws of its model, where tarry_run_options.self_check asked for it
+ * (docs/statistics.md, "A run checks itself"). */
+typedef struct tarry_self_check {
+    size_t n_compared;   /* figures that have an exact law; 0: the rest says nothing */
+    double largest;      /* difference between a figure and its law, in standard errors */
+    double share_larger; /* of correct runs, how many have one that is larger */
+    int alarm;           /* fewer than 1 in 10,000 */
+    char *where;         /* which figure; the results' */
+} tarry_self_check;
+
+const tarry_self_check *tarry_results_self_check(const tarry_results *results);
+
+/* The laws themselves, as tarry_predict gives them, or NULL. The results'. */
+const tarry_results *tarry_results_exact(const tarry_results *results);
+
 void tarry_results_free(tarry_results *results); /* NULL is fine */
 
 #endif

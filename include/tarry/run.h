@@ -18,6 +18,7 @@ typedef struct tarry_run_options {
     int64_t traced;      /* for figures: traces and active periods of the first `traced` cells, */
     const char *const *genes; /* of these genes and named bursts (none: of the first few) */
     size_t n_genes;
+    bool self_check; /* work out exact laws too and compare (tarry_results_self_check) */
     /* Looked at before each new cell; once it is not 0 no new cell starts (may be set by a signal
      * handler or another thread; NULL: never). */
     const volatile int *stop;

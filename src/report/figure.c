@@ -141,6 +141,11 @@ static int work_init(tarry_figure_work *work, const tarry_figure_options *option
         code = tarry_groups_init(&work->groups[looked_up[i].table],
                                  tarry_results_table(work->results, looked_up[i].table),
                                  looked_up[i].column, error);
+    const tarry_results *exact = tarry_results_exact(work->results);
+    for (size_t i = 0; !code && exact && i < sizeof looked_up / sizeof *looked_up; i++)
+        code = tarry_groups_init(&work->exact_groups[looked_up[i].table],
+                                 tarry_results_table(exact, looked_up[i].table),
+                                 looked_up[i].column, error);
     if (!code)
         code = tarry_flow_index_init(&work->flows, work->network, error);
     work->time_label = tarry_arena_format(&work->arena, "time (%s)", unit);
@@ -156,8 +161,10 @@ static int work_init(tarry_figure_work *work, const tarry_figure_options *option
 static void work_release(tarry_figure_work *work) {
     tarry_shown_release(&work->shown);
     tarry_flow_index_release(&work->flows);
-    for (int i = 0; i < TARRY_N_RESULT_TABLES; i++)
+    for (int i = 0; i < TARRY_N_RESULT_TABLES; i++) {
         tarry_groups_release(&work->groups[i]);
+        tarry_groups_release(&work->exact_groups[i]);
+    }
     tarry_arena_release(&work->arena);
 }
 

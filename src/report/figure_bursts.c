@@ -146,6 +146,17 @@ static void add_curve(const tarry_figure_rows *rows, const char *window, const c
     tarry_plot_drop_empty_series(plot);
 }
 
+static void add_exact_curve(const tarry_figure_rows *rows, const char *window, const char *period,
+                            tarry_plot *plot) {
+    tarry_figure_add_exact_series(plot);
+    for (size_t i = 0; i < rows->n; i++)
+        if (!strcmp(tarry_figure_text(rows, i, "window"), window) &&
+            !strcmp(tarry_figure_text(rows, i, "period"), period))
+            tarry_plot_add_wide_row(plot, tarry_figure_number(rows, i, "time"), 1,
+                                    tarry_figure_number(rows, i, "survival"), NAN, NAN);
+    tarry_plot_drop_empty_series(plot);
+}
+
 static void add_dwell_panel(const tarry_figure_work *work, const tarry_figure_subject *subject,
                             const char *period, tarry_plot *plot) {
     const tarry_run_plan *run = &work->network->run;
@@ -158,6 +169,10 @@ static void add_dwell_panel(const tarry_figure_work *work, const tarry_figure_su
     for (uint32_t w = 0; w < run->n_windows && w < MOST_WINDOWS; w++)
         add_curve(&rows, run->windows[w].name, period,
                   run->n_windows > 1 ? run->windows[w].name : "", (int)w, &longest, plot);
+    const tarry_figure_rows exact = tarry_figure_exact_rows_of(work, TARRY_TABLE_dwells,
+                                                               subject->gene->name);
+    for (uint32_t w = 0; w < run->n_windows && w < MOST_WINDOWS; w++)
+        add_exact_curve(&exact, run->windows[w].name, period, plot);
     panel->log_y = true;
     panel->y_foot = survival_tail;
     panel->x_from = 0;

@@ -26,6 +26,22 @@ static void add_curve(const tarry_figure_rows *rows, const char *window, const c
     tarry_plot_drop_empty_series(plot);
 }
 
+/* The exact laws of all windows. */
+static void add_exact_curves(const tarry_figure_work *work, const char *first, const char *second,
+                             tarry_plot *plot) {
+    const tarry_run_plan *run = &work->network->run;
+    const tarry_figure_rows rows = tarry_figure_exact_rows_of(work, TARRY_TABLE_autocorrelation,
+                                                              first);
+    for (uint32_t w = 0; w < run->n_windows && w < MOST_WINDOWS; w++) {
+        tarry_figure_add_exact_series(plot);
+        for (size_t i = 0; i < rows.n; i++)
+            if (is_in(&rows, i, run->windows[w].name, second))
+                tarry_plot_add_wide_row(plot, tarry_figure_number(&rows, i, "lag"), 1,
+                                        tarry_figure_number(&rows, i, "correlation"), NAN, NAN);
+        tarry_plot_drop_empty_series(plot);
+    }
+}
+
 /* Plateau and decay time of a signal; of a product the decay time alone is told. */
 static void add_marks(const tarry_figure_work *work, const tarry_channel *channel,
                       const char *window, int colour, tarry_plot *plot) {
@@ -61,6 +77,7 @@ static void add_panel(const tarry_figure_work *work, const tarry_channel *channe
         add_curve(&rows, window, channel->name, run->n_windows > 1 ? window : "", (int)w, plot);
         add_marks(work, channel, window, (int)w, plot);
     }
+    add_exact_curves(work, channel->name, channel->name, plot);
     tarry_plot_drop_empty_panel(plot);
 }
 
@@ -100,6 +117,7 @@ static void add_pair(tarry_figure_work *work, const tarry_figure_subject *subjec
     for (uint32_t w = 0; w < run->n_windows && w < MOST_WINDOWS; w++)
         add_curve(&rows, run->windows[w].name, second,
                   run->n_windows > 1 ? run->windows[w].name : "", (int)w, plot);
+    add_exact_curves(work, first, second, plot);
     tarry_plot_drop_empty_panel(plot);
 }
 

@@ -112,6 +112,26 @@ static void add_bins(const tarry_figure_rows *rows, const snapshot_rows *shot, c
     }
 }
 
+/* The exact shares of the same bins. */
+static void add_exact_bins(const tarry_figure_rows *rows, double time, const joining *how,
+                           tarry_plot *plot) {
+    tarry_figure_add_exact_series(plot);
+    for (double k = floor((how->from - how->origin) / how->step + 1e-9);
+         how->origin + k * how->step < how->to; k++) {
+        const double end = how->origin + (k + 1) * how->step;
+        double share = 0;
+        for (size_t i = 0; i < rows->n; i++) {
+            const double x = centre(rows, i, true);
+            if (fabs(tarry_figure_number(rows, i, "time") - time) <= 1e-9 * (1 + time) &&
+                x >= end - how->step && x < end)
+                share += tarry_figure_number(rows, i, "probability");
+        }
+        if (share > 0)
+            tarry_plot_add_wide_row(plot, end - 0.5 * how->step, how->step, share, NAN, NAN);
+    }
+    tarry_plot_drop_empty_series(plot);
+}
+
 /* "at 300 min" */
 static const char *name_snapshot(tarry_figure_work *work, double time, tarry_plot *plot) {
     char number[TARRY_NUMBER_SIZE];
@@ -167,6 +187,10 @@ static void add_panel(tarry_figure_work *work, const tarry_channel *channel, tar
                               (int)s);
         add_bins(&rows, &shots[s], &how, whole, (double)tarry_results_n_cells(work->results), plot);
     }
+    const tarry_figure_rows exact = tarry_figure_exact_rows_of(work, TARRY_TABLE_distribution,
+                                                               channel->name);
+    for (size_t s = 0; whole && s < n; s++)
+        add_exact_bins(&exact, shots[s].time, &how, plot);
     if (!plot->failed)
         choose_axis(plot);
 }

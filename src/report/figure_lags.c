@@ -201,6 +201,17 @@ static void add_response(const tarry_figure_work *work, const char *name, const 
     tarry_plot_drop_empty_series(plot);
 }
 
+static void add_exact_response(const tarry_figure_work *work, const char *name, double step,
+                               tarry_plot *plot) {
+    const tarry_figure_rows rows = tarry_figure_exact_rows_of(work, TARRY_TABLE_first, name);
+    tarry_figure_add_exact_series(plot);
+    for (size_t i = 0; i < rows.n; i++)
+        if (fabs(tarry_figure_number(&rows, i, "step") - step) <= 0)
+            tarry_plot_add_wide_row(plot, tarry_figure_number(&rows, i, "time"), 1,
+                                    tarry_figure_number(&rows, i, "survival"), NAN, NAN);
+    tarry_plot_drop_empty_series(plot);
+}
+
 /* What a gene's responses are called in `first`, or a signal's. */
 static size_t name_responses(const tarry_figure_work *work, const tarry_figure_subject *subject,
                              const char *names[TARRY_PLOT_SERIES]) {
@@ -236,6 +247,8 @@ int tarry_figure_first(tarry_figure_work *work, const tarry_figure_subject *subj
             add_response(work, names[i], space ? space + 1 : tarry_figure_short_name(names[i]),
                          step, (int)i, &end, &plot);
         }
+        for (size_t i = 0; i < n; i++)
+            add_exact_response(work, names[i], step, &plot);
         panel->x_from = 0;
         panel->x_to = end > 0 ? 1.1 * end : NAN;
         tarry_plot_drop_empty_panel(&plot);

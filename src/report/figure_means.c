@@ -27,6 +27,15 @@ static void add_means(const tarry_figure_work *work, const char *name, tarry_plo
     tarry_plot_drop_empty_series(plot);
 }
 
+static void add_exact_means(const tarry_figure_work *work, const char *name, tarry_plot *plot) {
+    const tarry_figure_rows rows = tarry_figure_exact_rows_of(work, TARRY_TABLE_means, name);
+    tarry_figure_add_exact_series(plot);
+    for (size_t i = 0; i < rows.n; i++)
+        tarry_plot_add_wide_row(plot, tarry_figure_number(&rows, i, "time"), 1,
+                                tarry_figure_number(&rows, i, "mean"), NAN, NAN);
+    tarry_plot_drop_empty_series(plot);
+}
+
 static void describe_panel(const tarry_figure_work *work, const char *name, tarry_text *text) {
     const tarry_figure_rows rows = tarry_figure_rows_of(work, TARRY_TABLE_means, name);
     if (rows.n == 0)
@@ -54,6 +63,7 @@ static int make(tarry_figure_work *work, const tarry_figure_subject *subject, bo
         panel->x_from = work->network->data ? work->network->data->start : 0;
         panel->x_to = work->network->run.until;
         add_means(work, name, &plot);
+        add_exact_means(work, name, &plot);
         tarry_figure_mark_steps(work, &plot);
         tarry_plot_drop_empty_panel(&plot);
         describe_panel(work, name, &words->alternative);

@@ -9,10 +9,9 @@
 #include <stdlib.h>
 #include <string.h>
 
-tarry_figure_rows tarry_figure_rows_of(const tarry_figure_work *work, tarry_result_table which,
-                                       const char *name) {
-    const tarry_groups *groups = &work->groups[which];
-    tarry_figure_rows rows = {tarry_results_table(work->results, which), NULL, 0};
+static tarry_figure_rows rows_of(const tarry_table *table, const tarry_groups *groups,
+                                 const char *name) {
+    tarry_figure_rows rows = {table, NULL, 0};
     for (size_t g = 0; g < groups->n; g++) {
         if (strcmp(groups->names[g], name))
             continue;
@@ -20,6 +19,35 @@ tarry_figure_rows tarry_figure_rows_of(const tarry_figure_work *work, tarry_resu
         rows.n = groups->starts[g + 1] - groups->starts[g];
     }
     return rows;
+}
+
+tarry_figure_rows tarry_figure_rows_of(const tarry_figure_work *work, tarry_result_table which,
+                                       const char *name) {
+    return rows_of(tarry_results_table(work->results, which), &work->groups[which], name);
+}
+
+tarry_figure_rows tarry_figure_exact_rows_of(const tarry_figure_work *work,
+                                             tarry_result_table which, const char *name) {
+    const tarry_results *exact = tarry_results_exact(work->results);
+    if (!exact)
+        return (tarry_figure_rows){0};
+    return rows_of(tarry_results_table(exact, which), &work->exact_groups[which], name);
+}
+
+static const char exact_name[] = "exact law";
+
+void tarry_figure_add_exact_series(tarry_plot *plot) {
+    bool named = false;
+    for (size_t s = 0; s < plot->n_series; s++)
+        named = named || plot->series[s].name == exact_name;
+    tarry_plot_add_series(plot, TARRY_SERIES_LAW, named ? "" : exact_name, 0);
+}
+
+static bool has_exact_series(const tarry_plot *plot) {
+    for (size_t s = 0; s < plot->n_series; s++)
+        if (plot->series[s].name == exact_name)
+            return true;
+    return false;
 }
 
 double tarry_figure_number(const tarry_figure_rows *rows, size_t i, const char *column) {
@@ -137,6 +165,10 @@ int tarry_figure_finish(tarry_figure_work *work, const tarry_figure_subject *sub
         code = tarry_fail_memory(error, "a figure");
     plot->heading = heading.data;
     plot->title = work->network->title;
+    if (has_exact_series(plot))
+        tarry_text_add_string(&words->caption,
+                              " The thin dark line is the exact law, worked out from the "
+                              "rates without simulation.");
     if (!code && plot->n_panels > 0)
         code = append(work, subject, plot, words, error);
     tarry_plot_release(plot);

@@ -35,6 +35,7 @@ typedef struct tarry_figure_work {
     tarry_shown shown;
     tarry_flow_index flows; /* for exact laws */
     tarry_groups groups[TARRY_N_RESULT_TABLES];
+    tarry_groups exact_groups[TARRY_N_RESULT_TABLES]; /* of the exact laws, where there are such */
     tarry_figure_list *list;
 } tarry_figure_work;
 
@@ -59,6 +60,14 @@ typedef struct tarry_figure_rows {
 
 tarry_figure_rows tarry_figure_rows_of(const tarry_figure_work *work, tarry_result_table table,
                                        const char *name);
+/* The same of the exact laws beside a run: none where there are no laws. */
+tarry_figure_rows tarry_figure_exact_rows_of(const tarry_figure_work *work,
+                                             tarry_result_table table, const char *name);
+
+/* Begin the line of an exact law in the last panel; the legend names it once, and
+ * tarry_figure_finish says in the caption what it is. */
+void tarry_figure_add_exact_series(tarry_plot *plot);
+
 double tarry_figure_number(const tarry_figure_rows *rows, size_t i, const char *column);
 const char *tarry_figure_text(const tarry_figure_rows *rows, size_t i, const char *column);
 

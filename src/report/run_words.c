@@ -54,6 +54,21 @@ void tarry_run_words(const tarry_network *network, const tarry_results *results,
         tarry_text_printf(text, ", seed %llu", (unsigned long long)plan->seed);
 }
 
+void tarry_self_check_words(const tarry_results *results, tarry_text *text) {
+    const tarry_self_check *check = tarry_results_self_check(results);
+    char largest[TARRY_NUMBER_SIZE], share[TARRY_NUMBER_SIZE];
+    if (check->n_compared == 0)
+        return;
+    tarry_number_write_fixed(check->largest, 1, largest);
+    tarry_number_write_rounded(100 * check->share_larger, 2, share);
+    tarry_text_printf(
+        text,
+        "Self-check: of %zu figures that have an exact law the farthest is %s standard "
+        "errors off; in %s%s %% of correct runs one is farther",
+        check->n_compared, largest, check->alarm ? "fewer than " : "",
+        check->alarm ? "0.01" : share);
+}
+
 void tarry_window_words(const tarry_network *network, tarry_text *text) {
     const tarry_run_plan *plan = &network->run;
     char from[TARRY_NUMBER_SIZE], to[TARRY_NUMBER_SIZE];

@@ -364,6 +364,21 @@ static void write_simulation(json_writer *writer, const tarry_network *network,
     member(writer, "completions", tarry_json_number(tarry_results_completions(results)));
 }
 
+static json_t *describe_self_check(const tarry_self_check *check) {
+    bool failed = false;
+    json_t *object = json_object();
+    tarry_json_put(object, "compared", json_integer((json_int_t)check->n_compared), &failed);
+    tarry_json_put(object, "largest", tarry_json_number(check->largest), &failed);
+    tarry_json_put(object, "share_larger", tarry_json_number(check->share_larger), &failed);
+    tarry_json_put(object, "alarm", json_boolean(check->alarm), &failed);
+    tarry_json_put(object, "where", tarry_json_text(check->where), &failed);
+    if (failed) {
+        json_decref(object);
+        return NULL;
+    }
+    return object;
+}
+
 static void write_head(json_writer *writer, const tarry_model *model, const tarry_results *results,
                        const tarry_provenance *provenance) {
     const tarry_network *network = &model->network;
@@ -383,6 +398,8 @@ static void write_head(json_writer *writer, const tarry_model *model, const tarr
     member(writer, "options", describe_overrides(provenance));
     member(writer, "run", describe_plan(&network->run, network->data));
     member(writer, "warnings", describe_warnings(model, results));
+    if (tarry_results_self_check(results)->n_compared > 0)
+        member(writer, "self_check", describe_self_check(tarry_results_self_check(results)));
 }
 
 int tarry_summary_write(const tarry_model *model, const tarry_results *results,

@@ -21,6 +21,7 @@
 #include "base/threads.h"
 #include "engine/cell.h"
 #include "model/model.h"
+#include "study/self_check.h"
 #include "study/sheet.h"
 #include "study/sketch.h"
 #include "tally/results.h"
@@ -311,6 +312,10 @@ static int report(const job *j, const totals *total, tarry_results **results, ta
         r->n_cells_asked = j->network->run.cells;
         r->firings = total->firings;
         r->completions = total->completions;
+        if (j->options->self_check && !(r->ledger = tarry_calloc(1, sizeof *r->ledger)))
+            code = tarry_fail_memory(error, "the figures that are compared with exact laws");
+    }
+    if (!code) {
         code = report_notes(j, total, &r->notes, error);
     }
     if (!code)
@@ -319,6 +324,8 @@ static int report(const job *j, const totals *total, tarry_results **results, ta
         code = report_kept(j, r, error);
     if (!code)
         code = tarry_sketch_report(&j->sketch, j->n_done, r, error);
+    if (!code && r->ledger && j->n_done == j->network->run.cells)
+        code = tarry_self_check_run(j->network, r, error);
     if (code)
         tarry_results_free(r);
     else

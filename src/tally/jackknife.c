@@ -10,7 +10,7 @@
 #include <gsl/gsl_cdf.h>
 #include <math.h>
 
-static double to_scale(tarry_scale scale, double x) {
+double tarry_to_scale(tarry_scale scale, double x) {
     switch (scale) {
     case TARRY_SCALE_LOG:
         return log(x);
@@ -72,32 +72,31 @@ double tarry_jackknife_se(const tarry_jackknife *jackknife, double value,
     return isfinite(se) ? se : NAN;
 }
 
-/* The standard error on the scale, on which the figure is z; infinite or NaN where a replicate lies
- * at its border or beyond. */
+/* The standard error on the scale, on which the figure is z, and the moves; infinite or NaN where a
+ * replicate lies at its border or beyond. */
 static double scaled_se(const tarry_jackknife *jackknife, double z, const double *replicates,
-                        tarry_scale scale) {
+                        tarry_scale scale, double *moves) {
     const size_t n = jackknife->n_groups;
     double sum = 0.0;
     for (size_t g = 0; g < n; g++) {
-        const double d = to_scale(scale, replicates[g]) - z;
-        sum += d * d;
+        moves[g] = tarry_to_scale(scale, replicates[g]) - z;
+        sum += moves[g] * moves[g];
     }
     return sqrt(sum * (double)(n - 1) / (double)n);
 }
 
 tarry_estimate tarry_jackknife_estimate(const tarry_jackknife *jackknife, double value,
                                         const double *replicates, tarry_scale scale) {
-    tarry_estimate estimate = {value, NAN, NAN, NAN};
+    tarry_estimate estimate = {.value = value, .low = NAN, .high = NAN, .se = NAN, .scale = scale};
     estimate.se = tarry_jackknife_se(jackknife, value, replicates);
-    const double z = to_scale(scale, value);
+    const double z = tarry_to_scale(scale, value);
     if (!isfinite(estimate.se) || !isfinite(z))
         return estimate;
-    double s = estimate.se;
-    if (scale != TARRY_SCALE_PLAIN) {
-        s = scaled_se(jackknife, z, replicates, scale);
-        if (!isfinite(s))
-            s = estimate.se * slope(scale, value);
-    }
+    double s = scaled_se(jackknife, z, replicates, scale, estimate.moves);
+    if (isfinite(s))
+        estimate.n_moves = jackknife->n_groups;
+    else
+        s = estimate.se * slope(scale, value);
     const double one = from_scale(scale, z - jackknife->t * s);
     const double other = from_scale(scale, z + jackknife->t * s);
     estimate.low = one < other ? one : other; /* log(-log S) falls as S rises */
@@ -109,7 +108,7 @@ tarry_estimate tarry_jackknife_estimate(const tarry_jackknife *jackknife, double
 
 tarry_estimate tarry_wilson(double share, double n) {
     const double z = 1.959963984540054; /* the normal law's 0.975 quantile */
-    tarry_estimate estimate = {share, NAN, NAN, NAN};
+    tarry_estimate estimate = {.value = share, .low = NAN, .high = NAN, .se = NAN};
     if (!(n > 0.0) || !(share >= 0.0 && share <= 1.0))
         return estimate;
     const double spread = share * (1.0 - share) / n;

@@ -20,10 +20,15 @@ typedef enum tarry_scale {
     TARRY_SCALE_LOGLOG, /* survival: log(-log S) */
 } tarry_scale;
 
-/* An estimate with its interval; low and high are NaN where there is none. */
+/* An estimate with its interval; low and high are NaN where there is none. `moves` are how far
+ * leaving out each group moves the figure on the scale of its interval; there are none (n_moves 0)
+ * where the interval does not rest on them. */
 typedef struct tarry_estimate {
     double value, low, high;
     double se; /* on the plain scale; NaN where there is none */
+    tarry_scale scale;
+    size_t n_moves;
+    double moves[TARRY_JACKKNIFE_MOST];
 } tarry_estimate;
 
 typedef struct tarry_jackknife {
@@ -32,6 +37,9 @@ typedef struct tarry_jackknife {
 } tarry_jackknife;
 
 tarry_jackknife tarry_jackknife_of(size_t n_groups);
+
+/* A figure on a scale: where its interval is symmetric. */
+double tarry_to_scale(tarry_scale scale, double value);
 
 /* The estimate from a figure and its replicates (one a group). There is no interval (NaN) where
  *   - there are fewer than 2 groups,

@@ -30,6 +30,20 @@ int tarry_results_new(tarry_results **out, tarry_error *error) {
     return failed ? tarry_fail_memory(error, "the tables of results") : TARRY_OK;
 }
 
+static const tarry_result_table ledger_tables[TARRY_N_LEDGER_COLUMNS] = {
+#define ENTRY(table, column) TARRY_TABLE_##table,
+    TARRY_LEDGER_COLUMNS(ENTRY)
+#undef ENTRY
+};
+
+int tarry_results_keep(tarry_results *results, tarry_ledger_column column,
+                       const tarry_estimate *estimate, tarry_error *error) {
+    if (!results->ledger)
+        return TARRY_OK;
+    const size_t n = tarry_table_n_rows(results->tables[ledger_tables[column]]);
+    return tarry_ledger_keep(results->ledger, column, n - 1, estimate, error);
+}
+
 void tarry_results_free(tarry_results *results) {
     if (!results)
         return;
@@ -38,6 +52,11 @@ void tarry_results_free(tarry_results *results) {
     tarry_table_free(results->cells);
     tarry_table_free(results->traces);
     tarry_table_free(results->periods);
+    if (results->ledger)
+        tarry_ledger_release(results->ledger);
+    free(results->ledger);
+    tarry_results_free(results->exact);
+    free(results->self_check.where);
     tarry_notes_release(&results->notes);
     free(results);
 }
@@ -80,6 +99,14 @@ double tarry_results_firings(const tarry_results *results) {
 
 double tarry_results_completions(const tarry_results *results) {
     return results->completions;
+}
+
+const tarry_self_check *tarry_results_self_check(const tarry_results *results) {
+    return &results->self_check;
+}
+
+const tarry_results *tarry_results_exact(const tarry_results *results) {
+    return results->exact;
 }
 
 int tarry_results_is_predicted(const tarry_results *results) {

@@ -6,6 +6,7 @@
 #include <stdbool.h>
 #include "base/notes.h"
 #include "base/table.h"
+#include "tally/ledger.h"
 #include "tarry/results.h"
 
 struct tarry_results {
@@ -20,9 +21,16 @@ struct tarry_results {
     double completions;
     bool is_predicted;
     bool is_measured;
+    tarry_ledger *ledger; /* kept while a run is compared with exact laws, else NULL */
+    tarry_results *exact; /* may be NULL */
+    tarry_self_check self_check;
 };
 
 /* Empty tables. */
 int tarry_results_new(tarry_results **results, tarry_error *error);
+
+/* The last row of a table holds this estimate in this column: for the ledger, if one is kept. */
+int tarry_results_keep(tarry_results *results, tarry_ledger_column column,
+                       const tarry_estimate *estimate, tarry_error *error);
 
 #endif

@@ -80,7 +80,7 @@ int tarry_survival_rows(const tarry_survival *survival, tarry_survival_row *row,
     walk_begin(&walk);
     if (walk.at_risk <= 0.0)
         return TARRY_OK;
-    const tarry_estimate start = {1.0, 1.0, 1.0, 0.0};
+    const tarry_estimate start = {.value = 1.0, .low = 1.0, .high = 1.0};
     int code = row(context, 0.0, &start, error);
     for (size_t bin = 0; !code && bin < TARRY_DWELL_BINS; bin++) {
         if (walk_bin(&walk, bin) <= 0.0)

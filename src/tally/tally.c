@@ -379,7 +379,7 @@ tarry_estimate tarry_tally_estimate(const tarry_tally_set *set, const tarry_tall
                                     size_t figure, tarry_scale scale) {
     const tally_part *part = &set->parts[index_of(set, kind)];
     if (!part->figures)
-        return (tarry_estimate){NAN, NAN, NAN, NAN};
+        return (tarry_estimate){.value = NAN, .low = NAN, .high = NAN, .se = NAN};
     double replicates[TARRY_GROUPS];
     for (size_t g = 0; g < set->n_filled; g++)
         replicates[g] = part->figures[(g + 1) * part->n_figures + figure];

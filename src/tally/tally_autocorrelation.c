@@ -420,7 +420,7 @@ static tarry_estimate ask(const report_state *reporting, size_t figure, tarry_sc
 static int report_curve(const report_state *reporting, const window_view *view, const char *first,
                         const char *second, ptrdiff_t least, size_t n_rows, size_t figure,
                         const double *sums, tarry_error *error) {
-    tarry_table *table = reporting->results->tables[TARRY_TABLE_autocorrelation];
+    tarry_results *results = reporting->results;
     int code = TARRY_OK;
     for (size_t i = 0; !code && i < n_rows; i++) {
         const ptrdiff_t lag = least + (ptrdiff_t)i;
@@ -430,10 +430,13 @@ static int report_curve(const report_state *reporting, const window_view *view, 
         const tarry_estimate covariance = ask(reporting, figure + i, TARRY_SCALE_PLAIN);
         const tarry_estimate correlation = ask(reporting, figure + n_rows + i, TARRY_SCALE_PLAIN);
         const tarry_estimate squared = ask(reporting, figure + 2 * n_rows + i, TARRY_SCALE_PLAIN);
-        code = tarry_table_add(table, error, view->window->name, first, second,
-                               (double)lag * reporting->network->run.every, pairs, covariance.value,
-                               correlation.value, correlation.low, correlation.high, squared.value,
-                               squared.low, squared.high);
+        code = tarry_table_add(
+            results->tables[TARRY_TABLE_autocorrelation], error, view->window->name, first, second,
+            (double)lag * reporting->network->run.every, pairs, covariance.value, correlation.value,
+            correlation.low, correlation.high, squared.value, squared.low, squared.high);
+        if (!code)
+            code = tarry_results_keep(results, TARRY_LEDGER_autocorrelation_correlation,
+                                      &correlation, error);
     }
     return code;
 }

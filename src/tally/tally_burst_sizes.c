@@ -88,7 +88,7 @@ static double totals_of(const tarry_tally_set *set, const tarry_tally_kind *kind
 
 static int report_window(const tarry_network *network, const tarry_tally_set *set,
                          const tarry_tally_kind *kind, uint32_t gene, size_t first,
-                         const tarry_window *window, tarry_table *table, tarry_error *error) {
+                         const tarry_window *window, tarry_results *results, tarry_error *error) {
     double totals[TARRY_GROUPS], counts[TARRY_GROUPS];
     if (totals_of(set, kind, first, totals) <= 0.0)
         return TARRY_OK;
@@ -101,10 +101,12 @@ static int report_window(const tarry_network *network, const tarry_tally_set *se
             counts[g] = tarry_blocks_get(tarry_tally_group_blocks(set, kind, g), first + bin);
         const tarry_estimate share = tarry_jackknife_share(tarry_tally_jackknife(set), counts,
                                                            totals, tarry_tally_cells(set));
-        code = tarry_table_add(table, error, network->genes[gene].name, window->name,
-                               tarry_bin_start((uint32_t)bin), tarry_bin_width((uint32_t)bin),
-                               tarry_blocks_get(blocks, first + bin), share.value, share.low,
-                               share.high);
+        code = tarry_table_add(
+            results->tables[TARRY_TABLE_burst_sizes], error, network->genes[gene].name,
+            window->name, tarry_bin_start((uint32_t)bin), tarry_bin_width((uint32_t)bin),
+            tarry_blocks_get(blocks, first + bin), share.value, share.low, share.high);
+        if (!code)
+            code = tarry_results_keep(results, TARRY_LEDGER_burst_sizes_probability, &share, error);
     }
     return code;
 }
@@ -123,8 +125,7 @@ static int sizes_report(const tarry_network *network, const tarry_tally_set *set
             continue;
         for (uint32_t w = 0; !code && w < network->run.n_windows; w++)
             code = report_window(network, set, kind, g, first_bin(network, (size_t)slots[g], w),
-                                 &network->run.windows[w], results->tables[TARRY_TABLE_burst_sizes],
-                                 error);
+                                 &network->run.windows[w], results, error);
     }
     free(slots);
     return code;

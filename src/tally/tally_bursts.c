@@ -308,7 +308,7 @@ static void estimate_shares(const tarry_tally_set *set, const tarry_tally_kind *
     }
 }
 
-static int add_rows(const tarry_network *network, const burst_row *row, tarry_table *table,
+static int add_rows(const tarry_network *network, const burst_row *row, tarry_results *results,
                     tarry_error *error) {
     int code = TARRY_OK;
     for (tarry_burst_quantity i = 0; !code && i < TARRY_N_BURST_QUANTITIES; i++) {
@@ -316,10 +316,12 @@ static int add_rows(const tarry_network *network, const burst_row *row, tarry_ta
             continue;
         const tarry_estimate *estimate = &row->estimates[i];
         char room[64];
-        code = tarry_table_add(table, error, row->gene->name, row->window->name,
-                               tarry_burst_quantity_name(i),
+        code = tarry_table_add(results->tables[TARRY_TABLE_bursts], error, row->gene->name,
+                               row->window->name, tarry_burst_quantity_name(i),
                                tarry_burst_quantity_unit(network, row->gene, i, room),
                                estimate->value, estimate->low, estimate->high, row->samples[i]);
+        if (!code)
+            code = tarry_results_keep(results, TARRY_LEDGER_bursts_value, estimate, error);
     }
     return code;
 }
@@ -411,7 +413,7 @@ static int bursts_report(const tarry_network *network, const tarry_tally_set *se
             samples_of(row.sums, tracks * tarry_tally_cells(set), row.samples);
             estimate_ratios(network, set, kind, at, &row);
             estimate_shares(set, kind, at, &row);
-            code = add_rows(network, &row, results->tables[TARRY_TABLE_bursts], error);
+            code = add_rows(network, &row, results, error);
             if (!code)
                 code = note_caveats(&row, &results->notes, error, &n_caveats);
         }

@@ -165,7 +165,7 @@ typedef struct telling {
     double time;
     size_t slot; /* among the species' or the signals' */
     double totals[TARRY_GROUPS];
-    tarry_table *table;
+    tarry_results *results;
 } telling;
 
 static int tell_bin(const telling *t, double count, double width, const double counts[TARRY_GROUPS],
@@ -184,8 +184,12 @@ static int tell_bin(const telling *t, double count, double width, const double c
                                               : *tarry_tally_jackknife(t->set);
     const double n_cells = t->window ? tarry_tally_cells(t->set) : n_values;
     const tarry_estimate share = tarry_jackknife_share(&some, here, totals, n_cells);
-    return tarry_table_add(t->table, error, t->name, t->window, t->time, count, width, share.value,
-                           share.low, share.high);
+    const int code = tarry_table_add(t->results->tables[TARRY_TABLE_distribution], error, t->name,
+                                     t->window, t->time, count, width, share.value, share.low,
+                                     share.high);
+    return code ? code
+                : tarry_results_keep(t->results, TARRY_LEDGER_distribution_probability, &share,
+                                     error);
 }
 
 static double count_all(const tarry_blocks *blocks, size_t slot) {
@@ -255,7 +259,7 @@ static int distribution_report(const tarry_network *network, const tarry_tally_s
             t.window = pooled ? run->windows[slot - run->n_snapshots].name : NULL;
             t.time = pooled ? NAN : run->snapshots[slot];
             t.slot = real ? signal_slot++ : species_slot++;
-            t.table = results->tables[TARRY_TABLE_distribution];
+            t.results = results;
             code = real ? tell_reals(&t, error) : tell_counts(&t, error);
         }
     }

@@ -79,23 +79,26 @@ static int dwells_add(const tarry_network *network, const tarry_record *record, 
 /* ---- curves ---- */
 
 typedef struct curve_rows {
-    tarry_table *table;
+    tarry_results *results;
     const char *gene, *window, *period;
 } curve_rows;
 
 static int add_row(void *context, double time, const tarry_estimate *survival, tarry_error *error) {
     const curve_rows *rows = context;
-    return tarry_table_add(rows->table, error, rows->gene, rows->window, rows->period, time,
-                           survival->value, survival->low, survival->high);
+    const int code = tarry_table_add(rows->results->tables[TARRY_TABLE_dwells], error, rows->gene,
+                                     rows->window, rows->period, time, survival->value,
+                                     survival->low, survival->high);
+    return code ? code
+                : tarry_results_keep(rows->results, TARRY_LEDGER_dwells_survival, survival, error);
 }
 
 static int report_gene(const tarry_network *network, const tarry_tally_set *set,
-                       const tarry_tally_kind *kind, uint32_t gene, size_t slot, tarry_table *table,
-                       tarry_error *error) {
+                       const tarry_tally_kind *kind, uint32_t gene, size_t slot,
+                       tarry_results *results, tarry_error *error) {
     int code = TARRY_OK;
     for (uint32_t w = 0; !code && w < network->run.n_windows; w++) {
         for (int period = 0; !code && period < N_PERIODS; period++) {
-            curve_rows rows = {table, network->genes[gene].name, network->run.windows[w].name,
+            curve_rows rows = {results, network->genes[gene].name, network->run.windows[w].name,
                                period_names[period]};
             const tarry_survival curve = {set, kind, curve_of(network, slot, w, period),
                                           longest_of(network)};
@@ -116,8 +119,7 @@ static int dwells_report(const tarry_network *network, const tarry_tally_set *se
     int code = TARRY_OK;
     for (uint32_t g = 0; !code && g < network->n_genes; g++)
         if (slots[g] >= 0.0 && network->genes[g].tells)
-            code = report_gene(network, set, kind, g, (size_t)slots[g],
-                               results->tables[TARRY_TABLE_dwells], error);
+            code = report_gene(network, set, kind, g, (size_t)slots[g], results, error);
     free(slots);
     return code;
 }

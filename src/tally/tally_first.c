@@ -98,15 +98,18 @@ static int first_add(const tarry_network *network, const tarry_record *record, d
 /* ---- reporting ---- */
 
 typedef struct curve_rows {
-    tarry_table *table;
+    tarry_results *results;
     const char *name;
     const tarry_response *response;
 } curve_rows;
 
 static int add_end(const curve_rows *rows, double time, const tarry_estimate *survival,
                    tarry_error *error) {
-    return tarry_table_add(rows->table, error, rows->name, rows->response->from, time,
-                           survival->value, survival->low, survival->high);
+    const int code = tarry_table_add(rows->results->tables[TARRY_TABLE_first], error, rows->name,
+                                     rows->response->from, time, survival->value, survival->low,
+                                     survival->high);
+    return code ? code
+                : tarry_results_keep(rows->results, TARRY_LEDGER_first_survival, survival, error);
 }
 
 /* All but the last point, which is told as a share. */
@@ -118,11 +121,11 @@ static int add_row(void *context, double time, const tarry_estimate *survival, t
 
 static int report_name(const tarry_network *network, const tarry_tally_set *set,
                        const tarry_tally_kind *kind, size_t watched, const char *name,
-                       tarry_table *table, tarry_error *error) {
+                       tarry_results *results, tarry_error *error) {
     int code = TARRY_OK;
     for (uint32_t r = 0; !code && r < network->n_responses; r++) {
         const tarry_response *response = &network->responses[r];
-        curve_rows rows = {table, name, response};
+        curve_rows rows = {results, name, response};
         const tarry_survival curve = {set, kind, curve_of(network, watched, r),
                                       response->to - response->from};
         code = tarry_survival_rows(&curve, add_row, &rows, error);
@@ -163,14 +166,13 @@ static int first_report(const tarry_network *network, const tarry_tally_set *set
                         const tarry_tally_kind *kind, tarry_results *results, tarry_error *error) {
     if (tarry_tally_cells(set) <= 0.0 || network->n_responses == 0)
         return TARRY_OK;
-    tarry_table *table = results->tables[TARRY_TABLE_first];
     size_t watched = 0;
     int code = TARRY_OK;
     for (uint32_t i = 0; !code && i < network->n_firsts; i++)
-        code = report_name(network, set, kind, watched++, network->firsts[i].name, table, error);
+        code = report_name(network, set, kind, watched++, network->firsts[i].name, results, error);
     for (uint32_t c = 0; !code && c < network->n_channels; c++)
         if (has_level(network, &network->channels[c]))
-            code = report_name(network, set, kind, watched++, network->channels[c].name, table,
+            code = report_name(network, set, kind, watched++, network->channels[c].name, results,
                                error);
     return code ? code : note_under_way(network, set, kind, results, error);
 }

@@ -150,12 +150,12 @@ static source source_of(const tarry_network *network, const tarry_tally_set *set
     return from;
 }
 
-static void estimate_slot(const source *from, size_t i, double figures[TARRY_N_MOMENTS],
-                          double errors[TARRY_N_MOMENTS]) {
+static void estimate_slot(const source *from, size_t i, tarry_estimate estimates[TARRY_N_MOMENTS]) {
     const slots *s = &from->slots;
     const double *total = from->total;
     const double shift = total[s->shift + i];
     const double cells = cells_in(s, total, i);
+    double figures[TARRY_N_MOMENTS];
     double replicates[TARRY_N_MOMENTS][TARRY_GROUPS];
     size_t n = 0; /* groups that have a value here */
     work_out(cells, shift, total[s->sum + i], total[s->squares + i], figures);
@@ -172,7 +172,7 @@ static void estimate_slot(const source *from, size_t i, double figures[TARRY_N_M
     }
     const tarry_jackknife some = n < from->n_groups ? tarry_jackknife_of(n) : *from->jackknife;
     for (int j = 0; j < TARRY_N_MOMENTS; j++)
-        errors[j] = tarry_jackknife_se(&some, figures[j], replicates[j]);
+        estimates[j] = tarry_jackknife_estimate(&some, figures[j], replicates[j], TARRY_SCALE_LOG);
 }
 
 /* ---- the table ------------------------------------------------------------------------------- */
@@ -184,9 +184,8 @@ typedef struct rough_rows {
     double error;      /* as a share of the sd */
 } rough_rows;
 
-static void look_at(const tarry_channel *channel, const double *figures, const double *errors,
-                    rough_rows *rough) {
-    const double error = errors[TARRY_SD] / figures[TARRY_SD];
+static void look_at(const tarry_channel *channel, const tarry_estimate *sd, rough_rows *rough) {
+    const double error = sd->se / sd->value;
     rough->all++;
     if (!(error > large_error))
         return;
@@ -210,25 +209,28 @@ static int note_rough(const rough_rows *rough, tarry_notes *notes, tarry_error *
 }
 
 static int report_slot(const source *from, const tarry_channel *channel, size_t slot, double time,
-                       tarry_table *table, rough_rows *rough, tarry_error *error) {
-    double figures[TARRY_N_MOMENTS], errors[TARRY_N_MOMENTS];
+                       tarry_results *results, rough_rows *rough, tarry_error *error) {
+    tarry_estimate e[TARRY_N_MOMENTS];
     if (!(cells_in(&from->slots, from->total, slot) > 0.0))
         return TARRY_OK;
-    estimate_slot(from, slot, figures, errors);
+    estimate_slot(from, slot, e);
     if (!(from->slots.gaps && tarry_channel_is_real(channel))) /* few replicates, as a rule */
-        look_at(channel, figures, errors, rough);
+        look_at(channel, &e[TARRY_SD], rough);
     if (tarry_channel_is_real(channel))
-        figures[TARRY_FANO] = errors[TARRY_FANO] = NAN;
-    return tarry_table_add(table, error, channel->name, time, figures[TARRY_MEAN],
-                           figures[TARRY_SD], errors[TARRY_MEAN], errors[TARRY_SD],
-                           figures[TARRY_FANO], errors[TARRY_FANO], figures[TARRY_CV2],
-                           errors[TARRY_CV2]);
+        e[TARRY_FANO].value = e[TARRY_FANO].se = NAN;
+    int code = tarry_table_add(results->tables[TARRY_TABLE_means], error, channel->name, time,
+                               e[TARRY_MEAN].value, e[TARRY_SD].value, e[TARRY_MEAN].se,
+                               e[TARRY_SD].se, e[TARRY_FANO].value, e[TARRY_FANO].se,
+                               e[TARRY_CV2].value, e[TARRY_CV2].se);
+    return code ? code
+                : tarry_results_keep(results, TARRY_LEDGER_means_mean, &e[TARRY_MEAN], error);
 }
 
 /* Frames and snapshots of one channel in the order of time, `frame` being the slot of its first
  * frame; a snapshot that falls on a frame stands for both. */
 static int report_channel(const tarry_network *network, const source *from, uint32_t channel,
-                          size_t frame, tarry_table *table, rough_rows *rough, tarry_error *error) {
+                          size_t frame, tarry_results *results, rough_rows *rough,
+                          tarry_error *error) {
     const tarry_run_plan *run = &network->run;
     const tarry_channel *c = &network->channels[channel];
     const size_t snapshot = from->slots.n_frames + (size_t)channel * run->n_snapshots;
@@ -240,11 +242,11 @@ static int report_channel(const tarry_network *network, const source *from, uint
         const double frame_time = i < n_frames ? at : INFINITY;
         const double snapshot_time = j < run->n_snapshots ? run->snapshots[j] : INFINITY;
         if (snapshot_time <= frame_time + same) {
-            code = report_slot(from, c, snapshot + j, snapshot_time, table, rough, error);
+            code = report_slot(from, c, snapshot + j, snapshot_time, results, rough, error);
             j++;
             i += frame_time <= snapshot_time + same;
         } else {
-            code = report_slot(from, c, frame + i, frame_time, table, rough, error);
+            code = report_slot(from, c, frame + i, frame_time, results, rough, error);
             i++;
         }
     }
@@ -259,8 +261,7 @@ static int moments_report(const tarry_network *network, const tarry_tally_set *s
     rough_rows rough = {0};
     int code = TARRY_OK;
     for (uint32_t i = 0; !code && i < network->n_channels; i++) {
-        code = report_channel(network, &from, i, frame, results->tables[TARRY_TABLE_means], &rough,
-                              error);
+        code = report_channel(network, &from, i, frame, results, &rough, error);
         frame += network->channels[i].recorded ? network->run.n_frames : 0;
     }
     return code ? code : note_rough(&rough, &results->notes, error);

@@ -236,6 +236,11 @@ static int add_rows(const reporting *r, tarry_result_table table, const char *na
         snprintf(quantity, sizeof quantity, "%.240s_%s", what, rows[i].ending);
         code = tarry_table_add(r->results->tables[table], error, name, window, quantity,
                                rows[i].unit, e->value, e->low, e->high, tarry_tally_cells(r->set));
+        if (!code)
+            code = tarry_results_keep(r->results,
+                                      table == TARRY_TABLE_bursts ? TARRY_LEDGER_bursts_value
+                                                                  : TARRY_LEDGER_signals_value,
+                                      e, error);
     }
     return code;
 }

@@ -208,6 +208,17 @@ static int run_it(void *context, tarry_error *error) {
     return code;
 }
 
+static int compare_it(void *context, tarry_error *error) {
+    const source *from = context;
+    const tarry_run_options options = {.threads = 1, .self_check = true};
+    tarry_results *results = NULL;
+    const int code = tarry_run(from->model, &options, &results, error);
+    if (!code)
+        ck_assert_uint_gt(tarry_results_self_check(results)->n_compared, 0);
+    tarry_results_free(results);
+    return code;
+}
+
 /* Where a fault did no harm, the results are those that come without it. */
 static int compare_summary(source *from, tarry_error *error) {
     tarry_text now = {0};
@@ -351,6 +362,21 @@ START_TEST(predicting) {
 }
 END_TEST
 
+/* A run that is compared with its laws. */
+START_TEST(comparing) {
+    source from = {.path = test_path("model.yaml")};
+    const tarry_override cells = {"--cells", 0, "cells", "100"};
+    tarry_error error = {0};
+    put_file(from.path, predictable[0].text);
+    tarry_start();
+    ck_assert_int_eq(tarry_model_read(from.path, &cells, 1, &from.model, &error), 0);
+    for (int lasting = 0; lasting < 1 + OWN_MEMORY; lasting++)
+        ck_assert_int_gt(fail_each("comparing", 40, compare_it, NULL, &from, lasting, 0),
+                         OWN_MEMORY ? 1000 : 0);
+    tarry_model_free(from.model);
+}
+END_TEST
+
 START_TEST(running) {
     for (size_t i = 0; i < N_MODELS; i++) {
         source from = {0};
@@ -448,9 +474,9 @@ static void use_memory_for_files(void) {
 int main(void) {
     use_memory_for_files();
     const test_entry tests[] = {
-        {"reading", reading}, {"predicting", predicting}, {"checking", checking},
-        {"running", running}, {"writing", writing},       {"overwriting", overwriting},
-        {"program", program}, {"figures", figures},
+        {"reading", reading},         {"predicting", predicting}, {"checking", checking},
+        {"running", running},         {"comparing", comparing},   {"writing", writing},
+        {"overwriting", overwriting}, {"program", program},       {"figures", figures},
     };
     return run_tests("lost memory", tests, sizeof tests / sizeof *tests);
 }
