@@ -9,6 +9,7 @@
 #include "base/memory.h"
 #include "base/number.h"
 #include "tally/jackknife.h"
+#include "tally/real_bins.h"
 
 #include <float.h>
 #include <math.h>
@@ -35,16 +36,21 @@ typedef struct joining {
     double from, to;     /* of the picture */
 } joining;
 
-/* The snapshots of a name: at most TARRY_PLOT_SERIES, the last one among them. */
-static size_t find_snapshots(const tarry_figure_rows *rows,
+static bool same_time(double one, double other) {
+    return fabs(other - one) <= 0 || (isnan(one) && isnan(other));
+}
+
+/* The snapshots of a name: at most TARRY_PLOT_SERIES, the last one among them. With `pooled` what
+ * was pooled over the window in their place. */
+static size_t find_snapshots(const tarry_figure_rows *rows, bool pooled,
                              snapshot_rows found[TARRY_PLOT_SERIES]) {
     size_t n = 0;
     for (size_t i = 0; i < rows->n;) {
         const double time = tarry_figure_number(rows, i, "time");
         size_t to = i + 1;
-        while (to < rows->n && fabs(tarry_figure_number(rows, to, "time") - time) <= 0)
+        while (to < rows->n && same_time(time, tarry_figure_number(rows, to, "time")))
             to++;
-        if (!isnan(time)) {
+        if (isnan(time) == pooled) {
             found[n < TARRY_PLOT_SERIES ? n : TARRY_PLOT_SERIES - 1] = (snapshot_rows){i, to, time};
             n += n < TARRY_PLOT_SERIES;
         }
@@ -59,7 +65,7 @@ static double centre(const tarry_figure_rows *rows, size_t i, bool whole) {
 }
 
 static joining join_bins(const tarry_figure_rows *rows, const snapshot_rows *shots, size_t n,
-                         bool whole) {
+                         bool whole, bool pooled) {
     joining how = {0, 0, DBL_MAX, -DBL_MAX};
     double widest = 0;
     for (size_t s = 0; s < n; s++) {
@@ -78,7 +84,9 @@ static joining join_bins(const tarry_figure_rows *rows, const snapshot_rows *sho
     const double n_bins = (how.to - how.from) / widest;
     const double edge = centre(rows, shots[0].from, whole) -
                         0.5 * tarry_figure_number(rows, shots[0].from, "width");
-    how.step = widest * (n_bins > MOST_SINGLE ? ceil(n_bins / BINS) : 1);
+    const size_t single = pooled ? TARRY_REAL_BINS
+                                 : MOST_SINGLE; /* to keep the table's intervals */
+    how.step = widest * (n_bins > (double)single ? ceil(n_bins / BINS) : 1);
     how.origin = whole ? -0.5 : edge - how.step * ceil((edge - how.from) / how.step);
     return how;
 }
@@ -168,23 +176,29 @@ static void choose_axis(tarry_plot *plot) {
         tarry_plot_drop_zeros(plot);
 }
 
+/* Films of data need no snapshots. */
+static bool is_pooled(const tarry_figure_work *work) {
+    return work->network->data && work->network->run.n_snapshots == 0;
+}
+
 static void add_panel(tarry_figure_work *work, const tarry_channel *channel, tarry_plot *plot) {
     const tarry_figure_rows rows = tarry_figure_rows_of(work, TARRY_TABLE_distribution,
                                                         channel->name);
-    const bool whole = channel->signal == TARRY_NONE;
+    const bool whole = channel->species != TARRY_NONE;
+    const bool pooled = is_pooled(work);
     snapshot_rows shots[TARRY_PLOT_SERIES];
-    const size_t n = find_snapshots(&rows, shots);
+    const size_t n = find_snapshots(&rows, pooled, shots);
     if (n == 0)
         return;
     tarry_plot_panel *panel = tarry_plot_add_panel(plot, tarry_figure_short_name(channel->name));
     if (!panel)
         return;
-    const joining how = join_bins(&rows, shots, n, whole);
+    const joining how = join_bins(&rows, shots, n, whole, pooled);
     panel->x_from = whole ? fmax(how.from, -0.5) : how.from;
     panel->x_to = how.to;
     for (size_t s = 0; s < n; s++) {
-        tarry_plot_add_series(plot, TARRY_SERIES_DENSITY, name_snapshot(work, shots[s].time, plot),
-                              (int)s);
+        tarry_plot_add_series(plot, TARRY_SERIES_DENSITY,
+                              pooled ? "" : name_snapshot(work, shots[s].time, plot), (int)s);
         add_bins(&rows, &shots[s], &how, whole, (double)tarry_results_n_cells(work->results), plot);
     }
     const tarry_figure_rows exact = tarry_figure_exact_rows_of(work, TARRY_TABLE_distribution,
@@ -204,15 +218,19 @@ int tarry_figure_counts(tarry_figure_work *work, const tarry_figure_subject *sub
                        .own_x = true,
                        .whole_x = !subject->of_signals};
     tarry_figure_words words = {.kind = subject->of_signals ? "distribution" : "counts",
-                                .title = subject->of_signals ? "Signals at the snapshots"
-                                                             : "Counts at the snapshots"};
+                                .title = is_pooled(work)       ? "Values over all frames"
+                                         : subject->of_signals ? "Signals at the snapshots"
+                                                               : "Counts at the snapshots"};
     for (size_t i = 0; i < subject->n_channels && plot.n_panels < TARRY_PLOT_PANELS; i++)
         add_panel(work, &work->network->channels[subject->channels[i]], &plot);
     tarry_text_add_string(
         &words.caption,
-        "Share of cells by what they hold at each snapshot; where counts are "
-        "many, neighbours are joined. On a logarithmic axis counts that no cell had "
-        "are left out.");
+        is_pooled(work)
+            ? "Share of all frames of all cells by their value; where there are many "
+              "neighbouring bins are joined, and the band of these counts each cell once."
+            : "Share of cells by what they hold at each snapshot; where counts are "
+              "many, neighbours are joined. On a logarithmic axis counts that no cell had "
+              "are left out.");
     tarry_figure_add_band_words(work, &words.caption);
     tarry_text_printf(&words.alternative, "Distributions over cells for %s, a panel each.",
                       subject->words);

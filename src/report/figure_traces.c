@@ -14,6 +14,7 @@ enum {
 };
 
 static const char *const cell_names[MOST_CELLS] = {"cell 0", "cell 1", "cell 2"};
+static const char *const data_names[MOST_CELLS] = {"first cell", "second cell", "third cell"};
 
 static size_t count_cells(const tarry_table *traces) {
     const size_t n = tarry_table_n_rows(traces);
@@ -93,7 +94,8 @@ static void add_slow(const tarry_figure_work *work, const tarry_figure_subject *
             continue;
         tarry_plot_add_panel(plot, tarry_figure_short_name(name));
         for (size_t cell = 0; cell < n_cells; cell++)
-            add_line(traces, cell, name, cell_names[cell], FIRST_CELL_COLOUR + (int)cell, plot);
+            add_line(traces, cell, name, work->network->data ? data_names[cell] : cell_names[cell],
+                     FIRST_CELL_COLOUR + (int)cell, plot);
         tarry_figure_mark_steps(work, plot);
     }
 }
@@ -107,7 +109,7 @@ static void describe(const tarry_figure_work *work, const tarry_figure_subject *
     if (subject->gene && subject->gene->tells)
         tarry_text_add_string(&words->caption, " Grey: times at which an allele was active, darker "
                                                "where several were.");
-    if (last < work->network->run.until) {
+    if (last < work->network->run.until && !work->network->data) {
         tarry_text_add_string(&words->caption, " Shown to ");
         tarry_figure_add_number(&words->caption, last);
         tarry_text_printf(&words->caption, " %s.", work->network->time_unit);
@@ -122,7 +124,8 @@ int tarry_figure_traces(tarry_figure_work *work, const tarry_figure_subject *sub
     const tarry_table *traces = tarry_results_traces(work->results);
     size_t n_cells = traces ? count_cells(traces) : 0;
     n_cells = n_cells < MOST_CELLS ? n_cells : MOST_CELLS;
-    if (n_cells == 0 || subject->of_signals || subject->n_channels == 0)
+    const bool data = work->network->data != NULL; /* a cell's signals, and nothing else */
+    if (n_cells == 0 || (subject->of_signals && !data) || subject->n_channels == 0)
         return 0;
     tarry_plot plot = {
         .x_label = work->time_label, .y_label = "in one cell", .x_name = "time", .y_name = "value"};
