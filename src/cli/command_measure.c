@@ -80,18 +80,17 @@ static int read_and_measure(const tarry_settings *settings, const char *folder,
 }
 
 int tarry_command_measure(const tarry_settings *settings) {
-    tarry_figure_options figures;
-    char *gnuplot = NULL;
+    tarry_drawing drawing;
     if (!settings->operand)
         return tarry_complain(TARRY_EXIT_WRONG, "measure needs DATA.csv, a file of data");
-    int status = tarry_drawing_read(settings, &figures, &gnuplot);
+    int status = tarry_drawing_read(settings, &drawing);
     char *made = settings->out ? NULL : tarry_command_folder(settings->operand, ".measured");
     const char *folder = settings->out ? settings->out : made;
     if (!status && !folder)
         status = tarry_complain(TARRY_EXIT_FAILED, "out of memory for the folder's name");
     if (!status)
-        status = read_and_measure(settings, folder, &figures);
+        status = read_and_measure(settings, folder, &drawing.figures);
     free(made);
-    free(gnuplot);
+    tarry_drawing_release(&drawing);
     return status;
 }

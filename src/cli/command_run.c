@@ -23,30 +23,6 @@ enum {
     TRACED = 3, /* cells whose traces are drawn */
 };
 
-/* "a,b" -> names and a text that holds them, both to be freed. */
-static int split_genes(const char *list, char **text, const char ***names, size_t *n) {
-    *n = 0;
-    *text = list ? strdup(list) : NULL;
-    *names = list ? calloc(strlen(list) + 1, sizeof **names) : NULL;
-    if (!list)
-        return 0;
-    if (!*text || !*names)
-        return tarry_complain(TARRY_EXIT_FAILED, "out of memory for the names of genes");
-    for (char *at = *text, *next; at; at = next) {
-        char *comma = strchr(at, ',');
-        next = comma ? comma + 1 : NULL;
-        if (comma)
-            *comma = '\0';
-        at += strspn(at, " ");
-        at[strcspn(at, " ")] = '\0';
-        if (!*at)
-            return tarry_complain(TARRY_EXIT_WRONG,
-                                  "--genes %s: names with commas between them are due here", list);
-        (*names)[(*n)++] = at;
-    }
-    return 0;
-}
-
 static int read_model(const tarry_settings *settings, tarry_model **model) {
     tarry_error error = {0};
     if (settings->operand)
@@ -168,17 +144,10 @@ static int run(const tarry_settings *settings, tarry_figure_options *figures) {
 }
 
 int tarry_command_run(const tarry_settings *settings) {
-    tarry_figure_options figures;
-    char *genes = NULL, *gnuplot = NULL;
-    const char **names = NULL;
-    int status = tarry_drawing_read(settings, &figures, &gnuplot);
+    tarry_drawing drawing;
+    int status = tarry_drawing_read(settings, &drawing);
     if (!status)
-        status = split_genes(settings->genes, &genes, &names, &figures.n_genes);
-    figures.genes = names;
-    if (!status)
-        status = run(settings, &figures);
-    free(genes);
-    free(names);
-    free(gnuplot);
+        status = run(settings, &drawing.figures);
+    tarry_drawing_release(&drawing);
     return status;
 }

@@ -48,10 +48,42 @@ static char *find_gnuplot(void) {
     return path;
 }
 
-int tarry_drawing_read(const tarry_settings *settings, tarry_figure_options *figures,
-                       char **gnuplot) {
-    *gnuplot = find_gnuplot();
-    *figures = (tarry_figure_options){
-        .gnuplot = *gnuplot, .warn = show_warning, .warn_context = (void *)settings};
-    return read_format(settings->figures, &figures->format);
+/* "a,b" -> names, in a text of the drawing's own. */
+static int split_genes(const char *list, tarry_drawing *d) {
+    if (!list)
+        return 0;
+    d->genes = strdup(list);
+    d->names = calloc(strlen(list) + 1, sizeof *d->names);
+    if (!d->genes || !d->names)
+        return tarry_complain(TARRY_EXIT_FAILED, "out of memory for the names of genes");
+    for (char *at = d->genes, *next; at; at = next) {
+        char *comma = strchr(at, ',');
+        next = comma ? comma + 1 : NULL;
+        if (comma)
+            *comma = '\0';
+        at += strspn(at, " ");
+        at[strcspn(at, " ")] = '\0';
+        if (!*at)
+            return tarry_complain(TARRY_EXIT_WRONG,
+                                  "--genes %s: names with commas between them are due here", list);
+        d->names[d->figures.n_genes++] = at;
+    }
+    return 0;
+}
+
+int tarry_drawing_read(const tarry_settings *settings, tarry_drawing *drawing) {
+    *drawing = (tarry_drawing){.gnuplot = find_gnuplot()};
+    drawing->figures = (tarry_figure_options){
+        .gnuplot = drawing->gnuplot, .warn = show_warning, .warn_context = (void *)settings};
+    int status = read_format(settings->figures, &drawing->figures.format);
+    if (!status)
+        status = split_genes(settings->genes, drawing);
+    drawing->figures.genes = drawing->names;
+    return status;
+}
+
+void tarry_drawing_release(tarry_drawing *drawing) {
+    free(drawing->gnuplot);
+    free(drawing->genes);
+    free(drawing->names);
 }

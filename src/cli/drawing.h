@@ -3,14 +3,20 @@
 #ifndef TARRY_CLI_DRAWING_H
 #define TARRY_CLI_DRAWING_H
 
-/* How figures are drawn, from --figures and the variable GNUPLOT. */
+/* What is drawn and how, from --figures, --genes and the variable GNUPLOT. */
 
 #include "cli/options.h"
 #include "tarry/write.h"
 
-/* Returns 0, or complains and returns the exit status. `*gnuplot` holds the name of the program; it
- * is to be freed either way, after the last use of `figures`. */
-int tarry_drawing_read(const tarry_settings *settings, tarry_figure_options *figures,
-                       char **gnuplot);
+typedef struct tarry_drawing {
+    tarry_figure_options figures;
+    char *gnuplot, *genes; /* what the options point to */
+    const char **names;
+} tarry_drawing;
+
+/* Returns 0, or complains and returns the exit status; to be released either way, after the last
+ * use of `figures`. */
+int tarry_drawing_read(const tarry_settings *settings, tarry_drawing *drawing);
+void tarry_drawing_release(tarry_drawing *drawing);
 
 #endif

@@ -22,7 +22,8 @@ static double add_bars(const tarry_figure_work *work, const tarry_gene *gene, co
     const tarry_figure_rows rows = tarry_figure_rows_of(work, TARRY_TABLE_burst_sizes, gene->name);
     double n = 0, below = 0;
     *longest = 0;
-    tarry_plot_add_series(plot, TARRY_SERIES_BARS, "simulated", 0);
+    tarry_plot_add_series(plot, TARRY_SERIES_BARS,
+                          tarry_results_is_predicted(work->results) ? "exact law" : "simulated", 0);
     for (size_t i = 0; i < rows.n; i++) {
         if (strcmp(tarry_figure_text(&rows, i, "window"), window))
             continue;
@@ -85,23 +86,28 @@ static int add_size_panel(tarry_figure_work *work, const tarry_figure_subject *s
     if (!panel)
         return 0;
     const double n = add_bars(work, subject->gene, window->name, &longest, plot);
-    if (n <= 0) {
-        tarry_plot_drop_empty_panel(plot);
+    tarry_plot_drop_empty_panel(plot);
+    if (longest <= 0)
         return 0;
-    }
     panel->x_from = -0.7;
     panel->x_to = longest;
-    const int code = add_law(work, subject->index, window, longest, plot, &law, error);
+    const bool predicted = tarry_results_is_predicted(work->results);
+    const int code = predicted ? 0
+                               : add_law(work, subject->index, window, longest, plot, &law, error);
     const tarry_figure_rows figures = tarry_figure_rows_of(work, TARRY_TABLE_bursts,
                                                            subject->gene->name);
-    tarry_text_printf(&words->caption, "%s%s%s%.0f bursts%s.", plot->n_panels > 1 ? " " : "",
-                      several ? window->name : "", several ? ": " : "", n,
-                      law ? "; the line is the exact law, worked out from the rates" : "");
+    if (!predicted)
+        tarry_text_printf(&words->caption, "%s%s%s%.0f bursts%s.", plot->n_panels > 1 ? " " : "",
+                          several ? window->name : "", several ? ": " : "", n,
+                          law ? "; the line is the exact law, worked out from the rates" : "");
     tarry_text_printf(&words->alternative, " %s%s size ", several ? window->name : "",
                       several ? ": mean" : "Mean");
     tarry_figure_add_number(&words->alternative,
                             tarry_figure_quantity(&figures, window->name, "burst_size_mean"));
-    tarry_text_printf(&words->alternative, " in %.0f bursts.", n);
+    if (predicted)
+        tarry_text_add_string(&words->alternative, ".");
+    else
+        tarry_text_printf(&words->alternative, " in %.0f bursts.", n);
     return code;
 }
 
@@ -120,9 +126,12 @@ int tarry_figure_burst_sizes(tarry_figure_work *work, const tarry_figure_subject
     tarry_text_printf(&words.alternative, "Bars: sizes of the bursts of %s.", subject->words);
     for (uint32_t w = 0; !code && w < work->network->run.n_windows && w < MOST_WINDOWS; w++)
         code = add_size_panel(work, subject, &work->network->run.windows[w], &plot, &words, error);
-    tarry_text_add_string(&words.caption,
-                          " Upright lines are 95 % intervals point by point; the largest 2 in 1000 "
-                          "bursts may lie beyond the right end.");
+    tarry_text_add_string(&words.caption, tarry_results_is_predicted(work->results)
+                                              ? "Exact shares of bursts"
+                                              : " Upright lines are 95 % intervals point by point");
+    tarry_text_add_string(
+        &words.caption, "; the largest 2 in 1000 bursts may lie beyond the right end. Sizes above "
+                        "1,024 share bins, and bins that nothing fell into are not drawn.");
     const int finished = tarry_figure_finish(work, subject, &plot, &words, error);
     return code ? code : finished;
 }

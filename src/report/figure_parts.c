@@ -98,7 +98,9 @@ size_t tarry_figure_mark_steps(const tarry_figure_work *work, tarry_plot *plot) 
 
 void tarry_figure_add_band_words(const tarry_figure_work *work, tarry_text *caption) {
     const long long n = (long long)tarry_results_n_cells(work->results);
-    if (n < 2)
+    if (tarry_results_is_predicted(work->results))
+        tarry_text_add_string(caption, " Exact values: there are no intervals.");
+    else if (n < 2)
         tarry_text_add_string(caption, " One cell: there are no intervals.");
     else
         tarry_text_printf(caption, " %lld cells; bands are 95 %% intervals point by point.", n);

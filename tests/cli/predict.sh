@@ -41,6 +41,18 @@ refused() {
 }
 ok "a folder that is there, and --overwrite" refused
 
+# A picture of each kind that has exact values, and none that would need cells.
+figures() {
+    for kind in autocorrelation burst-sizes counts dwells in-transit time-course; do
+        grep -q "</svg>" "two_state.exact/figures/gene-vela-$kind.svg" || return 1
+    done
+    [ ! -e two_state.exact/figures/gene-vela-traces.svg ] &&
+        says two_state.exact/report.html "Exact values: there are no intervals" &&
+        run 0 predict "$models/two_state.yaml" --overwrite --figures none &&
+        [ ! -e two_state.exact/figures/gene-vela-counts.svg ]
+}
+ok "figures" figures
+
 regulated() {
     run 0 predict "$models/delayed_feedback.yaml" && says out "reads counts of species"
 }
