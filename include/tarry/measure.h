@@ -26,9 +26,12 @@ const tarry_model *tarry_data_model(const tarry_data *data);
 typedef struct tarry_measure_options {
     int threads;    /* 0: all cores */
     int64_t traced; /* for figures: traces of the first `traced` cells */
+    /* Looked at before each cell; once it is not 0 the measurement is given up (NULL: never). */
+    const volatile int *stop;
 } tarry_measure_options;
 
-/* Measure. The same bytes for any number of threads. *results is the caller's. */
+/* Measure. The same bytes for any number of threads. *results is the caller's. TARRY_INTERRUPTED
+ * after `stop`: figures of a part of the data would mislead. */
 int tarry_measure(const tarry_data *data, const tarry_measure_options *options,
                   tarry_results **results, tarry_error *error);
 

@@ -46,6 +46,7 @@ static int measure_data(const tarry_settings *settings, const char *folder,
     const tarry_measure_options options = {
         .threads = (int)settings->threads,
         .traced = figures->format == TARRY_FIGURE_NONE ? 0 : TRACED,
+        .stop = figures->stop,
     };
     tarry_provenance provenance = {
         .overrides = settings->overrides,
@@ -56,7 +57,6 @@ static int measure_data(const tarry_settings *settings, const char *folder,
     if (tarry_measure(data, &options, &results, &error))
         return tarry_complain_error(&error);
     provenance.seconds = tarry_clock() - start;
-    figures->stop = tarry_interrupt_watch(!settings->quiet);
     const int status = hand_out(settings, folder, tarry_data_model(data), results, &provenance);
     tarry_results_free(results);
     return status;
@@ -67,6 +67,7 @@ static int read_and_measure(const tarry_settings *settings, const char *folder,
     const double start = tarry_clock();
     tarry_error error = {0};
     tarry_data *data = NULL;
+    figures->stop = tarry_interrupt_watch(false);
     if (access(settings->operand, R_OK))
         return tarry_complain(TARRY_EXIT_WRONG, "the data file '%s' cannot be read: %s",
                               settings->operand, strerror(errno));

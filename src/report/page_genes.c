@@ -205,9 +205,11 @@ int tarry_page_signals(tarry_page *page, tarry_error *error) {
     int status = 0;
     if (!page->signals.n)
         return 0;
-    tarry_html_put(page->text, "<section id=\"signals\">\n<h2>Signals</h2>\n"
-                               "<p>What an instrument would see, in units of its own. Plateau and "
-                               "amplitude are those of the autocorrelation.</p>\n");
+    tarry_html_put(page->text,
+                   "<section id=\"signals\">\n<h2>Signals</h2>\n"
+                   "<p>What an instrument %s, in units of its own. Plateau and "
+                   "amplitude are those of the autocorrelation.</p>\n",
+                   page->network->data ? "saw" : "would see");
     if (page->signals.n > TARRY_PAGE_GENES)
         status = tarry_page_spread(page, table, &page->signals, error);
     for (size_t g = 0; !status && g < page->signals.n; g++)

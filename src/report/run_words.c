@@ -15,13 +15,13 @@ static void data_words(const tarry_network *network, const tarry_results *result
     tarry_number_write_rounded(data->start, 12, from);
     tarry_number_write_rounded(plan->until, 12, until);
     tarry_number_write_rounded(plan->every, 12, every);
-    tarry_text_printf(text, "%s, measured: %lld %s%s, ", data->kind, n,
-                      plan->n_frames > 0 ? "cell" : "row", n == 1 ? "" : "s");
     if (plan->n_frames > 0)
-        tarry_text_printf(text, "frames every %s %s from %s to %s %s", every, unit, from, until,
-                          unit);
+        tarry_text_printf(text, "%lld cell%s, traces with a frame every %s %s from %s to %s %s", n,
+                          n == 1 ? "" : "s", every, unit, from, until, unit);
     else
-        tarry_text_printf(text, "%lu time%s from %s to %s %s", (unsigned long)plan->n_snapshots,
+        tarry_text_printf(text, "%lld %s%s, %s at %lu time%s from %s to %s %s", n,
+                          network->n_species > 0 ? "fixed cell" : "row", n == 1 ? "" : "s",
+                          data->kind, (unsigned long)plan->n_snapshots,
                           plan->n_snapshots == 1 ? "" : "s", from, until, unit);
     if (data->resampled)
         tarry_text_printf(text, "; intervals by %s (%lld)", data->resampled,

@@ -227,7 +227,7 @@ static int make_snapshots(tarry_data *data, tarry_error *error) {
         code = fail_data(data, error, "no row is within --from and --to");
     else if (n > MOST_TIMES)
         code = fail_data(data, error, "more than 10000 different times are not taken");
-    if (code == TARRY_OK) {
+    if (code == TARRY_OK && kept != NULL) {
         memcpy(kept, times, n * sizeof *kept);
         for (size_t row = 0; row < table->n_rows; row++) {
             const double *at = bsearch(&table->times[row], kept, n, sizeof *kept, ascending);

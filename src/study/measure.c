@@ -129,6 +129,7 @@ static void empty_row(const tarry_data *data, size_t row, tarry_record *record) 
 
 typedef struct measuring {
     const tarry_data *data;
+    const volatile int *stop;
     const tarry_network *network;
     tarry_tally_set *set;
     tarry_sketch sketch;
@@ -174,6 +175,8 @@ static void note_failure(measuring *m, int code, const tarry_error *error) {
 static int add_unit(measuring *m, size_t group, size_t unit, tarry_record *record, double *scratch,
                     tarry_error *error) {
     const bool film = m->data->table.kind == TARRY_DATA_TRACES;
+    if (m->stop != NULL && __atomic_load_n(m->stop, __ATOMIC_RELAXED))
+        return tarry_fail(error, TARRY_INTERRUPTED, "interrupted; nothing was written");
     record->cell = (int64_t)unit;
     if (film)
         fill_film(m->data, unit, record);
@@ -397,7 +400,7 @@ static int measure(measuring *m, const tarry_measure_options *options, tarry_res
 int tarry_measure(const tarry_data *data, const tarry_measure_options *options, tarry_results **out,
                   tarry_error *error) {
     *out = NULL;
-    measuring m = {.data = data, .network = &data->model->network};
+    measuring m = {.data = data, .stop = options->stop, .network = &data->model->network};
     tarry_results *results = NULL;
     int code = tarry_results_new(&results, error);
     if (code != TARRY_OK)

@@ -504,8 +504,9 @@ static int note_decay(report_state *reporting, const window_view *view, const ch
         return tarry_notes_add(&reporting->results->notes, (tarry_place){0}, error,
                                "%s, window %s: the correlation has not levelled off at the longest "
                                "lag (%s %s), so that its plateau is high and its decay time short "
-                               "or missing; a larger `lags` would help",
-                               name, view->window->name, time, reporting->network->time_unit);
+                               "or missing; a larger `%s` would help",
+                               name, view->window->name, time, reporting->network->time_unit,
+                               reporting->network->data ? "--lags" : "lags");
     return tarry_notes_add(&reporting->results->notes, (tarry_place){0}, error,
                            "%s, window %s: the correlation decays within one frame (%s %s); its "
                            "decay time is no more than a bound",

@@ -40,7 +40,7 @@ ok "pooled figures of a signal are the run's" pooled
 # Less than all frames: other means, and windows that begin later than at 0.
 cut_out() {
     run 0 measure run/cells.csv --time min --from 30 --to "1 h" --out cut --figures none || return 1
-    says out "frames every 1 min from 30 to 60 min" && grep '^spot,' cut/means.csv >one &&
+    says out "a frame every 1 min from 30 to 60 min" && grep '^spot,' cut/means.csv >one &&
         awk -F, '$1 == "spot" && $2 >= 30 && $2 <= 60' run/means.csv | cmp -s - one
 }
 ok "--from and --to cut" cut_out
@@ -66,7 +66,7 @@ printf 'cell,time,count\na,0,0\nb,0,0\nc,0,3\nd,5,2\ne,5,7\n' >cells.csv
 printf '# invented\ntime,count,cells\n0,0,2\n0,3,1\n5,2,1\n5,7,1\n' >histogram.csv
 counts() {
     for file in rows cells histogram; do
-        run 0 measure "$file.csv" --time h && says out "counts, measured: 5 rows, 2 times" || return 1
+        run 0 measure "$file.csv" --time h && says out "5 fixed cells, counts at 2 times from 0 to 5 h; intervals by cell (5)" || return 1
     done
     cut -d, -f1-5,7,9 rows.measured/means.csv >one
     cut -d, -f1-5,7,9 cells.measured/means.csv | cmp -s - one &&
@@ -79,7 +79,7 @@ means() {
     printf 'time,lum,lum_se\n0,1.5,0.1\n4,2.5,0.25\n' >se.csv
     printf 'time,lum\n0,1.5\n0,1.75\n4,2.5\n4,2.25\n' >replicates.csv
     run 0 measure se.csv --time h && says se.measured/means.csv "lum,4,2.5,,0.25,,,,," &&
-        run 0 measure replicates.csv --time h && says out "means, measured" &&
+        run 0 measure replicates.csv --time h && says out "4 rows, means at 2 times" &&
         grep -q "^lum,4,2.375,0.1767766952966[0-9]*,0.125," replicates.measured/means.csv
 }
 ok "means with their errors, and of replicates" means

@@ -363,6 +363,19 @@ START_TEST(test_memory) {
 }
 END_TEST
 
+/* A part of the data would mislead: nothing comes of a measurement that is stopped. */
+START_TEST(test_stopped) {
+    const volatile int stop = 1;
+    const tarry_measure_options how = {.threads = 2, .stop = &stop};
+    tarry_results *results = NULL;
+    measured m;
+    measured_pass(&m, gappy, missing);
+    ck_assert_int_eq(tarry_measure(m.data, &how, &results, &m.error), TARRY_INTERRUPTED);
+    ck_assert_ptr_null(results);
+    measured_release(&m);
+}
+END_TEST
+
 int main(void) {
     const test_entry tests[] = {
         {"dresses", test_dresses},
@@ -376,6 +389,7 @@ int main(void) {
         {"covariances of cells that come and go", test_staggered},
         {"covariances of whole films", test_whole_films},
         {"variance without noise", test_put_back},
+        {"stopped", test_stopped},
         {"memory", test_memory},
     };
     return run_tests("measure", tests, sizeof tests / sizeof *tests);
