@@ -83,7 +83,7 @@ int tarry_csv_row(tarry_csv *csv, tarry_csv_field *fields, size_t most, size_t *
     } while (pass_blanks(line.text, line.text + line.n) == line.text + line.n);
     const char *stop = line.text + line.n;
     for (const char *at = line.text;; at++) {
-        tarry_csv_field spare, *field = *n < most ? &fields[*n] : &spare;
+        tarry_csv_field spare = {0}, *field = *n < most ? &fields[*n] : &spare;
         at = pass_blanks(at, stop);
         if (*n <= most)
             ++*n;

@@ -154,8 +154,9 @@ static const char *show(double x, char out[TARRY_NUMBER_SIZE]) {
 static int warn(const tarry_network *network, const drift_test *test, tarry_notes *notes,
                 tarry_error *error) {
     const tarry_channel *channel = &network->channels[test->channel];
-    const int32_t gene = network->data ? TARRY_NONE : network->species[channel->species].gene;
-    const tarry_place place = network->data ? (tarry_place){0} : network->genes[gene].place;
+    tarry_place place = {0};
+    if (!network->data)
+        place = network->genes[network->species[channel->species].gene].place;
     char first[TARRY_NUMBER_SIZE], second[TARRY_NUMBER_SIZE], p[TARRY_NUMBER_SIZE + 2] = "= ";
     show(test->p, p + 2);
     return tarry_notes_add(

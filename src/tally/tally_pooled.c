@@ -180,7 +180,7 @@ static double variance_known(const double sums[N_SUMS_GAPS]) {
 static void work_out(const double *sums, const double *less, layout l, size_t i, double frames,
                      double figures[TARRY_N_MOMENTS]) {
     const size_t at = l.n + i * l.n_sums, cells_at = l.n * (1 + l.n_sums);
-    double left[N_SUMS_GAPS];
+    double left[N_SUMS_GAPS] = {0};
     for (size_t j = 0; j < l.n_sums; j++)
         left[j] = sums[at + j] - (less ? less[at + j] : 0.0);
     if (l.n_sums == N_SUMS_GAPS) {
