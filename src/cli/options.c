@@ -71,6 +71,8 @@ static const option_row options[] = {
      "the same seed gives the same results"},
     {"set", "NAME=VALUE", VALUE_SETTING, MODEL_COMMANDS, 0, 0, 0,
      "give a parameter another value; may be repeated"},
+    {"visible", "L,H,T", VALUE_KEY, WORKING_COMMANDS | TARRY_FOR_CHECK, 0, 0, 0,
+     "signals visible from above H till below L, for T or more"},
     {"threads", "N", VALUE_WHOLE, WORKING_COMMANDS, FIELD(threads), 1, 4096,
      "threads to work with; default: all cores"},
     {"sampler", "NAME", VALUE_TEXT, TARRY_FOR_RUN, FIELD(sampler), 0, 0,

@@ -280,12 +280,19 @@ typedef struct tarry_first {
  * ---------------------------------------------------------------------------- */
 
 /* A name in the output: a species that is not hidden, or a signal. */
+/* By which a trace is told to be visible or dark (tally/visible.h). */
+typedef struct tarry_thresholds {
+    double low, high; /* of the signal */
+    double least;     /* time that a change must last to count */
+} tarry_thresholds;
+
 typedef struct tarry_channel {
     const char *name;
     int32_t species; /* or TARRY_NONE */
     int32_t signal;  /* or TARRY_NONE */
     bool recorded;   /* gets frames, distributions, autocorrelation; else snapshot moments only */
     bool correlates; /* recorded, and a signal or a product: gets an autocorrelation */
+    const tarry_thresholds *thresholds; /* or NULL */
 } tarry_channel;
 
 /* A window is a union of spans; spans are the stretches between neighbouring window bounds. */

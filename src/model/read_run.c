@@ -14,8 +14,8 @@ enum { DEFAULT_CELLS = 1000, DEFAULT_SEED = 1 };
 
 static const double MOST_CELLS = 1e12;
 
-static const char *const RUN_KEYS[] = {"cells", "settle", "until",   "every", "snapshots",
-                                       "lags",  "seed",   "windows", "record"};
+static const char *const RUN_KEYS[] = {"cells", "settle", "until",   "every",  "snapshots",
+                                       "lags",  "seed",   "windows", "record", "visible"};
 
 /* ---- values -----------------------------------------------------------------------------------
  */
@@ -47,6 +47,32 @@ int tarry_run_map(const tarry_builder *builder, const tarry_node **run, tarry_er
     if (*run == NULL)
         *run = &none;
     return tarry_expect_keys(*run, "'run'", RUN_KEYS, sizeof RUN_KEYS / sizeof *RUN_KEYS, error);
+}
+
+int tarry_run_split(tarry_arena *arena, const tarry_node *scalar, tarry_node *list,
+                    tarry_error *error) {
+    const size_t most = strlen(scalar->text) + 1;
+    tarry_entry *entries = tarry_arena_calloc(arena, most, sizeof *entries);
+    tarry_node *nodes = tarry_arena_calloc(arena, most, sizeof *nodes);
+    if (entries == NULL || nodes == NULL)
+        return tarry_fail_memory(error, "a value of the run");
+    int depth = 0;
+    *list = (tarry_node){.kind = TARRY_NODE_LIST, .place = scalar->place, .entries = entries};
+    const char *from = scalar->text;
+    for (const char *at = from;; at++) {
+        depth += (*at == '(') - (*at == ')');
+        if (*at != '\0' && (*at != ',' || depth > 0))
+            continue;
+        nodes[list->n] = (tarry_node){.kind = TARRY_NODE_SCALAR, .place = scalar->place};
+        nodes[list->n].text = tarry_arena_text(arena, from, (size_t)(at - from));
+        if (nodes[list->n].text == NULL)
+            return tarry_fail_memory(error, "a value of the run");
+        entries[list->n] = (tarry_entry){NULL, scalar->place, &nodes[list->n]};
+        list->n++;
+        from = at + 1;
+        if (*at == '\0')
+            return 0;
+    }
 }
 
 /* ---- cells and seed ----------------------------------------------------------------------------
@@ -95,6 +121,8 @@ int tarry_read_run(tarry_builder *builder, tarry_error *error) {
         code = tarry_read_windows(builder, run, error);
     if (code == 0)
         code = tarry_read_record(builder, run, error);
+    if (code == 0)
+        code = tarry_read_visible(builder, run, error);
     if (code == 0)
         code = tarry_read_limits(builder, error);
     return code;

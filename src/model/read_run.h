@@ -35,8 +35,16 @@ int tarry_read_times(tarry_builder *builder, const tarry_node *run, tarry_error 
 /* Windows and the spans between their bounds; needs frames and segments. */
 int tarry_read_windows(tarry_builder *builder, const tarry_node *run, tarry_error *error);
 
+/* The texts that commas outside parentheses part, as list nodes: for values from the command line.
+ */
+int tarry_run_split(tarry_arena *arena, const tarry_node *scalar, tarry_node *list,
+                    tarry_error *error);
+
 /* Names in the output, and which of them are recorded. */
 int tarry_read_record(tarry_builder *builder, const tarry_node *run, tarry_error *error);
+
+/* Thresholds of recorded signals; needs names. */
+int tarry_read_visible(tarry_builder *builder, const tarry_node *run, tarry_error *error);
 
 /* `limits:`. */
 int tarry_read_limits(tarry_builder *builder, tarry_error *error);

@@ -158,33 +158,6 @@ static int ascending(const void *one, const void *other) {
     return (a > b) - (a < b);
 }
 
-/* The times that a text names, parted by commas that stand in no parentheses: as list nodes. */
-static int split_times(tarry_arena *arena, const tarry_node *scalar, tarry_node *list,
-                       tarry_error *error) {
-    const size_t most = strlen(scalar->text) + 1;
-    tarry_entry *entries = tarry_arena_calloc(arena, most, sizeof *entries);
-    tarry_node *nodes = tarry_arena_calloc(arena, most, sizeof *nodes);
-    if (entries == NULL || nodes == NULL)
-        return tarry_fail_memory(error, "the snapshots");
-    int depth = 0;
-    *list = (tarry_node){.kind = TARRY_NODE_LIST, .place = scalar->place, .entries = entries};
-    const char *from = scalar->text;
-    for (const char *at = from;; at++) {
-        depth += (*at == '(') - (*at == ')');
-        if (*at != '\0' && (*at != ',' || depth > 0))
-            continue;
-        nodes[list->n] = (tarry_node){.kind = TARRY_NODE_SCALAR, .place = scalar->place};
-        nodes[list->n].text = tarry_arena_text(arena, from, (size_t)(at - from));
-        if (nodes[list->n].text == NULL)
-            return tarry_fail_memory(error, "the snapshots");
-        entries[list->n] = (tarry_entry){NULL, scalar->place, &nodes[list->n]};
-        list->n++;
-        from = at + 1;
-        if (*at == '\0')
-            return 0;
-    }
-}
-
 static int read_snapshot(tarry_builder *builder, const tarry_node *node, double *time,
                          tarry_error *error) {
     const tarry_run_value from = {.node = node};
@@ -234,7 +207,7 @@ static int read_snapshots(tarry_builder *builder, const tarry_node *run, tarry_e
         return 0;
     }
     if (from.node->kind == TARRY_NODE_SCALAR) {
-        code = split_times(builder->arena, from.node, &list, error);
+        code = tarry_run_split(builder->arena, from.node, &list, error);
     } else {
         code = tarry_expect_list(from.node, "'snapshots'", error);
         list = *from.node;

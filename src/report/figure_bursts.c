@@ -166,20 +166,19 @@ static void add_exact_curve(const tarry_figure_rows *rows, const char *window, c
     tarry_plot_drop_empty_series(plot);
 }
 
-static void add_dwell_panel(const tarry_figure_work *work, const tarry_figure_subject *subject,
+/* Curves of one gene, or of one signal with thresholds. */
+static void add_dwell_panel(const tarry_figure_work *work, const char *name, const char *title,
                             const char *period, tarry_plot *plot) {
     const tarry_run_plan *run = &work->network->run;
-    const tarry_figure_rows rows = tarry_figure_rows_of(work, TARRY_TABLE_dwells,
-                                                        subject->gene->name);
+    const tarry_figure_rows rows = tarry_figure_rows_of(work, TARRY_TABLE_dwells, name);
     double longest = 0;
-    tarry_plot_panel *panel = tarry_plot_add_panel(plot, period);
+    tarry_plot_panel *panel = tarry_plot_add_panel(plot, title);
     if (!panel)
         return;
     for (uint32_t w = 0; w < run->n_windows && w < MOST_WINDOWS; w++)
         add_curve(&rows, run->windows[w].name, period,
                   run->n_windows > 1 ? run->windows[w].name : "", (int)w, &longest, plot);
-    const tarry_figure_rows exact = tarry_figure_exact_rows_of(work, TARRY_TABLE_dwells,
-                                                               subject->gene->name);
+    const tarry_figure_rows exact = tarry_figure_exact_rows_of(work, TARRY_TABLE_dwells, name);
     for (uint32_t w = 0; w < run->n_windows && w < MOST_WINDOWS; w++)
         add_exact_curve(&exact, run->windows[w].name, period, plot);
     panel->log_y = true;
@@ -189,27 +188,44 @@ static void add_dwell_panel(const tarry_figure_work *work, const tarry_figure_su
     tarry_plot_drop_empty_panel(plot);
 }
 
+/* Two panels for each signal with thresholds. */
+static void add_visible_panels(tarry_figure_work *work, const tarry_figure_subject *subject,
+                               tarry_plot *plot) {
+    static const char *const periods[] = {"visible", "dark"};
+    for (size_t i = 0; i < subject->n_channels; i++) {
+        const tarry_channel *channel = &work->network->channels[subject->channels[i]];
+        for (int p = 0; p < 2 && channel->thresholds && plot->n_panels < TARRY_PLOT_PANELS; p++) {
+            const char *title = tarry_arena_format(&work->arena, "%s, %s", channel->name,
+                                                   periods[p]);
+            plot->failed = plot->failed || !title;
+            if (title)
+                add_dwell_panel(work, channel->name, title, periods[p], plot);
+        }
+    }
+}
+
 int tarry_figure_dwells(tarry_figure_work *work, const tarry_figure_subject *subject,
                         tarry_error *error) {
     static const char *const periods[] = {"active", "inactive"};
     tarry_figure_words words = {.kind = "dwells", .title = "How long periods last"};
-    if (!subject->gene)
-        return 0;
     tarry_plot plot = {.x_label = work->length_label,
                        .y_label = "share that lasts longer",
                        .x_name = "time",
                        .y_name = "survival",
                        .own_x = true};
-    for (int i = 0; i < 2; i++)
-        add_dwell_panel(work, subject, periods[i], &plot);
-    tarry_text_add_string(&words.caption,
-                          "Share of active and of inactive periods that last longer than a time "
-                          "(Kaplan-Meier), on a logarithmic axis: a straight line where they end "
-                          "at a constant rate.");
+    for (int i = 0; i < 2 && subject->gene; i++)
+        add_dwell_panel(work, subject->gene->name, periods[i], periods[i], &plot);
+    if (subject->of_signals)
+        add_visible_panels(work, subject, &plot);
+    tarry_text_printf(&words.caption,
+                      "Share of %s that last longer than a time (Kaplan-Meier), on a logarithmic "
+                      "axis: a straight line where they end at a constant rate.",
+                      subject->gene ? "active and of inactive periods"
+                                    : "visible and of dark periods of those that are long enough "
+                                      "to count");
     tarry_figure_add_band_words(work, &words.caption);
     tarry_text_printf(&words.alternative,
-                      "Falling curves: how many of the active and inactive periods of %s last "
-                      "longer than a time.",
-                      subject->words);
+                      "Falling curves: how many of the %s periods of %s last longer than a time.",
+                      subject->gene ? "active and inactive" : "visible and dark", subject->words);
     return tarry_figure_finish(work, subject, &plot, &words, error);
 }

@@ -39,6 +39,13 @@ static const label moment_labels[] = {
     {"plateau", "plateau"},  {"amplitude", "amplitude"},
 };
 
+static const label visible_labels[] = {
+    {"visible_fraction", "share visible"},
+    {"visible_frequency", "times visible"},
+    {"visible_time_mean", "visible, mean"},
+    {"dark_time_mean", "dark, mean"},
+};
+
 #define COUNT(array) (sizeof(array) / sizeof *(array))
 
 /* What is being put together, and from what. */
@@ -175,6 +182,8 @@ static void add_of_signal(gathering *g) {
     for (size_t i = 0; i < g->n_rows; i++) {
         const char *words;
         split_product(name_of(g, i), &words);
+        const label *visible = find_label(visible_labels, COUNT(visible_labels), name_of(g, i));
+        words = visible ? visible->words : words;
         if (find_first(g, name_of(g, i)) == i)
             add(g, i, TARRY_SECTION_SIGNAL, words, 0);
     }

@@ -69,6 +69,33 @@ void tarry_self_check_words(const tarry_results *results, tarry_text *text) {
         check->alarm ? "0.01" : share);
 }
 
+static void add_rounded(tarry_text *text, const char *words, double value) {
+    char number[TARRY_NUMBER_SIZE];
+    tarry_number_write_rounded(value, 4, number);
+    tarry_text_printf(text, "%s%s", words, number);
+}
+
+/* Names that share their thresholds stand side by side. */
+void tarry_threshold_words(const tarry_network *network, tarry_text *text) {
+    const tarry_thresholds *before = NULL;
+    for (uint32_t i = 0; i < network->n_channels; i++) {
+        const tarry_channel *channel = &network->channels[i];
+        const tarry_thresholds *t = channel->thresholds;
+        if (!t)
+            continue;
+        tarry_text_printf(text, "%s%s", before ? ", " : "Visible: ", channel->name);
+        before = t;
+        if (i + 1 < network->n_channels && network->channels[i + 1].thresholds == t)
+            continue;
+        add_rounded(text, " above ", t->high);
+        add_rounded(text, " until below ", t->low);
+    }
+    if (!before)
+        return;
+    add_rounded(text, "; changes last ", before->least);
+    tarry_text_printf(text, " %s", network->time_unit);
+}
+
 void tarry_window_words(const tarry_network *network, tarry_text *text) {
     const tarry_run_plan *plan = &network->run;
     char from[TARRY_NUMBER_SIZE], to[TARRY_NUMBER_SIZE];

@@ -17,6 +17,9 @@ void tarry_run_words(const tarry_network *network, const tarry_results *results,
  * ..." where a run was compared with its laws. */
 void tarry_self_check_words(const tarry_results *results, tarry_text *text);
 
+/* Append "Visible: spot above 4 until below 2; changes last 1 min" where names have thresholds. */
+void tarry_threshold_words(const tarry_network *network, tarry_text *text);
+
 /* Append "Windows: before from 0 to 60 min, ..." where there are several. */
 void tarry_window_words(const tarry_network *network, tarry_text *text);
 

@@ -314,7 +314,7 @@ static void write_run(tarry_page *page) {
 /* ---- files and memory ------------------------------------------------------------------------ */
 
 typedef struct channel_counts {
-    double all, recorded, correlating, signals;
+    double all, recorded, correlating, signals, visible;
 } channel_counts;
 
 static channel_counts count_channels(const tarry_network *network) {
@@ -325,6 +325,7 @@ static channel_counts count_channels(const tarry_network *network) {
         n.recorded += channel->recorded;
         n.correlating += channel->correlates;
         n.signals += channel->correlates && channel->signal != TARRY_NONE;
+        n.visible += channel->thresholds != NULL;
     }
     return n;
 }
@@ -365,7 +366,10 @@ static void write_files(tarry_page *page) {
     put_rows(page, "bursts.csv",
              run->n_windows * (burst_figures + TARRY_PRODUCT_FIGURES * (n.correlating - n.signals)),
              NULL);
-    put_rows(page, "signals.csv", run->n_windows * TARRY_SIGNAL_FIGURES * n.signals, NULL);
+    put_rows(page, "signals.csv",
+             run->n_windows *
+                 (TARRY_SIGNAL_FIGURES * n.signals + TARRY_VISIBLE_FIGURES * n.visible),
+             NULL);
     put_rows(page, "autocorrelation.csv",
              run->n_windows * (n.correlating * lags + pairs * (2 * lags - 1)), "at most");
     put_rows(page, "transit.csv", (double)network->n_lags * run->n_windows, NULL);

@@ -105,7 +105,11 @@ static int make_names(tarry_data *data, tarry_error *error) {
         const char *name = data->table.names[k];
         const bool counted = is_counted(data, k);
         const bool film = data->table.kind == TARRY_DATA_TRACES;
-        channels[k] = (tarry_channel){name, TARRY_NONE, TARRY_NONE, true, film};
+        channels[k] = (tarry_channel){.name = name,
+                                      .species = TARRY_NONE,
+                                      .signal = TARRY_NONE,
+                                      .recorded = true,
+                                      .correlates = film};
         if (counted) {
             channels[k].species = (int32_t)network->n_species;
             species[network->n_species++] = (tarry_species){

@@ -16,15 +16,22 @@
     X(dwells)                                                                                      \
     X(pooled)                                                                                      \
     X(autocorrelation)                                                                             \
+    X(visible)                                                                                     \
     X(transit)                                                                                     \
     X(lags)                                                                                        \
     X(first)                                                                                       \
     X(drift)
 
 /* Rows that a window has in bursts.csv and signals.csv: of a gene whose bursts can be told (of
- * another, its initiation rate alone), of each of its recorded products, and of a recorded signal.
+ * another, its initiation rate alone), of each of its recorded products, and of a recorded signal;
+ * and of a signal with thresholds so many more.
  */
-enum { TARRY_BURST_FIGURES = 13, TARRY_PRODUCT_FIGURES = 4, TARRY_SIGNAL_FIGURES = 6 };
+enum {
+    TARRY_BURST_FIGURES = 13,
+    TARRY_PRODUCT_FIGURES = 4,
+    TARRY_SIGNAL_FIGURES = 6,
+    TARRY_VISIBLE_FIGURES = 4
+};
 
 #define TARRY_TALLY_DECLARE(name) extern const tarry_tally_kind tarry_tally_##name;
 TARRY_TALLY_KINDS(TARRY_TALLY_DECLARE)

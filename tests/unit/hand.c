@@ -108,7 +108,11 @@ void hand_species(hand *h, const char *name, int32_t gene) {
     const int32_t species = (int32_t)network->n_species++;
     h->species[species] = (tarry_species){
         .name = name, .role = TARRY_SPECIES_PRODUCT, .gene = gene};
-    h->channels[network->n_channels++] = (tarry_channel){name, species, TARRY_NONE, true, true};
+    h->channels[network->n_channels++] = (tarry_channel){.name = name,
+                                                         .species = species,
+                                                         .signal = TARRY_NONE,
+                                                         .recorded = true,
+                                                         .correlates = true};
 }
 
 void hand_signal(hand *h, const char *name, double background, double noise) {
@@ -116,7 +120,11 @@ void hand_signal(hand *h, const char *name, double background, double noise) {
     const int32_t signal = (int32_t)network->n_signals++;
     h->signals[signal] = (tarry_signal){
         .name = name, .background = background, .noise = noise, .responds_above = NAN};
-    h->channels[network->n_channels++] = (tarry_channel){name, TARRY_NONE, signal, true, true};
+    h->channels[network->n_channels++] = (tarry_channel){.name = name,
+                                                         .species = TARRY_NONE,
+                                                         .signal = signal,
+                                                         .recorded = true,
+                                                         .correlates = true};
 }
 
 void hand_record(const hand *h, tarry_record *record, int64_t cell) {
