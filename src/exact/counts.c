@@ -135,7 +135,7 @@ static size_t choose_circles(const counter *c, size_t time, size_t n, size_t cir
 /* The length of a transform that counts beyond it do not disturb. */
 static size_t choose_length(const counter *c, size_t time, size_t n, size_t circle) {
     size_t length = 64;
-    for (; length < 2 * TARRY_COUNTS_MOST; length *= 2) {
+    for (; length < 2 * (size_t)TARRY_COUNTS_MOST; length *= 2) {
         double least = INFINITY;
         for (size_t i = circle; i < c->n_radii; i++)
             least = fmin(least, c->logs[time * c->n_radii + i] +

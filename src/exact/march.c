@@ -303,16 +303,20 @@ int tarry_march_to(tarry_march *m, const double *quiet, const double *jump, doub
 
 /* ---- making ---------------------------------------------------------------------------------- */
 
-static int make_room(tarry_march *m, tarry_error *error) {
+static int fail_memory(tarry_error *error) {
+    return tarry_fail_memory(error, "the equations of a promoter");
+}
+
+static bool make_room(tarry_march *m) {
     const size_t n = NODES * m->n_states;
     m->re = tarry_calloc(m->n, m->n_states * sizeof *m->re);
     m->im = tarry_calloc(m->n, m->n_states * sizeof *m->im);
-    m->scratch = tarry_calloc(2 * n * (n + 1) + 2 * NODES, sizeof(lanes));
+    m->scratch = tarry_calloc(2 * n * (n + 1) + 2 * (size_t)NODES, sizeof(lanes));
     m->saved = tarry_calloc(4 * m->n_probes, m->n_states * sizeof *m->saved);
-    if (m->re != NULL && m->im != NULL && m->scratch != NULL && m->saved != NULL)
-        return 0;
+    if (m->re && m->im && m->scratch && m->saved)
+        return true;
     tarry_march_release(m);
-    return tarry_fail_memory(error, "the equations of a promoter");
+    return false;
 }
 
 int tarry_march_init(tarry_march *march, size_t n_states, size_t n, size_t n_probes,
@@ -324,20 +328,20 @@ int tarry_march_init(tarry_march *march, size_t n_states, size_t n, size_t n_pro
                            .tolerance = tolerance,
                            .loads = loads,
                            .context = context};
-    const int code = make_room(march, error);
-    for (size_t i = 0; code == 0 && i < n * n_states; i++)
+    if (!make_room(march))
+        return fail_memory(error);
+    for (size_t i = 0; i < n * n_states; i++)
         march->re[i] = 1;
-    return code;
+    return 0;
 }
 
 int tarry_march_copy(const tarry_march *march, tarry_march *out, tarry_error *error) {
     *out = *march;
-    const int code = make_room(out, error);
-    if (code == 0) {
-        memcpy(out->re, march->re, march->n * march->n_states * sizeof *out->re);
-        memcpy(out->im, march->im, march->n * march->n_states * sizeof *out->im);
-    }
-    return code;
+    if (!make_room(out))
+        return fail_memory(error);
+    memcpy(out->re, march->re, march->n * march->n_states * sizeof *out->re);
+    memcpy(out->im, march->im, march->n * march->n_states * sizeof *out->im);
+    return 0;
 }
 
 void tarry_march_release(tarry_march *march) {

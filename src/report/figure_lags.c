@@ -48,7 +48,7 @@ static void add_bars(const tarry_figure_rows *rows, const lag_range *range, doub
     tarry_plot_add_series(plot, TARRY_SERIES_BARS, "drawn", 0);
     for (size_t i = 0; i < rows->n;) {
         const double from = tarry_figure_number(rows, i, "from");
-        double to = tarry_figure_number(rows, i, "to"), share = 0;
+        double to, share = 0;
         const size_t first = i;
         do {
             to = tarry_figure_number(rows, i, "to");

@@ -338,7 +338,8 @@ static bool series_has_band(const tarry_plot *plot, const tarry_plot_series *ser
 
 /* "data every K::FIRST::LAST using" */
 static void add_source(const tarry_plot_series *series, tarry_text *script) {
-    const bool smooth = series->kind == TARRY_SERIES_LINE && series->n_rows > 2 * MOST_POINTS;
+    const bool smooth = series->kind == TARRY_SERIES_LINE &&
+                        series->n_rows > 2 * (size_t)MOST_POINTS;
     const size_t step = smooth ? series->n_rows / MOST_POINTS : 1;
     tarry_text_add_string(script, "data every ");
     if (step > 1)

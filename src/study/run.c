@@ -324,7 +324,7 @@ static int report(const job *j, const totals *total, tarry_results **results, ta
         code = report_kept(j, r, error);
     if (!code)
         code = tarry_sketch_report(&j->sketch, j->n_done, r, error);
-    if (!code && r->ledger && j->n_done == j->network->run.cells)
+    if (!code && r->ledger)
         code = tarry_self_check_run(j->network, r, error);
     if (code)
         tarry_results_free(r);

@@ -95,10 +95,12 @@ typedef struct entry {
 } entry;
 
 static void forget_rows(entry **rows) {
-    entry *each, *next;
-    HASH_ITER(hh, *rows, each, next) {
-        HASH_DELETE(hh, *rows, each);
+    entry *each = *rows;
+    HASH_CLEAR(hh, *rows); /* leaves the entries */
+    while (each) {
+        entry *next = each->hh.next;
         free(each);
+        each = next;
     }
 }
 
@@ -115,7 +117,7 @@ static int add_row(entry **rows, size_t row, const tarry_text *key) {
     return 1;
 }
 
-/* The rows of an exact table by their keys. */
+/* The rows of an exact table by their keys; to be forgotten, whatever is returned. */
 static int index_rows(const tarry_table *table, size_t n_keys, entry **rows, tarry_error *error) {
     tarry_text key = {0};
     int failed = 0;
@@ -124,8 +126,6 @@ static int index_rows(const tarry_table *table, size_t n_keys, entry **rows, tar
         failed = add_row(rows, row, &key);
     }
     tarry_text_release(&key);
-    if (failed)
-        forget_rows(rows);
     return failed ? tarry_fail_memory(error, "a run beside its exact laws") : TARRY_OK;
 }
 
@@ -173,7 +173,7 @@ static void add_figure(comparison *c, const entry *rows, tarry_ledger_column col
     const tarry_table *exact = c->exact->tables[columns[column].table];
     const entry *found;
     write_key(run, kept->row, columns[column].n_keys, key);
-    if (key->failed)
+    if (key->failed || !key->data)
         return;
     HASH_FIND(hh, rows, key->data, key->size, found);
     if (!found || kept->estimate.n_moves < c->n_groups)

@@ -1,7 +1,8 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 
 /* Runs that end before their time: killed where they stand, or asked to stop. Moments are drawn
- * over the time that a whole run takes, half of them while it writes its files. */
+ * over the time that a whole run takes, half of them of a part of it: a killed run while it writes
+ * its files, one that is asked to stop before. */
 
 #include "cli/talk.h"
 #include "finished.h"
@@ -31,7 +32,7 @@ static const char model[] =
     "    promoter: {shut: {to: {open: 0.1}}, open: {to: {shut: 0.4}, initiates: 6}}\n"
     "    transcript: {stages: {nascent: {fixed: 3}}, half_life: 10}\n"
     "signals: {spot: {of: vela.nascent, ramp: {from: 0, to: 1}, noise: 0.3}}\n"
-    "run: {cells: 1000, until: 200, every: 1, seed: 1}\n";
+    "run: {until: 200, every: 1, seed: 1}\n";
 
 static void put_model(void) {
     FILE *file = fopen(test_path("model.yaml"), "w");
@@ -106,13 +107,13 @@ typedef struct duration {
     double to_files, whole;
 } duration;
 
-static duration measure(void) {
+static duration measure(const char *cells) {
     duration least = {1e9, 1e9};
     char folder[ROOM];
     for (int i = 0; i < 3; i++) {
         snprintf(folder, sizeof folder, "%s/measured%d", test_folder(), i);
         const double from = now();
-        const pid_t process = start(folder, "--seed", "1");
+        const pid_t process = start(folder, "--cells", cells);
         while (count_files_in(folder) < 1 && !has_ended(process))
             wait_for(1e-4);
         const double to_files = now() - from;
@@ -148,7 +149,7 @@ static int n_moments(void) {
 START_TEST(killed) {
     put_model();
     program_listen();
-    const duration run = measure();
+    const duration run = measure("1000");
     char folder[ROOM];
     snprintf(folder, sizeof folder, "%s/out", test_folder());
     int n_killed = 0, n_writing = 0;
@@ -269,14 +270,15 @@ static void check_partial(const char *folder) {
 START_TEST(asked_to_stop) {
     put_model();
     program_listen();
-    const duration run = measure();
+    static const char cells[] = "6000"; /* the greater part of its time goes into them */
+    const duration run = measure(cells);
     int n_partial = 0;
     for (int i = 0; i < n_moments(); i++) {
         char folder[ROOM];
         snprintf(folder, sizeof folder, "%s/out%d", test_folder(), i);
         const int number = i % 5 == 3 ? SIGTERM : i % 5 == 4 ? SIGHUP : SIGINT;
-        const pid_t process = start(folder, "--seed", "1");
-        wait_for(draw() * run.whole);
+        const pid_t process = start(folder, "--cells", cells);
+        wait_for(draw() * (i % 2 ? run.whole : run.to_files));
         kill(process, number);
         const int status = finish(process);
         if (WIFSIGNALED(status)) { /* while it read the model */
