@@ -393,6 +393,7 @@ static int run_cell(tarry_cell *cell, tarry_error *error) {
     run_to_end(cell);
     if (cell->stop == TARRY_GO && cell->record) {
         tarry_cell_observe(cell, INFINITY);
+        tarry_cell_miss(cell);
         begin_run_on(cell);
         run_to_end(cell);
         cell->record->end = cell->now;

@@ -121,6 +121,9 @@ struct tarry_cell {
 /* Make all observations at times before `t`. */
 void tarry_cell_observe(tarry_cell *cell, double t);
 
+/* Once all is observed: leave out (NaN) what a search for a signal does not find (`detects`). */
+void tarry_cell_miss(tarry_cell *cell);
+
 /* Ready for a new record; called at the start of a cell. */
 void tarry_cell_begin_record(tarry_cell *cell);
 

@@ -135,6 +135,48 @@ void tarry_cell_observe(tarry_cell *cell, double t) {
     cell->watch = next_watch(cell);
 }
 
+/* ---- what is detected ---- */
+
+/* When it is first above its level, or infinity. */
+static double first_detection(const tarry_signal *signal, const double *times, uint32_t n,
+                              const double *values) {
+    for (uint32_t i = 0; i < n; i++)
+        if (values[i] > signal->detects_above)
+            return times[i];
+    return INFINITY;
+}
+
+static void miss(const tarry_signal *signal, double first, const double *times, uint32_t n,
+                 double *values) {
+    for (uint32_t i = 0; i < n; i++) {
+        const bool is_found = signal->from_first ? times[i] >= first
+                                                 : values[i] > signal->detects_above;
+        if (!is_found)
+            values[i] = NAN;
+    }
+}
+
+void tarry_cell_miss(tarry_cell *cell) {
+    const tarry_network *network = cell->network;
+    const tarry_run_plan *run = &network->run;
+    double *frames = cell->record->frames, *snapshots = cell->record->snapshots;
+    for (uint32_t i = 0; network->gaps && i < network->n_channels; i++) {
+        const tarry_channel *channel = &network->channels[i];
+        const tarry_signal *signal = channel->signal == TARRY_NONE
+                                         ? NULL
+                                         : &network->signals[channel->signal];
+        const uint32_t n_frames = channel->recorded ? run->n_frames : 0;
+        if (signal && !isnan(signal->detects_above)) {
+            const double *times = cell->engine->frame_times;
+            const double first = first_detection(signal, times, n_frames, frames);
+            miss(signal, first, times, n_frames, frames);
+            miss(signal, first, run->snapshots, run->n_snapshots, snapshots);
+        }
+        frames += n_frames;
+        snapshots += run->n_snapshots;
+    }
+}
+
 static void zero(double *array, size_t n) {
     if (n > 0)
         memset(array, 0, n * sizeof *array);

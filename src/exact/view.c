@@ -93,6 +93,8 @@ int tarry_exact_view_read(const tarry_network *network, const tarry_exact_gene *
     const tarry_signal *signal = NULL;
     if (channel->signal != TARRY_NONE) {
         signal = &network->signals[channel->signal];
+        if (!isnan(signal->detects_above))
+            view->why = "it tells only what is detected of it (detects)";
         n_most = (signal->weights.to - signal->weights.from) +
                  (signal->ramps.to - signal->ramps.from);
     }

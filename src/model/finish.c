@@ -300,6 +300,8 @@ static void count_lists(tarry_builder *builder) {
     network->n_tracks = (uint32_t)builder->tracks.n;
     network->n_genes = (uint32_t)builder->genes.n;
     network->n_signals = (uint32_t)builder->signals.n;
+    for (size_t i = 0; i < builder->signals.n; i++)
+        network->gaps = network->gaps || !isnan(builder->signals.items[i].detects_above);
     network->n_ramps = (uint32_t)builder->ramps.n;
     network->n_rates = (uint32_t)builder->rates.n;
     network->n_means = (uint32_t)builder->means.n;

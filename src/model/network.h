@@ -223,6 +223,8 @@ typedef struct tarry_signal {
     double noise; /* sd of the read-out noise in one frame: its fixed part, */
     double share; /* and the part that goes with the noiseless signal, as a share of that */
     double responds_above; /* the level whose first crossing after a step is told, or NaN */
+    double detects_above;  /* where it is not above this it is not found, and missing (NaN): */
+    bool from_first;       /* only before the first frame that is above. NaN: all is there */
     tarry_place place;
 } tarry_signal;
 
@@ -343,7 +345,6 @@ typedef struct tarry_data_plan {
     int64_t n_rows;
     double start;   /* the time of frame 0 */
     double missing; /* share of the frames between a cell's first and last one */
-    bool gaps;      /* values may be NaN */
     tarry_film_mean mean;
     uint32_t longest;     /* frames from the first to the last of a cell, at most */
     const double *shifts; /* [channel] a value amid its values, */
@@ -355,6 +356,7 @@ typedef struct tarry_network {
     const char *title;           /* "" where none is given */
     const char *time_unit;       /* "min" */
     const tarry_data_plan *data; /* NULL: a model */
+    bool gaps;                   /* values may be NaN: missing in data, or not detected */
 
     uint32_t n_species;
     const tarry_species *species;

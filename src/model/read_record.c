@@ -140,13 +140,30 @@ static int record_default(tarry_builder *builder, const tarry_node *run, tarry_e
     return 0;
 }
 
+/* The first frame in which a signal is detected is among its frames. */
+static int check_detected(const tarry_builder *builder, tarry_error *error) {
+    for (size_t i = 0; i < builder->channels.n; i++) {
+        const tarry_channel *channel = &builder->channels.items[i];
+        const tarry_signal *signal = channel->signal == TARRY_NONE
+                                         ? NULL
+                                         : &builder->signals.items[channel->signal];
+        if (signal != NULL && signal->from_first && !channel->recorded)
+            return tarry_fail_at(error, TARRY_INPUT, signal->place,
+                                 "'%s' is told from the first frame on in which it is detected "
+                                 "(from_first), so it must be recorded: name it under 'record'",
+                                 signal->name);
+    }
+    return 0;
+}
+
 int tarry_read_record(tarry_builder *builder, const tarry_node *run, tarry_error *error) {
     const tarry_node *list = tarry_node_get(run, "record");
     int code = add_channels(builder, error);
-    if (code != 0)
-        return code;
-    if (list == NULL)
-        return record_default(builder, run, error);
-    code = tarry_expect_list(list, "'record'", error);
-    return code != 0 ? code : record_list(builder, list, error);
+    if (code == 0 && list == NULL)
+        code = record_default(builder, run, error);
+    if (code == 0 && list != NULL)
+        code = tarry_expect_list(list, "'record'", error);
+    if (code == 0 && list != NULL)
+        code = record_list(builder, list, error);
+    return code != 0 ? code : check_detected(builder, error);
 }

@@ -12,7 +12,8 @@
 #include <math.h>
 
 static const char *const SIGNAL_KEYS[] = {"of",         "sum",   "ramp",   "brightness",
-                                          "background", "noise", "allele", "responds_above"};
+                                          "background", "noise", "allele", "responds_above",
+                                          "detects"};
 
 typedef struct signal_reader {
     tarry_builder *builder;
@@ -226,17 +227,37 @@ static int read_allele(signal_reader *in, const tarry_node *signal, tarry_error 
     return code;
 }
 
+/* `detects: {above: level, from_first: yes}`. */
+static int read_detects(signal_reader *in, const tarry_node *map, tarry_signal *signal,
+                        tarry_error *error) {
+    static const char *const keys[] = {"above", "from_first"};
+    const tarry_node *detects = tarry_node_get(map, "detects"), *above = NULL;
+    if (detects == NULL)
+        return 0;
+    int code = tarry_expect_keys(detects, "'detects'", keys, 2, error);
+    if (code == 0)
+        code = tarry_expect_value(detects, "'detects'", "above", &above, error);
+    if (code == 0)
+        code = read_number(in, detects, "above", "the level that a signal is detected above",
+                           &signal->detects_above, error);
+    const tarry_node *from_first = tarry_node_get(detects, "from_first");
+    if (code == 0 && from_first != NULL)
+        code = tarry_expect_answer(from_first, "'from_first'", &signal->from_first, error);
+    return code;
+}
+
 static int read_signal(signal_reader *in, const tarry_entry *entry, tarry_error *error) {
     tarry_builder *builder = in->builder;
     const tarry_node *node = entry->node;
-    tarry_signal signal = {.name = entry->key, .responds_above = NAN, .place = entry->place};
+    tarry_signal signal = {
+        .name = entry->key, .responds_above = NAN, .detects_above = NAN, .place = entry->place};
     signal.weights.from = (uint32_t)builder->weights.n;
     int code = tarry_builder_check_name(entry->key, entry->place, "a signal", error);
     if (code == 0)
         code = tarry_builder_enter(builder, TARRY_SYMBOL_SIGNAL, entry->key, in->index,
                                    entry->place, error);
     if (code == 0)
-        code = tarry_expect_keys(node, entry->key, SIGNAL_KEYS, 8, error);
+        code = tarry_expect_keys(node, entry->key, SIGNAL_KEYS, 9, error);
     if (code == 0)
         code = read_allele(in, node, error);
     if (code != 0)
@@ -256,6 +277,8 @@ static int read_signal(signal_reader *in, const tarry_entry *entry, tarry_error 
     if (code == 0)
         code = read_number(in, node, "responds_above", "the level that a signal responds above",
                            &signal.responds_above, error);
+    if (code == 0)
+        code = read_detects(in, node, &signal, error);
     signal.weights.to = (uint32_t)builder->weights.n;
     if (code == 0 && TARRY_APPEND(&builder->signals, signal) != 0)
         code = tarry_fail_memory(error, "a signal");

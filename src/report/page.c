@@ -81,11 +81,9 @@ static void add_head(tarry_page *page) {
 }
 
 static void add_verdict(tarry_page *page) {
-    tarry_text run = {0}, windows = {0}, check = {0}, visible = {0};
+    tarry_text run = {0}, lines[TARRY_RUN_LINES] = {{0}};
     tarry_run_words(page->network, page->results, &run);
-    tarry_window_words(page->network, &windows);
-    tarry_self_check_words(page->results, &check);
-    tarry_threshold_words(page->network, &visible);
+    tarry_run_lines(page->network, page->results, lines);
     tarry_html_put(page->text, "<p class=\"run\"><span class=\"%s\">%s.</span> ",
                    page->provenance->partial ? "state partial" : "state",
                    page->exact                 ? "Exact values"
@@ -94,9 +92,8 @@ static void add_verdict(tarry_page *page) {
                                                : "Complete run");
     add_escaped(page, "", &run, "; ");
     tarry_html_put(page->text, "tarry %s.", tarry_version());
-    add_escaped(page, "<br/>", &windows, ".");
-    add_escaped(page, "<br/>", &check, ".");
-    add_escaped(page, "<br/>", &visible, ".");
+    for (int i = 0; i < TARRY_RUN_LINES; i++)
+        add_escaped(page, "<br/>", &lines[i], ".");
     tarry_html_put(page->text, "</p>\n");
 }
 

@@ -4,6 +4,8 @@
 
 #include "base/number.h"
 
+#include <math.h>
+
 /* Films have frames, fixed cells times. */
 static void data_words(const tarry_network *network, const tarry_results *results,
                        tarry_text *text) {
@@ -54,7 +56,7 @@ void tarry_run_words(const tarry_network *network, const tarry_results *results,
         tarry_text_printf(text, ", seed %llu", (unsigned long long)plan->seed);
 }
 
-void tarry_self_check_words(const tarry_results *results, tarry_text *text) {
+static void self_check_words(const tarry_results *results, tarry_text *text) {
     const tarry_self_check *check = tarry_results_self_check(results);
     char largest[TARRY_NUMBER_SIZE], share[TARRY_NUMBER_SIZE];
     if (check->n_compared == 0)
@@ -76,7 +78,7 @@ static void add_rounded(tarry_text *text, const char *words, double value) {
 }
 
 /* Names that share their thresholds stand side by side. */
-void tarry_threshold_words(const tarry_network *network, tarry_text *text) {
+static void threshold_words(const tarry_network *network, tarry_text *text) {
     const tarry_thresholds *before = NULL;
     for (uint32_t i = 0; i < network->n_channels; i++) {
         const tarry_channel *channel = &network->channels[i];
@@ -96,7 +98,7 @@ void tarry_threshold_words(const tarry_network *network, tarry_text *text) {
     tarry_text_printf(text, " %s", network->time_unit);
 }
 
-void tarry_window_words(const tarry_network *network, tarry_text *text) {
+static void window_words(const tarry_network *network, tarry_text *text) {
     const tarry_run_plan *plan = &network->run;
     char from[TARRY_NUMBER_SIZE], to[TARRY_NUMBER_SIZE];
     for (uint32_t w = 0; plan->n_windows > 1 && w < plan->n_windows; w++) {
@@ -106,4 +108,26 @@ void tarry_window_words(const tarry_network *network, tarry_text *text) {
                           w ? ", " : "Windows: ", plan->windows[w].name, from, to,
                           network->time_unit);
     }
+}
+
+static void detection_words(const tarry_network *network, tarry_text *text) {
+    const char *before = "Detected: ";
+    for (uint32_t i = 0; i < network->n_signals; i++) {
+        const tarry_signal *signal = &network->signals[i];
+        if (isnan(signal->detects_above))
+            continue;
+        tarry_text_printf(text, "%s%s", before, signal->name);
+        add_rounded(text, signal->from_first ? " from its first frame above " : " in frames above ",
+                    signal->detects_above);
+        tarry_text_add_string(text, signal->from_first ? " on" : " only");
+        before = ", ";
+    }
+}
+
+void tarry_run_lines(const tarry_network *network, const tarry_results *results,
+                     tarry_text lines[TARRY_RUN_LINES]) {
+    window_words(network, &lines[TARRY_RUN_LINE_WINDOWS]);
+    self_check_words(results, &lines[TARRY_RUN_LINE_CHECK]);
+    threshold_words(network, &lines[TARRY_RUN_LINE_VISIBLE]);
+    detection_words(network, &lines[TARRY_RUN_LINE_DETECTED]);
 }

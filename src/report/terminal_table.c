@@ -38,28 +38,22 @@ typedef struct table_page {
 
 /* ---- head ----------------------------------------------------------------------------------- */
 
+static void add_line(table_page *page, tarry_text *line) {
+    page->text->failed = page->text->failed || line->failed;
+    if (!page->text->failed && line->size)
+        tarry_lines_wrap(page->text, "", line->data, page->width);
+    tarry_text_release(line);
+}
+
 static void add_top(table_page *page) {
-    tarry_text run = {0}, windows = {0}, check = {0}, visible = {0};
+    tarry_text run = {0}, lines[TARRY_RUN_LINES] = {{0}};
     if (page->network->title[0])
         tarry_lines_wrap(page->text, "", page->network->title, page->width);
     tarry_run_words(page->network, page->results, &run);
-    tarry_window_words(page->network, &windows);
-    tarry_self_check_words(page->results, &check);
-    tarry_threshold_words(page->network, &visible);
-    page->text->failed = page->text->failed || run.failed || windows.failed || check.failed ||
-                         visible.failed;
-    if (!page->text->failed)
-        tarry_lines_wrap(page->text, "", run.data, page->width);
-    if (!page->text->failed && windows.size)
-        tarry_lines_wrap(page->text, "", windows.data, page->width);
-    if (!page->text->failed && check.size)
-        tarry_lines_wrap(page->text, "", check.data, page->width);
-    if (!page->text->failed && visible.size)
-        tarry_lines_wrap(page->text, "", visible.data, page->width);
-    tarry_text_release(&run);
-    tarry_text_release(&windows);
-    tarry_text_release(&check);
-    tarry_text_release(&visible);
+    tarry_run_lines(page->network, page->results, lines);
+    add_line(page, &run);
+    for (int i = 0; i < TARRY_RUN_LINES; i++)
+        add_line(page, &lines[i]);
 }
 
 /* ---- genes and signals ---------------------------------------------------------------------- */

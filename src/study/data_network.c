@@ -118,8 +118,10 @@ static int make_names(tarry_data *data, tarry_error *error) {
         }
         if (!counted || film) {
             channels[k].signal = (int32_t)network->n_signals;
-            signals[network->n_signals++] = (tarry_signal){
-                .name = name, .background = data->options.background, .responds_above = NAN};
+            signals[network->n_signals++] = (tarry_signal){.name = name,
+                                                           .background = data->options.background,
+                                                           .responds_above = NAN,
+                                                           .detects_above = NAN};
         }
     }
     network->channels = channels;
@@ -408,11 +410,11 @@ static int build_film(tarry_data *data, tarry_error *error) {
         code = make_units_of_films(data, error);
     plan->missing = frames->expected > 0.0 ? frames->missing / frames->expected : 0.0;
     plan->mean = data->options.mean;
-    plan->gaps = !frames->whole || plan->mean == TARRY_FILM_MEAN_CELL;
+    data->model->network.gaps = !frames->whole || plan->mean == TARRY_FILM_MEAN_CELL;
     plan->longest = frames->longest;
     plan->n_resampled = (int64_t)frames->n_cells;
     plan->resampled = "cell";
-    if (code == TARRY_OK && plan->mean == TARRY_FILM_MEAN_FRAME && plan->gaps)
+    if (code == TARRY_OK && plan->mean == TARRY_FILM_MEAN_FRAME && data->model->network.gaps)
         code = fail_data(data, error,
                          "--mean frame needs traces in which no frame is missing and which all "
                          "begin and end together; cut them with --from and --to");
@@ -423,7 +425,7 @@ static int build_rows(tarry_data *data, tarry_error *error) {
     int code = make_snapshots(data, error);
     if (code == TARRY_OK)
         code = make_units_of_rows(data, error);
-    data->plan.gaps = true;
+    data->model->network.gaps = true;
     data->plan.n_resampled = (int64_t)data->n_units;
     data->plan.resampled = data->table.kind == TARRY_DATA_MEANS ? "replicate" : "cell";
     for (size_t k = 0; k < data->table.n_names; k++)

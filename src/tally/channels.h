@@ -15,11 +15,6 @@ static inline uint32_t tarry_channels_recorded(const tarry_network *network) {
     return n;
 }
 
-/* May values be missing (NaN)? Only in data. */
-static inline bool tarry_channels_gaps(const tarry_network *network) {
-    return network->data && network->data->gaps;
-}
-
 /* Does it hold real numbers, not counts? */
 static inline bool tarry_channel_is_real(const tarry_channel *channel) {
     return channel->species == TARRY_NONE;

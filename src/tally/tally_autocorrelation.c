@@ -54,6 +54,8 @@ static size_t n_pairs(const film_layout *layout) {
 static bool is_stationary(const tarry_network *network, const tarry_window *window) {
     if (network->data)
         return network->data->mean != TARRY_FILM_MEAN_FRAME;
+    if (network->gaps)
+        return true; /* one mean for all, as of data in which frames are missing */
     for (uint32_t i = 1; i < network->n_segments; i++)
         if (network->segments[i].start < window->to)
             return false;
@@ -66,13 +68,13 @@ static bool is_film(const tarry_window *window) {
 }
 
 static tarry_film_shape shape_of(const tarry_network *network, const tarry_window *window) {
-    const bool gaps = tarry_channels_gaps(network);
+    const bool gaps = network->gaps;
     const uint32_t n_frames = window->frames.to - window->frames.from;
-    tarry_film_shape shape = tarry_film_shape_of(gaps ? network->data->longest : n_frames,
-                                                 network->run.n_lags,
-                                                 is_stationary(network, window));
+    tarry_film_shape shape = tarry_film_shape_of(
+        gaps && network->data ? network->data->longest : n_frames, network->run.n_lags,
+        is_stationary(network, window));
     shape.gaps = gaps;
-    shape.own_mean = gaps && network->data->mean == TARRY_FILM_MEAN_CELL;
+    shape.own_mean = gaps && network->data && network->data->mean == TARRY_FILM_MEAN_CELL;
     return shape;
 }
 
@@ -173,13 +175,22 @@ static uint32_t first_known(const tarry_network *network, const tarry_record *re
     return first < last ? first : last;
 }
 
+/* Amid the values of all cells. */
+static double shift_of_gaps(const tarry_network *network, uint32_t channel) {
+    const int32_t signal = network->channels[channel].signal;
+    if (network->data)
+        return network->data->shifts[channel];
+    return signal == TARRY_NONE ? 0.0 : network->signals[signal].background;
+}
+
 static void add_window(const tarry_network *network, const tarry_record *record,
                        const window_view *view, double *scratch) {
     const size_t n_products = view->n_series - view->n_signals;
     const size_t trace_size = tarry_trace_size(&view->shape);
     double *work = scratch + (1 + view->n_signals) * trace_size;
-    const uint32_t from = view->shape.gaps ? first_known(network, record, view->window)
-                                           : view->window->frames.from;
+    const uint32_t from = view->shape.gaps && network->data
+                              ? first_known(network, record, view->window)
+                              : view->window->frames.from;
     size_t series = 0, recorded = 0;
     for (uint32_t c = 0; c < network->n_channels; c++) {
         const double *frames = record->frames + recorded * network->run.n_frames + from;
@@ -188,7 +199,7 @@ static void add_window(const tarry_network *network, const tarry_record *record,
             continue;
         if (*view->n_cells <= 0.0)
             view->shifts[series] = view->shape.gaps
-                                       ? network->data->shifts[c]
+                                       ? shift_of_gaps(network, c)
                                        : tarry_trace_mean(frames, view->shape.n_frames);
         double *trace = scratch + (series < n_products ? 0 : 1 + series - n_products) * trace_size;
         tarry_trace_prepare(&view->shape, frames, view->shifts[series], trace);
@@ -293,6 +304,12 @@ static double put_back(const double *covariance) {
 
 enum { LAGS_PUT_BACK = 4 };
 
+/* Of data, and where the values that are found are those with much noise. */
+static bool noise_is_unknown(const tarry_network *network, const tarry_channel *channel) {
+    return tarry_channel_is_real(channel) &&
+           (network->data || !isnan(network->signals[channel->signal].detects_above));
+}
+
 static series_level level_of(const tarry_network *network, const tarry_channel *channel,
                              const window_view *view, size_t series, const double *covariance) {
     const double mean = view->shifts[series] +
@@ -301,7 +318,7 @@ static series_level level_of(const tarry_network *network, const tarry_channel *
                                   ? 0.0
                                   : network->signals[channel->signal].background;
     series_level level = {mean - background, covariance[0]};
-    if (network->data && tarry_channel_is_real(channel) && view->shape.n_lags >= LAGS_PUT_BACK)
+    if (noise_is_unknown(network, channel) && view->shape.n_lags >= LAGS_PUT_BACK)
         level.variance = put_back(covariance);
     else if (channel->signal != TARRY_NONE)
         level.variance = without_noise(&network->signals[channel->signal], view, series,

@@ -43,7 +43,7 @@ static slots slots_of(const tarry_network *network) {
     s.sum = s.n;
     s.squares = 2 * s.n;
     s.cells = 3 * s.n;
-    s.gaps = tarry_channels_gaps(network);
+    s.gaps = network->gaps;
     return s;
 }
 

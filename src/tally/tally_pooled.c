@@ -51,7 +51,7 @@ typedef struct layout {
 static layout layout_of(const tarry_network *network) {
     const size_t n_windows = network->run.n_windows;
     return (layout){n_windows, tarry_channels_recorded(network) * n_windows,
-                    tarry_channels_gaps(network) ? N_SUMS_GAPS : N_SUMS};
+                    network->gaps ? N_SUMS_GAPS : N_SUMS};
 }
 
 static size_t pooled_size(const tarry_network *network) {

@@ -118,8 +118,11 @@ void hand_species(hand *h, const char *name, int32_t gene) {
 void hand_signal(hand *h, const char *name, double background, double noise) {
     tarry_network *network = &h->network;
     const int32_t signal = (int32_t)network->n_signals++;
-    h->signals[signal] = (tarry_signal){
-        .name = name, .background = background, .noise = noise, .responds_above = NAN};
+    h->signals[signal] = (tarry_signal){.name = name,
+                                        .background = background,
+                                        .noise = noise,
+                                        .responds_above = NAN,
+                                        .detects_above = NAN};
     h->channels[network->n_channels++] = (tarry_channel){.name = name,
                                                          .species = TARRY_NONE,
                                                          .signal = signal,

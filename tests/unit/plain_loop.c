@@ -112,6 +112,32 @@ static double frame_time(const tarry_run_plan *run, uint32_t i) {
     return i + 1 == run->n_frames ? run->until : i * run->every;
 }
 
+/* A signal that must be detected: what a search for it does not find, after all is recorded. */
+static void leave_out(const tarry_network *network, tarry_record *record) {
+    const tarry_run_plan *run = &network->run;
+    size_t row = 0;
+    for (uint32_t c = 0; c < network->n_channels; c++) {
+        double *frames = record->frames + row * run->n_frames;
+        double *snapshots = record->snapshots + (size_t)c * run->n_snapshots;
+        const int32_t number = network->channels[c].signal;
+        row += network->channels[c].recorded;
+        if (number < 0 || isnan(network->signals[number].detects_above))
+            continue;
+        const double level = network->signals[number].detects_above;
+        uint32_t first = 0;
+        while (network->channels[c].recorded && first < run->n_frames && !(frames[first] > level))
+            first++;
+        const bool never = first == run->n_frames, later = network->signals[number].from_first;
+        for (uint32_t i = 0; i < run->n_snapshots; i++)
+            if (later ? never || run->snapshots[i] < frame_time(run, first)
+                      : !(snapshots[i] > level))
+                snapshots[i] = NAN;
+        for (uint32_t i = 0; network->channels[c].recorded && i < run->n_frames; i++)
+            if (later ? i < first : !(frames[i] > level))
+                frames[i] = NAN;
+    }
+}
+
 static void observe_frame(plain *p) {
     const tarry_network *network = p->network;
     const double time = frame_time(&network->run, p->frame);
@@ -628,6 +654,7 @@ static int run(plain *p, tarry_error *error) {
     }
     p->record->end = p->now;
     move_to(p, INFINITY);
+    leave_out(p->network, p->record);
     return 0;
 }
 

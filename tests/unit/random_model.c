@@ -542,6 +542,9 @@ static void write_signals(maker *m) {
         }
         if (chance(m, 30))
             WRITE("    responds_above: %u\n", 1 + pick(m, 4));
+        if (chance(m, 20))
+            WRITE("    detects: {above: %u, from_first: %s}\n", 1 + pick(m, 4),
+                  chance(m, 50) ? "yes" : "no");
         if (chance(m, 50))
             WRITE("    background: 2\n");
         if (chance(m, 50))
