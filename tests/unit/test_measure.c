@@ -29,8 +29,8 @@ static double mean_at(const measured *m, const char *name, size_t i, const char 
 START_TEST(test_dresses) {
     static const char *const dresses[] = {
         "cell,time,spot\na,0,1\na,1,2\nb,0,3\nb,1,6\n",
-        "\xef\xbb\xbf# a title\r\n#\r\n\"cell\", time ,spot\r\n "
-        "a,0,1\r\na,1,\"2\"\r\nb,0,3\r\nb,1,6",
+        ("\xef\xbb\xbf# a title\r\n#\r\n\"cell\", time ,spot\r\n "
+         "a,0,1\r\na,1,\"2\"\r\nb,0,3\r\nb,1,6"),
         "time,spot,cell\n0,1,a\n0,3,b\n1,2,a\n1,6e0,b\n\n\n",
         "cell,time,spot,group\na,0,1,x\nb,0,3,x\nb,1,6,x\na,1,2,x\n",
     };
