@@ -48,6 +48,9 @@ const tarry_table *tarry_results_table(const tarry_results *results, tarry_resul
 /* Traces of the cells that were kept (cell, time, one column a name), or NULL. */
 const tarry_table *tarry_results_cells(const tarry_results *results);
 
+/* The run told as data, where tarry_run_options.as_data asked for it, or NULL. */
+const tarry_table *tarry_results_data(const tarry_results *results);
+
 /* For figures, where tarry_run_options.traced asked for them, or NULL: traces of the first cells
  * (cell, time, one column a name; of a long record its beginning), and what was active in them
  * (gene, allele, cell, from, to). */

@@ -11,11 +11,29 @@
 #include "tarry/model.h"
 #include "tarry/results.h"
 
+/* A run told as data, in a form that tarry_measure reads. X(NAME, word) */
+#define TARRY_DATA_FORMS(X)                                                                        \
+    X(NONE, "none")                                                                                \
+    X(TRACES, "traces") /* signals of all cells, frame by frame */                                 \
+    X(COUNTS, "counts") /* molecules in fixed cells, each at one of the snapshots */               \
+    X(MEANS, "means")   /* of signals over cells, with standard errors */
+
+typedef enum tarry_data_form {
+#define TARRY_DATA_FORM_ENUM(name, word) TARRY_DATA_FORM_##name,
+    TARRY_DATA_FORMS(TARRY_DATA_FORM_ENUM)
+#undef TARRY_DATA_FORM_ENUM
+} tarry_data_form;
+
+/* "traces" and the like; and the form of that name, or -1. */
+const char *tarry_data_form_name(tarry_data_form form);
+int tarry_data_form_of(const char *name);
+
 typedef struct tarry_run_options {
-    int threads;         /* 0: all cores */
-    const char *sampler; /* NULL: "direct" */
-    int64_t keep;        /* traces of the first `keep` cells go into the results */
-    int64_t traced;      /* for figures: traces and active periods of the first `traced` cells, */
+    int threads;             /* 0: all cores */
+    const char *sampler;     /* NULL: "direct" */
+    int64_t keep;            /* traces of the first `keep` cells go into the results */
+    tarry_data_form as_data; /* tarry_results_data */
+    int64_t traced; /* for figures: traces and active periods of the first `traced` cells, */
     const char *const *genes; /* of these genes and named bursts (none: of the first few) */
     size_t n_genes;
     bool self_check; /* work out exact laws too and compare (tarry_results_self_check) */

@@ -9,6 +9,7 @@
 #include "tarry/error.h"
 #include "tarry/model.h"
 #include "tarry/results.h"
+#include "tarry/run.h"
 
 /* X(NAME, word) */
 #define TARRY_FIGURE_FORMATS(X)                                                                    \
@@ -43,6 +44,7 @@ typedef struct tarry_provenance {
     const tarry_override *overrides; /* as given on the command line */
     size_t n_overrides;
     long long keep;
+    tarry_data_form as_data;
     double seconds;
     int threads;
     bool partial;                        /* interrupted */

@@ -44,6 +44,7 @@ static int simulate(const tarry_settings *settings, const tarry_model *model,
         .threads = provenance->threads,
         .sampler = provenance->sampler,
         .keep = settings->keep,
+        .as_data = provenance->as_data,
         .self_check = true,
         .traced = figures->format == TARRY_FIGURE_NONE ? 0 : TRACED,
         .genes = figures->genes,
@@ -100,6 +101,15 @@ static int hand_out(const tarry_settings *settings, const char *folder, const ta
     return status ? status : table_status;
 }
 
+static int read_form(const char *word, tarry_data_form *form) {
+    const int found = word ? tarry_data_form_of(word) : TARRY_DATA_FORM_NONE;
+    if (found < 0 || (word && found == TARRY_DATA_FORM_NONE))
+        return tarry_complain(TARRY_EXIT_WRONG,
+                              "--as-data %s: one of traces, counts and means is due here", word);
+    *form = (tarry_data_form)found;
+    return TARRY_EXIT_DONE;
+}
+
 static int run_model(const tarry_settings *settings, const char *folder,
                      tarry_figure_options *figures, const tarry_model *model) {
     tarry_error error = {0};
@@ -112,11 +122,14 @@ static int run_model(const tarry_settings *settings, const char *folder,
         .threads = tarry_run_n_threads(model, (int)settings->threads),
         .figures = figures,
     };
+    int status = read_form(settings->as_data, &provenance.as_data);
+    if (status)
+        return status;
     if (tarry_write_check(folder, settings->overwrite, &error))
         return tarry_complain_error(&error);
     for (size_t i = 0; i < tarry_model_n_warnings(model); i++)
         tarry_talk("warning: %s", tarry_model_warning(model, i));
-    int status = simulate(settings, model, figures, &results, &provenance);
+    status = simulate(settings, model, figures, &results, &provenance);
     if (!status)
         status = hand_out(settings, folder, model, results, &provenance);
     if (!status && provenance.partial)

@@ -79,6 +79,8 @@ static const option_row options[] = {
      "how the next reaction is drawn; default: direct"},
     {"keep", "N", VALUE_WHOLE, TARRY_FOR_RUN, FIELD(keep), 0, MOST_CELLS,
      "write traces of the first N cells"},
+    {"as-data", "FORM", VALUE_TEXT, TARRY_FOR_RUN, FIELD(as_data), 0, 0,
+     "write data.csv too: traces, counts or means"},
     {"figures", "KIND", VALUE_TEXT, WRITING_COMMANDS, FIELD(figures), 0, 0,
      "svg (default), pdf, png or none"},
     {"genes", "A,B,...", VALUE_TEXT, TARRY_FOR_RUN | TARRY_FOR_PREDICT, FIELD(genes), 0, 0,

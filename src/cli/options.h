@@ -25,6 +25,7 @@ typedef struct tarry_settings {
     const char *operand; /* the one word that is no option, or NULL */
     const char *out;
     const char *sampler;
+    const char *as_data; /* form, or NULL */
     const char *figures; /* kind, or NULL */
     const char *as;      /* man, bash, zsh */
     const char *genes;   /* names with commas between them, or NULL */

@@ -7,6 +7,7 @@
 #include "report/html.h"
 #include "report/notes_list.h"
 #include "report/page_parts.h"
+#include "report/repeat.h"
 #include "report/run_words.h"
 #include "tarry/tarry.h"
 
@@ -63,7 +64,7 @@ static void add_escaped(tarry_page *page, const char *before, tarry_text *words,
 }
 
 static const char *title_of(const tarry_page *page) {
-    return page->network->title[0] ? page->network->title : tarry_page_file(page);
+    return page->network->title[0] ? page->network->title : tarry_repeat_file(page->model);
 }
 
 static void add_head(tarry_page *page) {
@@ -101,7 +102,7 @@ static void add_verdict(tarry_page *page) {
 
 static void add_warning(void *context, const char *words) {
     tarry_page *page = context;
-    const size_t folders = (size_t)(tarry_page_file(page) - page->model->file);
+    const size_t folders = (size_t)(tarry_repeat_file(page->model) - page->model->file);
     /* Where the model lay is nobody's concern: its name will do. */
     if (!strncmp(words, page->model->file, strlen(page->model->file)))
         words += folders;

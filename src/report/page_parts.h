@@ -88,7 +88,4 @@ void tarry_page_figures(tarry_page *page);
 /* page_repeat.c: the model, how to repeat the run, how to cite it. */
 void tarry_page_repeat(tarry_page *page);
 
-/* The name of the model's file without its folders. */
-const char *tarry_page_file(const tarry_page *page);
-
 #endif

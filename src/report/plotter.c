@@ -24,8 +24,6 @@
 #include <time.h>
 #include <unistd.h>
 
-extern char **environ;
-
 static const long nap = 2000000; /* ns */
 
 /* The variables of this process, with the date fixed unless it is already. */

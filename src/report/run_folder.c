@@ -22,6 +22,7 @@ static const char *const run_files[] = {
     TARRY_RESULT_TABLES(FILE_NAME)
 #undef FILE_NAME
         "cells.csv",
+    "data.csv",
     tarry_page_name,
     tarry_run_name,
 };

@@ -360,6 +360,8 @@ static void write_simulation(json_writer *writer, const tarry_network *network,
     member(writer, "seed", json_integer((json_int_t)network->run.seed));
     member(writer, "sampler", tarry_json_text(provenance->sampler));
     member(writer, "keep", json_integer(provenance->keep));
+    if (provenance->as_data != TARRY_DATA_FORM_NONE)
+        member(writer, "as_data", tarry_json_text(tarry_data_form_name(provenance->as_data)));
     member(writer, "firings", tarry_json_number(tarry_results_firings(results)));
     member(writer, "completions", tarry_json_number(tarry_results_completions(results)));
 }

@@ -8,9 +8,12 @@
 #include "base/table.h"
 #include "report/drawing.h"
 #include "report/page.h"
+#include "report/repeat.h"
 #include "report/run_folder.h"
+#include "tarry/tarry.h"
 
 #include <stdio.h>
+#include <string.h>
 
 int tarry_write_check(const char *path, bool overwrite, tarry_error *error) {
     tarry_run_folder folder;
@@ -37,7 +40,47 @@ static int write_table(tarry_run_folder *folder, const tarry_table *table, tarry
     return status;
 }
 
-static int write_tables(tarry_run_folder *folder, const tarry_results *results,
+static void add_comment(const char *mark, const char *line, size_t size, tarry_text *text) {
+    const char *end = line + size;
+    while (line < end) {
+        const char *next = memchr(line, '\n', (size_t)(end - line));
+        tarry_text_add_string(text, mark);
+        tarry_text_add(text, line, (size_t)((next ? next : end) - line));
+        tarry_text_add_string(text, "\n");
+        line = next ? next + 1 : end;
+    }
+}
+
+/* Of a run told as data: what it is, so that nobody takes it for the work of a laboratory, and what
+ * made it. The command has nothing that numbers do not depend on, as the figures. */
+static void add_data_head(const tarry_model *model, const tarry_results *results,
+                          const tarry_provenance *provenance, tarry_text *text) {
+    const char *title = model->network.title[0] ? model->network.title : tarry_repeat_file(model);
+    tarry_provenance of_numbers = *provenance;
+    of_numbers.figures = NULL;
+    add_comment("# Simulated data, not measured: ", title, strlen(title), text);
+    tarry_text_printf(text, "# Time in %s. Made by: ", model->network.time_unit);
+    tarry_repeat_command(model, results, &of_numbers, text);
+    tarry_text_printf(text, " (tarry %s). The model:\n", tarry_version());
+    add_comment("#   ", model->text, model->text_size, text);
+}
+
+static int write_data(tarry_run_folder *folder, const tarry_model *model,
+                      const tarry_results *results, const tarry_provenance *provenance,
+                      tarry_error *error) {
+    const tarry_table *table = tarry_results_data(results);
+    tarry_text text = {0};
+    if (!table)
+        return 0;
+    add_data_head(model, results, provenance, &text);
+    tarry_table_write_csv(table, &text);
+    const int status = tarry_run_folder_write(folder, "data.csv", &text, true, true, error);
+    tarry_text_release(&text);
+    return status;
+}
+
+static int write_tables(tarry_run_folder *folder, const tarry_model *model,
+                        const tarry_results *results, const tarry_provenance *provenance,
                         tarry_error *error) {
     for (size_t i = 0; i < TARRY_N_RESULT_TABLES; i++) {
         const tarry_table *table = tarry_results_table(results, (tarry_result_table)i);
@@ -45,7 +88,8 @@ static int write_tables(tarry_run_folder *folder, const tarry_results *results,
         if (status)
             return status;
     }
-    return write_table(folder, tarry_results_cells(results), error);
+    const int status = write_table(folder, tarry_results_cells(results), error);
+    return status ? status : write_data(folder, model, results, provenance, error);
 }
 
 /* Figures, and the page that has those that could be drawn. */
@@ -105,7 +149,7 @@ static int write_all(tarry_run_folder *folder, const tarry_model *model,
     int status = folder->has_summary ? tarry_run_folder_remove(folder, tarry_summary_name, error)
                                      : 0;
     if (!status)
-        status = write_tables(folder, results, error);
+        status = write_tables(folder, model, results, provenance, error);
     if (!status)
         status = write_figures(folder, model, results, provenance, error);
     if (!status)

@@ -382,7 +382,7 @@ static void write_files(tarry_page *page) {
 
 static int write_memory(tarry_page *page, tarry_notes *notes, tarry_error *error) {
     const int threads = tarry_run_threads(page->network, 0);
-    const tarry_run_memory memory = tarry_run_memory_of(page->network, threads, 0);
+    const tarry_run_memory memory = tarry_run_memory_of(page->network, threads, 0.0);
     const double limit = page->network->run.limit_memory;
     char one[TARRY_BYTES_SIZE], other[TARRY_BYTES_SIZE];
     tarry_page_head(page, "Memory", -1);

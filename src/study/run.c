@@ -21,6 +21,8 @@
 #include "base/threads.h"
 #include "engine/cell.h"
 #include "model/model.h"
+#include "study/as_data.h"
+#include "study/gather.h"
 #include "study/self_check.h"
 #include "study/sheet.h"
 #include "study/sketch.h"
@@ -52,9 +54,8 @@ typedef struct job {
     const tarry_run_options *options;
     tarry_engine *engine;
     tarry_tally_set *set;
-    double *kept; /* [kept cell][recorded channel][frame] */
-    int64_t n_keep;
-    uint32_t n_recorded;
+    tarry_gather kept; /* frames of the first cells */
+    tarry_gather data; /* what is told as data */
     tarry_sketch sketch;
 
     bool has_lock, has_added;
@@ -66,13 +67,6 @@ typedef struct job {
     int64_t failed;                 /* the lowest cell that failed, or -1 */
     tarry_error failure;
 } job;
-
-static uint32_t count_recorded(const tarry_network *network) {
-    uint32_t n = 0;
-    for (uint32_t i = 0; i < network->n_channels; i++)
-        n += network->channels[i].recorded;
-    return n;
-}
 
 /* ---- totals --------------------------------------------------------------------------------- */
 
@@ -164,13 +158,6 @@ static void note_added(job *j, int64_t cell) {
     pthread_mutex_unlock(&j->lock);
 }
 
-static void keep_frames(job *j, const tarry_record *record) {
-    if (record->cell >= j->n_keep)
-        return;
-    const size_t n = (size_t)j->n_recorded * j->network->run.n_frames;
-    memcpy(j->kept + (size_t)record->cell * n, record->frames, n * sizeof *j->kept);
-}
-
 /* The job and everybody who has a hand in it. */
 typedef struct team {
     job *job;
@@ -191,7 +178,8 @@ static void work(void *context, int index) {
                 code = tarry_sketch_add(&j->sketch, &w->record, &error);
             if (!code) {
                 totals_count(&w->totals, &w->record, j->network);
-                keep_frames(j, &w->record);
+                tarry_gather_add(&j->kept, &w->record);
+                tarry_gather_add(&j->data, &w->record);
                 note_added(j, cell);
             }
         }
@@ -202,25 +190,23 @@ static void work(void *context, int index) {
 
 /* ---- memory --------------------------------------------------------------------------------- */
 
-tarry_run_memory tarry_run_memory_of(const tarry_network *network, int threads, int64_t keep) {
+tarry_run_memory tarry_run_memory_of(const tarry_network *network, int threads, double kept) {
     tarry_run_memory memory = {0};
     memory.tallies = tarry_tally_set_bytes(network);
     memory.thread = (double)tarry_record_bytes(network) +
                     (double)tarry_tally_set_scratch(network) * sizeof(double);
     memory.threads = memory.thread * threads;
-    /* once as gathered and once as rows of the table, with cell and time */
-    const double row = 2.0 * count_recorded(network) + 2.0;
-    memory.kept = (double)keep * network->run.n_frames * row * sizeof(double);
+    memory.kept = kept;
     memory.all = memory.tallies + memory.threads + memory.kept;
     return memory;
 }
 
-static int check_memory(const tarry_network *network, int threads, int64_t keep, double sketch,
-                        tarry_error *error) {
-    tarry_run_memory memory = tarry_run_memory_of(network, threads, keep);
-    memory.kept += sketch;
-    memory.all += sketch;
-    const double limit = network->run.limit_memory;
+static int check_memory(const job *j, tarry_error *error) {
+    const int threads = tarry_run_threads(j->network, j->options->threads);
+    const double of_cells = tarry_gather_bytes(&j->kept) + tarry_gather_bytes(&j->data);
+    const tarry_run_memory memory = tarry_run_memory_of(j->network, threads,
+                                                        of_cells + tarry_sketch_bytes(&j->sketch));
+    const double limit = j->network->run.limit_memory;
     if (memory.all <= limit)
         return 0;
     char all[TARRY_BYTES_SIZE], tallies[TARRY_BYTES_SIZE], thread[TARRY_BYTES_SIZE];
@@ -232,54 +218,10 @@ static int check_memory(const tarry_network *network, int threads, int64_t keep,
         "(run: every), use fewer windows%s or raise limits: memory",
         tarry_bytes_text(memory.all, all), tarry_bytes_text(memory.tallies, tallies), threads,
         tarry_bytes_text(memory.thread, thread), tarry_bytes_text(memory.kept, kept),
-        tarry_bytes_text(limit, most), keep > 0 ? " or kept cells" : "");
+        tarry_bytes_text(limit, most), of_cells > 0 ? " or kept cells" : "");
 }
 
 /* ---- the results ---------------------------------------------------------------------------- */
-
-/* "cell:number time:number vela.nascent:number ..." */
-static char *kept_columns(const job *j) {
-    tarry_text text = {0};
-    tarry_text_add_string(&text, "cell:number time:number");
-    for (uint32_t i = 0; i < j->network->n_channels; i++)
-        if (j->network->channels[i].recorded)
-            tarry_text_printf(&text, " %s:number", j->network->channels[i].name);
-    if (text.failed)
-        tarry_text_release(&text);
-    return text.data;
-}
-
-static int fill_kept(const job *j, int64_t n, tarry_table *table, double *row, tarry_error *error) {
-    const tarry_run_plan *plan = &j->network->run;
-    const size_t n_frames = plan->n_frames;
-    for (int64_t cell = 0; cell < n; cell++) {
-        const double *frames = j->kept + (size_t)cell * j->n_recorded * n_frames;
-        for (size_t frame = 0; frame < n_frames; frame++) {
-            row[0] = (double)cell;
-            row[1] = frame + 1 == n_frames ? plan->until : (double)frame * plan->every;
-            for (size_t i = 0; i < j->n_recorded; i++)
-                row[2 + i] = frames[i * n_frames + frame];
-            const int code = tarry_table_add_numbers(table, row, error);
-            if (code)
-                return code;
-        }
-    }
-    return 0;
-}
-
-static int report_kept(const job *j, tarry_results *results, tarry_error *error) {
-    const int64_t n = j->n_keep < j->n_done ? j->n_keep : j->n_done;
-    if (n == 0)
-        return 0;
-    char *columns = kept_columns(j);
-    double *row = tarry_calloc((size_t)j->n_recorded + 2, sizeof *row);
-    results->cells = columns && row ? tarry_table_new("cells", columns) : NULL;
-    int code = results->cells ? fill_kept(j, n, results->cells, row, error)
-                              : tarry_fail_memory(error, "the traces of cells");
-    free(columns);
-    free(row);
-    return code;
-}
 
 /* What happened in running that a reader of the figures must know. */
 static int report_notes(const job *j, const totals *total, tarry_notes *notes, tarry_error *error) {
@@ -321,7 +263,9 @@ static int report(const job *j, const totals *total, tarry_results **results, ta
     if (!code)
         code = tarry_tally_set_report(j->set, r, error);
     if (!code)
-        code = report_kept(j, r, error);
+        code = tarry_gather_table(&j->kept, "cells", j->n_done, false, &r->cells, error);
+    if (!code)
+        code = tarry_as_data_report(&j->data, j->options->as_data, j->n_done, r, error);
     if (!code)
         code = tarry_sketch_report(&j->sketch, j->n_done, r, error);
     if (!code && r->ledger)
@@ -335,13 +279,16 @@ static int report(const job *j, const totals *total, tarry_results **results, ta
 
 /* ---- the run -------------------------------------------------------------------------------- */
 
+static bool is_recorded(const tarry_network *network, const tarry_channel *channel) {
+    (void)network;
+    return channel->recorded;
+}
+
 static int job_init(job *j, const tarry_network *network, const tarry_run_options *options,
                     tarry_error *error) {
     j->network = network;
     j->options = options;
     j->failed = -1;
-    j->n_recorded = count_recorded(network);
-    j->n_keep = options->keep < network->run.cells ? options->keep : network->run.cells;
     j->has_lock = pthread_mutex_init(&j->lock, NULL) == 0;
     j->has_added = pthread_cond_init(&j->added, NULL) == 0;
     if (!j->has_lock || !j->has_added)
@@ -351,22 +298,25 @@ static int job_init(job *j, const tarry_network *network, const tarry_run_option
                                  options->traced < cells ? options->traced : cells, options->genes,
                                  options->n_genes, error);
     if (!code)
-        code = check_memory(network, tarry_run_threads(network, options->threads), j->n_keep,
-                            tarry_sketch_bytes(&j->sketch), error);
+        code = tarry_gather_init(&j->kept, network, TARRY_GATHER_FRAMES,
+                                 options->keep < cells ? options->keep : cells, is_recorded, error);
+    if (!code)
+        code = tarry_as_data_init(&j->data, network, options->as_data, error);
+    if (!code)
+        code = check_memory(j, error);
     if (!code)
         code = tarry_engine_new(network, options->sampler ? options->sampler : "direct", &j->engine,
                                 error);
     if (!code)
         code = tarry_tally_set_new(network, &j->set, error);
-    if (code)
-        return code;
-    j->kept = tarry_calloc((size_t)j->n_keep,
-                           (size_t)j->n_recorded * network->run.n_frames * sizeof *j->kept);
-    return j->kept ? 0 : tarry_fail_memory(error, "the traces of cells");
+    if (!code)
+        code = tarry_gather_make_room(&j->kept, error);
+    return code ? code : tarry_gather_make_room(&j->data, error);
 }
 
 static void job_release(job *j) {
-    free(j->kept);
+    tarry_gather_release(&j->kept);
+    tarry_gather_release(&j->data);
     tarry_sketch_release(&j->sketch);
     tarry_tally_set_free(j->set);
     tarry_engine_free(j->engine);

@@ -20,10 +20,11 @@ typedef struct tarry_run_memory {
     double tallies; /* sums of all estimators in all groups */
     double thread;  /* record and scratch of one thread */
     double threads; /* of all */
-    double kept;    /* traces of kept cells */
+    double kept;    /* what is kept of single cells */
     double all;
 } tarry_run_memory;
 
-tarry_run_memory tarry_run_memory_of(const tarry_network *network, int threads, int64_t keep);
+/* `kept`: bytes of what is kept of single cells. */
+tarry_run_memory tarry_run_memory_of(const tarry_network *network, int threads, double kept);
 
 #endif

@@ -50,6 +50,7 @@ void tarry_results_free(tarry_results *results) {
     for (int i = 0; i < TARRY_N_RESULT_TABLES; i++)
         tarry_table_free(results->tables[i]);
     tarry_table_free(results->cells);
+    tarry_table_free(results->data);
     tarry_table_free(results->traces);
     tarry_table_free(results->periods);
     if (results->ledger)
@@ -67,6 +68,10 @@ const tarry_table *tarry_results_table(const tarry_results *results, tarry_resul
 
 const tarry_table *tarry_results_cells(const tarry_results *results) {
     return results->cells;
+}
+
+const tarry_table *tarry_results_data(const tarry_results *results) {
+    return results->data;
 }
 
 const tarry_table *tarry_results_traces(const tarry_results *results) {

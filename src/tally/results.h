@@ -12,6 +12,7 @@
 struct tarry_results {
     tarry_table *tables[TARRY_N_RESULT_TABLES];
     tarry_table *cells;   /* may be NULL */
+    tarry_table *data;    /* may be NULL */
     tarry_table *traces;  /* may be NULL */
     tarry_table *periods; /* may be NULL */
     tarry_notes notes;

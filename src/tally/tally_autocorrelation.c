@@ -177,10 +177,14 @@ static uint32_t first_known(const tarry_network *network, const tarry_record *re
 
 /* Amid the values of all cells. */
 static double shift_of_gaps(const tarry_network *network, uint32_t channel) {
-    const int32_t signal = network->channels[channel].signal;
+    const int32_t number = network->channels[channel].signal;
     if (network->data)
         return network->data->shifts[channel];
-    return signal == TARRY_NONE ? 0.0 : network->signals[signal].background;
+    if (number == TARRY_NONE) /* of whole films any will do */
+        return 0.0;
+    const tarry_signal *signal = &network->signals[number];
+    return isnan(signal->detects_above) || signal->from_first ? signal->background
+                                                              : signal->detects_above;
 }
 
 static void add_window(const tarry_network *network, const tarry_record *record,

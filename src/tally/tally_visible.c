@@ -123,7 +123,7 @@ typedef struct reporting {
 } reporting;
 
 static double ratio(const double sums[N_PERIODS * N_SUMS], quantity which, double every) {
-    const double *dark = sums + DARK * N_SUMS, *visible = sums + VISIBLE * N_SUMS;
+    const double *dark = sums, *visible = sums + N_SUMS;
     switch (which) {
     case FREQUENCY:
         return visible[STARTS] / ((dark[EXPOSED] + visible[EXPOSED]) * every);

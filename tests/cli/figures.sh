@@ -163,10 +163,7 @@ wait
 END
     OLD=$PWD GNUPLOT=./slow "$TARRY" run gene.yaml --out stopped >out 2>err &
     program=$!
-    for _ in 1 2 3 4 5 6 7 8 9 10; do
-        sleep 0.3
-        [ -s child ] && break
-    done
+    comes child || return 1
     kill -TERM "$program" && wait "$program" && numbers_stand stopped "interrupted" &&
         sleep 0.1 && has_ended "$(cat child)"
 }
@@ -188,10 +185,7 @@ END
     rm -f orphan.pid
     OLD=$PWD GNUPLOT=./orphan "$TARRY" run gene.yaml --out outlived >out 2>err &
     program=$!
-    for _ in 1 2 3 4 5 6 7 8 9 10; do
-        sleep 0.1
-        [ -s orphan.pid ] && break
-    done
+    comes orphan.pid || return 1
     kill -KILL "$program"
     wait "$program" 2>/dev/null
     [ -e outlived/unfinished.json ] && run 0 run gene.yaml --out outlived --overwrite || return 1

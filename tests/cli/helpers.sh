@@ -100,3 +100,12 @@ finish() {
     [ "$n_failed" = 0 ]
     exit
 }
+
+# comes FILE: wait until it is there and not empty, a minute at most.
+comes() {
+    for _ in $(seq 600); do
+        [ ! -s "$1" ] || return 0
+        sleep 0.1
+    done
+    return 1
+}
