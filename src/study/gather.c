@@ -68,9 +68,9 @@ static uint32_t snapshot_of(const tarry_gather *gather, int64_t cell) {
 }
 
 void tarry_gather_add(tarry_gather *gather, const tarry_record *record) {
-    const tarry_run_plan *run = &gather->network->run;
     if (record->cell >= gather->n_cells)
         return;
+    const tarry_run_plan *run = &gather->network->run;
     double *values = gather->values + (size_t)record->cell * values_of_cell(gather);
     for (uint32_t i = 0; i < gather->n_names; i++) {
         if (gather->what == TARRY_GATHER_FRAMES)
