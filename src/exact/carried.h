@@ -19,6 +19,8 @@ struct tarry_exact_carried {
     void (*release)(tarry_exact_carried *carried);
     tarry_exact_load load;
     double total; /* integral of the mean load over all ages */
+    const tarry_curve
+        *second; /* E[load (load - 1)] at an age; NULL: 0. Where is_plain, E[load^2] */
 
     size_t n;
     const double *re, *im; /* z - 1, the caller's */

@@ -75,6 +75,7 @@ int tarry_exact_carry_view(const tarry_exact_gene *gene, const tarry_exact_view 
     int code = tarry_exact_view_mean(gene, view, horizon, &carried->mean, error);
     if (code == 0)
         code = tarry_exact_view_square(gene, view, horizon, &s->square, error);
+    carried->second = &s->square;
     carried->load = (tarry_exact_load){.values = put_loads, .context = carried};
     if (code == 0)
         code = join_breaks(carried, s, error);

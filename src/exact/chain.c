@@ -22,6 +22,14 @@ static void release(workspace *w) {
     free(w->next);
 }
 
+static int make_workspace(workspace *w, size_t n, tarry_error *error) {
+    *w = (workspace){tarry_matrix_new(n, n), tarry_matrix_new(n, n), tarry_matrix_new(n, n),
+                     tarry_calloc(n, sizeof(double))};
+    if (w->generator == NULL || w->exponential == NULL || w->room == NULL || w->next == NULL)
+        return tarry_fail_memory(error, "the states of a promoter");
+    return 0;
+}
+
 /* p exp(generator length), made to add up to 1 again. */
 static int move_on(const tarry_exact_gene *gene, size_t regime, double length, double *p,
                    workspace *w, tarry_error *error) {
@@ -43,21 +51,30 @@ static int move_on(const tarry_exact_gene *gene, size_t regime, double length, d
     return 0;
 }
 
-int tarry_exact_states(const tarry_exact_gene *gene, double time, double *p, tarry_error *error) {
+int tarry_exact_begin_regimes(tarry_exact_gene *gene, tarry_error *error) {
     const size_t n = gene->n_states;
-    workspace w = {tarry_matrix_new(n, n), tarry_matrix_new(n, n), tarry_matrix_new(n, n),
-                   tarry_calloc(n, sizeof *p)};
-    int code = 0;
-    if (w.generator == NULL || w.exponential == NULL || w.room == NULL || w.next == NULL)
-        code = tarry_fail_memory(error, "the states of a promoter");
-    memcpy(p, gene->start, n * sizeof *p);
-    for (size_t i = 0; code == 0 && i < gene->n_regimes && gene->regimes[i].from < time; i++) {
-        double to = time;
-        if (i + 1 < gene->n_regimes)
-            to = fmin(to, gene->regimes[i + 1].from);
-        if (to > gene->regimes[i].from)
-            code = move_on(gene, i, to - gene->regimes[i].from, p, &w, error);
+    workspace w;
+    int code = make_workspace(&w, n, error);
+    memcpy(gene->regimes[0].begin, gene->start, n * sizeof(double));
+    for (size_t i = 1; code == 0 && i < gene->n_regimes; i++) {
+        memcpy(gene->regimes[i].begin, gene->regimes[i - 1].begin, n * sizeof(double));
+        code = move_on(gene, i - 1, gene->regimes[i].from - gene->regimes[i - 1].from,
+                       gene->regimes[i].begin, &w, error);
     }
+    release(&w);
+    return code;
+}
+
+int tarry_exact_states(const tarry_exact_gene *gene, double time, double *p, tarry_error *error) {
+    const size_t n = gene->n_states, regime = tarry_exact_regime_before(gene, time);
+    const double length = time - gene->regimes[regime].from;
+    workspace w = {0};
+    int code = 0;
+    memcpy(p, gene->regimes[regime].begin, n * sizeof *p);
+    if (length > 0)
+        code = make_workspace(&w, n, error);
+    if (code == 0 && length > 0)
+        code = move_on(gene, regime, length, p, &w, error);
     release(&w);
     return code;
 }

@@ -7,6 +7,10 @@
 
 #include "exact/gene.h"
 
+/* Fill the probabilities with which the regimes begin, from `start`. Errors: TARRY_MEMORY,
+ * TARRY_NUMERIC. */
+int tarry_exact_begin_regimes(tarry_exact_gene *gene, tarry_error *error);
+
 /* p[n_states]: probabilities at `time`, not before the first regime begins. Errors: TARRY_MEMORY,
  * TARRY_NUMERIC. */
 int tarry_exact_states(const tarry_exact_gene *gene, double time, double *p, tarry_error *error);

@@ -5,6 +5,8 @@
 
 #include "exact/gene.h"
 
+#include "exact/chain.h"
+
 #include "base/error.h"
 
 #include <string.h>
@@ -250,6 +252,8 @@ int tarry_exact_gene_read(const tarry_flow_index *index, const tarry_segment *se
     int code = out->why == NULL ? tarry_exact_read_promoter(&r) : 0;
     if (code == 0)
         code = read_chain(&r, first_initiation(&r), &out->transcript, &begins);
+    if (code == 0 && out->why == NULL)
+        code = tarry_exact_begin_regimes(out, error);
     if (code == 0)
         code = read_chain(&r, begins, &out->protein, &none);
     if (code == 0 && r.short_of_memory)

@@ -35,6 +35,7 @@ typedef struct tarry_exact_chain {
 typedef struct tarry_exact_regime {
     double from;
     double *quiet, *jump;
+    double *begin; /* [n_states] probabilities when it begins */
 } tarry_exact_regime;
 
 typedef struct tarry_exact_gene {

@@ -10,8 +10,10 @@
  *
  * D being the derivative matrix of polynomials through 0 and the nodes. Systems are solved side by
  * side, some to a block, by Gaussian elimination without exchanges: D has a positive definite part
- * and the matrices of a promoter pull the diagonal the same way, so pivots stay away from 0. A step
- * is compared with two of half its length on a few systems. */
+ * and the matrices of a promoter pull the diagonal the same way, so pivots stay away from 0.
+ *
+ * A step's error is judged by the last coefficients of u in Legendre polynomials (radau.h) where
+ * that is certain, or else by taking it in two halves as well, on a few systems. */
 
 #include "exact/march.h"
 
@@ -24,80 +26,18 @@
 
 enum { NODES = 5, LANES = 8, ORDER = 9, MOST_STEPS = 200000 };
 
-/* ---- nodes ----------------------------------------------------------------------------------- */
-
-typedef struct rule {
-    double node[NODES];          /* ascending, the last is 1 */
-    double derive[NODES][NODES]; /* D */
-    double begin[NODES];         /* -D_i0 */
-} rule;
-
-/* Legendre polynomials P_5(x) - P_4(x): 0 at the nodes 2c - 1. */
-static double node_function(double x) {
-    double before = 1, now = x;
-    for (int k = 1; k < NODES; k++) {
-        const double next = ((2 * k + 1) * x * now - k * before) / (k + 1);
-        before = now;
-        now = next;
-    }
-    return now - before;
-}
-
-static double find_node(double low, double high) {
-    const bool rises = node_function(low) < 0;
-    for (int i = 0; i < 100; i++) {
-        const double middle = 0.5 * (low + high);
-        if ((node_function(middle) < 0) == rises)
-            low = middle;
-        else
-            high = middle;
-    }
-    return 0.5 * (low + high);
-}
-
-static void find_nodes(rule *r) {
-    enum { GRID = 1000 };
-    size_t n = 0;
-    for (int i = 0; i < GRID - 1 && n < NODES - 1; i++) {
-        const double a = 2.0 * i / GRID - 1, b = 2.0 * (i + 1) / GRID - 1;
-        if ((node_function(a) < 0) != (node_function(b) < 0))
-            r->node[n++] = 0.5 * (1 + find_node(a, b));
-    }
-    r->node[NODES - 1] = 1;
-}
-
-/* Derivatives of Lagrange's polynomials by barycentric weights (Berrut & Trefethen 2004, SIAM Rev.
- * 46:501). */
-static void find_rule(rule *r) {
-    double x[NODES + 1] = {0}, weight[NODES + 1];
-    find_nodes(r);
-    for (int i = 0; i < NODES; i++)
-        x[i + 1] = r->node[i];
-    for (int i = 0; i <= NODES; i++) {
-        weight[i] = 1;
-        for (int k = 0; k <= NODES; k++)
-            if (k != i)
-                weight[i] /= x[i] - x[k];
-    }
-    for (int i = 1; i <= NODES; i++) {
-        double sum = 0;
-        for (int k = 0; k <= NODES; k++) {
-            if (k == i)
-                continue;
-            const double d = weight[k] / weight[i] / (x[i] - x[k]);
-            sum += d;
-            if (k == 0)
-                r->begin[i - 1] = -d;
-            else
-                r->derive[i - 1][k - 1] = d;
-        }
-        r->derive[i - 1][i - 1] = -sum;
-    }
-}
+/* Lanes go through wide registers where the processor has them; results are the same to the bit. */
+#if defined(__x86_64__) && defined(__gnu_linux__) && !defined(__clang__) &&                        \
+    !defined(__SANITIZE_ADDRESS__) && !defined(__SANITIZE_THREAD__)
+#define SIMD __attribute__((target_clones("avx512f", "avx2", "default")))
+#else
+#define SIMD
+#endif
 
 /* ---- one step of a block --------------------------------------------------------------------- */
 
-typedef double lanes[LANES];
+/* Numbers of as many systems (vector extension of gcc and clang). */
+typedef double lanes __attribute__((vector_size(LANES * sizeof(double)), aligned(8), may_alias));
 
 /* The equations of LANES systems: a x = b, complex. */
 typedef struct block {
@@ -106,132 +46,143 @@ typedef struct block {
     lanes *gre, *gim; /* [NODES] */
 } block;
 
-/* row += factor * other, from column `from` on. */
-static void add_row(lanes *restrict rre, lanes *restrict rim, lanes *restrict ore,
-                    lanes *restrict oim, const double *restrict fre, const double *restrict fim,
-                    size_t from, size_t to) {
-    for (size_t c = from; c < to; c++)
-        for (int l = 0; l < LANES; l++) {
-            const double re = ore[c][l], im = oim[c][l];
-            rre[c][l] += fre[l] * re - fim[l] * im;
-            rim[c][l] += fre[l] * im + fim[l] * re;
-        }
+/* Columns of a run, those before `least` left out. */
+static size_t column_from(const tarry_stencil_run *run, size_t least) {
+    return run->from * NODES > least ? run->from * NODES : least;
 }
 
-static void eliminate(block *b) {
-    const size_t n = b->n, width = n + 1;
-    lanes fre, fim;
-    for (size_t k = 0; k < n; k++) {
-        lanes *pre = &b->re[k * width], *pim = &b->im[k * width];
-        lanes ire, iim; /* minus 1 / pivot */
-        for (int l = 0; l < LANES; l++) {
-            const double size = pre[k][l] * pre[k][l] + pim[k][l] * pim[k][l];
-            ire[l] = -pre[k][l] / size;
-            iim[l] = pim[k][l] / size;
-        }
-        for (size_t i = k + 1; i < n; i++) {
-            lanes *rre = &b->re[i * width], *rim = &b->im[i * width];
-            for (int l = 0; l < LANES; l++) {
-                fre[l] = rre[k][l] * ire[l] - rim[k][l] * iim[l];
-                fim[l] = rre[k][l] * iim[l] + rim[k][l] * ire[l];
+static size_t column_to(const tarry_stencil *s, const tarry_stencil_run *run) {
+    return run->to > s->n_states ? s->n_states * NODES + 1 : run->to * NODES;
+}
+
+static SIMD void eliminate(const block *b, const tarry_stencil *s) {
+    const size_t width = b->n + 1;
+    for (size_t k = 0; k < b->n; k++) {
+        const size_t p = k / NODES;
+        const lanes *pre = &b->re[k * width], *pim = &b->im[k * width];
+        const lanes size = pre[k] * pre[k] + pim[k] * pim[k];
+        const lanes ire = -pre[k] / size, iim = pim[k] / size; /* minus 1 / pivot */
+        for (size_t q = s->row_starts[p]; q < s->row_starts[p + 1]; q++) {
+            const size_t first = s->rows[q] * NODES;
+            for (size_t i = first > k ? first : k + 1; i < first + NODES; i++) {
+                lanes *restrict rre = &b->re[i * width], *restrict rim = &b->im[i * width];
+                const lanes fre = rre[k] * ire - rim[k] * iim, fim = rre[k] * iim + rim[k] * ire;
+                for (size_t r = s->run_starts[p]; r < s->run_starts[p + 1]; r++) {
+                    const size_t to = column_to(s, &s->runs[r]);
+                    for (size_t c = column_from(&s->runs[r], k + 1); c < to; c++) {
+                        rre[c] += fre * pre[c] - fim * pim[c];
+                        rim[c] += fre * pim[c] + fim * pre[c];
+                    }
+                }
             }
-            add_row(rre, rim, pre, pim, fre, fim, k + 1, width);
         }
     }
 }
 
-/* The unknowns of the last node alone: the others are not needed. */
-static void solve_last(block *b, size_t n_wanted) {
+/* The unknowns come into the last column. */
+static SIMD void substitute(const block *b, const tarry_stencil *s) {
     const size_t n = b->n, width = n + 1;
-    for (size_t k = n; k-- > n - n_wanted;) {
-        lanes *re = &b->re[k * width], *im = &b->im[k * width];
-        for (size_t c = k + 1; c < n; c++) {
-            const lanes *xre = &b->re[c * width + n], *xim = &b->im[c * width + n];
-            for (int l = 0; l < LANES; l++) {
-                re[n][l] -= re[c][l] * (*xre)[l] - im[c][l] * (*xim)[l];
-                im[n][l] -= re[c][l] * (*xim)[l] + im[c][l] * (*xre)[l];
+    for (size_t k = n; k-- > 0;) {
+        const size_t p = k / NODES;
+        lanes *re = &b->re[k * width], *im = &b->im[k * width], x = re[n], y = im[n];
+        for (size_t r = s->run_starts[p]; r < s->run_starts[p + 1]; r++) {
+            const size_t to = column_to(s, &s->runs[r]) < n ? column_to(s, &s->runs[r]) : n;
+            for (size_t c = column_from(&s->runs[r], k + 1); c < to; c++) {
+                const lanes xre = b->re[c * width + n], xim = b->im[c * width + n];
+                x -= re[c] * xre - im[c] * xim;
+                y -= re[c] * xim + im[c] * xre;
             }
         }
-        for (int l = 0; l < LANES; l++) {
-            const double size = re[k][l] * re[k][l] + im[k][l] * im[k][l];
-            const double x = (re[n][l] * re[k][l] + im[n][l] * im[k][l]) / size;
-            im[n][l] = (im[n][l] * re[k][l] - re[n][l] * im[k][l]) / size;
-            re[n][l] = x;
-        }
+        const lanes size = re[k] * re[k] + im[k] * im[k];
+        re[n] = (x * re[k] + y * im[k]) / size;
+        im[n] = (y * re[k] - x * im[k]) / size;
     }
 }
 
 typedef struct stride {
-    const rule *rule;
     const double *quiet, *jump;
     double from, step;
 } stride;
 
-static void fill(const tarry_march *m, const stride *s, block *b, size_t first, size_t n_lanes) {
-    const size_t n_states = m->n_states, width = b->n + 1;
-    for (size_t i = 0; i < NODES; i++) {
-        for (size_t p = 0; p < n_states; p++) {
-            lanes *re = &b->re[(i * n_states + p) * width],
-                  *im = &b->im[(i * n_states + p) * width];
-            memset(re, 0, width * sizeof *re);
-            memset(im, 0, width * sizeof *im);
-            for (size_t k = 0; k < NODES; k++)
-                for (int l = 0; l < LANES; l++)
-                    re[k * n_states + p][l] = s->rule->derive[i][k];
-            for (size_t q = 0; q < n_states; q++) {
-                const double quiet = s->step * s->quiet[p * n_states + q];
-                const double jump = s->step * s->jump[p * n_states + q];
-                if (quiet == 0 && jump == 0)
-                    continue;
-                for (int l = 0; l < LANES; l++) {
-                    re[i * n_states + q][l] -= quiet + jump * b->gre[i][l];
-                    im[i * n_states + q][l] -= jump * b->gim[i][l];
-                }
-            }
-            for (size_t l = 0; l < n_lanes; l++) {
-                re[b->n][l] = s->rule->begin[i] * m->re[(first + l) * n_states + p];
-                im[b->n][l] = s->rule->begin[i] * m->im[(first + l) * n_states + p];
-            }
+/* Row i of state p. */
+static SIMD void fill_row(const tarry_march *m, const stride *s, const block *b, size_t p,
+                          size_t i) {
+    const size_t n_states = m->n_states, row = (p * NODES + i) * (b->n + 1);
+    for (size_t q = 0; q < n_states; q++) {
+        if (!m->stencil.meets[p * n_states + q])
+            continue;
+        lanes *re = &b->re[row + q * NODES], *im = &b->im[row + q * NODES];
+        const double quiet = s->step * s->quiet[p * n_states + q];
+        const double jump = s->step * s->jump[p * n_states + q];
+        for (size_t k = 0; k < NODES; k++) {
+            re[k] = (lanes){0} + (q == p ? m->rule.derive[i][k] : 0);
+            im[k] = (lanes){0};
+        }
+        re[i] -= quiet + jump * b->gre[i];
+        im[i] -= jump * b->gim[i];
+    }
+}
+
+/* Idle lanes have no right-hand side, and so no solution but 0. */
+static void fill(const tarry_march *m, const stride *s, const block *b, size_t first,
+                 size_t n_lanes) {
+    for (size_t p = 0; p < m->n_states; p++) {
+        lanes re = {0}, im = {0};
+        for (size_t l = 0; l < n_lanes; l++) {
+            re[l] = m->re[(first + l) * m->n_states + p];
+            im[l] = m->im[(first + l) * m->n_states + p];
+        }
+        for (size_t i = 0; i < NODES; i++) {
+            const size_t last = (p * NODES + i) * (b->n + 1) + b->n;
+            fill_row(m, s, b, p, i);
+            b->re[last] = m->rule.begin[i] * re;
+            b->im[last] = m->rule.begin[i] * im;
         }
     }
 }
 
-/* Systems first .. first + n_lanes - 1, n_lanes <= LANES; idle lanes go along with g = 1. */
-static void step_block(tarry_march *m, const stride *s, block *b, size_t first, size_t n_lanes) {
+/* Systems first .. first + n_lanes - 1, n_lanes <= LANES. */
+static void step_block(tarry_march *m, const stride *s, const block *b, size_t first,
+                       size_t n_lanes) {
     const double inside = s->from + 0.5 * s->step;
     for (size_t i = 0; i < NODES; i++) {
-        const double a = s->from + s->step * s->rule->node[i];
-        for (int l = 0; l < LANES; l++) {
-            b->gre[i][l] = 1;
-            b->gim[i][l] = 0;
-        }
-        m->loads(m->context, a, inside, first, first + n_lanes, b->gre[i], b->gim[i]);
+        const double a = s->from + s->step * m->rule.node[i];
+        b->gre[i] = (lanes){0} + 1;
+        b->gim[i] = (lanes){0};
+        m->loads(m->context, a, inside, first, first + n_lanes, (double *)&b->gre[i],
+                 (double *)&b->gim[i]);
     }
     fill(m, s, b, first, n_lanes);
-    eliminate(b);
-    solve_last(b, m->n_states);
+    eliminate(b, &m->stencil);
+    substitute(b, &m->stencil);
+    m->n_solved++;
     for (size_t l = 0; l < n_lanes; l++)
         for (size_t p = 0; p < m->n_states; p++) {
-            const size_t row = (NODES - 1) * m->n_states + p;
+            const size_t row = p * NODES + NODES - 1;
             m->re[(first + l) * m->n_states + p] = b->re[row * (b->n + 1) + b->n][l];
             m->im[(first + l) * m->n_states + p] = b->im[row * (b->n + 1) + b->n][l];
         }
 }
 
-static void step_all(tarry_march *m, const stride *s, size_t from, size_t to) {
+static block make_block(const tarry_march *m) {
     const size_t n = NODES * m->n_states;
     lanes *room = (lanes *)(void *)m->scratch;
-    block b = {.n = n,
-               .re = room,
-               .im = room + n * (n + 1),
-               .gre = room + 2 * n * (n + 1),
-               .gim = room + 2 * n * (n + 1) + NODES};
-    for (size_t j = from; j < to; j += LANES)
-        step_block(m, s, &b, j, to - j < LANES ? to - j : LANES);
+    return (block){.n = n,
+                   .re = room,
+                   .im = room + n * (n + 1),
+                   .gre = room + 2 * n * (n + 1),
+                   .gim = room + 2 * n * (n + 1) + NODES};
+}
+
+static void step_from(tarry_march *m, const stride *s, size_t from) {
+    const block b = make_block(m);
+    for (size_t j = from; j < m->n; j += LANES)
+        step_block(m, s, &b, j, m->n - j < LANES ? m->n - j : LANES);
 }
 
 /* ---- steps ----------------------------------------------------------------------------------- */
 
+/* Probes are saved in slots: [slot][n_probes][n_states], real parts and imaginary parts. */
 static void save(tarry_march *m, size_t slot) {
     const size_t n = m->n_probes * m->n_states;
     memcpy(m->saved + 2 * slot * n, m->re, n * sizeof *m->re);
@@ -244,57 +195,126 @@ static void restore(tarry_march *m, size_t slot) {
     memcpy(m->im, m->saved + (2 * slot + 1) * n, n * sizeof *m->im);
 }
 
-/* The largest difference between the probes and those saved, over the largest of the first one. */
-static double difference(const tarry_march *m, size_t slot) {
+/* The largest value of a system on the step, and what its polynomials leave. */
+static void judge_lane(const tarry_march *m, const block *b, size_t system, size_t lane,
+                       double *size, double *rest) {
     const size_t n = m->n_probes * m->n_states;
-    const double *re = m->saved + 2 * slot * n, *im = re + n;
+    double re[NODES + 1], im[NODES + 1];
+    *size = *rest = 0;
+    for (size_t p = 0; p < m->n_states; p++) {
+        re[0] = m->saved[system * m->n_states + p];
+        im[0] = m->saved[n + system * m->n_states + p];
+        for (size_t i = 0; i < NODES; i++) {
+            const size_t last = (p * NODES + i) * (b->n + 1) + b->n;
+            re[i + 1] = b->re[last][lane];
+            im[i + 1] = b->im[last][lane];
+        }
+        for (size_t i = 0; i <= NODES; i++)
+            *size = fmax(*size, fabs(re[i]) + fabs(im[i]));
+        const double left = tarry_radau_rest(&m->rule, re) + tarry_radau_rest(&m->rule, im);
+        *rest = left <= *rest ? *rest : left; /* not a number counts as large */
+    }
+}
+
+/* What the largest error over the first probe's size is by all likelihood, and by all means. */
+typedef struct guess {
+    double low, high;
+} guess;
+
+/* Take the probes on from where slot 0 has them. */
+static guess step_probes(tarry_march *m, const stride *s, double fastest) {
+    const block b = make_block(m);
+    const double decay = tarry_radau_rest_of_decay(&m->rule, s->step * fastest);
+    double first = 0;
+    guess most = {0, 0};
+    for (size_t j = 0; j < m->n_probes; j += LANES) {
+        const size_t n = m->n_probes - j < LANES ? m->n_probes - j : LANES;
+        step_block(m, s, &b, j, n);
+        for (size_t l = 0; l < n; l++) {
+            double size, rest;
+            judge_lane(m, &b, j + l, l, &size, &rest);
+            if (j + l == 0)
+                first = size;
+            const double own = rest < size ? rest / size : 1;
+            const double low = rest * own / first, high = rest * fmax(own, decay) / first;
+            most.low = low <= most.low ? most.low : low;
+            most.high = high <= most.high ? most.high : high;
+        }
+    }
+    return most;
+}
+
+/* The largest difference between the probes and those in slot 1, over the largest of the first. */
+static double difference(const tarry_march *m) {
+    const size_t n = m->n_probes * m->n_states;
+    const double *re = m->saved + 2 * n, *im = re + n;
     double most = 0, size = 0;
     for (size_t i = 0; i < n; i++) {
-        most = fmax(most, hypot(m->re[i] - re[i], m->im[i] - im[i]));
+        const double off = hypot(m->re[i] - re[i], m->im[i] - im[i]);
+        most = off <= most ? most : off;
         if (i < m->n_states)
             size = fmax(size, hypot(m->re[i], m->im[i]));
     }
     return most / size;
 }
 
-/* The error of a step of the probes, which are left as they were. */
-static double try_step(tarry_march *m, const stride *s) {
-    stride half = *s;
+static void step_half(tarry_march *m, const stride *s, double from) {
+    const block b = make_block(m);
+    const stride half = {s->quiet, s->jump, from, 0.5 * s->step};
+    for (size_t j = 0; j < m->n_probes; j += LANES)
+        step_block(m, &half, &b, j, m->n_probes - j < LANES ? m->n_probes - j : LANES);
+}
+
+/* The error of a step of the probes, which they have taken in the end. Where the guess leaves it in
+ * doubt, they take it in two halves as well. */
+static double try_step(tarry_march *m, const stride *s, double fastest) {
     save(m, 0);
-    step_all(m, s, 0, m->n_probes);
+    const guess g = step_probes(m, s, fastest);
+    if (g.high <= m->tolerance || !(g.low <= m->tolerance))
+        return g.low;
     save(m, 1);
     restore(m, 0);
-    half.step *= 0.5;
-    step_all(m, &half, 0, m->n_probes);
-    half.from += half.step;
-    step_all(m, &half, 0, m->n_probes);
-    const double error = difference(m, 1);
-    restore(m, 0);
-    return error;
+    step_half(m, s, s->from);
+    step_half(m, s, s->from + 0.5 * s->step);
+    const double off = difference(m);
+    restore(m, 1);
+    return off;
+}
+
+static double fastest_rate(const tarry_march *m, const double *quiet, const double *jump) {
+    const size_t n = m->n_states;
+    double most = 0;
+    for (size_t p = 0; p < n; p++) {
+        double sum = fabs(quiet[p * n + p]);
+        for (size_t q = 0; q < n; q++)
+            sum += jump[p * n + q];
+        most = fmax(most, sum);
+    }
+    return most;
 }
 
 int tarry_march_to(tarry_march *m, const double *quiet, const double *jump, double to,
                    tarry_error *error) {
-    rule r;
-    const double begin = m->at;
-    if (!(to > begin))
+    if (!(to > m->at))
         return 0;
-    find_rule(&r);
+    const double fastest = fastest_rate(m, quiet, jump);
     if (!(m->step > 0))
-        m->step = to - begin;
+        m->step = to - m->at;
+    tarry_stencil_cover(&m->stencil, quiet, jump);
     for (int i = 0; m->at < to; i++) {
         const bool last = m->at + m->step >= to * (1 - 1e-13);
-        const stride s = {&r, quiet, jump, m->at, last ? to - m->at : m->step};
-        const double off = try_step(m, &s);
+        const stride s = {quiet, jump, m->at, last ? to - m->at : m->step};
+        const double off = try_step(m, &s, fastest);
         const double change = 0.9 * pow(m->tolerance / fmax(off, 1e-300), 1.0 / ORDER);
         if (i >= MOST_STEPS || (off != off && s.step < 1e-12 * to))
             return tarry_fail(error, TARRY_NUMERIC,
                               "the equations of a promoter take too many steps");
         if (off <= m->tolerance || s.step < 1e-13 * to) {
-            step_all(m, &s, 0, m->n);
+            step_from(m, &s, m->n_probes);
             m->at = last ? to : m->at + s.step;
             m->step = fmax(last ? m->step : 0, s.step * fmin(change, 5));
         } else {
+            restore(m, 0);
             m->step = s.step * (off == off ? fmax(fmin(change, 0.7), 0.1) : 0.1);
         }
     }
@@ -303,20 +323,18 @@ int tarry_march_to(tarry_march *m, const double *quiet, const double *jump, doub
 
 /* ---- making ---------------------------------------------------------------------------------- */
 
-static int fail_memory(tarry_error *error) {
-    return tarry_fail_memory(error, "the equations of a promoter");
-}
-
-static bool make_room(tarry_march *m) {
+static int make_room(tarry_march *m, tarry_error *error) {
     const size_t n = NODES * m->n_states;
+    m->stencil = (tarry_stencil){0};
     m->re = tarry_calloc(m->n, m->n_states * sizeof *m->re);
     m->im = tarry_calloc(m->n, m->n_states * sizeof *m->im);
-    m->scratch = tarry_calloc(2 * n * (n + 1) + 2 * (size_t)NODES, sizeof(lanes));
+    m->scratch = tarry_calloc(2 * n * (n + 1) + 2 * NODES, sizeof(lanes));
     m->saved = tarry_calloc(4 * m->n_probes, m->n_states * sizeof *m->saved);
-    if (m->re && m->im && m->scratch && m->saved)
-        return true;
+    if (m->re != NULL && m->im != NULL && m->scratch != NULL && m->saved != NULL &&
+        tarry_stencil_init(&m->stencil, m->n_states, error) == 0)
+        return 0;
     tarry_march_release(m);
-    return false;
+    return tarry_fail_memory(error, "the equations of a promoter");
 }
 
 int tarry_march_init(tarry_march *march, size_t n_states, size_t n, size_t n_probes,
@@ -328,20 +346,21 @@ int tarry_march_init(tarry_march *march, size_t n_states, size_t n, size_t n_pro
                            .tolerance = tolerance,
                            .loads = loads,
                            .context = context};
-    if (!make_room(march))
-        return fail_memory(error);
-    for (size_t i = 0; i < n * n_states; i++)
+    tarry_radau_find(&march->rule, NODES);
+    const int code = make_room(march, error);
+    for (size_t i = 0; code == 0 && i < n * n_states; i++)
         march->re[i] = 1;
-    return 0;
+    return code;
 }
 
 int tarry_march_copy(const tarry_march *march, tarry_march *out, tarry_error *error) {
     *out = *march;
-    if (!make_room(out))
-        return fail_memory(error);
-    memcpy(out->re, march->re, march->n * march->n_states * sizeof *out->re);
-    memcpy(out->im, march->im, march->n * march->n_states * sizeof *out->im);
-    return 0;
+    const int code = make_room(out, error);
+    if (code == 0) {
+        memcpy(out->re, march->re, march->n * march->n_states * sizeof *out->re);
+        memcpy(out->im, march->im, march->n * march->n_states * sizeof *out->im);
+    }
+    return code;
 }
 
 void tarry_march_release(tarry_march *march) {
@@ -349,5 +368,6 @@ void tarry_march_release(tarry_march *march) {
     free(march->im);
     free(march->scratch);
     free(march->saved);
+    tarry_stencil_release(&march->stencil);
     march->re = march->im = march->scratch = march->saved = NULL;
 }

@@ -11,8 +11,7 @@
  * first few of them, so that what comes out depends on each g_j as smoothly as the true solution
  * does. */
 
-#include <stdbool.h>
-#include <stddef.h>
+#include "exact/stencil.h"
 #include "tarry/error.h"
 
 /* Put g_j(a) of systems from <= j < to into re[j - from] and im[j - from]. Where g jumps at a, the
@@ -30,8 +29,11 @@ typedef struct tarry_march {
     double *re, *im; /* [n][n_states]: the w_j, 1 at the beginning */
     double at;       /* the age that they have come to */
     double step;     /* the next step's length, or 0 */
+    tarry_radau rule;
+    tarry_stencil stencil;
     double *scratch;
-    double *saved; /* the probes, before a step */
+    double *saved;          /* the probes, before a step */
+    unsigned long n_solved; /* blocks of systems so far: the work done */
 } tarry_march;
 
 /* All w_j are 1 at age 0. `tolerance`: error of a step over the largest of the first system. Zero-

@@ -273,7 +273,8 @@ static int fill_regimes(expansion *x) {
                                            gene->n_states * sizeof(double));
         regime->jump = tarry_arena_calloc(r->arena, gene->n_states,
                                           gene->n_states * sizeof(double));
-        if (!regime->quiet || !regime->jump)
+        regime->begin = tarry_arena_calloc(r->arena, gene->n_states, sizeof(double));
+        if (!regime->quiet || !regime->jump || !regime->begin)
             return tarry_fail_memory(r->error, "a gene");
         add_reactions(x, regime, s);
         for (size_t i = 0; i < x->n_parts; i++)
