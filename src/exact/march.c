@@ -328,13 +328,14 @@ static int make_room(tarry_march *m, tarry_error *error) {
     m->stencil = (tarry_stencil){0};
     m->re = tarry_calloc(m->n, m->n_states * sizeof *m->re);
     m->im = tarry_calloc(m->n, m->n_states * sizeof *m->im);
-    m->scratch = tarry_calloc(2 * n * (n + 1) + 2 * NODES, sizeof(lanes));
+    m->scratch = tarry_calloc(2 * (n * (n + 1) + NODES), sizeof(lanes));
     m->saved = tarry_calloc(4 * m->n_probes, m->n_states * sizeof *m->saved);
     if (m->re != NULL && m->im != NULL && m->scratch != NULL && m->saved != NULL &&
         tarry_stencil_init(&m->stencil, m->n_states, error) == 0)
         return 0;
     tarry_march_release(m);
-    return tarry_fail_memory(error, "the equations of a promoter");
+    tarry_fail_memory(error, "the equations of a promoter");
+    return TARRY_MEMORY;
 }
 
 int tarry_march_init(tarry_march *march, size_t n_states, size_t n, size_t n_probes,
