@@ -321,6 +321,7 @@ typedef struct tarry_run_plan {
     const tarry_window *windows;
     uint32_t n_spans;
     const double *bounds; /* n_spans + 1 ascending times from 0 to until */
+    bool noise_unknown;   /* correlations are over the line put back to lag 0, as those of data */
     double limit_firings; /* a cell, settling and running on included */
     double limit_pending; /* completions under way at once in one cell */
     double limit_memory;  /* bytes, all tallies and cells together */
@@ -346,9 +347,10 @@ typedef struct tarry_data_plan {
     double start;   /* the time of frame 0 */
     double missing; /* share of the frames between a cell's first and last one */
     tarry_film_mean mean;
-    uint32_t longest;     /* frames from the first to the last of a cell, at most */
-    const double *shifts; /* [channel] a value amid its values, */
-    const double *ranges; /* and the largest less the least of them */
+    uint32_t longest;                 /* frames from the first to the last of a cell, at most */
+    const double *shifts;             /* [channel] a value amid its values, */
+    const double *ranges;             /* and the largest less the least of them */
+    const struct tarry_model *beside; /* whose laws stand beside the data, or NULL */
 } tarry_data_plan;
 
 typedef struct tarry_network {

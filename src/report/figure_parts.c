@@ -4,6 +4,7 @@
 
 #include "base/error.h"
 #include "base/number.h"
+#include "report/repeat.h"
 
 #include <math.h>
 #include <stdlib.h>
@@ -160,6 +161,7 @@ static int append(tarry_figure_work *work, const tarry_figure_subject *subject, 
 
 int tarry_figure_finish(tarry_figure_work *work, const tarry_figure_subject *subject,
                         tarry_plot *plot, tarry_figure_words *words, tarry_error *error) {
+    const tarry_model *beside = work->network->data ? work->network->data->beside : NULL;
     tarry_text heading = {0};
     int code = 0;
     tarry_text_printf(&heading, "%s of %s", words->title, subject->words);
@@ -168,9 +170,10 @@ int tarry_figure_finish(tarry_figure_work *work, const tarry_figure_subject *sub
     plot->heading = heading.data;
     plot->title = work->network->title;
     if (has_exact_series(plot))
-        tarry_text_add_string(&words->caption,
-                              " The thin dark line is the exact law, worked out from the "
-                              "rates without simulation.");
+        tarry_text_printf(&words->caption,
+                          " The thin dark line is the exact law%s%s, worked out from the rates "
+                          "without simulation.",
+                          beside ? " of " : "", beside ? tarry_repeat_file(beside) : "");
     if (!code && plot->n_panels > 0)
         code = append(work, subject, plot, words, error);
     tarry_plot_release(plot);

@@ -19,13 +19,13 @@ static void add_command(tarry_page *page) {
     tarry_text_release(&command);
 }
 
-static void add_model(tarry_page *page) {
+static void add_model(tarry_page *page, const tarry_model *model) {
     tarry_html_put(
         page->text,
         "<section id=\"model\">\n<h2>Model</h2>\n<p>The text of %s, as it was read.</p>\n"
         "<pre class=\"model\" tabindex=\"0\"><code>",
-        tarry_repeat_file(page->model));
-    tarry_html_lines(page->text, page->model->text, page->model->text_size);
+        tarry_repeat_file(model));
+    tarry_html_lines(page->text, model->text, model->text_size);
     tarry_html_put(page->text, "</code></pre>\n</section>\n");
 }
 
@@ -36,8 +36,10 @@ static void add_data(tarry_page *page) {
                    "<pre class=\"model\" tabindex=\"0\"><code>",
                    tarry_repeat_file(page->model));
     tarry_html_lines(page->text, page->model->text, page->model->text_size);
+    tarry_html_put(page->text, "</code></pre>\n</section>\n");
+    if (page->network->data->beside)
+        add_model(page, page->network->data->beside);
     tarry_html_put(page->text,
-                   "</code></pre>\n</section>\n"
                    "<section id=\"repeat\">\n<h2>How to repeat this</h2>\n"
                    "<p>With version %s of tarry this command gives the same numbers from the same "
                    "data, on any number of threads:</p>\n",
@@ -59,7 +61,7 @@ void tarry_page_repeat(tarry_page *page) {
     }
     char digest[TARRY_SHA256_TEXT];
     tarry_sha256(page->model->text, page->model->text_size, digest);
-    add_model(page);
+    add_model(page, page->model);
     tarry_html_put(page->text,
                    "<section id=\"repeat\">\n<h2>How to repeat this run</h2>\n"
                    "<p>Keep the model's text as %s (it stands under <code>model</code> in "

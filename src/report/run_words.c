@@ -3,6 +3,7 @@
 #include "report/run_words.h"
 
 #include "base/number.h"
+#include "report/repeat.h"
 
 #include <math.h>
 
@@ -54,6 +55,27 @@ void tarry_run_words(const tarry_network *network, const tarry_results *results,
         tarry_text_printf(text, " after %s %s to settle", settle, unit);
     if (!tarry_results_is_predicted(results))
         tarry_text_printf(text, ", seed %llu", (unsigned long long)plan->seed);
+}
+
+/* Of data the model and the place are told: where it differs is what is asked. */
+static void beside_words(const tarry_network *network, const tarry_results *results,
+                         tarry_text *text) {
+    const tarry_self_check *check = tarry_results_self_check(results);
+    char largest[TARRY_NUMBER_SIZE], share[TARRY_NUMBER_SIZE];
+    tarry_text_printf(text, "Beside %s: ", tarry_repeat_file(network->data->beside));
+    if (check->n_compared == 0) {
+        tarry_text_add_string(text,
+                              "no figure of the data could be compared, which takes an exact law "
+                              "and 20 cells, or groups, at least");
+        return;
+    }
+    tarry_number_write_fixed(check->largest, 1, largest);
+    tarry_number_write_rounded(100 * check->share_larger, 2, share);
+    tarry_text_printf(text,
+                      "of %zu figure%s with an exact law the farthest is %s standard errors off "
+                      "(%s); in %s%s %% of data sets of this model one is farther",
+                      check->n_compared, check->n_compared > 1 ? "s" : "", largest, check->where,
+                      check->alarm ? "fewer than " : "", check->alarm ? "0.01" : share);
 }
 
 static void self_check_words(const tarry_results *results, tarry_text *text) {
@@ -127,7 +149,10 @@ static void detection_words(const tarry_network *network, tarry_text *text) {
 void tarry_run_lines(const tarry_network *network, const tarry_results *results,
                      tarry_text lines[TARRY_RUN_LINES]) {
     window_words(network, &lines[TARRY_RUN_LINE_WINDOWS]);
-    self_check_words(results, &lines[TARRY_RUN_LINE_CHECK]);
+    if (network->data && network->data->beside)
+        beside_words(network, results, &lines[TARRY_RUN_LINE_CHECK]);
+    else
+        self_check_words(results, &lines[TARRY_RUN_LINE_CHECK]);
     threshold_words(network, &lines[TARRY_RUN_LINE_VISIBLE]);
     detection_words(network, &lines[TARRY_RUN_LINE_DETECTED]);
 }

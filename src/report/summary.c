@@ -8,6 +8,7 @@
 #include "model/model.h"
 #include "report/groups.h"
 #include "report/json.h"
+#include "report/repeat.h"
 #include "report/responses.h"
 #include "report/snapshots.h"
 #include "tarry/tarry.h"
@@ -366,14 +367,27 @@ static void write_simulation(json_writer *writer, const tarry_network *network,
     member(writer, "completions", tarry_json_number(tarry_results_completions(results)));
 }
 
-static json_t *describe_self_check(const tarry_self_check *check) {
+/* The model beside data: none of a run, which has its own. */
+static void describe_beside(const tarry_model *model, json_t *object, bool *failed) {
+    char digest[TARRY_SHA256_TEXT];
+    tarry_sha256(model->text, model->text_size, digest);
+    tarry_json_put(object, "file", tarry_json_text(tarry_repeat_file(model)), failed);
+    tarry_json_put(object, "sha256", json_string(digest), failed);
+    tarry_json_put(object, "model", tarry_json_text(model->text), failed);
+}
+
+static json_t *describe_self_check(const tarry_self_check *check, const tarry_model *beside) {
     bool failed = false;
     json_t *object = json_object();
+    if (beside)
+        describe_beside(beside, object, &failed);
     tarry_json_put(object, "compared", json_integer((json_int_t)check->n_compared), &failed);
-    tarry_json_put(object, "largest", tarry_json_number(check->largest), &failed);
-    tarry_json_put(object, "share_larger", tarry_json_number(check->share_larger), &failed);
-    tarry_json_put(object, "alarm", json_boolean(check->alarm), &failed);
-    tarry_json_put(object, "where", tarry_json_text(check->where), &failed);
+    if (check->n_compared > 0) {
+        tarry_json_put(object, "largest", tarry_json_number(check->largest), &failed);
+        tarry_json_put(object, "share_larger", tarry_json_number(check->share_larger), &failed);
+        tarry_json_put(object, "alarm", json_boolean(check->alarm), &failed);
+        tarry_json_put(object, "where", tarry_json_text(check->where), &failed);
+    }
     if (failed) {
         json_decref(object);
         return NULL;
@@ -400,8 +414,10 @@ static void write_head(json_writer *writer, const tarry_model *model, const tarr
     member(writer, "options", describe_overrides(provenance));
     member(writer, "run", describe_plan(&network->run, network->data));
     member(writer, "warnings", describe_warnings(model, results));
-    if (tarry_results_self_check(results)->n_compared > 0)
-        member(writer, "self_check", describe_self_check(tarry_results_self_check(results)));
+    const tarry_model *beside = network->data ? network->data->beside : NULL;
+    const tarry_self_check *check = tarry_results_self_check(results);
+    if (beside || check->n_compared > 0)
+        member(writer, beside ? "beside" : "self_check", describe_self_check(check, beside));
 }
 
 int tarry_summary_write(const tarry_model *model, const tarry_results *results,

@@ -11,6 +11,7 @@
  *   data_gaps.c     are frames missing where a signal is dark?
  *   data_network.c  names, times and windows as a network, so that estimators and report need to
  *                   know of no files
+ *   data_beside.c   a model whose exact laws stand beside the figures
  *   measure.c       cells -> records -> tallies -> results */
 
 #include <stdbool.h>
@@ -131,9 +132,15 @@ struct tarry_data {
     uint32_t *snapshot;       /* [row] of counts and means: number of its time */
     tarry_data_plan plan;
     tarry_model *model;
+    tarry_model *beside; /* NULL: none is asked for */
 };
 
 /* The network and plan of data whose table (and frames) are there. */
 int tarry_data_network_build(tarry_data *data, tarry_error *error);
+
+/* Read the model that --beside names, with the parameters of --set, and make its record that of the
+ * data. */
+int tarry_data_beside_read(tarry_data *data, const tarry_override *settings, size_t n,
+                           tarry_error *error);
 
 #endif

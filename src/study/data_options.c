@@ -159,7 +159,7 @@ enum { N_READERS = sizeof readers / sizeof *readers };
 static int read_named(const char *name, reader read, const tarry_override *settings, size_t n,
                       tarry_data_options *options, tarry_error *error) {
     for (size_t i = 0; i < n; i++)
-        if (strcmp(settings[i].name, name) == 0)
+        if (!settings[i].is_parameter && strcmp(settings[i].name, name) == 0)
             return read(&settings[i], options, error);
     return TARRY_OK;
 }

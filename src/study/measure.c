@@ -4,6 +4,7 @@
  * into tallies. Threads take whole groups, one after another: within a group cells are added in
  * order by one thread, so that results are the same in bytes for any number of them. */
 #include "study/data.h"
+#include "study/self_check.h"
 
 #include "base/error.h"
 #include "base/file.h"
@@ -32,6 +33,7 @@ void tarry_data_free(tarry_data *data) {
     free(data->unit_group);
     free(data->snapshot);
     tarry_model_free(data->model);
+    tarry_model_free(data->beside);
     free(data);
 }
 
@@ -47,6 +49,8 @@ static int read_data(tarry_data *data, const char *path, const tarry_override *s
         code = tarry_data_frames_find(&data->frames, &data->table, &data->options, error);
     if (code == TARRY_OK)
         code = tarry_data_network_build(data, error);
+    if (code == TARRY_OK)
+        code = tarry_data_beside_read(data, settings, n, error);
     tarry_text_release(&data->text);
     return code;
 }
@@ -407,10 +411,16 @@ int tarry_measure(const tarry_data *data, const tarry_measure_options *options, 
         return code;
     results->n_cells = results->n_cells_asked = (int64_t)data->n_units;
     results->is_measured = true;
-    code = note_all(data, &results->notes, error);
+    if (data->beside != NULL &&
+        (results->ledger = tarry_calloc(1, sizeof *results->ledger)) == NULL)
+        code = tarry_fail_memory(error, "the figures that are compared with exact laws");
+    if (code == TARRY_OK)
+        code = note_all(data, &results->notes, error);
     if (code == TARRY_OK)
         code = has_errors(data) ? report_means(data, results, error)
                                 : measure(&m, options, results, error);
+    if (code == TARRY_OK && data->beside != NULL)
+        code = tarry_self_check_beside(&data->model->network, results, error);
     if (code != TARRY_OK)
         tarry_results_free(results);
     else

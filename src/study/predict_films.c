@@ -23,6 +23,7 @@ typedef struct film {
     tarry_exact_view *views; /* [n_genes] */
     double mean;             /* background off */
     double variance;         /* read-out noise off */
+    double level;            /* what correlations are over: that, or how data tell it */
 } film;
 
 /* Lags of a curve in frames. */
@@ -93,7 +94,7 @@ static int tell_signal(tarry_prediction *p, const film *f, double decay, double 
         code = tarry_table_add(table, error, name, window, "plateau", "1", plateau, NAN, NAN, NAN);
     if (code == 0)
         code = tarry_table_add(table, error, name, window, "amplitude", "1",
-                               squared > 0 ? f->variance / squared : NAN, NAN, NAN, NAN);
+                               squared > 0 ? f->level / squared : NAN, NAN, NAN, NAN);
     return code;
 }
 
@@ -113,16 +114,23 @@ static int tell_film(tarry_prediction *p, film *f, double *covariance, size_t n,
     if (correlation == NULL)
         return tarry_fail_memory(error, "a prediction");
     for (size_t i = 0; i < n; i++)
-        correlation[i] = covariance[i] / f->variance;
+        correlation[i] = covariance[i] / f->level;
     const double plateau = tarry_correlation_plateau(correlation, n);
     const double decay = tarry_correlation_decay(correlation, n, plateau) * every;
     free(correlation);
     int code = tell_curve(p, f->window->name, f->channel->name, f->channel->name, 0, n, covariance,
-                          noise_of(p->network, f), f->variance, f->mean * f->mean, error);
+                          noise_of(p->network, f), f->level, f->mean * f->mean, error);
     if (code != 0)
         return code;
     return f->channel->signal != TARRY_NONE ? tell_signal(p, f, decay, plateau, error)
                                             : tell_product(p, f, decay, error);
+}
+
+static double level_of(const tarry_network *network, const tarry_channel *channel,
+                       const double *covariance, size_t n) {
+    return network->run.noise_unknown && tarry_channel_is_real(channel) && n >= TARRY_LAGS_PUT_BACK
+               ? tarry_put_back(covariance)
+               : covariance[0];
 }
 
 static int predict_film(tarry_prediction *p, film *f, const char **why, tarry_error *error) {
@@ -135,7 +143,8 @@ static int predict_film(tarry_prediction *p, film *f, const char **why, tarry_er
     if (code == 0 && *why == NULL) {
         f->mean = mean[0];
         f->variance = covariance[0];
-        if (!(f->variance > 0))
+        f->level = level_of(p->network, f->channel, covariance, n);
+        if (!(f->variance > 0 && f->level > 0))
             *why = "it does not vary";
         else
             code = tell_film(p, f, covariance, n, error);
@@ -160,8 +169,8 @@ static int predict_pair(tarry_prediction *p, const film *one, const film *other,
         code = tarry_predict_leave_out(p, one->channel->name, other->channel->name, why, error);
     else if (code == 0)
         code = tell_curve(p, one->window->name, one->channel->name, other->channel->name, least, n,
-                          covariance, 0, sqrt(one->variance * other->variance),
-                          one->mean * other->mean, error);
+                          covariance, 0, sqrt(one->level * other->level), one->mean * other->mean,
+                          error);
     free(covariance);
     return code;
 }
@@ -191,7 +200,7 @@ static int predict_window(tarry_prediction *p, const tarry_window *window, film 
     for (size_t i = 0; code == 0 && i < n; i++)
         for (size_t k = i + 1; code == 0 && k < n; k++)
             if (films[i].channel->signal != TARRY_NONE && films[k].channel->signal != TARRY_NONE &&
-                films[i].variance > 0 && films[k].variance > 0)
+                films[i].level > 0 && films[k].level > 0)
                 code = predict_pair(p, &films[i], &films[k], error);
     return code;
 }

@@ -20,6 +20,7 @@
 #include "base/number.h"
 #include "base/random.h"
 #include "base/text.h"
+#include "model/model.h"
 #include "study/predict.h"
 
 #include <math.h>
@@ -55,6 +56,7 @@ typedef struct comparison {
     const tarry_results *run, *exact;
     figure *figures;
     size_t n, n_groups;
+    tarry_text name; /* room to work in */
 } comparison;
 
 static const struct {
@@ -156,15 +158,69 @@ static bool share_tells(const figure *f) {
     return share * (1.0 - share) * fmin(f->exact, 1.0 - f->exact) >= events * se * se;
 }
 
+/* Append the species or signal that a row is about: spread and correlation of it are those of few
+ * large values where it comes in bursts. Nothing where it is about bursts themselves. */
+static void add_name(const tarry_table *table, size_t row, tarry_ledger_column column,
+                     tarry_text *name) {
+    const char *quantity = tarry_table_text(table, row, 2), *end = strrchr(quantity, '_');
+    switch (column) {
+    case TARRY_LEDGER_signals_value:
+        if (strcmp(quantity, "signal_mean") != 0)
+            tarry_text_add_string(name, tarry_table_text(table, row, 0));
+        break;
+    case TARRY_LEDGER_autocorrelation_correlation:
+        tarry_text_add_string(name, tarry_table_text(table, row, 1));
+        break;
+    case TARRY_LEDGER_bursts_value: /* "transcript_fano" of "vela" */
+        if (end && (!strcmp(end, "_fano") || !strcmp(end, "_cv2")))
+            tarry_text_printf(name, "%s.%.*s", tarry_table_text(table, row, 0),
+                              (int)(end - quantity), quantity);
+        break;
+    default:
+        break;
+    }
+}
+
+/* Variance over the mean squared, background and noise off where that is told, else the largest at
+ * any time; 0 where it is not known. */
+static double exact_cv2(const tarry_results *exact, const char *name) {
+    const tarry_table *signals = exact->tables[TARRY_TABLE_signals];
+    const tarry_table *means = exact->tables[TARRY_TABLE_means];
+    const int value = tarry_table_column(signals, "value"), cv2 = tarry_table_column(means, "cv2");
+    double largest = 0.0;
+    for (size_t row = 0; row < tarry_table_n_rows(signals); row++)
+        if (!strcmp(tarry_table_text(signals, row, 0), name) &&
+            !strcmp(tarry_table_text(signals, row, 2), "amplitude"))
+            largest = fmax(largest, tarry_table_number(signals, row, value));
+    for (size_t row = 0; !(largest > 0.0) && row < tarry_table_n_rows(means); row++)
+        if (!strcmp(tarry_table_text(means, row, 0), name))
+            largest = fmax(largest, tarry_table_number(means, row, cv2));
+    return largest;
+}
+
+/* Are the cells as many as for a mean of single frames? */
+static bool spread_tells(comparison *c, const figure *f) {
+    tarry_text *name = &c->name;
+    name->size = 0;
+    add_name(c->run->tables[columns[f->column].table], f->row, f->column, name);
+    if (name->failed || name->size == 0)
+        return !name->failed;
+    return (double)c->run->n_cells >= events * exact_cv2(c->exact, name->data);
+}
+
 /* Is the law of t that of Student, near enough? Not where the figure rests on few events. */
-static bool tells(const comparison *c, const figure *f, double spread, size_t exact_row) {
+static bool tells(comparison *c, const figure *f, double spread, size_t exact_row) {
     if (!(spread > 0.0) || !isfinite(f->t))
         return false;
     if (f->column == TARRY_LEDGER_means_mean)
         return mean_tells(c, f, exact_row);
     if (f->estimate->scale == TARRY_SCALE_LOGIT || f->estimate->scale == TARRY_SCALE_LOGLOG)
         return share_tells(f);
-    return spread <= rough;
+    const double size = f->column == TARRY_LEDGER_signals_value &&
+                                f->estimate->scale == TARRY_SCALE_PLAIN
+                            ? fabs(f->exact)
+                            : 1.0; /* else relative, or a correlation */
+    return spread <= rough * size && spread_tells(c, f);
 }
 
 static void add_figure(comparison *c, const entry *rows, tarry_ledger_column column,
@@ -304,17 +360,19 @@ static int judge(comparison *c, tarry_self_check *check, tarry_error *error) {
 }
 
 int tarry_self_check_compare(tarry_results *results, const tarry_results *exact,
-                             tarry_error *error) {
+                             int64_t n_resampled, tarry_error *error) {
     const size_t room = (size_t)TARRY_N_LEDGER_COLUMNS * TARRY_LEDGER_ROWS;
     comparison c = {.run = results, .exact = exact};
-    c.n_groups = results->n_cells < TARRY_JACKKNIFE_MOST ? (size_t)results->n_cells
-                                                         : TARRY_JACKKNIFE_MOST;
+    c.n_groups = n_resampled < TARRY_JACKKNIFE_MOST ? (size_t)n_resampled : TARRY_JACKKNIFE_MOST;
     c.figures = tarry_calloc(room, sizeof *c.figures);
     int code = c.figures ? TARRY_OK : tarry_fail_memory(error, "a run beside its exact laws");
     for (int i = 0; !code && i < TARRY_N_LEDGER_COLUMNS; i++)
         code = add_column(&c, (tarry_ledger_column)i, error);
     if (!code && c.n > 0)
         code = judge(&c, &results->self_check, error);
+    if (!code && c.name.failed)
+        code = tarry_fail_memory(error, "a run beside its exact laws");
+    tarry_text_release(&c.name);
     free(c.figures);
     return code;
 }
@@ -342,8 +400,55 @@ int tarry_self_check_run(const tarry_network *network, tarry_results *results, t
     if (code && error)
         *error = why;
     if (!code)
-        code = tarry_self_check_compare(results, results->exact, error);
+        code = tarry_self_check_compare(results, results->exact, results->n_cells, error);
     if (!code && results->self_check.alarm)
         code = note_alarm(results, error);
+    return code;
+}
+
+/* ---- data ------------------------------------------------------------------------------------ */
+
+static int note_unlike(const tarry_model *model, tarry_results *results, tarry_error *error) {
+    const tarry_self_check *check = &results->self_check;
+    char largest[TARRY_NUMBER_SIZE];
+    tarry_number_write_fixed(check->largest, 1, largest);
+    return tarry_notes_add(
+        &results->notes, (tarry_place){0}, error,
+        "these data are not as %s has it: of %zu figure%s the farthest is %s standard errors off "
+        "(%s), and fewer than 1 in 10,000 data sets of that model have one so far",
+        model->file, check->n_compared, check->n_compared > 1 ? "s" : "", largest, check->where);
+}
+
+/* Is it about a name that the data have? Notes begin with the name. */
+static bool is_measured(const tarry_network *data, const char *note) {
+    for (uint32_t i = 0; i < data->n_channels; i++) {
+        const size_t n = strlen(data->channels[i].name);
+        if (!strncmp(note, data->channels[i].name, n) && (note[n] == ':' || note[n] == ','))
+            return true;
+    }
+    return false;
+}
+
+static int take_notes(const tarry_network *data, tarry_results *results, tarry_error *error) {
+    int code = TARRY_OK;
+    for (size_t i = 0; !code && i < tarry_results_n_warnings(results->exact); i++) {
+        const char *note = tarry_results_warning(results->exact, i);
+        if (is_measured(data, note))
+            code = tarry_notes_add(&results->notes, (tarry_place){0}, error, "%s: %s",
+                                   data->data->beside->file, note);
+    }
+    return code;
+}
+
+int tarry_self_check_beside(const tarry_network *data, tarry_results *results, tarry_error *error) {
+    const tarry_model *model = data->data->beside;
+    const int64_t n = data->data->resampled ? data->data->n_resampled : 0;
+    int code = tarry_predict_network(&model->network, &results->exact, error);
+    if (!code)
+        code = take_notes(data, results, error);
+    if (!code && n >= FEWEST_GROUPS)
+        code = tarry_self_check_compare(results, results->exact, n, error);
+    if (!code && results->self_check.alarm)
+        code = note_unlike(model, results, error);
     return code;
 }

@@ -3,7 +3,8 @@
 #ifndef TARRY_STUDY_SELF_CHECK_H
 #define TARRY_STUDY_SELF_CHECK_H
 
-/* A run beside the exact laws of its model (docs/statistics.md, "A run checks itself"). */
+/* Figures beside exact laws: those of a run beside its own (docs/statistics.md, "A run checks
+ * itself"), those of data beside a model's. */
 
 #include "model/network.h"
 #include "tally/results.h"
@@ -16,8 +17,13 @@ enum { TARRY_SELF_CHECK_GENES = 20 };
  * laws; where nothing has an exact law nothing is compared. Errors: TARRY_MEMORY. */
 int tarry_self_check_run(const tarry_network *network, tarry_results *results, tarry_error *error);
 
-/* The comparison alone, with `exact` in the place of the laws. */
+/* The same of data that kept a ledger, beside the laws of the model that they are measured beside.
+ * With fewer than 20 cells, or groups of them, the laws are there and nothing is compared. */
+int tarry_self_check_beside(const tarry_network *data, tarry_results *results, tarry_error *error);
+
+/* The comparison alone, with `exact` in the place of the laws; intervals come from so many cells,
+ * or dishes and the like. */
 int tarry_self_check_compare(tarry_results *results, const tarry_results *exact,
-                             tarry_error *error);
+                             int64_t n_resampled, tarry_error *error);
 
 #endif

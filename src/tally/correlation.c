@@ -410,3 +410,7 @@ double tarry_correlation_decay(const double *correlation, size_t n_lags, double 
                    (correlation[k - 1] - level) / (correlation[k - 1] - correlation[k]);
     return NAN;
 }
+
+double tarry_put_back(const double *covariance) {
+    return (4.0 * covariance[1] + covariance[2] - 2.0 * covariance[3]) / 3.0;
+}

@@ -92,4 +92,9 @@ double tarry_correlation_plateau(const double *correlation, size_t n_lags);
 /* Where the curve first falls to plateau + (1 - plateau)/e, in frames; NaN where it does not. */
 double tarry_correlation_decay(const double *correlation, size_t n_lags, double plateau);
 
+/* The line through lags 1 to 3 of a covariance, put back to 0: noise of single frames is in lag 0
+ * alone. Needs TARRY_LAGS_PUT_BACK lags. */
+enum { TARRY_LAGS_PUT_BACK = 4 };
+double tarry_put_back(const double *covariance);
+
 #endif

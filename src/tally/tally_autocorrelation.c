@@ -301,13 +301,6 @@ static double without_noise(const tarry_signal *signal, const window_view *view,
     return (fixed - share * square) / (1.0 + share);
 }
 
-/* The line through lags 1 to 3, put back to 0: noise of single frames is in lag 0 alone. */
-static double put_back(const double *covariance) {
-    return (4.0 * covariance[1] + covariance[2] - 2.0 * covariance[3]) / 3.0;
-}
-
-enum { LAGS_PUT_BACK = 4 };
-
 /* Of data, and where the values that are found are those with much noise. */
 static bool noise_is_unknown(const tarry_network *network, const tarry_channel *channel) {
     return tarry_channel_is_real(channel) &&
@@ -322,8 +315,8 @@ static series_level level_of(const tarry_network *network, const tarry_channel *
                                   ? 0.0
                                   : network->signals[channel->signal].background;
     series_level level = {mean - background, covariance[0]};
-    if (noise_is_unknown(network, channel) && view->shape.n_lags >= LAGS_PUT_BACK)
-        level.variance = put_back(covariance);
+    if (noise_is_unknown(network, channel) && view->shape.n_lags >= TARRY_LAGS_PUT_BACK)
+        level.variance = tarry_put_back(covariance);
     else if (channel->signal != TARRY_NONE)
         level.variance = without_noise(&network->signals[channel->signal], view, series,
                                        covariance[0]);

@@ -66,7 +66,8 @@ static void check_share(int n, double t, double tolerance) {
     tarry_error error = {0};
     all_is_well(tarry_results_new(&exact, &error), &error);
     tarry_results *results = make_figures(n, t, exact);
-    all_is_well(tarry_self_check_compare(results, exact, &error), &error);
+    all_is_well(tarry_self_check_compare(results, exact, tarry_results_n_cells(results), &error),
+                &error);
     const tarry_self_check *check = tarry_results_self_check(results);
     const double p = 2 * gsl_cdf_tdist_Q(t, 63), expected = -expm1(n * log1p(-p));
     ck_assert_uint_eq(check->n_compared, (size_t)n);
@@ -99,7 +100,9 @@ START_TEST(alarm) {
     for (size_t i = 0; i < sizeof cases / sizeof *cases; i++) {
         all_is_well(tarry_results_new(&exact, &error), &error);
         tarry_results *results = make_figures(1, cases[i].t, exact);
-        all_is_well(tarry_self_check_compare(results, exact, &error), &error);
+        all_is_well(
+            tarry_self_check_compare(results, exact, tarry_results_n_cells(results), &error),
+            &error);
         ck_assert_msg(tarry_results_self_check(results)->alarm == cases[i].alarm, "t = %g: %g",
                       cases[i].t, tarry_results_self_check(results)->share_larger);
         tarry_results_free(results);
@@ -166,7 +169,8 @@ static double share_against(const char *name, const char *run_value, const char 
     all_is_well(tarry_predict(other, &exact, &error), &error);
     free(results->self_check.where);
     memset(&results->self_check, 0, sizeof results->self_check);
-    all_is_well(tarry_self_check_compare(results, exact, &error), &error);
+    all_is_well(tarry_self_check_compare(results, exact, tarry_results_n_cells(results), &error),
+                &error);
     const double share = tarry_results_self_check(results)->share_larger;
     tarry_results_free(results);
     tarry_results_free(exact);
