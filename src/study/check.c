@@ -8,6 +8,7 @@
 #include "base/error.h"
 #include "model/analysis.h"
 #include "study/check_page.h"
+#include "study/predict.h"
 #include "study/run.h"
 #include "tally/kinds.h"
 
@@ -415,6 +416,35 @@ static void write_warnings(tarry_page *page, const tarry_notes *notes) {
         tarry_text_printf(page->text, "  %s\n", notes->lines[i]);
 }
 
+/* ---- exact laws ------------------------------------------------------------------------------ */
+
+typedef struct laws {
+    tarry_page *page;
+    size_t n, n_told;
+} laws;
+
+static int tell_law(void *context, const char *name, const char *why) {
+    laws *l = context;
+    l->n++;
+    if (l->n_told == TARRY_CHECK_MOST)
+        return 0;
+    l->n_told++;
+    tarry_sheet_row(&l->page->sheet);
+    tarry_sheet_cell(&l->page->sheet, 0, "%s", name);
+    tarry_sheet_cell(&l->page->sheet, 1, "%s%s", why ? "none: " : "yes", why ? why : "");
+    return 0;
+}
+
+static int write_laws(tarry_page *page, tarry_error *error) {
+    laws l = {.page = page};
+    tarry_page_head(page, "Exact laws, without simulation (tarry predict)", -1);
+    const int code = tarry_predict_covered(page->network, tell_law, &l, error);
+    tarry_page_list(page, l.n_told, l.n, "genes, products and signals");
+    if (l.n == 0)
+        tarry_text_add_string(page->text, "  none: they are laws of genes, and there are none\n");
+    return code;
+}
+
 static int write_page(tarry_page *page, tarry_notes *notes, tarry_error *error) {
     write_title(page);
     write_genes(page);
@@ -434,6 +464,8 @@ static int write_page(tarry_page *page, tarry_notes *notes, tarry_error *error) 
     write_run(page);
     write_files(page);
     code = write_memory(page, notes, error);
+    if (!code)
+        code = write_laws(page, error);
     if (!code)
         code = tarry_analysis_slips(page->network, notes, error);
     if (!code)

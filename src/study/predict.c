@@ -46,7 +46,7 @@ int tarry_predict_views(tarry_prediction *p, const tarry_channel *channel, tarry
     return code;
 }
 
-static int read_genes(tarry_prediction *p, tarry_error *error) {
+int tarry_predict_read_genes(tarry_prediction *p, tarry_error *error) {
     int code = 0;
     p->genes = tarry_arena_calloc(&p->arena, p->network->n_genes, sizeof *p->genes);
     if (p->genes == NULL)
@@ -83,8 +83,8 @@ static int note_genes(tarry_prediction *p, tarry_error *error) {
 int tarry_predict_network(const tarry_network *network, tarry_results **results,
                           tarry_error *error) {
     static int (*const parts[])(tarry_prediction *, tarry_error *) = {
-        read_genes,           note_genes,          tarry_predict_bursts,
-        tarry_predict_counts, tarry_predict_films, tarry_predict_first};
+        tarry_predict_read_genes, note_genes,          tarry_predict_bursts,
+        tarry_predict_counts,     tarry_predict_films, tarry_predict_first};
     tarry_prediction p = {.network = network, .horizon = network->run.settle + network->run.until};
     *results = NULL;
     int code = tarry_results_new(&p.results, error);

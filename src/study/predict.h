@@ -23,6 +23,15 @@ typedef struct tarry_prediction {
 int tarry_predict_network(const tarry_network *network, tarry_results **results,
                           tarry_error *error);
 
+/* Genes that have exact laws (`why` NULL) and those that have none, then products and signals that
+ * have none though their gene has. What `tell` returns, if not 0, ends it and is returned. */
+typedef int tarry_predict_tell(void *context, const char *name, const char *why);
+int tarry_predict_covered(const tarry_network *network, tarry_predict_tell *tell, void *context,
+                          tarry_error *error);
+
+/* The first part: prediction->genes. */
+int tarry_predict_read_genes(tarry_prediction *prediction, tarry_error *error);
+
 /* means.csv, distribution.csv, and the moments in bursts.csv and signals.csv. */
 int tarry_predict_counts(tarry_prediction *prediction, tarry_error *error);
 

@@ -15,6 +15,7 @@
 #include <math.h>
 #include <stdio.h>
 #include <stdlib.h>
+#include <string.h>
 
 /* One channel in one window. */
 typedef struct film {
@@ -60,13 +61,15 @@ static int tell_curve(tarry_prediction *p, const char *window, const char *first
                       const char *second, ptrdiff_t least, size_t n, const double *covariance,
                       double noise, double scale, double squared, tarry_error *error) {
     tarry_table *table = p->results->tables[TARRY_TABLE_autocorrelation];
+    const bool is_itself = strcmp(first, second) == 0;
     int code = 0;
     for (size_t i = 0; code == 0 && i < n; i++) {
         const ptrdiff_t lag = least + (ptrdiff_t)i;
         const double seen = covariance[i] + (lag == 0 ? noise : 0);
-        code = tarry_table_add(
-            table, error, window, first, second, (double)lag * p->network->run.every, NAN, seen,
-            covariance[i] / scale, NAN, NAN, squared != 0 ? seen / squared : NAN, NAN, NAN);
+        code = tarry_table_add(table, error, window, first, second,
+                               (double)lag * p->network->run.every, NAN, seen,
+                               is_itself && lag == 0 ? 1 : covariance[i] / scale, NAN, NAN,
+                               squared != 0 ? seen / squared : NAN, NAN, NAN);
     }
     return code;
 }

@@ -57,4 +57,10 @@ regulated() {
     run 0 predict "$models/delayed_feedback.yaml" && says out "reads counts of species"
 }
 ok "what is not covered says why" regulated
+told_before() {
+    run 0 check "$models/delayed_feedback.yaml" && says out "rigel  none: the rate of 'rigel.initiation' reads counts of species" &&
+        run 0 check "$models/burst_sizes.yaml" && grep -q "^  mira  yes$" out && grep -q "^  lyra  yes$" out &&
+        run 0 check "$models/binding.yaml" && says out "none: they are laws of genes"
+}
+ok "check says which genes have exact laws" told_before
 finish
