@@ -54,4 +54,5 @@ void tarry_exact_carried_release(tarry_exact_carried *carried) {
     if (carried->release != NULL)
         carried->release(carried);
     tarry_curve_release(&carried->mean);
+    tarry_curve_release(&carried->second);
 }

@@ -4,6 +4,7 @@
 
 #include "exact/chain.h"
 #include "exact/delayed.h"
+#include "exact/fold.h"
 
 #include "base/error.h"
 #include "base/matrix.h"
@@ -128,40 +129,6 @@ static int follow_pulse(pulse_work *w, double horizon, tarry_curve *pulse, tarry
 
 /* ---- contributions --------------------------------------------------------------------------- */
 
-typedef struct joint_work {
-    const tarry_curve *one, *other;
-} joint_work;
-
-static double joint_at(void *context, double y) {
-    const joint_work *w = context;
-    return tarry_curve_product(w->one, w->other, y, 1, 0, tarry_curve_end(w->one));
-}
-
-/* Its bends lie where breaks of one meet breaks of the other. */
-static int find_joint(const tarry_curve *one, const tarry_curve *other, tarry_curve *joint,
-                      tarry_error *error) {
-    joint_work w = {one, other};
-    const size_t n = one->n_breaks * other->n_breaks;
-    size_t k = 0;
-    if (one->n == 0 || other->n == 0)
-        return 0;
-    double *breaks = tarry_calloc(n, sizeof *breaks);
-    if (breaks == NULL)
-        return tarry_fail_memory(error, "the covariance of signals");
-    for (size_t i = 0; i < one->n_breaks; i++)
-        for (size_t j = 0; j < other->n_breaks; j++)
-            breaks[k++] = other->breaks[j] - one->breaks[i];
-    double scale = 0;
-    for (int i = 0; i < 8; i++)
-        scale = fmax(scale, fabs(joint_at(&w, tarry_curve_end(other) * i / 8)));
-    const int code = scale > 0
-                         ? tarry_curve_init(joint, tarry_curve_end(other), breaks, n,
-                                            TARRY_DELAYED_TOLERANCE * scale, joint_at, &w, error)
-                         : 0;
-    free(breaks);
-    return code;
-}
-
 static int find_contributions(const tarry_exact_gene *gene, const tarry_exact_view *one,
                               const tarry_exact_view *other, double horizon,
                               tarry_exact_covariance *c, tarry_error *error) {
@@ -173,9 +140,11 @@ static int find_contributions(const tarry_exact_gene *gene, const tarry_exact_vi
     if (code == 0)
         code = tarry_exact_view_overlap(gene, other, one, horizon, &c->overlap[1], error);
     if (code == 0)
-        code = find_joint(&c->contribution[0], &c->contribution[1], &c->joint[0], error);
+        code = tarry_fold_along(&c->contribution[0], &c->contribution[1], horizon, &c->joint[0],
+                                error);
     if (code == 0)
-        code = find_joint(&c->contribution[1], &c->contribution[0], &c->joint[1], error);
+        code = tarry_fold_along(&c->contribution[1], &c->contribution[0], horizon, &c->joint[1],
+                                error);
     return code;
 }
 
@@ -229,10 +198,8 @@ int tarry_exact_covariance_init(const tarry_exact_gene *gene, const tarry_exact_
 double tarry_exact_covariance_at(const tarry_exact_covariance *c, double lag) {
     const int first = lag < 0; /* the other way round then */
     const double tau = fabs(lag), inside = tau > 0 ? tau : 1e-300;
-    const tarry_curve *ahead = &c->joint[first], *back = &c->joint[!first];
-    double sum = c->initiations * tarry_curve_value(&c->overlap[first], tau, inside);
-    sum += tarry_curve_product(ahead, &c->pulse, tau, -1, 0, tau);
-    sum += tarry_curve_product(ahead, &c->pulse, -tau, 1, tau, tarry_curve_end(ahead));
-    sum += tarry_curve_product(back, &c->pulse, tau, 1, 0, tarry_curve_end(back));
-    return c->n_copies * sum;
+    const tarry_two_sided seen = {&c->joint[first], &c->joint[!first]};
+    const tarry_two_sided begun = {&c->pulse, &c->pulse};
+    return c->n_copies * (c->initiations * tarry_curve_value(&c->overlap[first], tau, inside) +
+                          tarry_fold_two_sided(&seen, &begun, tau));
 }

@@ -42,7 +42,7 @@ typedef struct tarry_drift_state {
     double step; /* the next one's length, or 0 */
 } tarry_drift_state;
 
-/* The curves stay the caller's; `second` NULL: 0. Zero-initialise ({0}). 0 or TARRY_MEMORY. */
+/* The curves stay the caller's. Zero-initialise ({0}). 0 or TARRY_MEMORY. */
 int tarry_drift_init(tarry_drift *drift, const tarry_exact_gene *gene, const tarry_curve *mean,
                      const tarry_curve *second, tarry_error *error);
 void tarry_drift_release(tarry_drift *drift); /* accepts a zeroed or half-built one */

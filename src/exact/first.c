@@ -2,6 +2,7 @@
 
 #include "exact/first.h"
 
+#include "exact/carried.h"
 #include "exact/delayed.h"
 #include "exact/generating.h"
 
@@ -99,5 +100,32 @@ int tarry_exact_none_yet(const tarry_exact_gene *gene, size_t stage, double step
             code = find_share(gene, &w, step + times[i], horizon, &share[i], error);
     }
     tarry_curve_release(&w.there);
+    return code;
+}
+
+static int find_no_protein(const tarry_exact_gene *gene, size_t stage, double step, double stretch,
+                           double horizon, double *share, tarry_error *error) {
+    static const double minus_one = -1, zero = 0;
+    const double time = step + stretch;
+    tarry_exact_carried carried = {0};
+    double im = 0;
+    int code = tarry_exact_carry_arrivals(gene, stage, stretch, horizon, &carried, error);
+    *share = 1;
+    if (code == 0 && carried.load.horizon > 0) {
+        code = carried.prepare(&carried, 1, &minus_one, &zero, error);
+        if (code == 0)
+            code = tarry_exact_generating(gene, &carried.load, tolerance, 1, 1, &time, 1, share,
+                                          &im, error);
+    }
+    tarry_exact_carried_release(&carried);
+    return code;
+}
+
+int tarry_exact_no_protein_yet(const tarry_exact_gene *gene, size_t stage, double step,
+                               const double *times, size_t n_times, double horizon, double *share,
+                               tarry_error *error) {
+    int code = 0;
+    for (size_t i = 0; code == 0 && i < n_times; i++)
+        code = find_no_protein(gene, stage, step, times[i], horizon, &share[i], error);
     return code;
 }

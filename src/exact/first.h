@@ -17,4 +17,10 @@ int tarry_exact_none_yet(const tarry_exact_gene *gene, size_t stage, double step
                          const double *times, size_t n_times, double horizon, double *share,
                          tarry_error *error);
 
+/* The same of proteins, which come to stage `stage` of theirs (n: past the last), whenever their
+ * transcript was begun. */
+int tarry_exact_no_protein_yet(const tarry_exact_gene *gene, size_t stage, double step,
+                               const double *times, size_t n_times, double horizon, double *share,
+                               tarry_error *error);
+
 #endif

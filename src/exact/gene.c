@@ -160,18 +160,18 @@ static void read_fate(tarry_exact_reader *r, tarry_exact_stage *stage, int64_t *
             continue;
         const bool stays = rate_stays(r, reaction, &rate, &reads);
         const bool decay = tarry_flow_only_removes(r->network, reaction->effect, stage->species);
+        const char **why = decay ? &stage->why : &r->gene->why_translation;
         if (decay)
             stage->rate += rate;
         else
             stage->translation += rate;
         if (!decay)
             *translated = reaction->effect;
-        if (reads && stage->why == NULL)
-            stage->why = tarry_exact_say(r, "the rate of '%s' reads counts of species",
-                                         reaction->name);
-        else if (!stays && stage->why == NULL)
-            stage->why = tarry_exact_say(r, "the protocol changes the rate of '%s'",
-                                         reaction->name);
+        if (*why == NULL && !stays)
+            *why = tarry_exact_say(r,
+                                   reads ? "the rate of '%s' reads counts of species"
+                                         : "the protocol changes the rate of '%s'",
+                                   reaction->name);
     }
 }
 
@@ -198,12 +198,13 @@ static void read_dwell(tarry_exact_reader *r, tarry_exact_stage *stage, uint32_t
             stage->why = "the protocol changes the rate at which it is lost";
 }
 
-/* The stages of what `effect` makes. *translated: an effect that begins a protein. */
-static int read_chain(tarry_exact_reader *r, int64_t effect, tarry_exact_chain *chain,
-                      int64_t *translated) {
-    const char *why = NULL;
+/* The stages of what `effect` makes; none of them can be worked out where `why` is not NULL.
+ * *translated: an effect that begins a protein. */
+static int read_chain(tarry_exact_reader *r, int64_t effect, const char *why,
+                      tarry_exact_chain *chain, int64_t *translated) {
     int64_t made_before = TARRY_NONE;
     *translated = TARRY_NONE;
+    chain->why = why;
     chain->stages = tarry_arena_calloc(r->arena, TARRY_EXACT_MOST_STAGES, sizeof *chain->stages);
     if (chain->stages == NULL)
         return tarry_fail_memory(r->error, "a gene");
@@ -237,6 +238,14 @@ static int64_t first_initiation(const tarry_exact_reader *r) {
     return TARRY_NONE;
 }
 
+/* Proteins need all that is known of the transcript, and the rates of translation. */
+static const char *why_no_proteins(const tarry_exact_gene *gene) {
+    for (size_t i = 0; i < gene->transcript.n; i++)
+        if (gene->transcript.stages[i].why != NULL)
+            return gene->transcript.stages[i].why;
+    return gene->why_translation;
+}
+
 int tarry_exact_gene_read(const tarry_flow_index *index, const tarry_segment *segments,
                           uint32_t gene, tarry_arena *arena, tarry_exact_gene *out,
                           tarry_error *error) {
@@ -251,11 +260,11 @@ int tarry_exact_gene_read(const tarry_flow_index *index, const tarry_segment *se
     check_promoter(&r);
     int code = out->why == NULL ? tarry_exact_read_promoter(&r) : 0;
     if (code == 0)
-        code = read_chain(&r, first_initiation(&r), &out->transcript, &begins);
+        code = read_chain(&r, first_initiation(&r), NULL, &out->transcript, &begins);
     if (code == 0 && out->why == NULL)
         code = tarry_exact_begin_regimes(out, error);
     if (code == 0)
-        code = read_chain(&r, begins, &out->protein, &none);
+        code = read_chain(&r, begins, why_no_proteins(out), &out->protein, &none);
     if (code == 0 && r.short_of_memory)
         code = tarry_fail_memory(error, "a gene");
     return code;

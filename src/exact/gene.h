@@ -26,6 +26,7 @@ typedef struct tarry_exact_stage {
 } tarry_exact_stage;
 
 typedef struct tarry_exact_chain {
+    const char *why; /* NULL, or why nothing of it can be worked out */
     tarry_exact_stage *stages;
     size_t n;
 } tarry_exact_chain;
@@ -49,6 +50,8 @@ typedef struct tarry_exact_gene {
     tarry_exact_regime *regimes;
     size_t n_regimes; /* as many as segments that differ in the promoter's rates */
     tarry_exact_chain transcript;
+    const char
+        *why_translation; /* NULL, or why proteins cannot be worked out, though transcripts can */
     tarry_exact_chain protein;
 } tarry_exact_gene;
 

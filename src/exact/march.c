@@ -141,16 +141,24 @@ static void fill(const tarry_march *m, const stride *s, const block *b, size_t f
     }
 }
 
+/* g of systems from <= j < to at the nodes of a step. */
+static void look_up(const tarry_march *m, const stride *s, size_t from, size_t to) {
+    const double inside = s->from + 0.5 * s->step;
+    for (size_t i = 0; i < NODES; i++)
+        m->loads(m->context, s->from + s->step * m->rule.node[i], inside, from, to,
+                 m->gre + i * m->n + from, m->gim + i * m->n + from);
+}
+
 /* Systems first .. first + n_lanes - 1, n_lanes <= LANES. */
 static void step_block(tarry_march *m, const stride *s, const block *b, size_t first,
                        size_t n_lanes) {
-    const double inside = s->from + 0.5 * s->step;
     for (size_t i = 0; i < NODES; i++) {
-        const double a = s->from + s->step * m->rule.node[i];
         b->gre[i] = (lanes){0} + 1;
         b->gim[i] = (lanes){0};
-        m->loads(m->context, a, inside, first, first + n_lanes, (double *)&b->gre[i],
-                 (double *)&b->gim[i]);
+        for (size_t l = 0; l < n_lanes; l++) {
+            b->gre[i][l] = m->gre[i * m->n + first + l];
+            b->gim[i][l] = m->gim[i * m->n + first + l];
+        }
     }
     fill(m, s, b, first, n_lanes);
     eliminate(b, &m->stencil);
@@ -176,6 +184,7 @@ static block make_block(const tarry_march *m) {
 
 static void step_from(tarry_march *m, const stride *s, size_t from) {
     const block b = make_block(m);
+    look_up(m, s, from, m->n);
     for (size_t j = from; j < m->n; j += LANES)
         step_block(m, s, &b, j, m->n - j < LANES ? m->n - j : LANES);
 }
@@ -227,6 +236,7 @@ static guess step_probes(tarry_march *m, const stride *s, double fastest) {
     const double decay = tarry_radau_rest_of_decay(&m->rule, s->step * fastest);
     double first = 0;
     guess most = {0, 0};
+    look_up(m, s, 0, m->n_probes);
     for (size_t j = 0; j < m->n_probes; j += LANES) {
         const size_t n = m->n_probes - j < LANES ? m->n_probes - j : LANES;
         step_block(m, s, &b, j, n);
@@ -261,6 +271,7 @@ static double difference(const tarry_march *m) {
 static void step_half(tarry_march *m, const stride *s, double from) {
     const block b = make_block(m);
     const stride half = {s->quiet, s->jump, from, 0.5 * s->step};
+    look_up(m, &half, 0, m->n_probes);
     for (size_t j = 0; j < m->n_probes; j += LANES)
         step_block(m, &half, &b, j, m->n_probes - j < LANES ? m->n_probes - j : LANES);
 }
@@ -326,11 +337,13 @@ int tarry_march_to(tarry_march *m, const double *quiet, const double *jump, doub
 static int make_room(tarry_march *m, tarry_error *error) {
     const size_t n = NODES * m->n_states;
     m->stencil = (tarry_stencil){0};
+    m->gre = tarry_calloc(m->n, sizeof(double[2 * NODES]));
+    m->gim = m->gre != NULL ? m->gre + m->n * NODES : NULL;
     m->re = tarry_calloc(m->n, m->n_states * sizeof *m->re);
     m->im = tarry_calloc(m->n, m->n_states * sizeof *m->im);
     m->scratch = tarry_calloc(2 * (n * (n + 1) + NODES), sizeof(lanes));
     m->saved = tarry_calloc(4 * m->n_probes, m->n_states * sizeof *m->saved);
-    if (m->re != NULL && m->im != NULL && m->scratch != NULL && m->saved != NULL &&
+    if (m->gre && m->re && m->im && m->scratch && m->saved &&
         tarry_stencil_init(&m->stencil, m->n_states, error) == 0)
         return 0;
     tarry_march_release(m);
@@ -365,10 +378,11 @@ int tarry_march_copy(const tarry_march *march, tarry_march *out, tarry_error *er
 }
 
 void tarry_march_release(tarry_march *march) {
+    free(march->gre);
     free(march->re);
     free(march->im);
     free(march->scratch);
     free(march->saved);
     tarry_stencil_release(&march->stencil);
-    march->re = march->im = march->scratch = march->saved = NULL;
+    march->gre = march->re = march->im = march->scratch = march->saved = NULL;
 }

@@ -31,6 +31,7 @@ typedef struct tarry_march {
     double step;     /* the next step's length, or 0 */
     tarry_radau rule;
     tarry_stencil stencil;
+    double *gre, *gim; /* [nodes][n]: g at a step's nodes */
     double *scratch;
     double *saved;          /* the probes, before a step */
     unsigned long n_solved; /* blocks of systems so far: the work done */

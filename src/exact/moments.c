@@ -82,7 +82,7 @@ int tarry_exact_moments_at(const tarry_exact_gene *gene, tarry_exact_carried *ca
     if (f.room == NULL)
         return tarry_fail_memory(error, "moments of a count");
     f.older = (tarry_drift_state){.w1 = f.room + 2 * n, .w2 = f.room + 3 * n};
-    int code = tarry_drift_init(&f.drift, gene, &carried->mean, carried->second, error);
+    int code = tarry_drift_init(&f.drift, gene, &carried->mean, &carried->second, error);
     if (code == 0)
         code = find(&f, times, n_times, moments);
     tarry_drift_release(&f.drift);

@@ -1,27 +1,21 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 
-/* A molecule with dwell D in its stage, in it since x, shines rho(x/D) while x < D; a loss at rate
- * r leaves exp(-r x) of those that came in. Means over D are taken by a density or values
- * (measure.h); what came before the stage is folded in by its laws (delayed.h). */
-
 #include "exact/view.h"
 
 #include "exact/delayed.h"
-#include "exact/gauss.h"
-#include "exact/measure.h"
+#include "exact/fold.h"
 
 #include "base/error.h"
 #include "base/memory.h"
 
 #include <math.h>
 #include <stdlib.h>
-#include <string.h>
 
 /* ---- reading --------------------------------------------------------------------------------- */
 
-static int64_t stage_of(const tarry_exact_gene *gene, uint32_t species) {
-    for (size_t i = 0; i < gene->transcript.n; i++)
-        if (gene->transcript.stages[i].species == species)
+static int64_t stage_of(const tarry_exact_chain *chain, uint32_t species) {
+    for (size_t i = 0; i < chain->n; i++)
+        if (chain->stages[i].species == species)
             return (int64_t)i;
     return TARRY_NONE;
 }
@@ -29,6 +23,14 @@ static int64_t stage_of(const tarry_exact_gene *gene, uint32_t species) {
 static bool has_species(const tarry_network *network, const tarry_exact_gene *gene,
                         uint32_t species) {
     return network->species[species].gene == (int32_t)gene->gene;
+}
+
+/* Why a species that is no molecule of the gene's chains cannot be seen. */
+static const char *not_on_the_way(const tarry_network *network, uint32_t species) {
+    const tarry_species_role role = network->species[species].role;
+    return role == TARRY_SPECIES_STATE || role == TARRY_SPECIES_ALLELE
+               ? "signals that see promoter states are not covered"
+               : "it sees a molecule that does not come from the gene's initiations";
 }
 
 /* Take in a species with a weight, or say why not. */
@@ -39,17 +41,21 @@ static void take(const tarry_network *network, const tarry_exact_gene *gene, uin
     view->looks = true;
     if (view->why != NULL)
         return;
-    const int64_t stage = stage_of(gene, species);
-    if (stage == TARRY_NONE) {
-        view->why = network->species[species].role == TARRY_SPECIES_STATE ||
-                            network->species[species].role == TARRY_SPECIES_ALLELE
-                        ? "signals that see promoter states are not covered"
-                        : "proteins are not covered";
+    const int64_t own = stage_of(&gene->transcript, species);
+    const int64_t of_protein = stage_of(&gene->protein, species);
+    if (own == TARRY_NONE && of_protein == TARRY_NONE) {
+        view->why = not_on_the_way(network, species);
         return;
     }
-    view->why = gene->transcript.stages[stage].why;
-    glimpse.stage = (size_t)stage;
-    view->glimpses[view->n++] = glimpse;
+    const tarry_exact_chain *chain = own != TARRY_NONE ? &gene->transcript : &gene->protein;
+    tarry_exact_glimpses *glimpses = own != TARRY_NONE ? &view->transcript : &view->protein;
+    glimpse.stage = (size_t)(own != TARRY_NONE ? own : of_protein);
+    view->why = chain->stages[glimpse.stage].why;
+    glimpses->list[glimpses->n++] = glimpse;
+}
+
+bool tarry_exact_view_sees(const tarry_exact_view *view) {
+    return view->transcript.n + view->protein.n > 0;
 }
 
 static bool same_glimpse(const tarry_ramp *one, const tarry_ramp *other,
@@ -77,7 +83,7 @@ static void take_ramps(const tarry_network *network, const tarry_exact_gene *gen
         if (stands || species == TARRY_NONE || !has_species(network, gene, (uint32_t)species))
             continue;
         const double copies = n_lags > 1 ? n_seen : gene->n_copies;
-        if (view->n > 0 && copies != view->n_copies)
+        if (tarry_exact_view_sees(view) && copies != view->n_copies)
             view->why = "it sees some stages of one allele and others of all";
         view->n_copies = copies;
         take(network, gene, (uint32_t)species,
@@ -98,8 +104,9 @@ int tarry_exact_view_read(const tarry_network *network, const tarry_exact_gene *
         n_most = (signal->weights.to - signal->weights.from) +
                  (signal->ramps.to - signal->ramps.from);
     }
-    view->glimpses = tarry_arena_calloc(arena, n_most, sizeof *view->glimpses);
-    if (view->glimpses == NULL)
+    view->transcript.list = tarry_arena_calloc(arena, n_most, sizeof *view->transcript.list);
+    view->protein.list = tarry_arena_calloc(arena, n_most, sizeof *view->protein.list);
+    if (view->transcript.list == NULL || view->protein.list == NULL)
         return tarry_fail_memory(error, "what a signal sees");
     if (signal == NULL) {
         take(network, gene, (uint32_t)channel->species, (tarry_exact_glimpse){0, 1, 0, 0}, view);
@@ -112,397 +119,180 @@ int tarry_exact_view_read(const tarry_network *network, const tarry_exact_gene *
     return 0;
 }
 
-/* ---- one stage ------------------------------------------------------------------------------- */
+/* ---- proteins -------------------------------------------------------------------------------- */
 
-static bool is_flat(const tarry_exact_glimpse *g) {
-    return g->from == 0 && g->to == 0;
-}
-
-/* rho(f), 0 <= f <= 1; a step at from = to counts from there on. */
-static double shine(const tarry_exact_glimpse *g, double f) {
-    if (g->from == g->to)
-        return f >= g->from ? g->weight : 0;
-    return g->weight * fmin(fmax((f - g->from) / (g->to - g->from), 0), 1);
-}
-
-typedef struct stage_work {
-    const tarry_exact_stage *stage;
-    tarry_measure measure; /* of its dwell */
-    const tarry_exact_glimpse *one, *other;
-    double at; /* the argument of the curve under way */
-} stage_work;
-
-static int start_stage(stage_work *w, const tarry_exact_stage *stage, tarry_error *error) {
-    *w = (stage_work){.stage = stage};
-    return tarry_measure_init(&w->measure, stage->law, error);
-}
-
-/* The places at which a curve of this stage may bend: single dwells, and edges of the density,
- * times each of the fractions. */
-static double *places(const stage_work *w, const double *fractions, size_t n_fractions, size_t *n) {
-    const tarry_curve *density = &w->measure.density;
-    double *out = tarry_calloc((w->measure.n + density->n_breaks) * n_fractions, sizeof *out);
-    *n = 0;
-    for (size_t k = 0; out != NULL && k < n_fractions; k++) {
-        for (size_t i = 0; i < w->measure.n; i++)
-            out[(*n)++] = w->measure.at[i] * fractions[k];
-        for (size_t i = 0; i < density->n_breaks; i++)
-            out[(*n)++] = density->breaks[i] * fractions[k];
-    }
-    return out;
-}
-
-static int build(stage_work *w, const double *fractions, size_t n_fractions, double scale,
-                 tarry_curve_function *function, double horizon, tarry_curve *out,
-                 tarry_error *error) {
-    size_t n = 0;
-    double *breaks = places(w, fractions, n_fractions, &n);
-    const double end = fmin(horizon, tarry_measure_most(&w->measure));
-    int code = 0;
-    if (breaks == NULL)
-        code = tarry_fail_memory(error, "what a signal sees");
-    else if (end > 0)
-        code = tarry_curve_init(out, end, breaks, n, TARRY_DELAYED_TOLERANCE * scale, function, w,
-                                error);
-    free(breaks);
-    return code;
-}
-
-/* What is seen at x since the molecule came in: by one, or by one times the other. */
-static double shine_now(void *context, double dwell) {
-    const stage_work *w = context;
-    const double f = w->at / dwell;
-    return shine(w->one, f) * (w->other != NULL ? shine(w->other, f) : 1);
-}
-
-static double mean_at(void *context, double x) {
-    stage_work *w = context;
-    const tarry_exact_glimpse *other = w->other != NULL ? w->other : w->one;
-    const double bends[] = {x / w->one->from, x / w->one->to, x / other->from, x / other->to};
-    w->at = x;
-    return exp(-w->stage->rate * x) * tarry_measure_mean(&w->measure, x, bends, 4, shine_now, w);
-}
-
-/* *out (zeroed): the mean contribution x after it came in; with `other`, of both multiplied. */
-static int stage_mean(const tarry_exact_stage *stage, const tarry_exact_glimpse *glimpse,
-                      const tarry_exact_glimpse *other, double horizon, tarry_curve *out,
-                      tarry_error *error) {
-    const double weight = glimpse->weight * (other != NULL ? other->weight : 1);
-    if (is_flat(glimpse) && (other == NULL || is_flat(other))) {
-        tarry_curve there = {0};
-        const tarry_curve_term term = {&there, 0, weight};
-        int code = tarry_delayed_dwell(stage->law, stage->rate, horizon, &there, error);
-        if (code == 0)
-            code = tarry_curve_sum(&term, 1, horizon, TARRY_DELAYED_TOLERANCE * fabs(weight), out,
-                                   error);
-        tarry_curve_release(&there);
-        return code;
-    }
-    stage_work w;
-    const double fractions[] = {1, glimpse->from, glimpse->to, other != NULL ? other->from : 1,
-                                other != NULL ? other->to : 1};
-    int code = start_stage(&w, stage, error);
-    w.one = glimpse;
-    w.other = other;
-    if (code == 0)
-        code = build(&w, fractions, 5, fabs(weight), mean_at, horizon, out, error);
-    tarry_measure_release(&w.measure);
-    return code;
-}
-
-/* A molecule whose dwell D is over in y, and that was not lost by then. */
-static double shine_before_end(void *context, double dwell) {
-    const stage_work *w = context;
-    return exp(-w->stage->rate * dwell) * shine(w->one, fmax(1 - w->at / dwell, 0));
-}
-
-static double before_end_at(void *context, double y) {
-    stage_work *w = context;
-    const double bends[] = {y / (1 - w->one->from), y / (1 - w->one->to)};
-    w->at = y;
-    return tarry_measure_mean(&w->measure, y, bends, 2, shine_before_end, w);
-}
-
-static int stage_before_end(const tarry_exact_stage *stage, const tarry_exact_glimpse *glimpse,
-                            double horizon, tarry_curve *out, tarry_error *error) {
-    stage_work w;
-    const double fractions[] = {1, 1 - glimpse->from, 1 - glimpse->to};
-    int code = start_stage(&w, stage, error);
-    w.one = glimpse;
-    if (code == 0)
-        code = build(&w, fractions, 3, fabs(glimpse->weight), before_end_at, horizon, out, error);
-    tarry_measure_release(&w.measure);
-    return code;
-}
-
-static int compare(const void *one, const void *other) {
-    const double a = *(const double *)one, b = *(const double *)other;
-    return (a > b) - (a < b);
-}
-
-/* The integral over x of rho1(x/D) rho2((x + tau)/D) exp(-r (x + tau)), both within the dwell. */
-static double overlap_of_dwell(void *context, double dwell) {
-    const stage_work *w = context;
-    const double tau = w->at, end = dwell - tau;
-    double cuts[] = {0,
-                     end,
-                     w->one->from * dwell,
-                     w->one->to * dwell,
-                     w->other->from * dwell - tau,
-                     w->other->to * dwell - tau};
-    enum { N = sizeof cuts / sizeof *cuts };
-    double sum = 0;
-    if (!(end > 0))
-        return 0;
-    for (int i = 0; i < N; i++)
-        cuts[i] = fmin(fmax(cuts[i], 0), end);
-    qsort(cuts, N, sizeof *cuts, compare);
-    for (int i = 0; i + 1 < N; i++) {
-        const double half = 0.5 * (cuts[i + 1] - cuts[i]), middle = 0.5 * (cuts[i + 1] + cuts[i]);
-        for (int k = 0; k < TARRY_GAUSS && half > 0; k++) {
-            const double x = middle + half * tarry_gauss_node[k];
-            sum += half * tarry_gauss_weight[k] * shine(w->one, x / dwell) *
-                   shine(w->other, (x + tau) / dwell) * exp(-w->stage->rate * (x + tau));
-        }
-    }
-    return sum;
-}
-
-static double overlap_at(void *context, double tau) {
-    stage_work *w = context;
-    const double shifts[] = {w->other->from,
-                             w->other->to,
-                             w->other->from - w->one->from,
-                             w->other->to - w->one->from,
-                             w->other->from - w->one->to,
-                             w->other->to - w->one->to,
-                             1 - w->one->from,
-                             1 - w->one->to};
-    enum { N = sizeof shifts / sizeof *shifts };
-    double bends[N];
-    for (int i = 0; i < N; i++)
-        bends[i] = tau / shifts[i];
-    w->at = tau;
-    return tarry_measure_mean(&w->measure, tau, bends, N, overlap_of_dwell, w);
-}
-
-/* Within one stage. */
-static int stage_overlap(const tarry_exact_stage *stage, const tarry_exact_glimpse *one,
-                         const tarry_exact_glimpse *other, double horizon, tarry_curve *out,
-                         tarry_error *error) {
-    stage_work w;
-    const double fractions[] = {1,
-                                other->from,
-                                other->to,
-                                other->from - one->from,
-                                other->to - one->from,
-                                other->from - one->to,
-                                other->to - one->to,
-                                1 - one->from,
-                                1 - one->to};
-    int code = start_stage(&w, stage, error);
-    w.one = one;
-    w.other = other;
-    if (code == 0)
-        code = build(&w, fractions, sizeof fractions / sizeof *fractions,
-                     fabs(one->weight * other->weight) * tarry_law_mean(stage->law), overlap_at,
-                     horizon, out, error);
-    tarry_measure_release(&w.measure);
-    return code;
-}
-
-typedef struct tail {
-    const tarry_curve *there;
-    double factor;
-} tail;
-
-static double tail_at(void *context, double tau) {
-    const tail *t = context;
-    return t->factor * (tarry_curve_integral(t->there, tarry_curve_end(t->there)) -
-                        tarry_curve_integral(t->there, tau));
-}
-
-/* The same where both see all of the molecule: what is left of the dwell's integral. */
-static int flat_overlap(const tarry_exact_stage *stage, double weight, double horizon,
-                        tarry_curve *out, tarry_error *error) {
-    tarry_curve there = {0};
-    tail t = {&there, weight};
-    int code = tarry_delayed_dwell(stage->law, stage->rate, horizon, &there, error);
-    if (code == 0 && there.n > 0) {
-        const double whole = fabs(weight) * tarry_curve_integral(&there, tarry_curve_end(&there));
-        code = tarry_curve_init(out, tarry_curve_end(&there), there.breaks, there.n_breaks,
-                                TARRY_DELAYED_TOLERANCE * whole, tail_at, &t, error);
-    }
-    tarry_curve_release(&there);
-    return code;
-}
-
-/* ---- from stage to stage --------------------------------------------------------------------- */
-
-/* Fold in the laws of the stages before `stage`, from `first` on. In place. */
-static int fold_before(const tarry_exact_gene *gene, size_t first, size_t stage, double horizon,
-                       tarry_curve *curve, tarry_error *error) {
-    int code = 0;
-    for (size_t i = stage; code == 0 && i-- > first;) {
-        const tarry_exact_stage *s = &gene->transcript.stages[i];
-        tarry_curve later = *curve;
-        *curve = (tarry_curve){0};
-        code = tarry_delayed_by(s->law, s->rate, &later, horizon, curve, error);
-        tarry_curve_release(&later);
-    }
-    return code;
-}
-
-/* Of those begun, the share that comes into the stage. */
-static int reach(const tarry_exact_gene *gene, size_t stage, double *share, tarry_error *error) {
-    *share = 1;
-    for (size_t i = 0; i < stage; i++) {
-        const tarry_exact_stage *s = &gene->transcript.stages[i];
-        stage_work w;
-        static const tarry_exact_glimpse whole = {0, 1, 0, 0};
-        if (s->rate == 0)
-            continue;
-        const int code = start_stage(&w, s, error);
-        w.one = &whole;
-        if (code == 0)
-            *share *= tarry_measure_mean(&w.measure, 0, NULL, 0, shine_before_end, &w);
-        tarry_measure_release(&w.measure);
-        if (code != 0)
-            return code;
-    }
+int tarry_exact_translations(const tarry_exact_gene *gene, tarry_exact_glimpses *rates,
+                             tarry_error *error) {
+    *rates = (tarry_exact_glimpses){tarry_calloc(gene->transcript.n, sizeof *rates->list), 0};
+    if (rates->list == NULL)
+        return tarry_fail_memory(error, "what a signal sees");
+    for (size_t i = 0; i < gene->transcript.n; i++)
+        if (gene->transcript.stages[i].translation > 0)
+            rates->list[rates->n++] = (tarry_exact_glimpse){
+                i, gene->transcript.stages[i].translation, 0, 0};
     return 0;
 }
 
-typedef struct later_work {
-    const tarry_curve *before, *after;
-    double factor;
-} later_work;
-
-static double later_at(void *context, double tau) {
-    const later_work *w = context;
-    return w->factor * tarry_curve_product(w->before, w->after, tau, -1, 0, tau);
-}
-
-/* First in an earlier stage, then in a later one: the end of the first dwell lies y ahead. */
-static int later_overlap(const tarry_exact_gene *gene, const tarry_exact_glimpse *one,
-                         const tarry_exact_glimpse *other, double factor, double horizon,
-                         tarry_curve *out, tarry_error *error) {
-    const tarry_exact_stage *stages = gene->transcript.stages;
-    tarry_curve before = {0}, after = {0};
-    later_work w = {&before, &after, factor};
-    size_t n = 0;
-    double *breaks = NULL;
-    int code = stage_before_end(&stages[one->stage], one, horizon, &before, error);
-    if (code == 0)
-        code = stage_mean(&stages[other->stage], other, NULL, horizon, &after, error);
-    if (code == 0)
-        code = fold_before(gene, one->stage + 1, other->stage, horizon, &after, error);
-    if (code == 0 &&
-        (breaks = tarry_calloc(before.n_breaks * after.n_breaks, sizeof *breaks)) == NULL)
-        code = tarry_fail_memory(error, "what a signal sees");
-    for (size_t i = 0; code == 0 && i < before.n_breaks; i++)
-        for (size_t k = 0; k < after.n_breaks; k++)
-            breaks[n++] = before.breaks[i] + after.breaks[k];
-    if (code == 0 && before.n > 0 && after.n > 0)
-        code = tarry_curve_init(
-            out, fmin(horizon, tarry_curve_end(&before) + tarry_curve_end(&after)), breaks, n,
-            TARRY_DELAYED_TOLERANCE * fabs(one->weight * other->weight) *
-                tarry_law_mean(stages[one->stage].law),
-            later_at, &w, error);
-    free(breaks);
-    tarry_curve_release(&before);
-    tarry_curve_release(&after);
-    return code;
-}
-
-static int glimpse_overlap(const tarry_exact_gene *gene, const tarry_exact_glimpse *one,
-                           const tarry_exact_glimpse *other, double horizon, tarry_curve *out,
-                           tarry_error *error) {
-    const tarry_exact_stage *stage = &gene->transcript.stages[one->stage];
-    double share = 0;
-    if (other->stage < one->stage)
+/* Two curves added up in place of the first. */
+static int add_curve(tarry_curve *sum, const tarry_curve *part, double factor, double horizon,
+                     tarry_error *error) {
+    if (part->n == 0)
         return 0;
-    int code = reach(gene, one->stage, &share, error);
-    if (code != 0)
-        return code;
-    if (other->stage > one->stage)
-        return later_overlap(gene, one, other, share, horizon, out, error);
-    tarry_curve whole = {0};
-    const tarry_curve_term term = {&whole, 0, share};
-    code = is_flat(one) && is_flat(other)
-               ? flat_overlap(stage, one->weight * other->weight, horizon, &whole, error)
-               : stage_overlap(stage, one, other, horizon, &whole, error);
-    if (code == 0)
-        code = tarry_curve_sum(&term, 1, horizon,
-                               TARRY_DELAYED_TOLERANCE * tarry_curve_value(&whole, 0, 1e-300), out,
-                               error);
-    tarry_curve_release(&whole);
-    return code;
-}
-
-/* ---- sums over glimpses ---------------------------------------------------------------------- */
-
-/* `code`: of what made the curves, which are released either way. */
-static int finish_sum(tarry_curve *curves, size_t n, int code, double horizon, tarry_curve *out,
-                      tarry_error *error) {
-    tarry_curve_term *terms = tarry_calloc(n, sizeof *terms);
+    tarry_curve before = *sum;
     double scale = 0;
-    if (code == 0 && terms == NULL)
-        code = tarry_fail_memory(error, "what a signal sees");
-    for (size_t i = 0; code == 0 && i < n; i++) {
-        terms[i] = (tarry_curve_term){&curves[i], 0, 1};
-        for (size_t k = 0; k < curves[i].n; k++)
-            scale = fmax(scale, fabs(curves[i].coefficients[k * TARRY_CURVE_NODES]));
-    }
-    if (code == 0)
-        code = tarry_curve_sum(terms, n, horizon, TARRY_DELAYED_TOLERANCE * scale, out, error);
-    free(terms);
-    for (size_t i = 0; curves != NULL && i < n; i++)
-        tarry_curve_release(&curves[i]);
-    free(curves);
+    const tarry_curve_term terms[] = {{&before, 0, 1}, {part, 0, factor}};
+    for (size_t i = 0; i < 2; i++)
+        for (size_t k = 0; k < terms[i].curve->n; k++)
+            scale = fmax(
+                scale, fabs(terms[i].factor * terms[i].curve->coefficients[k * TARRY_CURVE_NODES]));
+    *sum = (tarry_curve){0};
+    const int code = tarry_curve_sum(terms, 2, horizon, TARRY_DELAYED_TOLERANCE * scale, sum,
+                                     error);
+    tarry_curve_release(&before);
     return code;
 }
 
 int tarry_exact_view_mean(const tarry_exact_gene *gene, const tarry_exact_view *view,
                           double horizon, tarry_curve *mean, tarry_error *error) {
-    tarry_curve *parts = tarry_calloc(view->n, sizeof *parts);
-    int code = parts == NULL ? tarry_fail_memory(error, "what a signal sees") : 0;
-    for (size_t i = 0; code == 0 && i < view->n; i++) {
-        const tarry_exact_glimpse *g = &view->glimpses[i];
-        code = stage_mean(&gene->transcript.stages[g->stage], g, NULL, horizon, &parts[i], error);
+    tarry_curve made = {0}, seen = {0}, proteins = {0};
+    tarry_exact_glimpses rates = {0};
+    int code = tarry_exact_glimpses_mean(&gene->transcript, &view->transcript, horizon, mean,
+                                         error);
+    if (code == 0 && view->protein.n > 0) {
+        code = tarry_exact_translations(gene, &rates, error);
         if (code == 0)
-            code = fold_before(gene, 0, g->stage, horizon, &parts[i], error);
+            code = tarry_exact_glimpses_mean(&gene->transcript, &rates, horizon, &made, error);
+        if (code == 0)
+            code = tarry_exact_glimpses_mean(&gene->protein, &view->protein, horizon, &seen, error);
+        if (code == 0)
+            code = tarry_fold(&made, &seen, horizon, &proteins, error);
+        if (code == 0)
+            code = add_curve(mean, &proteins, 1, horizon, error);
     }
-    return finish_sum(parts, view->n, code, horizon, mean, error);
+    tarry_curve_release(&made);
+    tarry_curve_release(&seen);
+    tarry_curve_release(&proteins);
+    free(rates.list);
+    return code;
+}
+
+/* ---- overlap --------------------------------------------------------------------------------- */
+
+/* Curves on the way: of the transcript, of its translation, of one protein. */
+typedef struct overlap_work {
+    const tarry_exact_gene *gene;
+    const tarry_exact_view *one, *other;
+    double horizon;
+    tarry_exact_glimpses rates;
+    tarry_curve made;        /* mean translation at an age */
+    tarry_curve seen[2];     /* mean contribution of a protein of an age to each view */
+    tarry_curve from[2];     /* seen once by the first view and translated later, and the other
+                                way round */
+    tarry_curve to[2];       /* translated and seen later by the second view, and the other way */
+    tarry_curve pairs;       /* translated twice */
+    tarry_curve meetings[2]; /* of the two contributions of proteins: second later, first later */
+    tarry_curve twice;       /* of one protein */
+    tarry_error *error;
+} overlap_work;
+
+static void release_work(overlap_work *w) {
+    tarry_curve *const curves[] = {&w->made,    &w->seen[0],     &w->seen[1],    &w->from[0],
+                                   &w->from[1], &w->to[0],       &w->to[1],      &w->pairs,
+                                   &w->twice,   &w->meetings[0], &w->meetings[1]};
+    for (size_t i = 0; i < sizeof curves / sizeof *curves; i++)
+        tarry_curve_release(curves[i]);
+    free(w->rates.list);
+}
+
+static int along(overlap_work *w, const tarry_exact_glimpses *one,
+                 const tarry_exact_glimpses *other, tarry_curve *out) {
+    return tarry_exact_glimpses_overlap(&w->gene->transcript, one, other, w->horizon, out,
+                                        w->error);
+}
+
+static int find_curves(overlap_work *w) {
+    const tarry_exact_chain *protein = &w->gene->protein;
+    int code = tarry_exact_translations(w->gene, &w->rates, w->error);
+    if (code == 0)
+        code = tarry_exact_glimpses_mean(&w->gene->transcript, &w->rates, w->horizon, &w->made,
+                                         w->error);
+    if (code == 0)
+        code = tarry_exact_glimpses_mean(protein, &w->one->protein, w->horizon, &w->seen[0],
+                                         w->error);
+    if (code == 0)
+        code = tarry_exact_glimpses_mean(protein, &w->other->protein, w->horizon, &w->seen[1],
+                                         w->error);
+    return code;
+}
+
+/* The transcript is seen by one view, and its proteins by the other. */
+static int add_mixed(overlap_work *w, tarry_curve *sum) {
+    static const tarry_curve nothing = {0};
+    const tarry_exact_glimpses *one = &w->one->transcript, *other = &w->other->transcript;
+    tarry_curve first = {0}, second = {0};
+    int code = 0;
+    if (one->n > 0 && w->seen[1].n > 0) {
+        const tarry_two_sided f = {&w->from[0], &w->from[1]}, g = {&w->seen[1], &nothing};
+        code = along(w, one, &w->rates, &w->from[0]);
+        if (code == 0)
+            code = along(w, &w->rates, one, &w->from[1]);
+        if (code == 0)
+            code = tarry_fold_both(&f, &g, w->horizon, &first, w->error);
+    }
+    if (code == 0 && other->n > 0 && w->seen[0].n > 0) {
+        const tarry_two_sided f = {&w->to[0], &w->to[1]}, g = {&nothing, &w->seen[0]};
+        code = along(w, &w->rates, other, &w->to[0]);
+        if (code == 0)
+            code = along(w, other, &w->rates, &w->to[1]);
+        if (code == 0)
+            code = tarry_fold_both(&f, &g, w->horizon, &second, w->error);
+    }
+    if (code == 0)
+        code = add_curve(sum, &first, 1, w->horizon, w->error);
+    if (code == 0)
+        code = add_curve(sum, &second, 1, w->horizon, w->error);
+    tarry_curve_release(&first);
+    tarry_curve_release(&second);
+    return code;
+}
+
+/* Proteins are seen by both views: two proteins of one transcript, or one protein twice. */
+static int add_proteins(overlap_work *w, tarry_curve *sum) {
+    tarry_curve both = {0};
+    const tarry_two_sided f = {&w->pairs, &w->pairs}, g = {&w->meetings[0], &w->meetings[1]};
+    if (w->seen[0].n == 0 || w->seen[1].n == 0)
+        return 0;
+    int code = along(w, &w->rates, &w->rates, &w->pairs);
+    if (code == 0)
+        code = tarry_fold_along(&w->seen[0], &w->seen[1], w->horizon, &w->meetings[0], w->error);
+    if (code == 0)
+        code = tarry_fold_along(&w->seen[1], &w->seen[0], w->horizon, &w->meetings[1], w->error);
+    if (code == 0)
+        code = tarry_fold_both(&f, &g, w->horizon, &both, w->error);
+    if (code == 0)
+        code = add_curve(sum, &both, 1, w->horizon, w->error);
+    if (code == 0)
+        code = tarry_exact_glimpses_overlap(&w->gene->protein, &w->one->protein, &w->other->protein,
+                                            w->horizon, &w->twice, w->error);
+    if (code == 0)
+        code = add_curve(sum, &w->twice, tarry_curve_integral(&w->made, INFINITY), w->horizon,
+                         w->error);
+    tarry_curve_release(&both);
+    return code;
 }
 
 int tarry_exact_view_overlap(const tarry_exact_gene *gene, const tarry_exact_view *one,
                              const tarry_exact_view *other, double horizon, tarry_curve *overlap,
                              tarry_error *error) {
-    const size_t n = one->n * other->n;
-    tarry_curve *parts = tarry_calloc(n, sizeof *parts);
-    int code = parts == NULL ? tarry_fail_memory(error, "what a signal sees") : 0;
-    for (size_t i = 0; code == 0 && i < n; i++)
-        code = glimpse_overlap(gene, &one->glimpses[i / other->n], &other->glimpses[i % other->n],
-                               horizon, &parts[i], error);
-    return finish_sum(parts, n, code, horizon, overlap, error);
-}
-
-/* A transcript is in one stage at a time: only glimpses of one stage go together. */
-int tarry_exact_view_square(const tarry_exact_gene *gene, const tarry_exact_view *view,
-                            double horizon, tarry_curve *square, tarry_error *error) {
-    const size_t n = view->n * view->n;
-    tarry_curve *parts = tarry_calloc(n, sizeof *parts);
-    int code = parts == NULL ? tarry_fail_memory(error, "what a signal sees") : 0;
-    for (size_t i = 0; code == 0 && i < n; i++) {
-        const tarry_exact_glimpse *one = &view->glimpses[i / view->n];
-        const tarry_exact_glimpse *other = &view->glimpses[i % view->n];
-        if (one->stage != other->stage)
-            continue;
-        code = stage_mean(&gene->transcript.stages[one->stage], one, other, horizon, &parts[i],
-                          error);
+    overlap_work w = {.gene = gene, .one = one, .other = other, .horizon = horizon, .error = error};
+    int code = along(&w, &one->transcript, &other->transcript, overlap);
+    if (code == 0 && one->protein.n + other->protein.n > 0) {
+        code = find_curves(&w);
         if (code == 0)
-            code = fold_before(gene, 0, one->stage, horizon, &parts[i], error);
+            code = add_mixed(&w, overlap);
+        if (code == 0)
+            code = add_proteins(&w, overlap);
     }
-    return finish_sum(parts, n, code, horizon, square, error);
+    release_work(&w);
+    return code;
 }

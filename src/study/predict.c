@@ -4,6 +4,7 @@
 
 #include "base/error.h"
 #include "base/memory.h"
+
 #include "model/model.h"
 #include "tally/dwells.h"
 
@@ -80,12 +81,14 @@ static int note_genes(tarry_prediction *p, tarry_error *error) {
     return code;
 }
 
-int tarry_predict_network(const tarry_network *network, tarry_results **results,
+int tarry_predict_network(const tarry_network *network, bool is_quick, tarry_results **results,
                           tarry_error *error) {
     static int (*const parts[])(tarry_prediction *, tarry_error *) = {
         tarry_predict_read_genes, note_genes,          tarry_predict_bursts,
         tarry_predict_counts,     tarry_predict_films, tarry_predict_first};
-    tarry_prediction p = {.network = network, .horizon = network->run.settle + network->run.until};
+    tarry_prediction p = {.network = network,
+                          .horizon = network->run.settle + network->run.until,
+                          .is_quick = is_quick};
     *results = NULL;
     int code = tarry_results_new(&p.results, error);
     if (code == 0) {
@@ -104,7 +107,7 @@ int tarry_predict_network(const tarry_network *network, tarry_results **results,
 }
 
 int tarry_predict(const tarry_model *model, tarry_results **results, tarry_error *error) {
-    return tarry_predict_network(&model->network, results, error);
+    return tarry_predict_network(&model->network, false, results, error);
 }
 
 void tarry_predict_grid(double longest, double times[TARRY_PREDICT_POINTS]) {

@@ -16,11 +16,13 @@ typedef struct tarry_prediction {
     tarry_arena arena;
     tarry_exact_gene *genes; /* [n_genes]; of named bursts only `why` is there */
     double horizon;          /* the greatest age of a molecule: settling and record */
+    bool is_quick;           /* leave out what takes long: wide laws, first responses of proteins */
     tarry_results *results;
 } tarry_prediction;
 
-/* As tarry_predict. */
-int tarry_predict_network(const tarry_network *network, tarry_results **results,
+/* As tarry_predict. `is_quick`: what takes long is left out, laws of more than 1024 counts and
+ * first responses of proteins. */
+int tarry_predict_network(const tarry_network *network, bool is_quick, tarry_results **results,
                           tarry_error *error);
 
 /* Genes that have exact laws (`why` NULL) and those that have none, then products and signals that

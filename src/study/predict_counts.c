@@ -26,6 +26,11 @@
 /* Counts below this probability are not told. */
 static const double least_told = 1e-12;
 
+/* Laws that need more probabilities are left out. */
+static size_t most_counts(const tarry_prediction *p) {
+    return p->is_quick ? 1024 : TARRY_COUNTS_MOST;
+}
+
 /* Frames of a recorded channel, and all snapshots, in the order of time; one that is both stands
  * once. */
 typedef struct clock {
@@ -116,7 +121,7 @@ static int channel_moments(tarry_prediction *p, const tarry_channel *channel, co
     }
     int code = tarry_predict_views(p, channel, &views, why, error);
     for (uint32_t g = 0; code == 0 && *why == NULL && g < network->n_genes; g++)
-        if (views[g].n > 0)
+        if (tarry_exact_view_sees(&views[g]))
             code = add_view(p, &p->genes[g], &views[g], c, moments, error);
     for (size_t t = 0; code == 0 && *why == NULL && channel->signal != TARRY_NONE && t < c->n; t++)
         add_instrument(&network->signals[channel->signal], &moments[t]);
@@ -221,9 +226,18 @@ static int is_steady(const tarry_exact_gene *gene, const tarry_exact_carried *ca
     return code;
 }
 
+/* One that is too wide was not worked out. */
+static int tell_too_wide(tarry_prediction *p, const char *name, bool is_too_wide,
+                         tarry_error *error) {
+    char why[128];
+    snprintf(why, sizeof why, "it takes more than %zu probabilities", most_counts(p));
+    return is_too_wide ? tarry_predict_leave_out(p, name, "its distribution", why, error) : 0;
+}
+
 /* In a window in which the law stays it is that of any frame. */
 static int tell_windows(tarry_prediction *p, const tarry_exact_gene *gene,
-                        tarry_exact_carried *carried, const char *name, tarry_error *error) {
+                        tarry_exact_carried *carried, const char *name, bool *is_too_wide,
+                        tarry_error *error) {
     const tarry_run_plan *run = &p->network->run;
     int code = 0;
     for (uint32_t w = 0; code == 0 && w < run->n_windows; w++) {
@@ -234,12 +248,28 @@ static int tell_windows(tarry_prediction *p, const tarry_exact_gene *gene,
             code = tarry_predict_leave_out(p, name, "its distribution pooled over windows",
                                            "its law changes with time", error);
         else if (code == 0)
-            code = tarry_exact_counts_at(gene, carried, &run->windows[w].from, 1, &counts, error);
+            code = tarry_exact_counts_at(gene, carried, &run->windows[w].from, 1, most_counts(p),
+                                         &counts, error);
         if (code == 0)
             code = tell_law(p, name, run->windows[w].name, NAN, &counts, error);
+        *is_too_wide = *is_too_wide || (code == 0 && steady && counts.n == 0);
         tarry_exact_counts_release(&counts);
     }
     return code;
+}
+
+/* What transcripts carry of a channel's molecules: themselves in a stage, or proteins in one. */
+static int carry(const tarry_prediction *p, const tarry_channel *channel,
+                 tarry_exact_carried *carried, tarry_error *error) {
+    const tarry_exact_gene *gene = &p->genes[p->network->species[channel->species].gene];
+    const uint32_t species = (uint32_t)channel->species;
+    for (size_t i = 0; i < gene->transcript.n; i++)
+        if (gene->transcript.stages[i].species == species)
+            return tarry_exact_carry_stage(&gene->transcript, i, p->horizon, carried, error);
+    size_t stage = 0;
+    while (gene->protein.stages[stage].species != species)
+        stage++;
+    return tarry_exact_carry_protein(gene, stage, p->horizon, carried, error);
 }
 
 static int tell_laws(tarry_prediction *p, const tarry_channel *channel, tarry_error *error) {
@@ -248,19 +278,20 @@ static int tell_laws(tarry_prediction *p, const tarry_channel *channel, tarry_er
     const tarry_exact_gene *gene = &p->genes[g];
     tarry_exact_carried carried = {0};
     tarry_exact_counts *counts = tarry_calloc(run->n_snapshots, sizeof *counts);
-    size_t stage = 0;
-    while (gene->transcript.stages[stage].species != (uint32_t)channel->species)
-        stage++;
-    int code = counts == NULL
-                   ? tarry_fail_memory(error, "a prediction")
-                   : tarry_exact_carry_stage(&gene->transcript, stage, p->horizon, &carried, error);
+    int code = counts == NULL ? tarry_fail_memory(error, "a prediction")
+                              : carry(p, channel, &carried, error);
     if (code == 0)
-        code = tarry_exact_counts_at(gene, &carried, run->snapshots, run->n_snapshots, counts,
-                                     error);
+        code = tarry_exact_counts_at(gene, &carried, run->snapshots, run->n_snapshots,
+                                     most_counts(p), counts, error);
+    bool is_too_wide = false;
+    for (uint32_t s = 0; code == 0 && s < run->n_snapshots; s++)
+        is_too_wide = is_too_wide || counts[s].n == 0;
     for (uint32_t s = 0; code == 0 && s < run->n_snapshots; s++)
         code = tell_law(p, channel->name, NULL, run->snapshots[s], &counts[s], error);
     if (code == 0)
-        code = tell_windows(p, gene, &carried, channel->name, error);
+        code = tell_windows(p, gene, &carried, channel->name, &is_too_wide, error);
+    if (code == 0)
+        code = tell_too_wide(p, channel->name, is_too_wide, error);
     for (uint32_t s = 0; counts != NULL && s < run->n_snapshots; s++)
         tarry_exact_counts_release(&counts[s]);
     free(counts);
@@ -270,14 +301,16 @@ static int tell_laws(tarry_prediction *p, const tarry_channel *channel, tarry_er
 
 /* ---- all channels ---------------------------------------------------------------------------- */
 
-static bool is_transcript_stage(const tarry_network *network, const tarry_exact_gene *genes,
-                                const tarry_channel *channel) {
+static bool is_on_the_way(const tarry_network *network, const tarry_exact_gene *genes,
+                          const tarry_channel *channel) {
     if (channel->species == TARRY_NONE || network->species[channel->species].gene == TARRY_NONE)
         return false;
-    const tarry_exact_chain *chain = &genes[network->species[channel->species].gene].transcript;
-    for (size_t i = 0; i < chain->n; i++)
-        if (chain->stages[i].species == (uint32_t)channel->species)
-            return true;
+    const tarry_exact_gene *gene = &genes[network->species[channel->species].gene];
+    const tarry_exact_chain *const chains[] = {&gene->transcript, &gene->protein};
+    for (size_t k = 0; k < 2; k++)
+        for (size_t i = 0; i < chains[k]->n; i++)
+            if (chains[k]->stages[i].species == (uint32_t)channel->species)
+                return true;
     return false;
 }
 
@@ -297,7 +330,7 @@ static int predict_channel(tarry_prediction *p, const tarry_channel *channel, ta
     if (code == 0 && why == NULL && channel->recorded)
         code = tell_pooled(p, channel, &c, moments, error);
     if (code == 0 && why == NULL && channel->recorded &&
-        is_transcript_stage(p->network, p->genes, channel))
+        is_on_the_way(p->network, p->genes, channel))
         code = tell_laws(p, channel, error);
     free(moments);
     return code != 0 && error != NULL ? tarry_error_context(error, "%s", channel->name) : code;

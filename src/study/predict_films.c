@@ -41,7 +41,7 @@ static int find_covariances(tarry_prediction *p, const film *one, const film *ot
     mean[0] = mean[1] = 0;
     for (uint32_t g = 0; code == 0 && *why == NULL && g < p->network->n_genes; g++) {
         tarry_exact_covariance c = {0};
-        if (one->views[g].n == 0 || other->views[g].n == 0)
+        if (!tarry_exact_view_sees(&one->views[g]) || !tarry_exact_view_sees(&other->views[g]))
             continue;
         code = tarry_exact_covariance_init(&p->genes[g], &one->views[g], &other->views[g],
                                            window->from, window->to, p->horizon, &p->arena, &c, why,

@@ -393,7 +393,7 @@ int tarry_self_check_run(const tarry_network *network, tarry_results *results, t
     tarry_error why = {0};
     if (network->n_genes > TARRY_SELF_CHECK_GENES || results->n_cells < FEWEST_GROUPS)
         return TARRY_OK;
-    int code = tarry_predict_network(network, &results->exact, &why);
+    int code = tarry_predict_network(network, true, &results->exact, &why);
     if (code == TARRY_NUMERIC)
         return tarry_notes_add(&results->notes, (tarry_place){0}, error,
                                "no exact laws stand beside the figures: %s", why.message);
@@ -443,7 +443,7 @@ static int take_notes(const tarry_network *data, tarry_results *results, tarry_e
 int tarry_self_check_beside(const tarry_network *data, tarry_results *results, tarry_error *error) {
     const tarry_model *model = data->data->beside;
     const int64_t n = data->data->resampled ? data->data->n_resampled : 0;
-    int code = tarry_predict_network(&model->network, &results->exact, error);
+    int code = tarry_predict_network(&model->network, true, &results->exact, error);
     if (!code)
         code = take_notes(data, results, error);
     if (!code && n >= FEWEST_GROUPS)

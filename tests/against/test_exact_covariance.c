@@ -66,7 +66,7 @@ static tarry_exact_view view_of(subject *s, const char *name) {
     ck_assert_int_eq(
         tarry_exact_view_read(network, &s->gene, &network->channels[i], &s->arena, &view, &error),
         0);
-    ck_assert_uint_gt(view.n, 0);
+    ck_assert(tarry_exact_view_sees(&view));
     return view;
 }
 

@@ -7,7 +7,7 @@
 
 whole() {
     run 0 predict "$models/two_state.yaml" || return 1
-    says out "worked out without simulation" && says out "17.14" && says out "vela.protein: left out" &&
+    says out "worked out without simulation" && says out "17.14" && says out "vela.protein" &&
         says two_state.exact/summary.json '"method": "exact"' &&
         ! grep -q '"cells"' two_state.exact/summary.json
 }

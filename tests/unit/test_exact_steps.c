@@ -158,7 +158,7 @@ START_TEST(equations_under_a_protocol_are_kept) {
     tarry_exact_regime regimes[REGIMES];
     double quiet[REGIMES][4], jump[4] = {0, 0, 0, 4}, w[4];
     tarry_exact_gene gene = {.n_states = 2, .regimes = regimes, .n_regimes = REGIMES};
-    tarry_curve mean = {0};
+    tarry_curve mean = {0}, nothing = {0};
     tarry_drift d = {0};
     tarry_error error = {0};
     for (int k = 0; k < REGIMES; k++) {
@@ -167,7 +167,7 @@ START_TEST(equations_under_a_protocol_are_kept) {
         regimes[k] = (tarry_exact_regime){.from = k, .quiet = quiet[k], .jump = jump};
     }
     ck_assert_int_eq(tarry_curve_init(&mean, 700, NULL, 0, 1e-12, decay, NULL, &error), 0);
-    ck_assert_int_eq(tarry_drift_init(&d, &gene, &mean, NULL, &error), 0);
+    ck_assert_int_eq(tarry_drift_init(&d, &gene, &mean, &nothing, &error), 0);
     for (int f = 1; f <= FRAMES; f++) {
         const double time = 0.5 * f;
         tarry_drift_state s = {.w1 = w, .w2 = w + 2};
