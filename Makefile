@@ -163,7 +163,7 @@ branches: deps-test
 	@MAKE='$(MAKE)' BUILD='$(BUILD)' JOBS='$(JOBS)' sh tests/branches.sh
 
 # Fuzzing: the library anew with what libFuzzer needs, in a folder of its own. FUZZ_FLAGS say what to look for.
-FUZZ_TARGETS = model expression quantity table
+FUZZ_TARGETS = model expression quantity table data
 FUZZ_FLAGS = -fsanitize=address,undefined -fno-sanitize-recover=all
 SECONDS ?= 60
 

@@ -76,6 +76,14 @@ int tarry_file_read(const char *path, size_t limit, tarry_text *text, tarry_erro
     return status;
 }
 
+int tarry_file_is_regular(const char *path, bool *regular, tarry_error *error) {
+    struct stat about;
+    if (stat(path, &about) != 0)
+        return fail_errno(error, path, "open this file", errno);
+    *regular = S_ISREG(about.st_mode);
+    return 0;
+}
+
 /* The name of the i-th unfinished version of `path`, into room for PART_ROOM bytes more than it
  * has. */
 static void name_part(char *name, const char *path, int i) {

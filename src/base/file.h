@@ -34,6 +34,9 @@ int tarry_folder_is_empty(const char *path, bool *empty, tarry_error *error);
 /* *exists: there is something of this name. */
 int tarry_file_exists(const char *path, bool *exists, tarry_error *error);
 
+/* *regular: a file on a disk, that has a size, and no folder, pipe or device. */
+int tarry_file_is_regular(const char *path, bool *regular, tarry_error *error);
+
 /* Remove a folder that holds nothing; any other stays as it is, and so does what is no folder. */
 void tarry_folder_remove_empty(const char *path);
 

@@ -44,6 +44,7 @@ typedef struct tarry_data_options {
     tarry_data_gaps gaps;
     double background;
     double from, to, every, lags; /* NaN where not given */
+    const char *of_traces;        /* an option that was given and is of traces only, or NULL */
     double *snapshots;            /* ascending, in the arena */
     size_t n_snapshots;
 } tarry_data_options;

@@ -421,8 +421,33 @@ static int build_film(tarry_data *data, tarry_error *error) {
     return code;
 }
 
+/* Means that come with their errors are told as they are: one of them a time. */
+static int check_errors(const tarry_data *data, size_t k, tarry_error *error) {
+    const tarry_data_table *table = &data->table;
+    const double *errors = table->errors[k];
+    for (size_t row = 0; errors != NULL && row < table->n_rows; row++)
+        if (errors[row] < 0.0)
+            return tarry_fail_at(error, TARRY_INPUT, tarry_data_table_place(table, row, 0),
+                                 "%s_se: a standard error is not negative", table->names[k]);
+    for (size_t row = 1; errors != NULL && row < table->n_rows; row++)
+        if (!(table->times[row] > table->times[row - 1]))
+            return tarry_fail_at(error, TARRY_INPUT,
+                                 tarry_data_table_place(table, row, table->time_field),
+                                 "means with standard errors stand in one row a time, and times "
+                                 "ascend; replicates come without %s_se",
+                                 table->names[k]);
+    return TARRY_OK;
+}
+
 static int build_rows(tarry_data *data, tarry_error *error) {
-    int code = make_snapshots(data, error);
+    int code = TARRY_OK;
+    if (data->options.of_traces != NULL)
+        return tarry_fail(error, TARRY_INPUT, "%s is for traces, and %s holds %s",
+                          data->options.of_traces, data->table.path, data->plan.kind);
+    for (size_t k = 0; code == TARRY_OK && k < data->table.n_names; k++)
+        code = check_errors(data, k, error);
+    if (code == TARRY_OK)
+        code = make_snapshots(data, error);
     if (code == TARRY_OK)
         code = make_units_of_rows(data, error);
     data->model->network.gaps = true;

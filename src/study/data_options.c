@@ -145,22 +145,27 @@ typedef int (*reader)(const tarry_override *, tarry_data_options *, tarry_error 
 static const struct {
     const char *name;
     reader read;
+    bool of_traces; /* only */
 } readers[] = {
-    {"time", read_unit},           {"kind", read_kind},
-    {"counted", read_counted},     {"mean", read_mean},
-    {"gaps", read_gaps},           {"background", read_background},
-    {"from", read_from},           {"to", read_to},
-    {"every", read_every},         {"lags", read_lags},
-    {"snapshots", read_snapshots},
+    {"time", read_unit, false},          {"kind", read_kind, false},
+    {"from", read_from, false},          {"to", read_to, false},
+    {"counted", read_counted, true},     {"mean", read_mean, true},
+    {"gaps", read_gaps, true},           {"background", read_background, true},
+    {"every", read_every, true},         {"lags", read_lags, true},
+    {"snapshots", read_snapshots, true},
 };
 
 enum { N_READERS = sizeof readers / sizeof *readers };
 
-static int read_named(const char *name, reader read, const tarry_override *settings, size_t n,
+static int read_named(size_t which, const tarry_override *settings, size_t n,
                       tarry_data_options *options, tarry_error *error) {
-    for (size_t i = 0; i < n; i++)
-        if (!settings[i].is_parameter && strcmp(settings[i].name, name) == 0)
-            return read(&settings[i], options, error);
+    for (size_t i = 0; i < n; i++) {
+        if (settings[i].is_parameter || strcmp(settings[i].name, readers[which].name) != 0)
+            continue;
+        if (readers[which].of_traces)
+            options->of_traces = settings[i].option;
+        return readers[which].read(&settings[i], options, error);
+    }
     return TARRY_OK;
 }
 
@@ -175,7 +180,7 @@ int tarry_data_options_read(const tarry_override *settings, size_t n, tarry_aren
     if (options->snapshots == NULL)
         return tarry_fail_memory(error, "the options of a measurement");
     for (size_t i = 0; i < N_READERS; i++) {
-        const int code = read_named(readers[i].name, readers[i].read, settings, n, options, error);
+        const int code = read_named(i, settings, n, options, error);
         if (code != TARRY_OK)
             return code;
         if (i == 0 && options->unit == NULL)

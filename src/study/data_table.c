@@ -24,7 +24,7 @@ enum {
 
 static const double most_rows = 4e9; /* rows are numbered by 32 bits */
 
-static const double most_expanded = 1e8;
+static const double most_expanded = 1e7;
 
 /* Of so large a share of whole numbers it is taken that counts were meant. */
 static const double mostly = 0.9;
@@ -121,6 +121,8 @@ static int name_role(reading *r, const tarry_csv_field *fields, size_t n, size_t
         {"cell", ROLE_CELL}, {"time", ROLE_TIME}, {"group", ROLE_GROUP}, {"cells", ROLE_WEIGHT}};
     const tarry_csv_field *field = &fields[i];
     r->of[i] = error_of(fields, n, field);
+    if (r->of[i] >= 0 && error_of(fields, n, &fields[r->of[i]]) >= 0)
+        r->of[i] = -1; /* an error has none */
     for (size_t k = 0; k < sizeof known / sizeof *known; k++)
         if (r->of[i] >= 0 && is(&fields[r->of[i]], known[k].name))
             r->of[i] = -1;
@@ -547,7 +549,7 @@ static int expand(tarry_data_table *table, tarry_error *error) {
         n += table->weights[row];
     if (n > most_expanded)
         return tarry_fail_at(error, TARRY_INPUT, (tarry_place){table->path, 0, 0},
-                             "the column `cells` adds up to more than 1e8 cells");
+                             "the column `cells` adds up to more than 1e7 cells");
     double *times = tarry_calloc((size_t)n, sizeof *times);
     double *values = tarry_calloc((size_t)n, sizeof *values);
     uint32_t *groups = tarry_calloc((size_t)n, sizeof *groups);

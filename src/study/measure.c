@@ -12,6 +12,7 @@
 #include "base/number.h"
 #include "base/table.h"
 #include "base/threads.h"
+#include "study/sheet.h"
 #include "study/sketch.h"
 #include "tally/kinds.h"
 #include "tally/results.h"
@@ -22,7 +23,8 @@
 
 /* ---- reading --------------------------------------------------------------------------------- */
 
-static const size_t largest_file = (size_t)1 << 36;
+/* What is no file on a disk (a pipe, a device) may have no end. */
+static const size_t largest_file = (size_t)1 << 36, largest_stream = (size_t)1 << 28;
 
 void tarry_data_free(tarry_data *data) {
     if (data == NULL)
@@ -41,8 +43,11 @@ static int read_data(tarry_data *data, const char *path, const tarry_override *s
                      tarry_error *error) {
     tarry_arena *arena = &data->model->arena;
     int code = tarry_data_options_read(settings, n, arena, &data->options, error);
+    bool on_disk = false;
     if (code == TARRY_OK)
-        code = tarry_file_read(path, largest_file, &data->text, error);
+        code = tarry_file_is_regular(path, &on_disk, error);
+    if (code == TARRY_OK)
+        code = tarry_file_read(path, on_disk ? largest_file : largest_stream, &data->text, error);
     if (code == TARRY_OK)
         code = tarry_data_table_read(&data->table, path, &data->text, &data->options, arena, error);
     if (code == TARRY_OK && data->table.kind == TARRY_DATA_TRACES)
@@ -354,6 +359,8 @@ static const tarry_tally_kind *const film_kinds[] = {
     &tarry_tally_moments, &tarry_tally_distribution, &tarry_tally_pooled,
     &tarry_tally_autocorrelation, &tarry_tally_drift};
 
+static const double most_bytes = 4e9;
+
 int tarry_measure_n_threads(const tarry_data *data, int asked) {
     const int n = asked > 0 ? asked : tarry_threads_available();
     const int most = data->n_units < TARRY_GROUPS ? (int)data->n_units : TARRY_GROUPS;
@@ -377,6 +384,16 @@ static int measure(measuring *m, const tarry_measure_options *options, tarry_res
                            : kind == TARRY_DATA_COUNTS ? 2
                                                        : 1;
     const int n_threads = tarry_measure_n_threads(m->data, options->threads);
+    const double bytes = tarry_tally_set_bytes_of(m->network, film_kinds, n_kinds) +
+                         n_threads * (double)tarry_record_bytes(m->network);
+    char needed[TARRY_BYTES_SIZE];
+    if (bytes > most_bytes)
+        return tarry_fail(
+            error, TARRY_LIMIT,
+            "these data need %s of memory for the sums of the estimators, and 4 GB is "
+            "the limit: cut them by --from and --to, give fewer columns at a time, or "
+            "a smaller --lags",
+            tarry_bytes_text(bytes, needed));
     int64_t traced = kind == TARRY_DATA_TRACES ? options->traced : 0;
     if (traced > (int64_t)m->data->n_units)
         traced = (int64_t)m->data->n_units;

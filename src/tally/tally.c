@@ -131,11 +131,16 @@ size_t tarry_tally_set_scratch(const tarry_network *network) {
 }
 
 double tarry_tally_set_bytes(const tarry_network *network) {
+    return tarry_tally_set_bytes_of(network, tarry_tally_kinds, tarry_n_tally_kinds);
+}
+
+double tarry_tally_set_bytes_of(const tarry_network *network, const tarry_tally_kind *const *kinds,
+                                size_t n_kinds) {
     const int64_t cells = network->run.cells;
     const double n_groups = cells < TARRY_GROUPS ? (double)cells : TARRY_GROUPS;
     double bytes = 0.0;
-    for (size_t k = 0; k < tarry_n_tally_kinds; k++) {
-        const tally_part part = part_of(tarry_tally_kinds[k], network);
+    for (size_t k = 0; k < n_kinds; k++) {
+        const tally_part part = part_of(kinds[k], network);
         const double n_blocks = (double)part.n_blocks;
         const double sums = (double)part.size * sizeof(double) + n_blocks * sizeof(double *) +
                             n_blocks / 16.0 * TARRY_BLOCK * sizeof(double);

@@ -96,6 +96,8 @@ size_t tarry_tally_set_scratch(const tarry_network *network); /* doubles */
 /* Bytes that a full set will take with its total and its replicates, one block in 16 counted as in
  * use (counts of one name crowd into few). */
 double tarry_tally_set_bytes(const tarry_network *network);
+double tarry_tally_set_bytes_of(const tarry_network *network, const tarry_tally_kind *const *kinds,
+                                size_t n_kinds);
 
 /* Once all cells are in: total the groups and work out the figures of every kind that has them with
  * their jackknife replicates; then tarry_tally_set_report fills the tables. Nothing can be added

@@ -12,7 +12,7 @@
 
 typedef int fuzz_function(const uint8_t *data, size_t size);
 
-fuzz_function fuzz_model, fuzz_expression, fuzz_quantity, fuzz_table;
+fuzz_function fuzz_model, fuzz_expression, fuzz_quantity, fuzz_table, fuzz_data;
 
 /* Stop here, with words, where `holds` is false. */
 void fuzz_must(int holds, const char *words);

@@ -50,12 +50,19 @@ START_TEST(tables) {
 }
 END_TEST
 
+START_TEST(data) {
+    replay("tests/fuzz/corpus/data/*", fuzz_data, 5);
+    replay("models/data/*.csv", fuzz_data, 3);
+}
+END_TEST
+
 int main(void) {
     const test_entry tests[] = {
         {"models", models},
         {"expressions", expressions},
         {"quantities", quantities},
         {"tables", tables},
+        {"data", data},
     };
     return run_tests("fuzz", tests, sizeof tests / sizeof *tests);
 }
