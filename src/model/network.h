@@ -286,6 +286,8 @@ typedef struct tarry_first {
 typedef struct tarry_thresholds {
     double low, high; /* of the signal */
     double least;     /* time that a change must last to count */
+    bool is_found;    /* from the background of data, which is: */
+    double background, background_sd;
 } tarry_thresholds;
 
 typedef struct tarry_channel {

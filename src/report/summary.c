@@ -134,7 +134,27 @@ static json_t *describe_windows(const tarry_run_plan *plan) {
 }
 
 /* The plan as it was carried out: file, options and defaults taken together. */
-static json_t *describe_plan(const tarry_run_plan *plan, const tarry_data_plan *data) {
+/* Names with thresholds, or NULL where none has. */
+static json_t *describe_thresholds(const tarry_network *network, bool *failed) {
+    json_t *list = NULL;
+    for (uint32_t i = 0; i < network->n_channels; i++) {
+        const tarry_thresholds *t = network->channels[i].thresholds;
+        if (!t)
+            continue;
+        list = list ? list : json_array();
+        json_t *object = json_object();
+        tarry_json_put(object, "name", tarry_json_text(network->channels[i].name), failed);
+        tarry_json_put(object, "low", tarry_json_number(t->low), failed);
+        tarry_json_put(object, "high", tarry_json_number(t->high), failed);
+        tarry_json_put(object, "length", tarry_json_number(t->least), failed);
+        tarry_json_append(list, object, failed);
+    }
+    return list;
+}
+
+static json_t *describe_plan(const tarry_network *network) {
+    const tarry_run_plan *plan = &network->run;
+    const tarry_data_plan *data = network->data;
     bool failed = false;
     json_t *object = json_object();
     json_t *snapshots = json_array();
@@ -150,6 +170,9 @@ static json_t *describe_plan(const tarry_run_plan *plan, const tarry_data_plan *
     tarry_json_put(object, "lags", tarry_json_number(lags), &failed);
     tarry_json_put(object, "snapshots", snapshots, &failed);
     tarry_json_put(object, "windows", describe_windows(plan), &failed);
+    json_t *visible = describe_thresholds(network, &failed);
+    if (visible)
+        tarry_json_put(object, "visible", visible, &failed);
     if (failed) {
         json_decref(object);
         return NULL;
@@ -412,7 +435,7 @@ static void write_head(json_writer *writer, const tarry_model *model, const tarr
     else if (!predicted)
         write_simulation(writer, network, results, provenance);
     member(writer, "options", describe_overrides(provenance));
-    member(writer, "run", describe_plan(&network->run, network->data));
+    member(writer, "run", describe_plan(network));
     member(writer, "warnings", describe_warnings(model, results));
     const tarry_model *beside = network->data ? network->data->beside : NULL;
     const tarry_self_check *check = tarry_results_self_check(results);

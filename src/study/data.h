@@ -11,6 +11,7 @@
  *   data_gaps.c     are frames missing where a signal is dark?
  *   data_network.c  names, times and windows as a network, so that estimators and report need to
  *                   know of no files
+ *   data_visible.c  by which thresholds traces are visible
  *   data_beside.c   a model whose exact laws stand beside the figures
  *   measure.c       cells -> records -> tallies -> results */
 
@@ -44,6 +45,7 @@ typedef struct tarry_data_options {
     tarry_data_gaps gaps;
     double background;
     double from, to, every, lags; /* NaN where not given */
+    const char *visible;          /* "LOW,HIGH,LENGTH", "auto" or NULL */
     const char *of_traces;        /* an option that was given and is of traces only, or NULL */
     double *snapshots;            /* ascending, in the arena */
     size_t n_snapshots;
@@ -138,6 +140,15 @@ struct tarry_data {
 
 /* The network and plan of data whose table (and frames) are there. */
 int tarry_data_network_build(tarry_data *data, tarry_error *error);
+
+/* Thresholds of a column, in the arena, or NULL where none are asked for; and a note on those that
+ * were found. */
+int tarry_data_thresholds(const tarry_data *data, size_t column,
+                          const tarry_thresholds **thresholds, tarry_error *error);
+int tarry_data_note_thresholds(const tarry_data *data, tarry_notes *notes, tarry_error *error);
+
+/* The half-sample mode of n > 0 values. */
+double tarry_data_mode(const double *ascending_values, size_t n);
 
 /* Read the model that --beside names, with the parameters of --set, and make its record that of the
  * data. */

@@ -110,7 +110,9 @@ static int make_names(tarry_data *data, tarry_error *error) {
                                       .signal = TARRY_NONE,
                                       .recorded = true,
                                       .correlates = film};
-        if (counted) {
+        if (film)
+            code = tarry_data_thresholds(data, k, &channels[k].thresholds, error);
+        if (code == TARRY_OK && counted) {
             channels[k].species = (int32_t)network->n_species;
             species[network->n_species++] = (tarry_species){
                 .name = name, .role = TARRY_SPECIES_PLAIN, .gene = TARRY_NONE};

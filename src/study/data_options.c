@@ -70,6 +70,13 @@ static int read_counted(const tarry_override *setting, tarry_data_options *optio
     return TARRY_OK;
 }
 
+static int read_visible(const tarry_override *setting, tarry_data_options *options,
+                        tarry_error *error) {
+    (void)error;
+    options->visible = setting->value;
+    return TARRY_OK;
+}
+
 static int read_background(const tarry_override *setting, tarry_data_options *options,
                            tarry_error *error) {
     return tarry_number_read(setting->value, strlen(setting->value), &options->background) ==
@@ -152,7 +159,7 @@ static const struct {
     {"counted", read_counted, true},     {"mean", read_mean, true},
     {"gaps", read_gaps, true},           {"background", read_background, true},
     {"every", read_every, true},         {"lags", read_lags, true},
-    {"snapshots", read_snapshots, true},
+    {"snapshots", read_snapshots, true}, {"visible", read_visible, true},
 };
 
 enum { N_READERS = sizeof readers / sizeof *readers };

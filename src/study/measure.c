@@ -328,6 +328,8 @@ static int note_all(const tarry_data *data, tarry_notes *notes, tarry_error *err
         code = note_gaps(data, notes, error);
     if (code == TARRY_OK && data->table.kind == TARRY_DATA_TRACES)
         code = note_own_means(data, notes, error);
+    if (code == TARRY_OK)
+        code = tarry_data_note_thresholds(data, notes, error);
     return code;
 }
 
@@ -356,8 +358,8 @@ static int report_means(const tarry_data *data, tarry_results *results, tarry_er
 /* ---- the whole ------------------------------------------------------------------------------- */
 
 static const tarry_tally_kind *const film_kinds[] = {
-    &tarry_tally_moments, &tarry_tally_distribution, &tarry_tally_pooled,
-    &tarry_tally_autocorrelation, &tarry_tally_drift};
+    &tarry_tally_moments,         &tarry_tally_distribution, &tarry_tally_pooled,
+    &tarry_tally_autocorrelation, &tarry_tally_visible,      &tarry_tally_drift};
 
 static const double most_bytes = 4e9;
 
