@@ -30,6 +30,7 @@ typedef struct maker {
     tarry_stream stream;
     tarry_text out;
     unsigned n_parameters, n_delays, n_species, n_genes, n_reactions;
+    bool has_signals, detects;
     gene_plan genes[MOST_GENES];
 } maker;
 
@@ -519,7 +520,7 @@ static void write_signals(maker *m) {
             continue;
         if (!headed)
             WRITE("signals:\n");
-        headed = true;
+        headed = m->has_signals = true;
         WRITE("  light%u:\n", i);
         if (gene->n_stages > 0 && chance(m, 60)) {
             const bool one_allele = chance(m, 30);
@@ -542,9 +543,11 @@ static void write_signals(maker *m) {
         }
         if (chance(m, 30))
             WRITE("    responds_above: %u\n", 1 + pick(m, 4));
-        if (chance(m, 20))
+        if (chance(m, 20)) {
+            m->detects = true;
             WRITE("    detects: {above: %u, from_first: %s}\n", 1 + pick(m, 4),
                   chance(m, 50) ? "yes" : "no");
+        }
         if (chance(m, 50))
             WRITE("    background: 2\n");
         if (chance(m, 50))
@@ -615,8 +618,10 @@ static void write_run(maker *m) {
     if (chance(m, 40))
         WRITE("  windows:\n    early: [0, %u]\n    late: [%u, %d]\n", 2 + pick(m, 8), pick(m, 15),
               (int)UNTIL);
-    if (m->n_species > 0 && chance(m, 20))
+    if (m->n_species > 0 && !m->detects && chance(m, 20))
         WRITE("  record: [x0]\n");
+    else if (m->has_signals && chance(m, 30))
+        WRITE("  visible: [1, 3, 0.5 min]\n");
     WRITE("limits:\n  firings: 30000\n  pending: 3000\n%s",
           chance(m, 10) ? "  memory: 1 GB\n" : "");
 }

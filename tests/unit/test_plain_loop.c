@@ -86,8 +86,7 @@ START_TEST(random_models_say_everything) {
         "many: ",         "settle: auto",   "responds_above", "file: ",        "lags: ",
         "memory: ",       "every: 5",       "times: ",        "steps: ",       "ramp:\n      k",
         "clearance",      "lost: ",         "allele: ",       "from: [t0",     "share: 0.1",
-        "initiates: yes",
-    };
+        "initiates: yes", "detects: {",     "visible: ["};
     enum { N_WORDS = sizeof words / sizeof words[0] };
     int seen[N_WORDS] = {0};
     for (uint64_t i = 0; i < 300; i++) {
