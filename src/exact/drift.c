@@ -15,6 +15,7 @@ static const double tolerance = 1e-11; /* error of a step of w1, */
 static const double second_share =
     0.02; /* and that of w2 counts so much less: its curve is known less well */
 static const double most_room = 64e6; /* bytes of steps that are kept */
+static const double part = 0.03;
 
 /* ---- one step's equations -------------------------------------------------------------------- */
 
@@ -106,9 +107,10 @@ static const double *equations(tarry_drift *d, size_t regime, double length) {
 /* ---- steps ----------------------------------------------------------------------------------- */
 
 /* What is left of the polynomials of all states, over their largest value; times the same, or that
- * of the fastest decay (radau.h). */
-static double judge(const tarry_drift *d, const double *begin, const double *x, double decay) {
-    double size = 0, rest = 0, values[NODES + 1];
+ * of the fastest decay (radau.h). What is less than `least` is nothing beside what is to come. */
+static double judge(const tarry_drift *d, const double *begin, const double *x, double decay,
+                    double least) {
+    double size = least, rest = 0, values[NODES + 1];
     for (size_t p = 0; p < d->stencil.n_states; p++) {
         values[0] = begin[p];
         memcpy(values + 1, x + p * NODES, NODES * sizeof *x);
@@ -176,8 +178,8 @@ static int go_on(tarry_drift *d, tarry_drift_state *s, size_t regime, double to,
             return tarry_fail_memory(error, "moments of a count");
         step(d, s, regime, length, factors, x1, x2);
         const double decay = tarry_radau_rest_of_decay(&d->rule, length * fastest);
-        const double off = fmax(judge(d, s->w1, x1, decay),
-                                second_share * judge(d, s->w2, x2, decay));
+        const double off = fmax(judge(d, s->w1, x1, decay, d->least[0]),
+                                second_share * judge(d, s->w2, x2, decay, d->least[1]));
         const double change = 0.9 * pow(tolerance / fmax(off, 1e-40), 1.0 / ORDER);
         if (k >= MOST_STEPS || (off != off && length < 1e-12 * to))
             return tarry_fail(error, TARRY_NUMERIC, "moments of a count take too many steps");
@@ -232,6 +234,19 @@ static void cover_all(tarry_drift *d) {
     }
 }
 
+/* A part of the w that an age without end would bring: curves are not known to all digits where
+ * they are next to nothing, and need not be. */
+static void find_least(tarry_drift *d) {
+    const size_t n = d->gene->n_regimes * d->stencil.n_states;
+    double fastest = 0;
+    for (size_t i = 0; i < n; i++)
+        fastest = fmax(fastest, d->rate[i]);
+    const double first = fastest * fabs(tarry_curve_integral(d->mean, INFINITY));
+    const double own = fastest * fabs(tarry_curve_integral(d->second, INFINITY));
+    d->least[0] = part * first;
+    d->least[1] = part * (first * first + own);
+}
+
 int tarry_drift_init(tarry_drift *d, const tarry_exact_gene *gene, const tarry_curve *mean,
                      const tarry_curve *second, tarry_error *error) {
     const size_t n = NODES * gene->n_states;
@@ -247,6 +262,8 @@ int tarry_drift_init(tarry_drift *d, const tarry_exact_gene *gene, const tarry_c
     const int code = tarry_stencil_init(&d->stencil, gene->n_states, error);
     if (code == 0)
         cover_all(d);
+    if (code == 0)
+        find_least(d);
     return code;
 }
 

@@ -30,6 +30,7 @@ typedef struct tarry_drift {
     tarry_stencil stencil;
     double *rate; /* [n_regimes][n_states]: jump 1 */
     double *room;
+    double least[2];         /* sizes of w1 and w2 below which errors do not count */
     tarry_drift_step *steps; /* kept, a regime's at regime % n_kept */
     size_t n_kept;
     unsigned long n_steps, n_eliminated; /* the work done */

@@ -47,30 +47,6 @@ int tarry_predict_views(tarry_prediction *p, const tarry_channel *channel, tarry
     return code;
 }
 
-int tarry_predict_read_genes(tarry_prediction *p, tarry_error *error) {
-    int code = 0;
-    p->genes = tarry_arena_calloc(&p->arena, p->network->n_genes, sizeof *p->genes);
-    if (p->genes == NULL)
-        return tarry_fail_memory(error, "a prediction");
-    for (uint32_t g = 0; code == 0 && g < p->network->n_genes; g++) {
-        const tarry_gene *gene = &p->network->genes[g];
-        if (p->network->variation != NULL) {
-            p->genes[g] = (tarry_exact_gene){.gene = g,
-                                             .why = "parameters differ from cell to cell"};
-            continue;
-        }
-        if (gene->promoters.from == gene->promoters.to) {
-            p->genes[g] = (tarry_exact_gene){.gene = g, .why = "plain reactions have no exact law"};
-            continue;
-        }
-        code = tarry_exact_gene_read(&p->index, p->network->segments, g, &p->arena, &p->genes[g],
-                                     error);
-        if (code != 0)
-            tarry_error_context(error, "%s", gene->name);
-    }
-    return code;
-}
-
 /* Genes that are left out as a whole are told once. */
 static int note_genes(tarry_prediction *p, tarry_error *error) {
     int code = 0;
@@ -97,8 +73,7 @@ int tarry_predict_network(const tarry_network *network, bool is_quick, tarry_res
     }
     for (size_t i = 0; code == 0 && i < sizeof parts / sizeof *parts; i++)
         code = parts[i](&p, error);
-    tarry_flow_index_release(&p.index);
-    tarry_arena_release(&p.arena);
+    tarry_predict_release(&p);
     if (code != 0)
         tarry_results_free(p.results);
     else

@@ -7,14 +7,25 @@
 
 #include "exact/gene.h"
 #include "exact/view.h"
+#include "model/variation.h"
 #include "tally/results.h"
 #include "tarry/predict.h"
+
+/* One of the cells that stand for all: the whole network's where all cells are alike. */
+typedef struct tarry_predict_cell {
+    double weight; /* they add up to 1 */
+    tarry_cell_network own;
+    tarry_flow_index index;
+    tarry_exact_gene *genes; /* [n_genes] */
+} tarry_predict_cell;
 
 typedef struct tarry_prediction {
     const tarry_network *network;
     tarry_flow_index index;
     tarry_arena arena;
-    tarry_exact_gene *genes; /* [n_genes]; of named bursts only `why` is there */
+    tarry_predict_cell *cells;
+    size_t n_cells;
+    tarry_exact_gene *genes; /* those of the first cell; of named bursts only `why` is there */
     double horizon;          /* the greatest age of a molecule: settling and record */
     bool is_quick;           /* leave out what takes long: wide laws, first responses of proteins */
     tarry_results *results;
@@ -31,8 +42,11 @@ typedef int tarry_predict_tell(void *context, const char *name, const char *why)
 int tarry_predict_covered(const tarry_network *network, tarry_predict_tell *tell, void *context,
                           tarry_error *error);
 
-/* The first part: prediction->genes. */
+/* The first part: cells and genes. */
 int tarry_predict_read_genes(tarry_prediction *prediction, tarry_error *error);
+
+/* Release all but the results. */
+void tarry_predict_release(tarry_prediction *prediction);
 
 /* means.csv, distribution.csv, and the moments in bursts.csv and signals.csv. */
 int tarry_predict_counts(tarry_prediction *prediction, tarry_error *error);

@@ -80,6 +80,9 @@ static int predict_window(tarry_prediction *p, uint32_t g, const tarry_window *w
     const tarry_gene *gene = &p->network->genes[g];
     tarry_exact_bursts b;
     const char *why = NULL;
+    if (p->n_cells > 1)
+        return tarry_predict_leave_out(p, gene->name, "its bursts",
+                                       "parameters differ from cell to cell", error);
     int code = tarry_exact_bursts_read(&p->genes[g], window->from, window->to, &p->arena, &b, &why,
                                        error);
     if (code != 0 || why != NULL)

@@ -107,22 +107,64 @@ static void add_instrument(const tarry_signal *signal, tarry_exact_moments *m) {
                    signal->share * signal->share * (m->variance + m->mean * m->mean);
 }
 
+static bool is_state(const tarry_network *network, const tarry_channel *channel) {
+    return channel->species != TARRY_NONE &&
+           network->species[channel->species].role == TARRY_SPECIES_STATE;
+}
+
+/* In one of the cells that stand for all. */
+static int cell_moments(tarry_prediction *p, const tarry_predict_cell *cell,
+                        const tarry_channel *channel, const tarry_exact_view *views, const clock *c,
+                        tarry_exact_moments *moments, tarry_error *error) {
+    const tarry_network *network = p->network;
+    if (is_state(network, channel))
+        return state_moments(p, &cell->genes[network->species[channel->species].gene],
+                             (uint32_t)channel->species, c, moments, error);
+    int code = 0;
+    memset(moments, 0, c->n * sizeof *moments);
+    for (uint32_t g = 0; code == 0 && g < network->n_genes; g++)
+        if (tarry_exact_view_sees(&views[g]))
+            code = add_view(p, &cell->genes[g], &views[g], c, moments, error);
+    return code;
+}
+
+/* Over all cells: the mean of the variances and the variance of the means. */
+static int mix_moments(tarry_prediction *p, const tarry_channel *channel,
+                       const tarry_exact_view *views, const clock *c, tarry_exact_moments *moments,
+                       tarry_error *error) {
+    tarry_exact_moments *own = tarry_calloc(c->n, sizeof *own);
+    if (own == NULL)
+        return tarry_fail_memory(error, "a prediction");
+    int code = 0;
+    for (size_t k = 0; code == 0 && k < p->n_cells; k++) {
+        double before = 0;
+        for (size_t i = 0; i < k; i++)
+            before += p->cells[i].weight;
+        const double weight = p->cells[k].weight / (before + p->cells[k].weight);
+        code = cell_moments(p, &p->cells[k], channel, views, c, own, error);
+        for (size_t t = 0; code == 0 && t < c->n; t++) {
+            const double off = own[t].mean - moments[t].mean;
+            moments[t].mean += weight * off;
+            moments[t].variance += weight * (own[t].variance - moments[t].variance) +
+                                   weight * (1 - weight) * off * off;
+        }
+    }
+    free(own);
+    return code;
+}
+
 /* *why: NULL, or why the channel is left out. */
 static int channel_moments(tarry_prediction *p, const tarry_channel *channel, const clock *c,
                            tarry_exact_moments *moments, const char **why, tarry_error *error) {
     const tarry_network *network = p->network;
     tarry_exact_view *views = NULL;
-    if (channel->species != TARRY_NONE &&
-        network->species[channel->species].role == TARRY_SPECIES_STATE) {
-        const tarry_exact_gene *gene = &p->genes[network->species[channel->species].gene];
-        *why = gene->why;
-        return *why != NULL ? 0
-                            : state_moments(p, gene, (uint32_t)channel->species, c, moments, error);
-    }
-    int code = tarry_predict_views(p, channel, &views, why, error);
-    for (uint32_t g = 0; code == 0 && *why == NULL && g < network->n_genes; g++)
-        if (tarry_exact_view_sees(&views[g]))
-            code = add_view(p, &p->genes[g], &views[g], c, moments, error);
+    int code = 0;
+    if (is_state(network, channel))
+        *why = p->genes[network->species[channel->species].gene].why;
+    else
+        code = tarry_predict_views(p, channel, &views, why, error);
+    if (code == 0 && *why == NULL)
+        code = mix_moments(p, channel, views, c, moments, error);
     for (size_t t = 0; code == 0 && *why == NULL && channel->signal != TARRY_NONE && t < c->n; t++)
         add_instrument(&network->signals[channel->signal], &moments[t]);
     return code;
@@ -234,35 +276,9 @@ static int tell_too_wide(tarry_prediction *p, const char *name, bool is_too_wide
     return is_too_wide ? tarry_predict_leave_out(p, name, "its distribution", why, error) : 0;
 }
 
-/* In a window in which the law stays it is that of any frame. */
-static int tell_windows(tarry_prediction *p, const tarry_exact_gene *gene,
-                        tarry_exact_carried *carried, const char *name, bool *is_too_wide,
-                        tarry_error *error) {
-    const tarry_run_plan *run = &p->network->run;
-    int code = 0;
-    for (uint32_t w = 0; code == 0 && w < run->n_windows; w++) {
-        tarry_exact_counts counts = {0};
-        bool steady = false;
-        code = is_steady(gene, carried, run->windows[w].from, run->windows[w].to, &steady, error);
-        if (code == 0 && !steady)
-            code = tarry_predict_leave_out(p, name, "its distribution pooled over windows",
-                                           "its law changes with time", error);
-        else if (code == 0)
-            code = tarry_exact_counts_at(gene, carried, &run->windows[w].from, 1, most_counts(p),
-                                         &counts, error);
-        if (code == 0)
-            code = tell_law(p, name, run->windows[w].name, NAN, &counts, error);
-        *is_too_wide = *is_too_wide || (code == 0 && steady && counts.n == 0);
-        tarry_exact_counts_release(&counts);
-    }
-    return code;
-}
-
-/* What transcripts carry of a channel's molecules: themselves in a stage, or proteins in one. */
-static int carry(const tarry_prediction *p, const tarry_channel *channel,
+/* What transcripts carry of a species: themselves in a stage, or proteins in one. */
+static int carry(const tarry_prediction *p, const tarry_exact_gene *gene, uint32_t species,
                  tarry_exact_carried *carried, tarry_error *error) {
-    const tarry_exact_gene *gene = &p->genes[p->network->species[channel->species].gene];
-    const uint32_t species = (uint32_t)channel->species;
     for (size_t i = 0; i < gene->transcript.n; i++)
         if (gene->transcript.stages[i].species == species)
             return tarry_exact_carry_stage(&gene->transcript, i, p->horizon, carried, error);
@@ -272,30 +288,97 @@ static int carry(const tarry_prediction *p, const tarry_channel *channel,
     return tarry_exact_carry_protein(gene, stage, p->horizon, carried, error);
 }
 
+/* The law over all cells at some times, or in a window; `counts` zeroed. *steady: it stays so. */
+typedef struct mixture {
+    const double *times;
+    size_t n_times;
+    tarry_exact_counts *counts; /* [n_times] */
+    bool is_too_wide, is_steady;
+} mixture;
+
+static int add_law(tarry_exact_counts *sum, const tarry_exact_counts *part, double weight,
+                   tarry_error *error) {
+    if (part->n > sum->n) {
+        double *more = tarry_calloc(part->n, sizeof *more);
+        if (more == NULL)
+            return tarry_fail_memory(error, "a prediction");
+        for (size_t n = 0; n < sum->n; n++)
+            more[n] = sum->p[n];
+        free(sum->p);
+        *sum = (tarry_exact_counts){more, part->n};
+    }
+    for (size_t n = 0; n < part->n; n++)
+        sum->p[n] += weight * part->p[n];
+    return 0;
+}
+
+/* Add one cell's laws. Where `to` is above the time the law must stay until then. */
+static int add_cell_laws(tarry_prediction *p, const tarry_predict_cell *cell,
+                         const tarry_channel *channel, double to, mixture *m, tarry_error *error) {
+    const tarry_exact_gene *gene = &cell->genes[p->network->species[channel->species].gene];
+    tarry_exact_carried carried = {0};
+    tarry_exact_counts *own = tarry_calloc(m->n_times, sizeof *own);
+    int code = own == NULL ? tarry_fail_memory(error, "a prediction")
+                           : carry(p, gene, (uint32_t)channel->species, &carried, error);
+    if (code == 0 && to > m->times[0])
+        code = is_steady(gene, &carried, m->times[0], to, &m->is_steady, error);
+    if (code == 0 && m->is_steady)
+        code = tarry_exact_counts_at(gene, &carried, m->times, m->n_times, most_counts(p), own,
+                                     error);
+    for (size_t t = 0; code == 0 && m->is_steady && t < m->n_times; t++) {
+        m->is_too_wide = m->is_too_wide || own[t].n == 0;
+        code = add_law(&m->counts[t], &own[t], cell->weight, error);
+    }
+    for (size_t t = 0; own != NULL && t < m->n_times; t++)
+        tarry_exact_counts_release(&own[t]);
+    free(own);
+    tarry_exact_carried_release(&carried);
+    return code;
+}
+
+static int mix_laws(tarry_prediction *p, const tarry_channel *channel, double to, mixture *m,
+                    tarry_error *error) {
+    int code = 0;
+    m->is_steady = true;
+    for (size_t k = 0; code == 0 && k < p->n_cells && m->is_steady && !m->is_too_wide; k++)
+        code = add_cell_laws(p, &p->cells[k], channel, to, m, error);
+    return code;
+}
+
+/* In a window in which the law stays it is that of any frame. */
+static int tell_window(tarry_prediction *p, const tarry_channel *channel,
+                       const tarry_window *window, bool *is_too_wide, tarry_error *error) {
+    tarry_exact_counts counts = {0};
+    mixture m = {.times = &window->from, .n_times = 1, .counts = &counts};
+    int code = mix_laws(p, channel, window->to, &m, error);
+    if (code == 0 && !m.is_steady)
+        code = tarry_predict_leave_out(p, channel->name, "its distribution pooled over windows",
+                                       "its law changes with time", error);
+    else if (code == 0 && !m.is_too_wide)
+        code = tell_law(p, channel->name, window->name, NAN, &counts, error);
+    *is_too_wide = *is_too_wide || m.is_too_wide;
+    tarry_exact_counts_release(&counts);
+    return code;
+}
+
 static int tell_laws(tarry_prediction *p, const tarry_channel *channel, tarry_error *error) {
     const tarry_run_plan *run = &p->network->run;
-    const int32_t g = p->network->species[channel->species].gene;
-    const tarry_exact_gene *gene = &p->genes[g];
-    tarry_exact_carried carried = {0};
-    tarry_exact_counts *counts = tarry_calloc(run->n_snapshots, sizeof *counts);
-    int code = counts == NULL ? tarry_fail_memory(error, "a prediction")
-                              : carry(p, channel, &carried, error);
+    mixture m = {.times = run->snapshots,
+                 .n_times = run->n_snapshots,
+                 .counts = tarry_calloc(run->n_snapshots, sizeof *m.counts)};
+    int code = m.counts == NULL ? tarry_fail_memory(error, "a prediction") : 0;
+    if (code == 0 && run->n_snapshots > 0)
+        code = mix_laws(p, channel, -INFINITY, &m, error);
+    for (uint32_t s = 0; code == 0 && (p->n_cells == 1 || !m.is_too_wide) && s < run->n_snapshots;
+         s++)
+        code = tell_law(p, channel->name, NULL, run->snapshots[s], &m.counts[s], error);
+    for (uint32_t w = 0; code == 0 && w < run->n_windows; w++)
+        code = tell_window(p, channel, &run->windows[w], &m.is_too_wide, error);
     if (code == 0)
-        code = tarry_exact_counts_at(gene, &carried, run->snapshots, run->n_snapshots,
-                                     most_counts(p), counts, error);
-    bool is_too_wide = false;
-    for (uint32_t s = 0; code == 0 && s < run->n_snapshots; s++)
-        is_too_wide = is_too_wide || counts[s].n == 0;
-    for (uint32_t s = 0; code == 0 && s < run->n_snapshots; s++)
-        code = tell_law(p, channel->name, NULL, run->snapshots[s], &counts[s], error);
-    if (code == 0)
-        code = tell_windows(p, gene, &carried, channel->name, &is_too_wide, error);
-    if (code == 0)
-        code = tell_too_wide(p, channel->name, is_too_wide, error);
-    for (uint32_t s = 0; counts != NULL && s < run->n_snapshots; s++)
-        tarry_exact_counts_release(&counts[s]);
-    free(counts);
-    tarry_exact_carried_release(&carried);
+        code = tell_too_wide(p, channel->name, m.is_too_wide, error);
+    for (uint32_t s = 0; m.counts != NULL && s < run->n_snapshots; s++)
+        tarry_exact_counts_release(&m.counts[s]);
+    free(m.counts);
     return code;
 }
 

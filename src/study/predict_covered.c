@@ -64,7 +64,6 @@ int tarry_predict_covered(const tarry_network *network, tarry_predict_tell *tell
         code = tell_genes(&p, tell, context);
     if (code == 0)
         code = tell_channels(&p, tell, context, error);
-    tarry_flow_index_release(&p.index);
-    tarry_arena_release(&p.arena);
+    tarry_predict_release(&p);
     return code;
 }

@@ -15,6 +15,7 @@
 #include <math.h>
 #include <stdio.h>
 #include <stdlib.h>
+
 #include <string.h>
 
 /* One channel in one window. */
@@ -33,17 +34,19 @@ static uint32_t n_lags_of(const tarry_network *network, const tarry_window *wind
     return n_frames < network->run.n_lags ? n_frames : network->run.n_lags;
 }
 
-/* Covariances at lags from `least` on, added up over the genes that both see. */
-static int find_covariances(tarry_prediction *p, const film *one, const film *other,
-                            const tarry_window *window, ptrdiff_t least, size_t n, double mean[2],
-                            double *out, const char **why, tarry_error *error) {
+/* Covariances at lags from `least` on in one of the cells that stand for all, added up over the
+ * genes that both see. */
+static int cell_covariances(tarry_prediction *p, const tarry_predict_cell *cell, const film *one,
+                            const film *other, const tarry_window *window, ptrdiff_t least,
+                            size_t n, double mean[2], double *out, const char **why,
+                            tarry_error *error) {
     int code = 0;
     mean[0] = mean[1] = 0;
     for (uint32_t g = 0; code == 0 && *why == NULL && g < p->network->n_genes; g++) {
         tarry_exact_covariance c = {0};
         if (!tarry_exact_view_sees(&one->views[g]) || !tarry_exact_view_sees(&other->views[g]))
             continue;
-        code = tarry_exact_covariance_init(&p->genes[g], &one->views[g], &other->views[g],
+        code = tarry_exact_covariance_init(&cell->genes[g], &one->views[g], &other->views[g],
                                            window->from, window->to, p->horizon, &p->arena, &c, why,
                                            error);
         for (size_t i = 0; code == 0 && *why == NULL && i < n; i++)
@@ -53,6 +56,35 @@ static int find_covariances(tarry_prediction *p, const film *one, const film *ot
         mean[1] += c.mean[1];
         tarry_exact_covariance_release(&c);
     }
+    return code;
+}
+
+/* Over all cells: the mean of the covariances and the covariance of the means. */
+static int find_covariances(tarry_prediction *p, const film *one, const film *other,
+                            const tarry_window *window, ptrdiff_t least, size_t n, double mean[2],
+                            double *out, const char **why, tarry_error *error) {
+    double *own = tarry_calloc(n, sizeof *own), all = 0, means = 0;
+    if (own == NULL)
+        return tarry_fail_memory(error, "a prediction");
+    int code = 0;
+    mean[0] = mean[1] = 0;
+    for (size_t k = 0; code == 0 && *why == NULL && k < p->n_cells; k++) {
+        double of_cell[2];
+        memset(own, 0, n * sizeof *own);
+        code = cell_covariances(p, &p->cells[k], one, other, window, least, n, of_cell, own, why,
+                                error);
+        const double weight = p->cells[k].weight / (all + p->cells[k].weight);
+        const double off[2] = {of_cell[0] - mean[0], of_cell[1] - mean[1]};
+        all += p->cells[k].weight;
+        for (size_t i = 0; i < n; i++)
+            out[i] += weight * (own[i] - out[i]);
+        means += weight * ((1 - weight) * off[0] * off[1] - means);
+        mean[0] += weight * off[0];
+        mean[1] += weight * off[1];
+    }
+    for (size_t i = 0; i < n; i++)
+        out[i] += means;
+    free(own);
     return code;
 }
 

@@ -40,13 +40,26 @@ static awaited read_awaited(const tarry_exact_gene *gene, const tarry_first *fir
     return a;
 }
 
+/* The share over all cells. */
+static int find_share(tarry_prediction *p, const tarry_first *first, const awaited *a, double step,
+                      const double *times, size_t n, double *share, tarry_error *error) {
+    double own[TARRY_PREDICT_POINTS];
+    int code = 0;
+    for (size_t k = 0; code == 0 && k < p->n_cells; k++) {
+        code = (a->is_protein ? tarry_exact_no_protein_yet : tarry_exact_none_yet)(
+            &p->cells[k].genes[first->gene], a->stage, step, times, n, p->horizon, own, error);
+        for (size_t i = 0; code == 0 && i < n; i++)
+            share[i] += p->cells[k].weight * own[i];
+    }
+    return code;
+}
+
 /* Proteins take long: every so many of the times is enough. */
 enum { FEWER = 4 };
 
 static int predict_curve(tarry_prediction *p, const tarry_first *first, const awaited *a,
                          const tarry_response *response, tarry_error *error) {
-    const tarry_exact_gene *gene = &p->genes[first->gene];
-    double times[TARRY_PREDICT_POINTS], share[TARRY_PREDICT_POINTS];
+    double times[TARRY_PREDICT_POINTS], share[TARRY_PREDICT_POINTS] = {0};
     int n = TARRY_PREDICT_POINTS;
     tarry_predict_grid(response->to - response->from, times);
     if (a->is_protein) {
@@ -54,8 +67,7 @@ static int predict_curve(tarry_prediction *p, const tarry_first *first, const aw
         for (int i = 0; i < n; i++)
             times[i] = times[(size_t)i * FEWER];
     }
-    int code = (a->is_protein ? tarry_exact_no_protein_yet : tarry_exact_none_yet)(
-        gene, a->stage, response->from, times, (size_t)n, p->horizon, share, error);
+    int code = find_share(p, first, a, response->from, times, (size_t)n, share, error);
     for (int i = 0; code == 0 && i < n; i++)
         code = tarry_table_add(p->results->tables[TARRY_TABLE_first], error, first->name,
                                response->from, times[i], share[i], NAN, NAN);
