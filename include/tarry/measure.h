@@ -11,7 +11,7 @@
 
 typedef struct tarry_data tarry_data;
 
-/* Read and check a CSV file (at most 64 GiB). `settings` are options of `tarry measure`, by name:
+/* Read and check a CSV file (at most 8 GiB). `settings` are options of `tarry measure`, by name:
  * "time" (required), "kind", "counted", "mean", "gaps", "background", "from", "to", "every",
  * "lags", "snapshots", with values as on the command line. Every error says file:line:column.
  * *data is the caller's. */

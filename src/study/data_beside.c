@@ -117,12 +117,12 @@ static int check_names(const tarry_network *data, const tarry_network *model, co
     for (uint32_t i = 0; i < data->n_channels; i++)
         if (has_channel(model, data->channels[i].name))
             return TARRY_OK;
+    const char *last = model->n_channels > 0 ? model->channels[model->n_channels - 1].name
+                                             : "nothing";
     return tarry_fail(error, TARRY_INPUT,
                       "--beside: no column of the data is called like a signal or species of %s: "
                       "rename the column '%s' (that model has '%s', for one)",
-                      file, data->channels[0].name,
-                      model->n_channels > 0 ? model->channels[model->n_channels - 1].name
-                                            : "nothing");
+                      file, data->channels[0].name, last);
 }
 
 static int check_unit(const tarry_network *data, const tarry_network *model, const char *file,

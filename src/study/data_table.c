@@ -22,8 +22,6 @@ enum {
     LONGEST_NAME = 80,
 };
 
-static const double most_rows = 4e9; /* rows are numbered by 32 bits */
-
 static const double most_expanded = 1e7;
 
 /* Of so large a share of whole numbers it is taken that counts were meant. */
@@ -404,9 +402,6 @@ static int make_columns(reading *r, tarry_error *error) {
     tarry_data_table *table = r->table;
     const size_t n = count_lines(&r->csv);
     bool failed = false;
-    if ((double)n > most_rows)
-        return tarry_fail_at(error, TARRY_INPUT, (tarry_place){table->path, 0, 0},
-                             "more than 4e9 rows are not read");
     table->times = tarry_calloc(n, sizeof *table->times);
     failed = table->times == NULL;
     for (size_t i = 0; i < r->n_columns; i++) {

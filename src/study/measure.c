@@ -23,8 +23,9 @@
 
 /* ---- reading --------------------------------------------------------------------------------- */
 
-/* What is no file on a disk (a pipe, a device) may have no end. */
-static const size_t largest_file = (size_t)1 << 36, largest_stream = (size_t)1 << 28;
+/* Rows are numbered by 32 bits, and no row is shorter than two bytes. What is no file on a disk (a
+ * pipe, a device) may have no end. */
+static const size_t largest_file = ((size_t)1 << 33) - 4096, largest_stream = (size_t)1 << 28;
 
 void tarry_data_free(tarry_data *data) {
     if (data == NULL)
