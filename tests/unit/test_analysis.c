@@ -594,6 +594,68 @@ START_TEST(test_means_refused) {
 }
 END_TEST
 
+/* A gene that follows one like it shares its figures; one that differs in any single thing has its
+ * own, which are those that it has where it stands alone. */
+START_TEST(test_means_neighbours) {
+    static const struct {
+        const char *gene, *promoter, *transcript;
+    } genes[] = {
+        {"", "shut: {to: {open: 0.5}}, open: {to: {shut: 2}, initiates: 6}",
+         "stages: {n: {gamma: {mean: 2, sd: 1}}}, decay: 0.3"},
+        {"", "shut: {to: {open: 0.5}}, open: {to: {shut: 2}, initiates: 7}",
+         "stages: {n: {gamma: {mean: 2, sd: 1}}}, decay: 0.3"},
+        {"", "shut: {to: {open: 0.5}}, open: {to: {shut: 2.5}, initiates: 6}",
+         "stages: {n: {gamma: {mean: 2, sd: 1}}}, decay: 0.3"},
+        {"copies: 2, ", "shut: {to: {open: 0.5}}, open: {to: {shut: 2}, initiates: 6}",
+         "stages: {n: {gamma: {mean: 2, sd: 1}}}, decay: 0.3"},
+        {"start: open, ", "shut: {to: {open: 0.5}}, open: {to: {shut: 2}, initiates: 6}",
+         "stages: {n: {gamma: {mean: 2, sd: 1}}}, decay: 0.3"},
+        {"start: steady, ", "shut: {to: {open: 0.5}}, open: {to: {shut: 2}, initiates: 6}",
+         "stages: {n: {gamma: {mean: 2, sd: 1}}}, decay: 0.3"},
+        {"", "shut: {to: {open: 0.5}}, open: {to: {shut: {rate: 2, initiates: yes}}, initiates: 6}",
+         "stages: {n: {gamma: {mean: 2, sd: 1}}}, decay: 0.3"},
+        {"",
+         "shut: {to: {open: 0.5}}, open: {to: {shut: 2, far: 1}, initiates: 6}, far: {to: {open: "
+         "1}}",
+         "stages: {n: {gamma: {mean: 2, sd: 1}}}, decay: 0.3"},
+        {"", "shut: {to: {open: 0.5}}, open: {to: {shut: 2}, initiates: 6}",
+         "stages: {n: {gamma: {mean: 2, sd: 1.5}}}, decay: 0.3"},
+        {"", "shut: {to: {open: 0.5}}, open: {to: {shut: 2}, initiates: 6}",
+         "stages: {n: {fixed: 2}}, decay: 0.3"},
+        {"", "shut: {to: {open: 0.5}}, open: {to: {shut: 2}, initiates: 6}",
+         "stages: {n: {exponential: {mean: 2}}}, decay: 0.3"},
+        {"", "shut: {to: {open: 0.5}}, open: {to: {shut: 2}, initiates: 6}",
+         "stages: {n: {gamma: {mean: 2, sd: 1}}}, decay: 0.4"},
+        {"", "shut: {to: {open: 0.5}}, open: {to: {shut: 2}, initiates: 6}",
+         "stages: {n: {gamma: {mean: 2, sd: 1}}}, lifetime: {fixed: 3}"},
+        {"", "shut: {to: {open: 0.5}}, open: {to: {shut: 2}, initiates: 6}", "decay: 0.3"},
+        {"", "shut: {to: {open: 0.5}}, open: {to: {shut: 2}, initiates: 6}",
+         "stages: {n: {lasts: {gamma: {mean: 2, sd: 1}}, lost: 0.1}}, decay: 0.3"},
+    };
+    enum { N = sizeof genes / sizeof *genes };
+    static const char one[] = "  %s: {%spromoter: {%s}, transcript: {%s}}\n";
+    char both[1024];
+    snprintf(both, sizeof both, "genes:\n%s%srun: {until: 10}\n", one, one);
+    for (size_t i = 0; i < N; i++) {
+        tarry_model *alone = read_model(
+            "genes:\n  vela: {%spromoter: {%s}, transcript: {%s}}\nrun: {until: 10}\n",
+            genes[i].gene, genes[i].promoter, genes[i].transcript);
+        const tarry_distance own = find_distance(alone, "vela.transcript", 4);
+        for (size_t before = 0; before < N; before++) {
+            tarry_model *model = read_model(
+                both, "lyra", genes[before].gene, genes[before].promoter, genes[before].transcript,
+                "vela", genes[i].gene, genes[i].promoter, genes[i].transcript);
+            const tarry_distance d = find_distance(model, "vela.transcript", 4);
+            ck_assert_int_eq(d.why == NULL, own.why == NULL);
+            ck_assert_msg(d.why || (d.mean == own.mean && d.steady == own.steady),
+                          "gene %zu after %zu: %.12g, alone %.12g", i, before, d.mean, own.mean);
+            tarry_model_free(model);
+        }
+        tarry_model_free(alone);
+    }
+}
+END_TEST
+
 START_TEST(test_means_two_ends) {
     tarry_model *model = read_model("genes:\n"
                                     "  vela:\n"
@@ -758,7 +820,33 @@ START_TEST(test_range) {
                  {"sqrt(a)", 0, HUGE_VAL},
                  {"log(1 + a)", 0, HUGE_VAL},
                  {"log(a)", -HUGE_VAL, HUGE_VAL},
-                 {"min(a, 0) * log(a)", 0, 0}};
+                 {"min(a, 0) * log(a)", 0, 0},
+                 {"1 / a", 0, HUGE_VAL},
+                 {"1 / (a - 2)", -HUGE_VAL, HUGE_VAL},
+                 {"1 / (-1 - a)", -1, 0},
+                 {"1 / (0 - a)", -HUGE_VAL, 0},
+                 {"2^a", 0, HUGE_VAL},
+                 {"(1 + a)^(-2)", 0, 1},
+                 {"(2 - a)^0.5", -HUGE_VAL, HUGE_VAL},
+                 {"(2 - a)^a", -HUGE_VAL, HUGE_VAL},
+                 {"(2 - a)^(-2)", 0, HUGE_VAL},
+                 {"(2 - a)^(-1)", -HUGE_VAL, HUGE_VAL},
+                 {"(-3 - a)^2", 9, HUGE_VAL},
+                 {"(-3 - a)^3", -HUGE_VAL, -27},
+                 {"log(3 - a)", -HUGE_VAL, log(3)},
+                 {"log(0 - a)", -HUGE_VAL, HUGE_VAL},
+                 {"sqrt(4 - a)", 0, 2},
+                 {"hill(a - 5, 3, 2)", -HUGE_VAL, HUGE_VAL},
+                 {"hill(3, a - 1, 2)", -HUGE_VAL, HUGE_VAL},
+                 {"hill(3, 1 + a, 2)", 0, 1},
+                 {"hill(a, 3, 1.5)", 0, 1},
+                 {"repress(3, a, a)", 0, 1},
+                 {"max(a - 5, 2)", 2, HUGE_VAL},
+                 {"min(3 - a, a)", -HUGE_VAL, 3},
+                 {"a * (a - 4)", -HUGE_VAL, HUGE_VAL},
+                 {"a / 4 - 1", -1, HUGE_VAL},
+                 {"(1 + a) / (2 + a)", 0, HUGE_VAL}, /* wider than the truth: a counts as two */
+                 {"exp(a) * -2", -HUGE_VAL, -2}};
     for (size_t i = 0; i < sizeof cases / sizeof *cases; i++) {
         tarry_model *model = read_model("species: {a: 3}\n"
                                         "reactions: {odd: {propensity: \"%s\"}}\n"
@@ -795,6 +883,7 @@ int main(void) {
         {"means: totals and mixes", test_means_total},
         {"means: steady start", test_means_steady_start},
         {"means: refused", test_means_refused},
+        {"means: neighbours", test_means_neighbours},
         {"means: two ends", test_means_two_ends},
         {"settle", test_settle},
         {"slips: reach", test_slips_reach},

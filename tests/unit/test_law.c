@@ -399,6 +399,42 @@ START_TEST(values_by_hand) {
 }
 END_TEST
 
+/* Nothing in the first and last bins or values: they are as if they were not there. */
+START_TEST(empty_ends) {
+    const double edges[] = {0, 1, 2, 4, 7}, shares[] = {0, 0.5, 0.5, 0};
+    const tarry_law bins = {.kind = TARRY_LAW_BINS, .n = 4, .points = edges, .weights = shares};
+    ck_assert_double_eq(tarry_law_least(&bins), 1);
+    ck_assert_double_eq(tarry_law_most(&bins), 4);
+    ck_assert_double_eq(tarry_law_quantile(&bins, 0, 1), 1);
+    ck_assert_double_eq(tarry_law_quantile(&bins, 1, 0), 4);
+    check_near("quantile", 0.75, tarry_law_quantile(&bins, 0.75, 0.25), 3, 1e-15);
+    ck_assert_double_eq(tarry_law_cdf(&bins, 0.5), 0);
+    ck_assert_double_eq(tarry_law_cdf(&bins, 5), 1);
+    ck_assert_double_eq(tarry_law_cdf(&bins, 9), 1);
+    ck_assert_double_eq(tarry_law_survival(&bins, 0.5), 1);
+    ck_assert_double_eq(tarry_law_survival(&bins, -1), 1);
+    ck_assert_double_eq(tarry_law_survival(&bins, 5), 0);
+    check_near("integral", 9, tarry_law_survival_integral(&bins, 9), 0.5 * 1.5 + 0.5 * 3, 1e-15);
+
+    const double points[] = {1, 2, 4, 7};
+    const tarry_law values = {
+        .kind = TARRY_LAW_VALUES, .n = 4, .points = points, .weights = shares};
+    ck_assert_double_eq(tarry_law_least(&values), 2);
+    ck_assert_double_eq(tarry_law_most(&values), 4);
+    ck_assert_double_eq(tarry_law_quantile(&values, 0, 1), 2);
+    ck_assert_double_eq(tarry_law_quantile(&values, 1, 0), 4);
+    ck_assert_double_eq(tarry_law_cdf(&values, 1.5), 0);
+    ck_assert_double_eq(tarry_law_survival(&values, 0.5), 1);
+    ck_assert_double_eq(tarry_law_survival(&values, 5), 0);
+    ck_assert_double_eq(tarry_law_survival(&values, 8), 0);
+    const double last[] = {0, 0, 0, 1}, first[] = {1, 0, 0, 0};
+    const tarry_law high = {.kind = TARRY_LAW_VALUES, .n = 4, .points = points, .weights = last};
+    const tarry_law low = {.kind = TARRY_LAW_BINS, .n = 4, .points = edges, .weights = first};
+    ck_assert_double_eq(tarry_law_least(&high), 7);
+    ck_assert_double_eq(tarry_law_most(&low), 1);
+}
+END_TEST
+
 START_TEST(mix_is_a_weighted_sum) {
     const tarry_law parts[] = {{.kind = TARRY_LAW_FIXED, .a = 2},
                                {.kind = TARRY_LAW_EXPONENTIAL, .a = 3}};
@@ -751,6 +787,7 @@ int main(void) {
         {"fixed lag", fixed_lag},
         {"bins by hand", bins_by_hand},
         {"values by hand", values_by_hand},
+        {"empty ends", empty_ends},
         {"mix is a weighted sum", mix_is_a_weighted_sum},
         {"total of gammas", total_of_gammas_is_gamma},
         {"total of exponentials", total_of_exponentials_by_partial_fractions},
