@@ -325,6 +325,45 @@ END_TEST
 /* ---- samplers by word ---------------------------------------------------------------------------
  */
 
+/* A cell without a record has the same events: molecules that are lost or cancelled, completions
+ * that are skipped or happen by chance, steps, a lag of one value only, limits beyond any count. */
+START_TEST(test_bare) {
+    machine *m = machine_new(
+        HEAD
+        "parameters: {k: 3, length: 2}\n"
+        "delays: {only: {table: {values: [1.5], weights: [1]}}, way: {fixed: length}}\n"
+        "genes:\n"
+        "  vela:\n"
+        "    promoter: {on: {initiates: k}}\n"
+        "    transcript: {stages: {a: {lasts: way, lost: 0.2}, b: only}, half_life: 4}\n"
+        "    protein: {translation: 0.5, lifetime: {uniform: {from: 1, to: 3}}}\n"
+        "species: {pre: 0, mature: 0}\n"
+        "reactions:\n"
+        "  start: {makes: {pre: 1}, rate: 2, later: [{after: only, chance: 0.5, uses: {pre: 1}, "
+        "makes: {mature: 1}, if_short: skip}]}\n"
+        "  rob: {uses: {pre: 1}, rate: 1}\n"
+        "  end: {uses: {mature: 1}, rate: 0.3}\n"
+        "protocol: [{at: 10, set: {k: 6}}, {at: 20, set: {length: 3, mature: 4}}]\n"
+        "run: {cells: 3, settle: 5, until: 40, every: 1}\n"
+        "limits: {firings: 1e12}\n");
+    const tarry_network *network = &m->model->network;
+    for (int64_t cell = 0; cell < 3; cell++) {
+        tarry_error error = {0};
+        int64_t firings, completions, fired = 0, completed = 0;
+        run(m, cell);
+        for (uint32_t i = 0; i < network->n_reactions; i++)
+            fired += m->record.firings[i];
+        for (uint32_t i = 0; i < network->n_lags; i++)
+            completed += m->record.completions[i];
+        ck_assert_int_eq(tarry_cell_run_bare(m->cell, cell, &firings, &completions, &error), 0);
+        ck_assert_int_gt(firings, 300);
+        ck_assert_int_eq(firings, fired);
+        ck_assert_int_eq(completions, completed);
+    }
+    machine_free(m);
+}
+END_TEST
+
 START_TEST(test_samplers) {
     machine *m = machine_new(HEAD GENE "run: {until: 60}\n");
     tarry_engine *engine = NULL;
@@ -365,6 +404,7 @@ int main(void) {
         {"named bursts", test_named_bursts},
         {"recording changes nothing", test_recording_changes_nothing},
         {"cells do not depend on each other", test_cells_do_not_depend_on_each_other},
+        {"bare", test_bare},
         {"samplers", test_samplers},
         {"lag bins", test_lag_bins},
     };
