@@ -6,6 +6,7 @@
 #include "base/memory.h"
 #include "base/text.h"
 #include "model/mend.h"
+#include "model/mend.h"
 #include "model/yaml.h"
 #include "support.h"
 
@@ -195,6 +196,43 @@ START_TEST(calls_that_yaml_split) {
 }
 END_TEST
 
+/* The value in which a call is split begins at the first "m". */
+START_TEST(mended_lines) {
+    static const struct {
+        const char *text, *mended; /* NULL: it cannot be told how */
+    } cases[] = {
+        {"a: {b: min(c,\r\n d), e: 1}\r\nf: 2", "a: {b: \"min(c, d)\", e: 1}"},
+        {"a: {b: min(c,\n\n  d), e: 1}", "a: {b: \"min(c, d)\", e: 1}"},
+        {"x: 1\n\t a: [min(1, 2),\t3]", "a: [\"min(1, 2)\",\t3]"},
+        {"a: {b: min(1, 2) , c: \"x \\\" (\", d: max(3, 4)}",
+         "a: {b: \"min(1, 2)\" , c: \"x \\\" (\", d: \"max(3, 4)\"}"},
+        {"a: {b: min(1, 2), c: 'open (", "a: {b: \"min(1, 2)\", c: 'open ("},
+        {"a: {b: min(1, 2), c: \"open \\", "a: {b: \"min(1, 2)\", c: \"open \\"},
+        {"a: {b: min(1, 2), c: x:y, d: {e: 3}}", "a: {b: \"min(1, 2)\", c: x:y, d: {e: 3}}"},
+        {"a: {b: min(1, 2)} # and (so", "a: {b: \"min(1, 2)\"} # and (so"},
+        {"a: {b: min(1, 2), c: (3, d: 4", "a: {b: \"min(1, 2)\", c: (3, d: 4"},
+        {"a: {b: min(1 # 2)}", NULL},
+        {"a: {b: min(1, {2)}", NULL},
+        {"a: {b: min(1, [2)}", NULL},
+        {"a: {b: min(1, 2", NULL},
+        {"a: {b: min(1, 2]", NULL},
+    };
+    for (size_t i = 0; i < sizeof cases / sizeof *cases; i++) {
+        const char *text = cases[i].text;
+        tarry_text out = {0};
+        const size_t at = (size_t)(strstr(text, "min") - text);
+        const bool told = tarry_mend_line(text, strlen(text), at, &out);
+        ck_assert_msg(told == (cases[i].mended != NULL), "%s", text);
+        if (told)
+            ck_assert_str_eq(out.data, cases[i].mended);
+        tarry_text_release(&out);
+    }
+    ck_assert(tarry_mend_is_split("min(1", 5));
+    ck_assert(!tarry_mend_is_split("min(1)", 6));
+    ck_assert(!tarry_mend_is_split("1)", 2));
+}
+END_TEST
+
 static char *repeat(const char *piece, size_t n) {
     size_t length = strlen(piece);
     char *text = malloc(n * length + 1);
@@ -287,6 +325,7 @@ static Suite *yaml_suite(void) {
     tcase_add_test(tests, bytes_that_are_refused);
     tcase_add_test(tests, what_is_no_yaml);
     tcase_add_test(tests, calls_that_yaml_split);
+    tcase_add_test(tests, mended_lines);
     tcase_add_test(tests, nesting);
     tcase_add_test(tests, large_files);
     suite_add_tcase(suite, tests);
