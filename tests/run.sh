@@ -101,7 +101,7 @@ tell_failures() {
     done
 }
 
-export CK_DEFAULT_TIMEOUT="${CK_DEFAULT_TIMEOUT:-60}"
+export CK_DEFAULT_TIMEOUT="${CK_DEFAULT_TIMEOUT:-180}"
 rm -rf "$BUILD/test-logs"
 for part in "$@"; do
     case $part in

@@ -241,7 +241,8 @@ static int take_all(counter *c, const ring *r, const double *re, const double *i
     const size_t half = r->length / 2 + 1;
     double *data = tarry_calloc(2 * (r->length + half), sizeof *data);
     int code = data == NULL ? tarry_fail_memory(c->error, "a law of counts") : 0;
-    double *xre = data != NULL ? data + 2 * r->length : NULL, *xim = xre + half;
+    double *xre = data != NULL ? data + 2 * r->length : NULL;
+    double *xim = xre != NULL ? xre + half : NULL;
     for (int pass = 0; code == 0 && pass < 2 && !*is_rough; pass++)
         for (size_t t = 0; code == 0 && t < c->n_times && !*is_rough; t++) {
             const double *tre = &re[t * r->n], *tim = &im[t * r->n];

@@ -338,7 +338,8 @@ static const char *check_reaction(reader *r, size_t product, uint32_t effect) {
     const bool linear = tarry_flow_linear(r->network, reaction, &reactant, &rate, &reads);
     const bool decay = linear && reactant == species &&
                        tarry_flow_only_removes(r->network, effect, species);
-    const bool translation = linear && reactant != species && is_product(r, reactant) &&
+    const bool own = reaction->gene == (int32_t)r->gene; /* no other is followed */
+    const bool translation = own && linear && reactant != species && is_product(r, reactant) &&
                              tarry_flow_change(r->network, effect, reactant) == 0 &&
                              tarry_flow_change(r->network, effect, species) > 0;
     if (!decay && !translation)

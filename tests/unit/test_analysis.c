@@ -594,6 +594,64 @@ START_TEST(test_means_refused) {
 }
 END_TEST
 
+/* What plain reactions do to a gene's products. One that only takes a molecule away, at a rate of
+ * its own, is one more decay: of 3 min the gene is open 2 and initiates 3 times in each, so that
+ * 2/(decay + 1) are there. Others change the mean in ways that are not worked out. */
+START_TEST(test_means_changed) {
+    static const char gene[] = "species: {lure: 5}\n"
+                               "genes:\n"
+                               "  vela:\n"
+                               "    start: steady\n"
+                               "    promoter:\n"
+                               "      shut: {to: {open: 1}}\n"
+                               "      open: {to: {shut: 0.5}, initiates: 3}\n"
+                               "    transcript: {stages: {n: {fixed: 1}}, decay: 1}\n"
+                               "    protein: {translation: 2, decay: 0.5}\n"
+                               "reactions: {use: {%s}}\n"
+                               "run: {until: 10}\n";
+    static const struct {
+        const char *reaction, *transcript, *protein;
+    } cases[] = {
+        {"uses: {vela.transcript: 1}, rate: 1", NULL, NULL},
+        {"uses: {vela.transcript: 1}, makes: {lure: 1}, rate: 1", "'use' changes it",
+         "made from 'vela.transcript'"},
+        {"uses: {vela.transcript: 1}, rate: 1, later: [{after: 1, makes: {lure: 1}}]",
+         "'use' changes it", "made from 'vela.transcript'"},
+        {"uses: {vela.transcript: 1}, propensity: 2 * vela.transcript", "'use' changes it",
+         "made from 'vela.transcript'"},
+        {"uses: {vela.transcript: 1}, rate: 0.1 * lure", "reads counts",
+         "made from 'vela.transcript'"},
+        {"uses: {vela.transcript: 1}, needs: {lure: 1}, rate: 1", "'use' changes it",
+         "made from 'vela.transcript'"},
+        {"makes: {vela.transcript: 1}, rate: 1", "'use' changes it", "made from 'vela.transcript'"},
+        {"makes: {vela.transcript: {geometric: {mean: 2}}}, rate: 1", "'use' changes it",
+         "made from 'vela.transcript'"},
+        {"makes: {lure: 1}, rate: 1, later: [{after: 1, makes: {vela.transcript: 1}}]",
+         "changes it", "made from 'vela.transcript'"},
+        {"makes: {lure: 1}, rate: 1, later: [{after: 1, uses: {vela.transcript: 1}, if_short: "
+         "skip}]",
+         "changes it", "made from 'vela.transcript'"},
+        {"needs: {vela.transcript: 1}, makes: {vela.protein: 1}, rate: 1", NULL,
+         "\'use\' changes it"},
+        {"needs: {vela.transcript: 2}, makes: {vela.protein: 1}, rate: 1", NULL,
+         "'use' changes it"},
+        {"needs: {lure: 1}, makes: {vela.protein: 1}, rate: 1", NULL, "'use' changes it"},
+        {"uses: {vela.transcript: 1}, makes: {vela.protein: 1}, rate: 1", "'use' changes it",
+         "'use' changes it"},
+        {"needs: {vela.transcript: 1}, makes: {vela.protein: 1}, rate: 0.1 * lure", NULL,
+         "'use' changes it"},
+    };
+    for (size_t i = 0; i < sizeof cases / sizeof *cases; i++) {
+        tarry_model *model = read_model(gene, cases[i].reaction);
+        assert_why(model, "vela.transcript", cases[i].transcript);
+        assert_why(model, "vela.protein", cases[i].protein);
+        if (i == 0)
+            assert_mean(model, "vela.transcript", 40, 2.0 / 2, 1e-9);
+        tarry_model_free(model);
+    }
+}
+END_TEST
+
 /* A gene that follows one like it shares its figures; one that differs in any single thing has its
  * own, which are those that it has where it stands alone. */
 START_TEST(test_means_neighbours) {
@@ -883,6 +941,7 @@ int main(void) {
         {"means: totals and mixes", test_means_total},
         {"means: steady start", test_means_steady_start},
         {"means: refused", test_means_refused},
+        {"means: changed", test_means_changed},
         {"means: neighbours", test_means_neighbours},
         {"means: two ends", test_means_two_ends},
         {"settle", test_settle},
