@@ -6,7 +6,6 @@
 #include "base/memory.h"
 #include "base/text.h"
 #include "model/mend.h"
-#include "model/mend.h"
 #include "model/yaml.h"
 #include "support.h"
 
