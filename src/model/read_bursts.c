@@ -30,6 +30,9 @@ static int read_names(bursts_work *work, const tarry_node *map, const char *key,
                          : tarry_fail_at(error, TARRY_INPUT, map->place,
                                          "bursts need '%s', a list of reactions", key);
     int code = tarry_expect_list(list, key, error);
+    if (code == 0 && required && list->n == 0)
+        return tarry_fail_at(error, TARRY_INPUT, list->place,
+                             "'%s' is empty; name the reactions by which bursts begin or end", key);
     for (size_t i = 0; code == 0 && i < list->n; i++) {
         const tarry_node *name = list->entries[i].node;
         uint32_t reaction = 0;

@@ -145,6 +145,12 @@ START_TEST(bytes_that_are_refused) {
     check_refused("a: \xed\xa0\x80\n", 1, 4, "not UTF-8");
     check_refused("a: \xf4\x90\x80\x80\n", 1, 4, "not UTF-8");
     check_refused("a: \xe2\x82", 1, 4, "not UTF-8");
+    check_refused("a: \xc2\x41\n", 1, 4, "not UTF-8");
+    check_refused("a: \xe2\x82\x41\n", 1, 4, "not UTF-8");
+    check_refused("a: \x7f\n", 1, 4, "U+007F");
+    check_refused("a: \xef\xbf\xbe\n", 1, 4, "U+FFFE");
+    check_refused("a: \xef\xbf\xbf\n", 1, 4, "U+FFFF");
+    check_refused_bytes("\xfe\xff\0a", 4, 1, 1, "UTF-16");
     check_refused_bytes("\xff\xfe"
                         "a\0:\0",
                         6, 1, 1, "UTF-16");
