@@ -223,6 +223,9 @@ int tarry_figure_dwells(tarry_figure_work *work, const tarry_figure_subject *sub
                       subject->gene ? "active and of inactive periods"
                                     : "visible and of dark periods of those that are long enough "
                                       "to count");
+    if (!subject->gene)
+        tarry_text_add_string(&words.caption, " Visible is not active: a signal rises and falls "
+                                              "slowly, alleles overlap, and short gaps close.");
     tarry_figure_add_band_words(work, &words.caption);
     tarry_text_printf(&words.alternative,
                       "Falling curves: how many of the %s periods of %s last longer than a time.",

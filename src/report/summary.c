@@ -133,7 +133,6 @@ static json_t *describe_windows(const tarry_run_plan *plan) {
     return list;
 }
 
-/* The plan as it was carried out: file, options and defaults taken together. */
 /* Names with thresholds, or NULL where none has. */
 static json_t *describe_thresholds(const tarry_network *network, bool *failed) {
     json_t *list = NULL;
@@ -152,6 +151,7 @@ static json_t *describe_thresholds(const tarry_network *network, bool *failed) {
     return list;
 }
 
+/* The plan as it was carried out: file, options and defaults taken together. */
 static json_t *describe_plan(const tarry_network *network) {
     const tarry_run_plan *plan = &network->run;
     const tarry_data_plan *data = network->data;

@@ -120,12 +120,12 @@ ok "models/data/lum.csv is made as it says" curve
 # Thresholds: a film measured by them has the periods that the run has by the same.
 visible() {
     run 0 run "$models/data/film.yaml" --visible "1,2,1 min" --out seen --figures none &&
-        run 0 measure "$models/data/film.csv" --time min --visible "1,2,1 min" --out seen_too --figures none || return 1
+        run 0 measure "$models/data/film.csv" --time min --visible "1,2,1 min" --out seen_too || return 1
     grep '^spot,all,.*visible\|^spot,all,dark' seen/signals.csv >one
     grep '^spot,all,.*visible\|^spot,all,dark' seen_too/signals.csv | cmp -s - one && [ "$(wc -l <one)" = 4 ] &&
         grep '^spot,' seen/dwells.csv >one && grep '^spot,' seen_too/dwells.csv | cmp -s - one &&
         [ "$(wc -l <one)" -gt 20 ] && says seen_too/summary.json '"length": 1' &&
-        says seen/summary.json '"length": 1'
+        says seen/summary.json '"length": 1' && says seen_too/report.html "Visible is not active"
 }
 ok "visible periods of a film are the run's" visible
 found() {

@@ -116,10 +116,49 @@ START_TEST(test_refused) {
 }
 END_TEST
 
+/* Frames 0 to 11 min, visible 9 and dark 0, one missing in a visible period, changes of two frames.
+ *
+ * a: dark 0-1, visible 2-4, dark 5-7, visible 8-9, dark 10-11
+ * b: visible 0-1, dark 2-8 (the 9 at 5 is too short), visible 9-11
+ *
+ * Without the first frame of each, at which nothing can start, 22 min are seen, 9 of them visible,
+ * 13 dark, and three periods of either start. Visible ones last 3, 2, and 3 cut off: of three, one
+ * ends at 2, and of the two that are left one at 3. Dark ones last 3, 2 cut off, and 7. */
+static const char worked[] =
+    "cell,time,spot\na,0,0\na,1,0\na,2,9\na,3,NaN\na,4,9\na,5,0\na,6,0\na,7,0\na,8,9\na,9,9\n"
+    "a,10,0\na,11,0\nb,0,9\nb,1,9\nb,2,0\nb,3,0\nb,4,0\nb,5,9\nb,6,0\nb,7,0\nb,8,0\nb,9,9\n"
+    "b,10,9\nb,11,9\n";
+
+START_TEST(test_by_hand) {
+    const char *const options[] = {"--time",    "min",       "--gaps", "missing",
+                                   "--visible", "3,5,2 min", NULL};
+    static const struct {
+        const char *period;
+        double time, survival;
+    } curve[] = {{"visible", 0, 1}, {"visible", 2, 2.0 / 3}, {"visible", 3, 1.0 / 3},
+                 {"dark", 0, 1},    {"dark", 3, 0.5},        {"dark", 7, 0}};
+    measured m;
+    measured_pass(&m, worked, options);
+    ck_assert_double_eq_tol(quantity(&m, "visible_fraction"), 10.0 / 24, 1e-12);
+    ck_assert_double_eq_tol(quantity(&m, "visible_frequency"), 3.0 / 22, 1e-12);
+    ck_assert_double_eq_tol(quantity(&m, "visible_time_mean"), 9.0 / 3, 1e-12);
+    ck_assert_double_eq_tol(quantity(&m, "dark_time_mean"), 13.0 / 3, 1e-12);
+    const tarry_table *dwells = tarry_results_table(m.results, TARRY_TABLE_dwells);
+    ck_assert_uint_eq(tarry_table_n_rows(dwells), sizeof curve / sizeof *curve);
+    for (size_t i = 0; i < sizeof curve / sizeof *curve; i++) {
+        ck_assert_str_eq(tarry_table_text(dwells, i, 2), curve[i].period);
+        ck_assert_double_eq_tol(tarry_table_number(dwells, i, 3), curve[i].time, 1e-12);
+        ck_assert_double_eq_tol(tarry_table_number(dwells, i, 4), curve[i].survival, 1e-12);
+    }
+    measured_release(&m);
+}
+END_TEST
+
 int main(void) {
     const test_entry tests[] = {{"mode", test_mode},
                                 {"found", test_found},
                                 {"given", test_given},
+                                {"by hand", test_by_hand},
                                 {"refused", test_refused}};
     return run_tests("data visible", tests, sizeof tests / sizeof *tests);
 }
