@@ -129,6 +129,12 @@ need_dev() {
         CC=clang need_library "libclang-rt-$version-dev" "the sanitizers of clang" "-fsanitize=thread" <<'END'
 int main(void) { return 0; }
 END
+        CC=clang need_library "libclang-rt-$version-dev" "libFuzzer of clang" "-fsanitize=fuzzer,address" <<'END'
+#include <stddef.h>
+#include <stdint.h>
+int LLVMFuzzerTestOneInput(const uint8_t *data, size_t size);
+int LLVMFuzzerTestOneInput(const uint8_t *data, size_t size) { return size > 0 && data == NULL; }
+END
         CC=clang need_library libomp-dev "OpenMP for clang" "-fopenmp" <<'END'
 #include <omp.h>
 int main(void) { return omp_get_max_threads() < 1; }
