@@ -21,6 +21,45 @@ enum {
     MOST_VARIED = 2
 };
 
+/* Is the law's density infinite at 0? Its curves have many pieces then. */
+static bool is_steep(const tarry_law *law) {
+    if (law == NULL)
+        return false;
+    if (law->kind == TARRY_LAW_GAMMA)
+        return law->b > law->a;
+    if (law->kind == TARRY_LAW_WEIBULL)
+        return law->b < 1;
+    for (size_t i = 0; (law->kind == TARRY_LAW_MIX || law->kind == TARRY_LAW_TOTAL) && i < law->n;
+         i++)
+        if (is_steep(&law->parts[i]))
+            return true;
+    return false;
+}
+
+/* Do proteins take long? Where steep laws are on the way, or the time in which a transcript is
+ * translated is not exponential. */
+static bool is_slow(const tarry_exact_gene *gene) {
+    bool slow = false;
+    for (size_t i = 0; i < gene->transcript.n; i++) {
+        const tarry_exact_stage *s = &gene->transcript.stages[i];
+        slow = slow || is_steep(s->law) ||
+               (s->translation > 0 && s->law != NULL && s->law->kind != TARRY_LAW_EXPONENTIAL);
+    }
+    for (size_t i = 0; i < gene->protein.n; i++)
+        slow = slow || is_steep(gene->protein.stages[i].law);
+    return slow;
+}
+
+static void leave_proteins(tarry_exact_gene *gene) {
+    static const char why[] = "its proteins take long; `tarry predict` works them out";
+    if (gene->why != NULL || !is_slow(gene))
+        return;
+    gene->protein.why = why;
+    for (size_t i = 0; i < gene->protein.n; i++)
+        if (gene->protein.stages[i].why == NULL)
+            gene->protein.stages[i].why = why;
+}
+
 static int read_genes(tarry_prediction *p, const tarry_network *network,
                       const tarry_flow_index *index, tarry_exact_gene **genes, tarry_error *error) {
     int code = 0;
@@ -37,6 +76,8 @@ static int read_genes(tarry_prediction *p, const tarry_network *network,
             out->why = "more than two parameters differ from cell to cell";
         else
             code = tarry_exact_gene_read(index, network->segments, g, &p->arena, out, error);
+        if (code == 0 && p->is_quick)
+            leave_proteins(out);
         if (code != 0)
             tarry_error_context(error, "%s", gene->name);
     }
