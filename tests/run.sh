@@ -117,7 +117,7 @@ for part in "$@"; do
         ;;
     branches)
         # What a killed program has counted may be half written. Threads count in turn.
-        export TARRY_TEST_SMALL=1 CK_DEFAULT_TIMEOUT=240 LEAVE_OUT=test_killed
+        export TARRY_TEST_SMALL=1 CK_DEFAULT_TIMEOUT=900 LEAVE_OUT=test_killed
         build_and_run branches "$BUILD-branches" "all tests" list-tests CC=gcc \
             CFLAGS="-O0 -g --coverage -fprofile-update=atomic"
         unset TARRY_TEST_SMALL LEAVE_OUT
