@@ -55,17 +55,12 @@ static void end(json_writer *writer) {
 }
 
 /* The name of a model's file without its folders: results do not depend on where it lay. */
-static const char *base_name(const char *path) {
-    const char *slash = strrchr(path, '/');
-    return slash ? slash + 1 : path;
-}
-
 static json_t *describe_model(const tarry_model *model) {
     bool failed = false;
     char digest[TARRY_SHA256_TEXT];
     json_t *object = json_object();
     tarry_sha256(model->text, model->text_size, digest);
-    tarry_json_put(object, "file", tarry_json_text(base_name(model->file)), &failed);
+    tarry_json_put(object, "file", tarry_json_text(tarry_repeat_file(model)), &failed);
     tarry_json_put(object, "sha256", json_string(digest), &failed);
     tarry_json_put(object, "text", tarry_json_text(model->text), &failed);
     if (failed) {
@@ -80,7 +75,7 @@ static json_t *describe_data(const tarry_model *model) {
     const tarry_data_plan *data = model->network.data;
     bool failed = false;
     json_t *object = json_object();
-    tarry_json_put(object, "file", tarry_json_text(base_name(model->file)), &failed);
+    tarry_json_put(object, "file", tarry_json_text(tarry_repeat_file(model)), &failed);
     tarry_json_put(object, "sha256", json_string(data->sha256), &failed);
     tarry_json_put(object, "kind", json_string(data->kind), &failed);
     tarry_json_put(object, "rows", json_integer((json_int_t)data->n_rows), &failed);
