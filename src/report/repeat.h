@@ -10,7 +10,8 @@
 #include "tarry/results.h"
 #include "tarry/write.h"
 
-/* The name of the model's file, or of the data's, without its folders. */
+/* The name of the model's file, or of the data's, without its folders: results do not depend on
+ * where it lay. */
 const char *tarry_repeat_file(const tarry_model *model);
 
 /* Append "tarry run pulses.yaml --cells 500 --seed 1 ...", words as a POSIX shell takes them. */

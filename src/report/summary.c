@@ -54,7 +54,6 @@ static void end(json_writer *writer) {
     tarry_text_add(writer->text, "}", 1);
 }
 
-/* The name of a model's file without its folders: results do not depend on where it lay. */
 static json_t *describe_model(const tarry_model *model) {
     bool failed = false;
     char digest[TARRY_SHA256_TEXT];
