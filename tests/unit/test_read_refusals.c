@@ -44,6 +44,13 @@ START_TEST(test_delays) {
         {"{erlang: {mean: 3}}", "needs 'steps'"},
         {"{uniform: {from: 1}}", "needs 'to'"},
         {"{weibull: {shape: 1}}", "needs 'scale'"},
+        {"{erlang: {steps: 0.5, mean: 3}}", "steps"},
+        {"{erlang: {steps: 1.5, mean: 3}}", "steps"},
+        {"{erlang: {steps: 1e9, mean: 3}}", "steps"},
+        {"{erlang: {steps: 2, mean: -3}}", "mean"},
+        {"{gamma: {mean: 0, sd: 1}}", "mean"},
+        {"{gamma: {mean: 3, sd: -1}}", "sd"},
+        {"{lognormal: {mean: 3, sd: 0}}", "sd"},
         {"{weibull: {shape: 1 min, scale: 2}}", "a pure number is due"},
         {"{fixed: [1]}", "fixed"},
         {"{fixed: 1, gamma: {mean: 3, sd: 1}}", "one law"},
@@ -84,6 +91,74 @@ START_TEST(test_delays) {
         "tarry: 1\ntime: min\ndelays:\n  way: %s\ngenes: {vela: {promoter: {on: {initiates: 1}}, "
         "transcript: {stages: {n: way}, decay: 1}}}\nrun: {until: 5}\n",
         cases, COUNT(cases));
+}
+END_TEST
+
+/* Exponents of a unit stay below some thousands; the longest name is shown in part. */
+START_TEST(test_expressions) {
+    static const refusal cases[] = {
+        {"sqrt(3 min)", "the square root of a time"},
+        {"sqrt(2 kb)", "the square root of a length"},
+        {"(2 min)^2.5", "a whole number only"},
+        {"(2 min)^k", "a whole number only"},
+        {"(1 min)^(0 - 2)", "a whole number only"},
+        {"3 min + 2 kb", "a time and a length cannot be added"},
+        {"3 kb + 2 min", "a length and a time cannot be added"},
+        {"3 min + 2 kb / 1 min", "a time and a speed"},
+        {"6 /min/kb", "write '/ 1 min'"},
+        {"(2 min)^100000", "min"},
+        {"(2 kb)^100000", "kb"},
+        {"foo(2)", "there is no function 'foo'"},
+        {"min(1)", "takes at least 2 values, not 1"},
+        {"hill(1, 2)", "takes 3 values, not 2"},
+        {"2 furlong", "'furlong' is no unit"},
+        {"3 /", "a value is missing after '/'"},
+        {"k + 1", "in a circle"},
+        {"1e400", "too large"},
+        {".5.5", "an operator is missing"},
+        {"5.x", "'x' is no unit"},
+        {"x.y", "there is no 'x.y' here"},
+        {"1 $ 2", "has no meaning in an expression"},
+        {"log(-1)", "comes to no finite number"},
+        {"exp(1e9)", "comes to no finite number"},
+        {"3minutes", "write 'min'"},
+        {"3 min min", "an operator is missing"},
+        {"( 1", "is not closed"},
+        {"1 )", "closes no '('"},
+        {"a_name_that_is_longer_than_what_is_shown_of_any_name_in_messages_of_this_kind_by_far(3)",
+         "there is no function"},
+        {"a_name_that_is_longer_than_what_is_shown_of_any_name_in_messages_of_this_kind_by_far",
+         "a_name_that_is_longer"},
+    };
+    check_all(
+        "tarry: 1\ntime: min\nparameters: {k: \"%s\"}\ngenes: {vela: {promoter: {on: {initiates: "
+        "1}}, transcript: {decay: 1}}}\nrun: {until: 5}\n",
+        cases, COUNT(cases));
+}
+END_TEST
+
+/* Signals of a gene with alleles. */
+START_TEST(test_signals) {
+    static const refusal cases[] = {
+        {"{of: vela.n, allele: 3}", "there is no allele 3"},
+        {"{sum: {vela.n: 1, vela.transcript: 1}, allele: 1}", "'vela.transcript' is none"},
+        {"{sum: {vela.n: {ramp: {from: 0.2, to: 0.1}}}, allele: 1}", "a ramp goes from"},
+        {"{of: vela.transcript, allele: 1}", "is none"},
+        {"{of: [vela.n], allele: 1}", "'of'"},
+        {"{sum: [vela.n], allele: 1}", "'sum'"},
+        {"{sum: {vela.n: [1]}}", "vela.n"},
+        {"{of: vela.n, ramp: 3}", "'ramp'"},
+        {"{of: vela.n, ramp: {from: 0}}", "needs 'to'"},
+        {"{of: vela.n, noise: {fixed: 1, part: 2}}", "part"},
+        {"{of: vela.n, noise: {share: -1}}", "not below 0"},
+        {"{of: vela.n, detects: 3}", "'detects'"},
+        {"{of: vela.n, detects: {above: 2, first: yes}}", "first"},
+        {"{of: vela.n, sum: {vela.n: 1}}", "either 'of'"},
+        {"{noise: 1}", "either 'of'"},
+    };
+    check_all("tarry: 1\ntime: min\ngenes: {vela: {copies: 2, promoter: {on: {initiates: 1}}, "
+              "transcript: {stages: {n: 3}, decay: 1}}}\nsignals:\n  spot: %s\nrun: {until: 5}\n",
+              cases, COUNT(cases));
 }
 END_TEST
 
@@ -158,9 +233,8 @@ START_TEST(test_bursts) {
 END_TEST
 
 int main(void) {
-    const test_entry tests[] = {{"delays", test_delays},
-                                {"amounts", test_amounts},
-                                {"varies", test_varies},
-                                {"bursts", test_bursts}};
+    const test_entry tests[] = {{"delays", test_delays},   {"expressions", test_expressions},
+                                {"signals", test_signals}, {"amounts", test_amounts},
+                                {"varies", test_varies},   {"bursts", test_bursts}};
     return run_tests("read refusals", tests, sizeof tests / sizeof *tests);
 }
