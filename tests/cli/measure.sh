@@ -137,4 +137,6 @@ printf 'cell,time,spot\na,0,\0001\n' >binary.csv
 ok "a file with a byte that is no text" wrong "binary.csv:1:1: this is no text" measure binary.csv --time min
 awk 'BEGIN { printf "cell,time"; for (i = 0; i < 300; i++) printf ",s%d", i; print "" }' >wide.csv
 ok "300 columns" wrong "at most 200 columns of values" measure wide.csv --time min
+awk 'BEGIN { printf "cell,time"; for (i = 0; i < 600; i++) printf ",s%d", i; print "" }' >wider.csv
+ok "600 columns" wrong "at most 200 columns of values" measure wider.csv --time min
 finish
