@@ -43,7 +43,7 @@ static awaited read_awaited(const tarry_exact_gene *gene, const tarry_first *fir
 /* The share over all cells. */
 static int find_share(tarry_prediction *p, const tarry_first *first, const awaited *a, double step,
                       const double *times, size_t n, double *share, tarry_error *error) {
-    double own[TARRY_PREDICT_POINTS];
+    double own[TARRY_PREDICT_POINTS] = {0};
     int code = 0;
     for (size_t k = 0; code == 0 && k < p->n_cells; k++) {
         code = (a->is_protein ? tarry_exact_no_protein_yet : tarry_exact_none_yet)(
