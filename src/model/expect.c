@@ -89,7 +89,7 @@ int tarry_expect_not_yet(const tarry_node *node, const char *what, const char *c
     for (size_t i = 0; i < n_keys; i++)
         if (tarry_node_get(node, keys[i]) != NULL)
             return tarry_fail_at(error, TARRY_NOT_YET, tarry_key_place(node, keys[i]),
-                                 "%s: '%s' cannot be used yet; this version does without it", what,
+                                 "%s: '%s' cannot be used yet; remove it for this version", what,
                                  keys[i]);
     return 0;
 }

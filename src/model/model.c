@@ -32,9 +32,12 @@ static int (*const READERS[])(tarry_builder *builder, tarry_error *error) = {
  */
 
 static int read_version(const tarry_node *root, tarry_error *error) {
-    const tarry_node *version = NULL;
-    int code = tarry_expect_value(root, "a model (as its first line 'tarry: 1')", "tarry", &version,
-                                  error);
+    const tarry_node *version = tarry_node_get(root, "tarry");
+    int code = tarry_expect_map(root, "a model", error);
+    if (code == 0 && version == NULL)
+        return tarry_fail_at(error, TARRY_INPUT, root->place,
+                             "the version of the format is missing: a model begins with the line "
+                             "'tarry: 1'");
     if (code == 0)
         code = tarry_expect_scalar(version, "'tarry', the version of the format,", error);
     if (code == 0 && strcmp(version->text, "1") != 0)

@@ -129,7 +129,9 @@ static int read_table(tarry_builder *builder, const tarry_node *node, tarry_law_
         return code;
     law->n = weights->n;
     if (law->n == 0)
-        return tarry_fail_at(error, TARRY_INPUT, weights->place, "a table needs a weight at least");
+        return tarry_fail_at(error, TARRY_INPUT, weights->place,
+                             "a table needs at least one weight, as in {values: [1 min, "
+                             "4 min], weights: [1, 3]}");
     if (points->n != law->n + (edges != NULL))
         return tarry_fail_at(error, TARRY_INPUT, points->place,
                              edges != NULL ? "%zu edges and %zu weights: there is one edge more "
@@ -148,7 +150,8 @@ static int make_parts(tarry_builder *builder, const tarry_node *list, const char
     if (code != 0)
         return code;
     if (list->n == 0)
-        return tarry_fail_at(error, TARRY_INPUT, list->place, "%s needs a delay at least", what);
+        return tarry_fail_at(error, TARRY_INPUT, list->place,
+                             "%s is empty; it needs at least one delay", what);
     *parts = tarry_arena_calloc(builder->arena, list->n, sizeof **parts);
     law->n = list->n;
     law->parts = *parts;

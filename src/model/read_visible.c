@@ -29,9 +29,10 @@ static int read_thresholds(tarry_builder *builder, const tarry_node *list,
                              "the lower threshold of 'visible' comes first and must not be above "
                              "the upper one");
     if (code == 0 && !(thresholds->least >= 0 && thresholds->least < builder->network->run.until))
-        code = tarry_fail_at(error, TARRY_INPUT, list->entries[2].node->place,
-                             "the shortest length of 'visible' lies between 0 and the end of the "
-                             "record");
+        code = tarry_fail_at(
+            error, TARRY_INPUT, list->entries[2].node->place,
+            "the shortest length of 'visible' must lie between 0 and the end of the "
+            "record");
     return code;
 }
 

@@ -291,10 +291,10 @@ static int read_cell(reading *r, const tarry_csv_field *fields, size_t i, size_t
         if (!(time > r->last_time[cell])) {
             const bool same = time == r->last_time[cell];
             return tarry_fail_at(error, TARRY_INPUT, tarry_csv_place(&r->csv, at->text),
-                                 "cell %s: the time %.*s %s; the times of a cell must go up from "
+                                 "cell %s %s the time %.*s; the times of a cell must go up from "
                                  "row to row",
-                                 r->table->cell_names[cell], (int)at->n, at->text,
-                                 same ? "stands for it twice" : "goes back");
+                                 r->table->cell_names[cell], same ? "has twice" : "goes back to",
+                                 (int)at->n, at->text);
         }
     }
     r->last_time[cell] = time;
@@ -544,7 +544,9 @@ static int expand(tarry_data_table *table, tarry_error *error) {
         n += table->weights[row];
     if (n > most_expanded)
         return tarry_fail_at(error, TARRY_INPUT, (tarry_place){table->path, 0, 0},
-                             "the column `cells` adds up to more than 1e7 cells");
+                             "the column `cells` adds up to more than 1e7 cells, the most that are "
+                             "taken; measure a part "
+                             "of the times at once");
     double *times = tarry_calloc((size_t)n, sizeof *times);
     double *values = tarry_calloc((size_t)n, sizeof *values);
     uint32_t *groups = tarry_calloc((size_t)n, sizeof *groups);

@@ -222,7 +222,7 @@ START_TEST(delays) {
     delay_refused("wat", 2, 9, "did you mean 'wait'?");
     delay_refused("wait", 2, 9, "the delay 'wait' is made of itself");
     delay_refused("{total: [b]}\n  b: {mix: [{share: 1, lasts: wait}]}", 3, 31, "made of itself");
-    delay_refused("{total: []}", 2, 17, "total needs a delay at least");
+    delay_refused("{total: []}", 2, 17, "total is empty; it needs at least one delay");
     delay_refused("{mix: [{share: 0.5, lasts: 1}, {share: 0.4, lasts: 2}]}", 2, 9,
                   "add up to 0.9; they must add up to 1");
     delay_refused("{mix: [{share: 1}]}", 2, 16, "a part of a mix needs 'lasts'");
